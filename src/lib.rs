@@ -1,0 +1,6 @@
+//! crenate: a plain-text format for periodic potentials, its linter and its
+//! language server.
+//!
+//! The modules stand in the order in which a text walks through them.
+
+pub mod numerics;

@@ -1,0 +1,3 @@
+//! The `crenate` command.
+
+fn main() {}

@@ -1,0 +1,1 @@
+//! Pure numerics: dimensionless, `f64`, no dependency on the rest of the crate.
