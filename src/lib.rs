@@ -3,4 +3,8 @@
 //!
 //! The modules stand in the order in which a text walks through them.
 
+pub mod text;
+
+pub mod syntax;
+
 pub mod numerics;
