@@ -7,4 +7,6 @@ pub mod text;
 
 pub mod syntax;
 
+pub mod model;
+
 pub mod numerics;
