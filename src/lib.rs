@@ -10,3 +10,9 @@ pub mod syntax;
 pub mod model;
 
 pub mod numerics;
+
+pub mod bands;
+
+pub mod rules;
+
+pub mod report;

@@ -7,12 +7,16 @@ mod crystal;
 mod dimension;
 mod dual;
 mod place;
+mod reference;
 mod target;
 mod trouble;
+mod world;
 
 pub use crystal::*;
 pub use dimension::Dimension;
 pub use dual::{Dual, ParameterId};
 pub use place::{FileId, Place};
+pub use reference::{NameSort, Reference};
 pub use target::*;
 pub use trouble::{Trouble, TroubleKind};
+pub use world::World;

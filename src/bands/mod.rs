@@ -1,0 +1,7 @@
+//! The one bridge from a [`crate::model::Crystal`] to numbers with uncertainties.
+//!
+//! Everything that leaves this room is in SI units.
+
+mod types;
+
+pub use types::*;

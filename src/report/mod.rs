@@ -1,0 +1,3 @@
+//! The pipeline from files to findings and numbers, and the views of it.
+
+pub mod analysis;

@@ -1,0 +1,5 @@
+//! The rules: one file each, listed here.
+
+mod rule;
+
+pub use rule::*;
