@@ -190,9 +190,10 @@ impl Search<'_, '_> {
             } else {
                 (high, right) = (try_at, sample);
             }
-            let settled =
-                (left.value - right.value).abs() <= 1e-13 * left.value.abs() && high - low < 1e-4;
-            if left.value.min(right.value) <= self.floor || high - low < 1e-13 || settled {
+            let best = left.value.min(right.value);
+            // Between convex sides the value cannot fall below where the tangents meet.
+            let possible = meeting_height(&left, &right, &direction, low, high);
+            if best <= self.floor || high - low < 1e-13 || best - possible <= 1e-11 * best.abs() {
                 break;
             }
         }
