@@ -1,12 +1,12 @@
 //! A one-dimensional crystal as the numerics see it, and the way back: energies in joule, derivatives by the chain rule.
 
-use crate::model::{Crystal, ParameterId};
+use crate::model::Crystal;
 use crate::numerics::{Bounded, Budget, Cell, Mass, Mesh, Piece, SolveError};
 
 use super::field::Field;
 use super::layout::{self, Stretch};
 use super::scale::Scale;
-use super::{Feature, Measured, Sensitivity, Unsolved};
+use super::{Measured, Unsolved};
 
 /// What a crystal may cost: sweeps over its cell. A thousand layers at twenty bands need under ten thousand.
 const MOST_SWEEPS: usize = 100_000;
@@ -18,18 +18,20 @@ pub(super) struct Chain<'a> {
     pub field: Field<'a>,
     pub scale: Scale,
     pub cell: Cell,
-    origins: Vec<Origin>,
-    stretches: Vec<Stretch>,
+    pub origins: Vec<Origin>,
+    /// The nodes of all smooth stretches as shares of their stretch.
+    pub nodes: Vec<f64>,
+    pub stretches: Vec<Stretch>,
 }
 
 /// Where a piece of the cell comes from.
 #[derive(Clone, Copy)]
-enum Origin {
+pub(super) enum Origin {
     Delta(usize),
     /// A whole stretch, constant or linear.
     Plain(usize),
-    /// One step of a smooth stretch: its ends as shares of the stretch.
-    Step { stretch: usize, from: f64, to: f64 },
+    /// One step of a smooth stretch: its ends as shares of the stretch, and the first of its nodes.
+    Step { stretch: usize, from: f64, to: f64, node: usize },
 }
 
 /// A budget of the standard size with this hook.
@@ -57,7 +59,7 @@ impl<'a> Chain<'a> {
         let scale = Scale::new(period, crystal.mass.value).ok_or(Unsolved::BrokenModel)?;
         let field = Field::new(crystal, period);
         let stretches = layout::stretches(crystal, period);
-        let mut chain = Self { field, scale, cell: Cell::default(), origins: Vec::new(), stretches: Vec::new() };
+        let mut chain = Self { field, scale, cell: Cell::default(), origins: Vec::new(), nodes: Vec::new(), stretches: Vec::new() };
         for (index, stretch) in stretches.iter().enumerate() {
             chain.add_stretch(index, stretch, budget)?;
             if chain.cell.pieces.len() > MOST_PIECES {
@@ -107,10 +109,12 @@ impl<'a> Chain<'a> {
         let mesh = Mesh::build(share, &potential, 1.0, budget).map_err(unsolved)?;
         let samples: Vec<f64> = mesh.nodes().iter().map(|node| potential(node * share)).collect();
         let pieces = mesh.pieces(&samples, mass);
-        let bounds = mesh.boundaries();
-        for (piece, ends) in pieces.into_iter().zip(bounds.windows(2)) {
+        let mut node = self.nodes.len();
+        self.nodes.extend_from_slice(mesh.nodes());
+        for (piece, ends) in pieces.into_iter().zip(mesh.boundaries().windows(2)) {
             if let [from, to] = ends {
-                self.push(piece, Origin::Step { stretch: index, from: *from, to: *to });
+                self.push(piece, Origin::Step { stretch: index, from: *from, to: *to, node });
+                node += Mesh::NODES;
             }
         }
         Ok(())
@@ -129,17 +133,5 @@ impl<'a> Chain<'a> {
     /// A mass of the numerics in kg.
     pub fn mass(&self, bounded: Bounded) -> Measured {
         Measured { value: bounded.value * self.scale.mass, uncertainty: bounded.error * self.scale.mass }
-    }
-}
-
-impl Chain<'_> {
-    pub fn feature_slopes(&self, _f: Feature, _b: &Budget<'_>) -> Result<Vec<(ParameterId, f64)>, Unsolved> {
-        Ok(Vec::new())
-    }
-    pub fn level_slopes(&self, _n: usize, _ka: f64, _b: &Budget<'_>) -> Result<Vec<(ParameterId, f64)>, Unsolved> {
-        Ok(Vec::new())
-    }
-    pub fn sensitivities(&self, _n: usize, _b: &Budget<'_>) -> Result<Vec<Sensitivity>, Unsolved> {
-        Ok(Vec::new())
     }
 }

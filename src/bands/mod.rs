@@ -14,6 +14,7 @@ mod probe;
 mod quantity;
 mod range;
 mod scale;
+mod slopes;
 mod solve;
 mod types;
 mod worst;

@@ -124,8 +124,8 @@ impl Evaluation<'_> {
         let chain = Chain::new(crystal, &budget)?;
         let cells = hop.first().map_or(0, |cells| cells.unsigned_abs());
         let cells = usize::try_from(cells).map_err(|_| because("the hop is too far"))?;
-        let _ = (chain, number, cells);
-        Err(because("hopping is not computed yet"))
+        let hopping = numerics::hopping(&chain.cell, number - 1, cells, &budget).map_err(unsolved)?;
+        Ok(chain.energy(hopping))
     }
 
     /// Exact derivatives of a quantity; masses and hoppings have none here and give an empty list.
