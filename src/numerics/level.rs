@@ -82,6 +82,18 @@ pub fn integrated_states(cell: &Cell, energy: f64, budget: &Budget) -> Result<Bo
     })
 }
 
+/// D(E) = 2 cos ka at an energy: |D| < 2 in a band, beyond in a gap. Infinite where it leaves the range of `f64`.
+pub fn discriminant(cell: &Cell, energy: f64, budget: &Budget) -> Result<Bounded, SolveError> {
+    if !energy.is_finite() {
+        return Err(SolveError::NotFinite);
+    }
+    let ready = prepare(cell)?;
+    let meter = Meter::new(budget);
+    let value = read(&ready, Double::constant(energy), &meter)?.discriminant();
+    let error = super::uncertainty::discriminant_error(&ready, energy) + f64::EPSILON * value.abs();
+    Ok(Bounded { value, error })
+}
+
 /// `points` pairs (ka, E_n) from ka = 0 to π, evenly spaced; for pictures.
 pub fn dispersion(
     cell: &Cell,

@@ -80,6 +80,22 @@ pub(crate) fn level_bound(ready: &Ready, energy: f64) -> f64 {
     }
 }
 
+/// Bound on D at a given energy by inputs and mesh, for a sweep in double-double.
+pub(crate) fn discriminant_error(ready: &Ready, energy: f64) -> f64 {
+    let found = gradient(ready, energy);
+    let slopes = ratio(&found, |p| p * power_of_two(found.exponent));
+    let (inputs, mesh) = spread(ready, &slopes);
+    f64::EPSILON * inputs + mesh
+}
+
+/// Relative effect of inputs and mesh on the width of a narrow band about `middle`, and of rounding.
+pub(crate) fn width_spread(ready: &Ready, middle: f64) -> (f64, f64) {
+    let found = gradient(ready, Dual::variable(middle));
+    let width = 4.0 / (found.energy_slope.value.abs() * power_of_two(found.exponent));
+    let (inputs, mesh) = spread(ready, &width_slopes(ready, middle));
+    ((f64::EPSILON * inputs + mesh) / width, UNIT * found.rounding_count())
+}
+
 /// |D′| so small that the level is one of a doublet.
 fn near_edge(found: &Gradient<f64>) -> bool {
     let slope = found.energy_slope.abs();
