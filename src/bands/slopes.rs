@@ -10,14 +10,27 @@ use super::{Feature, Sensitivity, Unsolved};
 
 impl Chain<'_> {
     /// Of the gaps, widths, bottoms and tops of the lowest `bands` bands.
-    pub fn sensitivities(&self, bands: usize, budget: &Budget<'_>) -> Result<Vec<Sensitivity>, Unsolved> {
+    pub fn sensitivities(
+        &self,
+        bands: usize,
+        budget: &Budget<'_>,
+    ) -> Result<Vec<Sensitivity>, Unsolved> {
         let features: Vec<Feature> = (1..=bands)
-            .flat_map(|band| [Feature::Gap(band), Feature::Width(band), Feature::Bottom(band), Feature::Top(band)])
+            .flat_map(|band| {
+                [
+                    Feature::Gap(band),
+                    Feature::Width(band),
+                    Feature::Bottom(band),
+                    Feature::Top(band),
+                ]
+            })
             .collect();
         let quantities: Vec<Quantity> = features.iter().map(|feature| quantity(*feature)).collect();
         let slopes = self.slopes(&quantities, budget)?;
         let pairs = features.into_iter().zip(slopes);
-        Ok(pairs.map(|(feature, slopes)| Sensitivity { feature, slopes }).collect())
+        Ok(pairs
+            .map(|(feature, slopes)| Sensitivity { feature, slopes })
+            .collect())
     }
 
     /// Of one feature, in joule per SI unit of each parameter.
@@ -26,7 +39,10 @@ impl Chain<'_> {
         feature: Feature,
         budget: &Budget<'_>,
     ) -> Result<Vec<(ParameterId, f64)>, Unsolved> {
-        Ok(self.slopes(&[quantity(feature)], budget)?.pop().unwrap_or_default())
+        Ok(self
+            .slopes(&[quantity(feature)], budget)?
+            .pop()
+            .unwrap_or_default())
     }
 
     /// Of the level of a band (counted from 1) at ka.
@@ -40,9 +56,14 @@ impl Chain<'_> {
         Ok(self.slopes(&[quantity], budget)?.pop().unwrap_or_default())
     }
 
-    fn slopes(&self, quantities: &[Quantity], budget: &Budget<'_>) -> Result<Vec<Vec<(ParameterId, f64)>>, Unsolved> {
+    fn slopes(
+        &self,
+        quantities: &[Quantity],
+        budget: &Budget<'_>,
+    ) -> Result<Vec<Vec<(ParameterId, f64)>>, Unsolved> {
         let by_piece = numerics::sensitivities(&self.cell, quantities, budget).map_err(unsolved)?;
-        let mut sums: Vec<FxHashMap<ParameterId, f64>> = vec![FxHashMap::default(); quantities.len()];
+        let mut sums: Vec<FxHashMap<ParameterId, f64>> =
+            vec![FxHashMap::default(); quantities.len()];
         for (index, origin) in self.origins.iter().enumerate() {
             let numbers = self.numbers(*origin);
             for (sum, pieces) in sums.iter_mut().zip(&by_piece) {
@@ -60,37 +81,68 @@ impl Chain<'_> {
             Origin::Delta(index) => {
                 let unit = 1.0 / (self.scale.energy * self.scale.length);
                 let delta = self.field.crystal.potential.deltas.get(index);
-                let strength = delta.map_or_else(Dual::default, |delta| delta.strength.scaled(unit));
-                Numbers { strength, ..Numbers::default() }
+                let strength =
+                    delta.map_or_else(Dual::default, |delta| delta.strength.scaled(unit));
+                Numbers {
+                    strength,
+                    ..Numbers::default()
+                }
             }
             Origin::Plain(index) => self.plain(index),
-            Origin::Step { stretch, from, to, node } => self.step(stretch, from, to, node),
+            Origin::Step {
+                stretch,
+                from,
+                to,
+                node,
+            } => self.step(stretch, from, to, node),
         }
     }
 
     fn plain(&self, index: usize) -> Numbers {
-        let Some(stretch) = self.stretches.get(index) else { return Numbers::default() };
-        let length = self.field.length::<Dual>(stretch).scaled(1.0 / self.scale.length);
-        let potential = self.field.ends::<Dual>(stretch).map(|energy| energy.scaled(1.0 / self.scale.energy));
-        Numbers { length, potential, mass: self.masses(index), ..Numbers::default() }
+        let Some(stretch) = self.stretches.get(index) else {
+            return Numbers::default();
+        };
+        let length = self
+            .field
+            .length::<Dual>(stretch)
+            .scaled(1.0 / self.scale.length);
+        let potential = self
+            .field
+            .ends::<Dual>(stretch)
+            .map(|energy| energy.scaled(1.0 / self.scale.energy));
+        Numbers {
+            length,
+            potential,
+            mass: self.masses(index),
+            ..Numbers::default()
+        }
     }
 
     fn masses(&self, index: usize) -> [(Dual, Dual); 2] {
-        let Some(stretch) = self.stretches.get(index) else { return Default::default() };
+        let Some(stretch) = self.stretches.get(index) else {
+            return Default::default();
+        };
         self.field.masses::<Dual>(stretch).map(|(value, slope)| {
-            (value.scaled(1.0 / self.scale.mass), slope.scaled(self.scale.energy / self.scale.mass))
+            (
+                value.scaled(1.0 / self.scale.mass),
+                slope.scaled(self.scale.energy / self.scale.mass),
+            )
         })
     }
 
     fn step(&self, index: usize, from: f64, to: f64, node: usize) -> Numbers {
-        let Some(stretch) = self.stretches.get(index) else { return Numbers::default() };
+        let Some(stretch) = self.stretches.get(index) else {
+            return Numbers::default();
+        };
         let start: Dual = self.field.position(&stretch.from);
         let length: Dual = self.field.length(stretch);
         let nodes = self.nodes.iter().skip(node).take(numerics::Mesh::NODES);
         let samples = nodes
             .map(|share| {
                 let x = start.plus(&length.scaled(*share));
-                self.field.potential(stretch, &x).scaled(1.0 / self.scale.energy)
+                self.field
+                    .potential(stretch, &x)
+                    .scaled(1.0 / self.scale.energy)
             })
             .collect();
         let [left, right] = self.masses(index);
@@ -139,7 +191,8 @@ impl Numbers {
         owe(&self.length, piece.length);
         owe(&self.strength, piece.strength);
         for end in 0..2 {
-            if let (Some(number), Some(rate)) = (self.potential.get(end), piece.potential.get(end)) {
+            if let (Some(number), Some(rate)) = (self.potential.get(end), piece.potential.get(end))
+            {
                 owe(number, *rate);
             }
             if let (Some((value, slope)), Some(rate)) = (self.mass.get(end), piece.mass.get(end)) {

@@ -37,13 +37,21 @@ pub fn hopping(cell: &Cell, band: usize, r: usize, budget: &Budget) -> Result<Bo
             return bounded(&ready, band, r, value, noise, &meter);
         }
     }
-    let (value, size) = integrate::<Double>(&ready, band, r, &meter)?.ok_or(SolveError::NoBracket)?;
+    let (value, size) =
+        integrate::<Double>(&ready, band, r, &meter)?.ok_or(SolveError::NoBracket)?;
     let noise = Double::UNIT * 1e3 * size * (8.0 + ready.elements.len() as f64);
     bounded(&ready, band, r, value, noise, &meter)
 }
 
 /// Adds the effect of inputs known to one unit: ln J_r moves like r times ln of the width.
-fn bounded(ready: &Ready, band: usize, r: usize, value: Bounded, noise: f64, meter: &Meter) -> Result<Bounded, SolveError> {
+fn bounded(
+    ready: &Ready,
+    band: usize,
+    r: usize,
+    value: Bounded,
+    noise: f64,
+    meter: &Meter,
+) -> Result<Bounded, SolveError> {
     let mut finder = Finder::<f64>::new(ready, meter);
     finder.surround(band)?;
     let middle = match finder.inside(band)? {
@@ -52,7 +60,10 @@ fn bounded(ready: &Ready, band: usize, r: usize, value: Bounded, noise: f64, met
     };
     let (relative, rounding) = super::uncertainty::width_spread(ready, middle);
     let own = (r as f64) * relative * value.value.abs() + rounding * value.value.abs();
-    Ok(Bounded { value: value.value, error: value.error + noise + own })
+    Ok(Bounded {
+        value: value.value,
+        error: value.error + noise + own,
+    })
 }
 
 /// An energy inside a band too narrow for `f64`.
@@ -66,11 +77,24 @@ fn value_energy(ready: &Ready, band: usize, meter: &Meter) -> Result<f64, SolveE
 }
 
 /// The integral with its unsettled part, and the size of its terms. `None` if the band is narrower than the arithmetic.
-fn integrate<T: Scalar>(ready: &Ready, band: usize, r: usize, meter: &Meter) -> Result<Option<(Bounded, f64)>, SolveError> {
+fn integrate<T: Scalar>(
+    ready: &Ready,
+    band: usize,
+    r: usize,
+    meter: &Meter,
+) -> Result<Option<(Bounded, f64)>, SolveError> {
     let mut finder = Finder::<T>::new(ready, meter);
     finder.surround(band)?;
-    let Inside::At(start) = finder.inside(band)? else { return Ok(None) };
-    let mut curve = Curve { finder, band, r, last: start, size: 0.0 };
+    let Inside::At(start) = finder.inside(band)? else {
+        return Ok(None);
+    };
+    let mut curve = Curve {
+        finder,
+        band,
+        r,
+        last: start,
+        size: 0.0,
+    };
     let mut points = POINTS[0].max(2 * r);
     let mut sum = curve.trapezoid(points, 0)?;
     let mut value = sum.leading() / points as f64;
@@ -102,7 +126,11 @@ struct Curve<'a, T> {
 impl<T: Scalar> Curve<'_, T> {
     /// −(2/r) sin θ sin rθ / D′ at θ = ka.
     fn integrand(&mut self, angle: f64, sine: f64, multiple: f64) -> Result<T, SolveError> {
-        let share = if self.band % 2 == 0 { angle / PI } else { 1.0 - angle / PI };
+        let share = if self.band % 2 == 0 {
+            angle / PI
+        } else {
+            1.0 - angle / PI
+        };
         let target = level_target::<T>(self.band, share);
         let (energy, reading) = self.finder.root(target, self.last.energy)?;
         let reading = if energy.leading() == reading.energy.leading() && T::UNIT == f64::UNIT {
@@ -149,12 +177,19 @@ impl<T: Scalar> Curve<'_, T> {
                 let near = share.min(e * share);
                 let sine = (PI * near).sin();
                 let multiple = (self.r as f64 * PI * near).sin();
-                let sign = if share > 0.5 && self.r % 2 == 0 { -1.0 } else { 1.0 };
+                let sign = if share > 0.5 && self.r % 2 == 0 {
+                    -1.0
+                } else {
+                    1.0
+                };
                 if near < 1e-15 {
                     continue;
                 }
                 let weight = PI * t.cosh() * share * (e * share) * step;
-                sum = sum + self.integrand(PI * share, sine, sign * multiple)?.times(weight);
+                sum = sum
+                    + self
+                        .integrand(PI * share, sine, sign * multiple)?
+                        .times(weight);
             }
             let next = sum.leading();
             let change = (next - value).abs();
