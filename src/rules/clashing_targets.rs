@@ -29,7 +29,7 @@
 //! None.
 
 use super::formula::{same, value};
-use super::{Finding, Level, Rule, Subject, Tier, words};
+use super::{Finding, Level, Rule, Subject, Tier};
 use crate::model::{ClassWish, Dimension, GapWish, Limits, QuantityKind, Target, TargetFormula, Wish};
 
 /// The rule.
@@ -52,8 +52,6 @@ fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
         let other = earlier.into_iter().find(|other| clash(other, target));
         if let Some(other) = other {
             findings.push(finding(subject, target, other));
-        } else if is_empty(&target.wish) {
-            findings.push(nothing_fits(subject, target));
         }
     }
 }
@@ -65,24 +63,6 @@ fn finding(subject: &Subject<'_>, target: &Target, other: &Target) -> Finding {
         false => subject.heading(),
     };
     Finding::new(&RULE, place, message).related(other.place, "the other requirement")
-}
-
-fn nothing_fits(subject: &Subject<'_>, target: &Target) -> Finding {
-    let place = match subject.holds(target.place) {
-        true => target.place,
-        false => subject.heading(),
-    };
-    let message = match &target.wish {
-        Wish::Compare { limits, dimension, .. } => match interval(limits) {
-            Some(Interval { lower, upper, .. }) => {
-                let [lower, upper] = words::apart([lower, upper], *dimension, None);
-                format!("nothing lies between {lower} and {upper}, so `{}` cannot hold", target.text)
-            }
-            None => format!("`{}` cannot hold", target.text),
-        },
-        _ => format!("`{}` cannot hold", target.text),
-    };
-    Finding::new(&RULE, place, message)
 }
 
 fn clash(one: &Target, other: &Target) -> bool {
@@ -197,13 +177,6 @@ fn apart(one: &Limits, other: &Limits) -> bool {
     }
 }
 
-fn is_empty(wish: &Wish) -> bool {
-    match wish {
-        Wish::Compare { limits, .. } => interval(limits).is_some_and(|interval| interval.is_empty()),
-        _ => false,
-    }
-}
-
 #[cfg(test)]
 mod tests {
     use super::super::fixture::{messages, silent};
@@ -232,10 +205,5 @@ mod tests {
         silent(&RULE, &crystal("  require gap 1 >= 3 eV\n  require gap 1 <= 3 eV\n"));
         silent(&RULE, &crystal("  require gap 1 >= 3 eV\n  require gap 2 <= 2 eV\n"));
         silent(&RULE, &crystal("  filling 2\n  require semiconductor\n  require insulator\n"));
-    }
-
-    #[test]
-    fn an_interval_with_nothing_in_it_is_found() {
-        assert_eq!(messages(&RULE, &crystal("  require gap 1 between 3 eV and 2 eV\n")).len(), 1);
     }
 }

@@ -64,9 +64,13 @@ pub fn unit_for(value: f64, dimension: Dimension, recoil: Option<f64>) -> Option
     }
 }
 
+/// Tenths of a millielectronvolt are still told in millielectronvolts.
 fn energy_unit(size: f64) -> Unit {
-    let unit = first_at_most(&ENERGIES, size);
-    if size == 0.0 { ENERGIES[1] } else { unit }
+    let milli = ENERGIES[1];
+    if size == 0.0 || (size >= 0.0999 * milli.size && size < milli.size) {
+        return milli;
+    }
+    first_at_most(&ENERGIES, size)
 }
 
 fn length_unit(size: f64) -> Unit {
