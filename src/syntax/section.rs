@@ -208,7 +208,10 @@ impl<'t> LineText<'t> {
         };
         let tried = match &error.variant {
             ErrorVariant::ParsingError { positives, .. } => positives.as_slice(),
-            ErrorVariant::CustomError { .. } => &[],
+            // The parser's own guard of the thread's stack.
+            ErrorVariant::CustomError { .. } => {
+                return self.problem(0, self.content.len(), ProblemKind::TooDeep);
+            }
         };
         let mut before = Vec::new();
         let mut offending = None;

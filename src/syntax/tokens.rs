@@ -128,9 +128,18 @@ pub(super) fn is_name_start(character: char) -> bool {
     character == '_' || unicode_ident::is_xid_start(character)
 }
 
+/// Whether a name may go on with `character`: the grammar's `name_character`.
+pub(super) fn is_name_character(character: char) -> bool {
+    let excluded = matches!(
+        character,
+        '·' | '\u{387}' | '\u{30fb}' | '\u{ff65}' | '\u{200c}' | '\u{200d}'
+    );
+    unicode_ident::is_xid_continue(character) && !excluded
+}
+
 /// The length of the name that `rest` begins with.
 pub(super) fn word_length(rest: &str) -> usize {
-    rest.find(|character| !unicode_ident::is_xid_continue(character))
+    rest.find(|character| !is_name_character(character))
         .unwrap_or(rest.len())
 }
 
@@ -194,7 +203,7 @@ fn plain_superscript(character: char) -> Option<char> {
 
 /// Characters that are often pasted or typed for one that the format reads.
 const INSTEAD: &[(&str, &str)] = &[
-    ("×·⋅∙•∗✕✖", "*"),
+    ("×·\u{387}⋅∙•∗✕✖", "*"),
     ("÷∕⁄", "/"),
     ("–—‐‑‒﹣－", "-"),
     ("＋", "+"),
