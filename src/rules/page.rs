@@ -24,7 +24,7 @@ pub fn reference_page() -> String {
     for rule in all() {
         if rule.group != group {
             group = rule.group;
-            let _ = write!(page, "\n# {}\n", capitalised(group));
+            let _ = write!(page, "\n## {}\n", capitalised(group));
         }
         entry(&mut page, rule);
     }
@@ -40,7 +40,7 @@ fn contents(page: &mut String) {
 
 fn entry(page: &mut String, rule: &Rule) {
     let doc = rule.doc();
-    let _ = write!(page, "\n## {}\n\n", rule.name);
+    let _ = write!(page, "\n### {}\n\n", rule.name);
     let _ = write!(page, "*{}*\n\n{}\n\n{}\n", facts(rule), doc.finds, doc.matters);
     sample(page, "Example", &doc.example);
     if !doc.also_found.is_empty() {
