@@ -1,3 +1,12 @@
 //! The `crenate` command.
 
-fn main() {}
+use std::process::ExitCode;
+
+use crenate::cli::{self, Outcome};
+
+fn main() -> ExitCode {
+    match cli::run() {
+        Outcome::Done(status) => status.into(),
+        Outcome::Serve => ExitCode::from(2),
+    }
+}
