@@ -224,7 +224,9 @@ impl<'w> CrystalBuild<'_, 'w> {
             return Some(Rc::clone(known));
         }
         let mut built = build_material(world, found.file, found.id, self.evaluator.setting);
-        self.evaluator.broken |= built.broken;
+        let file = world.file(found.file);
+        let ambiguous = file.is_some_and(|file| file.repeats(SectionKind::Material, &word.text));
+        self.evaluator.broken |= built.broken || ambiguous;
         self.evaluator.parameters.append(&mut built.parameters);
         let built = Rc::new(built);
         self.materials.insert(found.key(), Rc::clone(&built));
