@@ -14,6 +14,7 @@ mod probe;
 mod quantity;
 mod range;
 mod scale;
+mod slopes;
 mod solve;
 mod types;
 mod worst;
@@ -43,7 +44,11 @@ impl Solver {
     ///
     /// # Errors
     /// [`Unsolved`] says why there are none.
-    pub fn solve(&self, crystal: &Crystal, cancelled: &Cancelled<'_>) -> Result<Arc<Solution>, Unsolved> {
+    pub fn solve(
+        &self,
+        crystal: &Crystal,
+        cancelled: &Cancelled<'_>,
+    ) -> Result<Arc<Solution>, Unsolved> {
         match crystal.dimension {
             _ if crystal.broken => return Err(Unsolved::BrokenModel),
             1 => {}
@@ -96,7 +101,13 @@ impl Solver {
         rebuild: &Rebuild<'_>,
         cancelled: &Cancelled<'_>,
     ) -> Result<(Vec<Assessment>, Vec<MeasureValue>), Unsolved> {
-        let assessor = Assessor { solver: self, of, crystal, rebuild, cancelled };
+        let assessor = Assessor {
+            solver: self,
+            of,
+            crystal,
+            rebuild,
+            cancelled,
+        };
         let targets = assessor.targets().ok_or(Unsolved::Cancelled)?;
         Ok((targets, assessor.measures()))
     }

@@ -80,6 +80,8 @@ pub(crate) struct Polynomial {
     pub mass: [Mass; 2],
     /// least and greatest potential
     pub range: [f64; 2],
+    /// |δV| of the mesh to expect
+    pub remainder: f64,
 }
 
 impl Polynomial {
@@ -110,6 +112,7 @@ impl Polynomial {
             coefficients,
             mass,
             range,
+            remainder: 0.0,
         }
     }
 

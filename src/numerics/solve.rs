@@ -2,6 +2,7 @@
 
 use super::cell::{Bounded, Budget, Cell, Meter, Ready, SolveError, prepare};
 use super::double::Double;
+use super::mesh::gauss_legendre;
 use super::scalar::{Scalar, power_of_two};
 use super::search::{Finder, GapPoint, Inside, Target, is_positive};
 use super::sweep::{Reading, read};
@@ -58,12 +59,16 @@ pub struct Bands {
     pub sweeps: usize,
 }
 
+/// Widths below this share of the spacing of bands are taken from D′ where edges are in `f64`.
+pub(crate) const NARROW_WIDTH: f64 = 1e-3;
+
 /// An edge as found.
 #[derive(Clone, Copy)]
 pub(crate) struct RawEdge {
     pub energy: Double,
-    /// D′ there, |D′| possibly beyond the range of f64
+    /// D′, possibly beyond the range of `f64`, at `energy` − `offset`
     pub slope: f64,
+    pub offset: f64,
 }
 
 /// A gap as found: its lower and upper edge, or closed.
@@ -83,6 +88,9 @@ pub(crate) struct Raw {
     pub gaps: Vec<RawGap>,
     /// a reading inside each band: energy, D, D′
     pub inside: Vec<(Double, f64, f64)>,
+    /// widths taken from D′ inside a band rather than from its edges
+    pub widths: Vec<Option<f64>>,
+    /// finished in double-double
     pub exact: bool,
 }
 
@@ -132,6 +140,22 @@ fn find_in<T: Scalar>(
     for band in 0..bands {
         gaps.push(find_gap(&mut finder, &inside, band, polish)?);
     }
+    let exact = polish || T::UNIT < f64::UNIT;
+    let mut widths = Vec::with_capacity(bands);
+    for band in 0..bands {
+        let low = if band == 0 {
+            None
+        } else {
+            Some(&gaps[band - 1])
+        };
+        widths.push(narrow_width(
+            &mut finder,
+            &inside[band],
+            low,
+            &gaps[band],
+            exact,
+        )?);
+    }
     let inside = inside
         .iter()
         .map(|r| (r.energy.to_double(), r.discriminant(), r.slope()))
@@ -140,8 +164,46 @@ fn find_in<T: Scalar>(
         bottom,
         gaps,
         inside,
-        exact: polish || T::UNIT < f64::UNIT,
+        widths,
+        exact,
     }))
+}
+
+/// w = ∫ dE = ∫ dD/|D′| over D from −2 to 2, by four Gauss–Legendre nodes: for a band so narrow that D′ hardly
+/// changes inside it, while its edges' difference has lost digits. `None` where the difference serves.
+fn narrow_width<T: Scalar>(
+    finder: &mut Finder<T>,
+    inside: &Reading<T>,
+    below: Option<&RawGap>,
+    above: &RawGap,
+    exact: bool,
+) -> Result<Option<f64>, SolveError> {
+    let width = 4.0 / inside.slope().abs();
+    let limit = if exact {
+        1e-22 * inside.energy.leading().abs()
+    } else {
+        NARROW_WIDTH * finder.ready.kinetic_scale()
+    };
+    let size = |gap: &RawGap| (gap.upper.energy - gap.lower.energy).leading();
+    let isolated = size(above) > 30.0 * width && below.is_none_or(|gap| size(gap) > 30.0 * width);
+    if !isolated || width.is_nan() || width > limit {
+        return Ok(None);
+    }
+    let mut sum = 0.0;
+    for (node, weight) in gauss_legendre(4) {
+        let mut reading = *inside;
+        for _ in 0..2 {
+            let trace = reading.trace();
+            let wanted = T::constant(2.0 * node).shifted(-reading.exponent);
+            let step = (wanted - trace.value) / trace.slope;
+            if step.leading().abs() <= finder.resolution(reading.energy) {
+                break;
+            }
+            reading = read(finder.ready, reading.energy + step, finder.meter)?;
+        }
+        sum += 2.0 * weight / reading.slope().abs();
+    }
+    Ok(Some(sum))
 }
 
 /// Both edges of the gap above `band`.
@@ -191,6 +253,7 @@ fn settle<T: Scalar>(
         return Ok(RawEdge {
             energy: energy.to_double(),
             slope: reading.slope(),
+            offset: 0.0,
         });
     }
     let start = energy.to_double();
@@ -206,6 +269,7 @@ fn settle<T: Scalar>(
     Ok(RawEdge {
         energy: start + step,
         slope: reading.slope(),
+        offset: step.leading(),
     })
 }
 
@@ -237,6 +301,7 @@ fn narrow_pair<T: Scalar>(
         let edge = RawEdge {
             energy: centre.to_double(),
             slope: 0.0,
+            offset: 0.0,
         };
         return Ok(RawGap {
             lower: edge,
@@ -248,6 +313,7 @@ fn narrow_pair<T: Scalar>(
     let mut edges = [RawEdge {
         energy: centre.to_double(),
         slope: 0.0,
+        offset: 0.0,
     }; 2];
     let mut noises = 0.0;
     for (edge, direction) in edges.iter_mut().zip([-1.0, 1.0]) {
@@ -270,6 +336,7 @@ fn narrow_pair<T: Scalar>(
         *edge = RawEdge {
             energy: energy.to_double(),
             slope: last.slope(),
+            offset: 0.0,
         };
     }
     Ok(RawGap {

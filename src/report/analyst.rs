@@ -26,6 +26,8 @@ use crate::syntax::{Entry, SectionId, SectionKind};
 const SPARE_SECTIONS: usize = 4096;
 /// A section that this many analyses did not touch may go.
 const LONG_AGO: u64 = 16;
+/// Bands whose sensitivities are worked out.
+const FEATURED_BANDS: usize = 3;
 /// From this many sections to build, threads share them.
 const WORTH_SHARING: usize = 4;
 
@@ -99,7 +101,8 @@ impl Analyst {
     /// How gaps, widths and edges of a crystal move with each of its parameters.
     #[must_use]
     pub fn sensitivities(&self, crystal: &Crystal) -> Vec<Sensitivity> {
-        self.solver.sensitivities(crystal, &|| false)
+        let none = |_| Vec::new();
+        self.solver.sensitivities(crystal, FEATURED_BANDS, &|| false).unwrap_or_else(none)
     }
 
     /// The band solver, with its cache.
@@ -251,8 +254,12 @@ impl Analyst {
             let rebuild = |of: CrystalRef, setting: &Setting| {
                 Some(Arc::new(build_crystal(task.world, of, setting, request.source).crystal))
             };
-            (section.targets, section.measures) =
-                self.solver.assess(crystal, &rebuild, request.cancel);
+            let of = CrystalRef {
+                file: task.file,
+                section: task.entry.id,
+            };
+            let assessed = self.solver.assess(of, crystal, &rebuild, request.cancel);
+            (section.targets, section.measures) = assessed.ok()?;
             section.bands = Some(bands);
         }
         if (request.cancel)() {

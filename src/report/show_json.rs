@@ -211,15 +211,17 @@ fn cell(crystal: &Crystal) -> Vec<Vec<f64>> {
 }
 
 fn potential(solution: &Solution) -> PotentialRecord {
-    let told = |joule: f64| -> f64 {
-        format!("{:.14e}", joule / ELECTRONVOLT)
-            .parse()
-            .unwrap_or(0.0)
+    let range = &solution.potential;
+    let size = range.lowest.abs().max(range.highest.abs());
+    // Digits that rounding leaves meaningless are cut; a mean that cancels is nought.
+    let told = |joule: f64| match joule.abs() < 1e-13 * size {
+        true => 0.0,
+        false => format!("{:.13e}", joule / ELECTRONVOLT).parse().unwrap_or(0.0),
     };
     PotentialRecord {
-        lowest: told(solution.potential.lowest),
-        mean: told(solution.potential.mean),
-        highest: told(solution.potential.highest),
+        lowest: told(range.lowest),
+        mean: told(range.mean),
+        highest: told(range.highest),
     }
 }
 

@@ -113,7 +113,11 @@ pub fn potential(solution: &Solution, trade: &Trade) -> String {
         .max(range.highest.abs())
         .max(range.mean.abs());
     let scale = trade.energy(size);
-    let number = |value: f64| units::digits(value / scale.factor, 0.0);
+    // A mean that cancels to rounding is nought.
+    let number = |value: f64| match value.abs() < 1e-13 * size {
+        true => "0".to_owned(),
+        false => units::digits(value / scale.factor, 0.0),
+    };
     let (lowest, mean, highest) = (
         number(range.lowest),
         number(range.mean),

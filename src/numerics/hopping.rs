@@ -1,0 +1,207 @@
+//! Hopping amplitudes: E(k) = E₀ − 2 Σ J_r cos(r k a).
+//!
+//! J_r = −(1/π) ∫₀^π E cos rθ dθ, by parts and with 2 cos θ = D(E), dE/dθ = −2 sin θ / D′:
+//!   J_r = −(2/(πr)) ∫₀^π sin θ sin rθ / D′(E(θ)) dθ.
+//! No energy is subtracted from another, so J₁ keeps its relative accuracy in a band of any narrowness; J_r with
+//! r > 1 lives on the change of D′ over the band, of relative order (width/spacing)^{r−1}, and where `f64` has too few digits
+//! for that the band is swept in double-double. The integrand is periodic and analytic: the trapezoidal rule converges
+//! exponentially, at the rate of the neighbouring gaps (Trefethen & Weideman, SIAM Rev. 56, 385 (2014)). Beside a gap too
+//! small for that the tanh-sinh rule takes over (Takahasi & Mori, Publ. RIMS 9, 721 (1974)), which minds no end.
+//!
+//! Failure: a change that does not settle stays in the bound.
+
+use super::cell::{Bounded, Budget, Cell, Meter, Ready, SolveError, prepare};
+use super::double::Double;
+use super::level::level_target;
+use super::scalar::{Scalar, power_of_two};
+use super::search::{Finder, Inside};
+use super::sweep::Reading;
+use std::f64::consts::PI;
+
+/// Trapezoidal points at the start and at the end.
+const POINTS: [usize; 2] = [16, 256];
+/// Relative change at which a sum has settled.
+const SETTLED: f64 = 1e-14;
+
+/// J_r of a band, r ≥ 1 (r = 0 is refused as `NotFinite`: it has no sense as a hopping).
+pub fn hopping(cell: &Cell, band: usize, r: usize, budget: &Budget) -> Result<Bounded, SolveError> {
+    if r == 0 {
+        return Err(SolveError::NotFinite);
+    }
+    let ready = prepare(cell)?;
+    let meter = Meter::new(budget);
+    if let Some((value, size)) = integrate::<f64>(&ready, band, r, &meter)? {
+        // rounding of D′ leaves about this much in the sum
+        let noise = f64::EPSILON * size * (8.0 + ready.elements.len() as f64);
+        if value.error.max(noise) < 1e-13 * value.value.abs() || r == 1 {
+            return bounded(&ready, band, r, value, noise, &meter);
+        }
+    }
+    let (value, size) =
+        integrate::<Double>(&ready, band, r, &meter)?.ok_or(SolveError::NoBracket)?;
+    let noise = Double::UNIT * 1e3 * size * (8.0 + ready.elements.len() as f64);
+    bounded(&ready, band, r, value, noise, &meter)
+}
+
+/// Adds the effect of inputs known to one unit: ln J_r moves like r times ln of the width.
+fn bounded(
+    ready: &Ready,
+    band: usize,
+    r: usize,
+    value: Bounded,
+    noise: f64,
+    meter: &Meter,
+) -> Result<Bounded, SolveError> {
+    let mut finder = Finder::<f64>::new(ready, meter);
+    finder.surround(band)?;
+    let middle = match finder.inside(band)? {
+        Inside::At(reading) => reading.energy,
+        Inside::Unresolved => value_energy(ready, band, meter)?,
+    };
+    let (relative, rounding) = super::uncertainty::width_spread(ready, middle);
+    let own = (r as f64) * relative * value.value.abs() + rounding * value.value.abs();
+    Ok(Bounded {
+        value: value.value,
+        error: value.error + noise + own,
+    })
+}
+
+/// An energy inside a band too narrow for `f64`.
+fn value_energy(ready: &Ready, band: usize, meter: &Meter) -> Result<f64, SolveError> {
+    let mut finder = Finder::<Double>::new(ready, meter);
+    finder.surround(band)?;
+    match finder.inside(band)? {
+        Inside::At(reading) => Ok(reading.energy.round()),
+        Inside::Unresolved => Err(SolveError::NoBracket),
+    }
+}
+
+/// The integral with its unsettled part, and the size of its terms. `None` if the band is narrower than the arithmetic.
+fn integrate<T: Scalar>(
+    ready: &Ready,
+    band: usize,
+    r: usize,
+    meter: &Meter,
+) -> Result<Option<(Bounded, f64)>, SolveError> {
+    let mut finder = Finder::<T>::new(ready, meter);
+    finder.surround(band)?;
+    let Inside::At(start) = finder.inside(band)? else {
+        return Ok(None);
+    };
+    let mut curve = Curve {
+        finder,
+        band,
+        r,
+        last: start,
+        size: 0.0,
+    };
+    let mut points = POINTS[0].max(2 * r);
+    let mut sum = curve.trapezoid(points, 0)?;
+    let mut value = sum.leading() / points as f64;
+    while points < POINTS[1] {
+        sum = sum + curve.trapezoid(points, 1)?;
+        points *= 2;
+        let next = sum.leading() / points as f64;
+        let change = (next - value).abs();
+        value = next;
+        if change <= SETTLED * value.abs() + T::UNIT * 64.0 * curve.size {
+            let error = change.min(SETTLED * value.abs() + T::UNIT * 64.0 * curve.size);
+            return Ok(Some((Bounded { value, error }, curve.size)));
+        }
+    }
+    curve.last = start;
+    curve.tanh_sinh().map(|value| Some((value, curve.size)))
+}
+
+/// A band swept along k.
+struct Curve<'a, T> {
+    finder: Finder<'a, T>,
+    band: usize,
+    r: usize,
+    last: Reading<T>,
+    /// greatest |integrand|
+    size: f64,
+}
+
+impl<T: Scalar> Curve<'_, T> {
+    /// −(2/r) sin θ sin rθ / D′ at θ = ka.
+    fn integrand(&mut self, angle: f64, sine: f64, multiple: f64) -> Result<T, SolveError> {
+        let share = if self.band % 2 == 0 {
+            angle / PI
+        } else {
+            1.0 - angle / PI
+        };
+        let target = level_target::<T>(self.band, share);
+        let (energy, reading) = self.finder.root(target, self.last.energy)?;
+        let reading = if energy.leading() == reading.energy.leading() && T::UNIT == f64::UNIT {
+            reading
+        } else {
+            self.finder.read(energy)?
+        };
+        self.last = reading;
+        let slope = reading.trace().slope;
+        let weight = -2.0 * sine * multiple / self.r as f64;
+        let value = (T::constant(weight) / slope).shifted(-reading.exponent);
+        let size = 2.0 * sine * sine / (slope.leading() * power_of_two(reading.exponent)).abs();
+        self.size = self.size.max(size);
+        Ok(value)
+    }
+
+    /// Sum of the integrand at θ = π j/points, all j (`odd` = 0) or the points halfway between.
+    fn trapezoid(&mut self, points: usize, odd: usize) -> Result<T, SolveError> {
+        let mut sum = T::constant(0.0);
+        for j in 1..=points {
+            let angle = PI * (j as f64 - 0.5 * odd as f64) / points as f64;
+            if odd == 0 && j == points {
+                break;
+            }
+            let term = self.integrand(angle, angle.sin(), (self.r as f64 * angle).sin())?;
+            sum = sum + term;
+        }
+        Ok(sum)
+    }
+
+    /// (1/π) ∫₀^π by θ = π/(1 + exp(−π sinh t)), halving the step until settled.
+    fn tanh_sinh(&mut self) -> Result<Bounded, SolveError> {
+        let mut step = 0.5;
+        let mut value = f64::NAN;
+        let mut error = f64::INFINITY;
+        for _ in 0..5 {
+            let count = (3.6 / step) as i64;
+            let mut sum = T::constant(0.0);
+            for i in -count..=count {
+                let t = i as f64 * step;
+                let e = (-PI * t.sinh()).exp();
+                let share = 1.0 / (1.0 + e);
+                // distance from the nearer end keeps the sine's digits
+                let near = share.min(e * share);
+                let sine = (PI * near).sin();
+                let multiple = (self.r as f64 * PI * near).sin();
+                let sign = if share > 0.5 && self.r % 2 == 0 {
+                    -1.0
+                } else {
+                    1.0
+                };
+                if near < 1e-15 {
+                    continue;
+                }
+                let weight = PI * t.cosh() * share * (e * share) * step;
+                sum = sum
+                    + self
+                        .integrand(PI * share, sine, sign * multiple)?
+                        .times(weight);
+            }
+            let next = sum.leading();
+            let change = (next - value).abs();
+            value = next;
+            if change.is_finite() {
+                error = change;
+                if change <= SETTLED * value.abs() {
+                    break;
+                }
+            }
+            step *= 0.5;
+        }
+        Ok(Bounded { value, error })
+    }
+}
