@@ -93,7 +93,10 @@ pub(crate) fn width_spread(ready: &Ready, middle: f64) -> (f64, f64) {
     let found = gradient(ready, Dual::variable(middle));
     let width = 4.0 / (found.energy_slope.value.abs() * power_of_two(found.exponent));
     let (inputs, mesh) = spread(ready, &width_slopes(ready, middle));
-    ((f64::EPSILON * inputs + mesh) / width, UNIT * found.rounding_count())
+    (
+        (f64::EPSILON * inputs + mesh) / width,
+        UNIT * found.rounding_count(),
+    )
 }
 
 /// |D′| so small that the level is one of a doublet.

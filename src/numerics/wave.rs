@@ -25,7 +25,11 @@ pub fn wave_function(
     meter.spend()?;
     let points = points.max(2);
     let list = cyclic_factors(&ready, Dual::variable(energy));
-    let exponent = list.iter().map(|f| f.rest.exponent + f.scaled.exponent).max().unwrap_or(0);
+    let exponent = list
+        .iter()
+        .map(|f| f.rest.exponent + f.scaled.exponent)
+        .max()
+        .unwrap_or(0);
     let mut curve: Vec<[f64; 2]> = Vec::with_capacity(points);
     let mut densities: Vec<[f64; 2]> = Vec::with_capacity(points);
     let mut start = 0.0;
@@ -45,7 +49,14 @@ pub fn wave_function(
                 break;
             }
             let inner = ((x - start) / length).clamp(0.0, 1.0);
-            let density = density_at(element, factor.part, Dual::variable(energy), &around, &factor.scaled.matrix, inner);
+            let density = density_at(
+                element,
+                factor.part,
+                Dual::variable(energy),
+                &around,
+                &factor.scaled.matrix,
+                inner,
+            );
             curve.push([x, 0.0]);
             densities.push([density.value.leading(), density.slope.leading()]);
         }
@@ -73,9 +84,17 @@ fn density_at<T: Scalar>(
     inner: f64,
 ) -> T {
     match element {
-        Element::Flat { length, potential, mass } => {
+        Element::Flat {
+            length,
+            potential,
+            mass,
+        } => {
             let piece = |share: f64| {
-                let cut = Element::Flat { length: length * share, potential: *potential, mass: *mass };
+                let cut = Element::Flat {
+                    length: length * share,
+                    potential: *potential,
+                    mass: *mass,
+                };
                 let mut found = (Matrix::identity(), 0);
                 factors(&cut, energy, |m, exponent, _| found = (*m, exponent));
                 found
@@ -84,11 +103,16 @@ fn density_at<T: Scalar>(
             let ((left, e1), (right, e2)) = (piece(inner), piece(1.0 - inner));
             let mut total = 0;
             factors(element, energy, |_, exponent, _| total = exponent);
-            left.product(around).product(&right).shifted(e1 + e2 - total).b
+            left.product(around)
+                .product(&right)
+                .shifted(e1 + e2 - total)
+                .b
         }
         Element::Polynomial(p) => {
             let (series, _) = part_series(p, part.0, part.1, energy);
-            let y = inverse(&values(&series, -1.0)).product(around).product(&values(&series, 1.0));
+            let y = inverse(&values(&series, -1.0))
+                .product(around)
+                .product(&values(&series, 1.0));
             let phi = values(&series, 2.0 * inner - 1.0);
             phi.product(&y).product(&inverse(&phi)).b
         }
@@ -97,7 +121,13 @@ fn density_at<T: Scalar>(
 }
 
 /// Chooses M_x₁₂ or its derivative, and normalises by Simpson-like weights of the trapezoidal rule.
-fn fill(ready: &Ready, curve: &mut Vec<[f64; 2]>, densities: &mut Vec<[f64; 2]>, spacing: f64, _end: f64) {
+fn fill(
+    ready: &Ready,
+    curve: &mut Vec<[f64; 2]>,
+    densities: &mut Vec<[f64; 2]>,
+    spacing: f64,
+    _end: f64,
+) {
     let most = |i: usize| densities.iter().fold(0.0f64, |m, d| m.max(d[i].abs()));
     let degenerate = most(0) <= 1e-12 * most(1) * ready.kinetic_scale();
     let pick = usize::from(degenerate);
@@ -108,6 +138,10 @@ fn fill(ready: &Ready, curve: &mut Vec<[f64; 2]>, densities: &mut Vec<[f64; 2]>,
     let sum: f64 = densities.iter().map(|d| d[pick]).sum();
     for (point, density) in curve.iter_mut().zip(densities) {
         let value = density[pick] * sum.signum() / norm;
-        point[1] = if value > 0.0 && norm > 0.0 { value } else { 0.0 };
+        point[1] = if value > 0.0 && norm > 0.0 {
+            value
+        } else {
+            0.0
+        };
     }
 }
