@@ -16,3 +16,5 @@ pub mod bands;
 pub mod rules;
 
 pub mod report;
+
+pub mod server;
