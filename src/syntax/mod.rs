@@ -5,6 +5,17 @@
 //! from the section's first byte, so that a section read once stays valid when
 //! text above it changes.
 
+mod build;
+mod grammar;
+mod read;
+mod section;
+mod split;
+mod tokens;
+// A statement is read once and then shared: boxing its larger forms would save nothing.
+#[allow(clippy::large_enum_variant)]
 mod tree;
+mod wording;
+pub mod words;
 
+pub use read::{read, reread};
 pub use tree::*;
