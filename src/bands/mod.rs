@@ -2,6 +2,9 @@
 //!
 //! Everything that leaves this room is in SI units.
 
+mod filling;
+mod scale;
 mod types;
+mod worst;
 
 pub use types::*;

@@ -1,0 +1,388 @@
+//! The least value of a function over the box of tolerances, −1 … 1 in each.
+//!
+//! The sign of each slope names a corner; where the slopes there still have these signs, the corner is the
+//! answer. Where they have not, the least value may lie inside: a gap that closes and reopens between two good
+//! corners has a kink, |a·t − b|, or the narrow hyperbola beside it. So the search goes along lines, closing in
+//! on the change of sign of the slope (tangents from both sides meet at the kink of a |…|), and on along the
+//! valley: the direction of steepest descent at a kink is minus the shortest vector between the slopes of its
+//! two sides (the subdifferential of a maximum of two smooth functions; see Clarke, *Optimization and Nonsmooth
+//! Analysis*, 1983).
+
+/// A point of the box, the value there and the slopes.
+#[derive(Clone, Debug)]
+pub(super) struct Sample {
+    pub point: Vec<f64>,
+    pub value: f64,
+    pub slopes: Vec<f64>,
+}
+
+/// What the search needs: the value and slopes at a point; `None` ends the search (cancelled, or not solvable there).
+pub(super) type Evaluate<'a> = dyn FnMut(&[f64]) -> Option<(f64, Vec<f64>)> + 'a;
+
+/// Corners are tried one by one in boxes of up to this many tolerances.
+const MOST_FOR_ALL_CORNERS: usize = 8;
+/// Steps of one search along a line: bisection alone would narrow it to 1e-12 of the box.
+const LINE_STEPS: usize = 44;
+/// Lines followed from one start.
+const DESCENTS: usize = 24;
+/// Starts for the search inside the box.
+const STARTS: usize = 4;
+
+/// Finds the least value over the box. A value at or below `floor` (zero for a gap, with its uncertainty) cannot be undercut.
+pub(super) fn least(
+    dimensions: usize,
+    floor: f64,
+    evaluate: &mut Evaluate<'_>,
+) -> Option<(Sample, Sample)> {
+    let mut search = Search { evaluate, floor };
+    let centre = search.at(vec![0.0; dimensions])?;
+    let corner = search.at(corner_below(&centre.slopes))?;
+    if dimensions == 0 || same_signs(&centre.slopes, &corner.slopes) && corner.value <= centre.value
+    {
+        return Some((centre, corner));
+    }
+    let best = search.inside(&centre, corner)?;
+    Some((centre, best))
+}
+
+/// The corner to which all slopes fall.
+fn corner_below(slopes: &[f64]) -> Vec<f64> {
+    slopes
+        .iter()
+        .map(|slope| if *slope > 0.0 { -1.0 } else { 1.0 })
+        .collect()
+}
+
+fn same_signs(a: &[f64], b: &[f64]) -> bool {
+    a.iter().zip(b).all(|(a, b)| a * b >= 0.0)
+}
+
+fn dot(a: &[f64], b: &[f64]) -> f64 {
+    a.iter().zip(b).map(|(a, b)| a * b).sum()
+}
+
+struct Search<'a, 'b> {
+    evaluate: &'a mut Evaluate<'b>,
+    floor: f64,
+}
+
+impl Search<'_, '_> {
+    fn at(&mut self, point: Vec<f64>) -> Option<Sample> {
+        let (value, slopes) = (self.evaluate)(&point)?;
+        value.is_finite().then_some(Sample {
+            point,
+            value,
+            slopes,
+        })
+    }
+
+    /// The least value where signs differ: every corner, then descents from the best starts.
+    fn inside(&mut self, centre: &Sample, first: Sample) -> Option<Sample> {
+        let mut starts = vec![centre.clone(), first];
+        self.add_corners(centre, &mut starts)?;
+        starts.sort_by(|a, b| a.value.total_cmp(&b.value));
+        let mut best = starts.first()?.clone();
+        for pair in crossings(&starts) {
+            let (end, _) =
+                self.along(&starts.get(pair.0)?.clone(), &starts.get(pair.1)?.clone())?;
+            if end.value < best.value {
+                best = end;
+            }
+            if best.value <= self.floor {
+                return Some(best);
+            }
+        }
+        if centre.point.len() == 1 {
+            return Some(best);
+        }
+        starts.truncate(STARTS);
+        starts.push(best.clone());
+        for start in starts {
+            let end = self.descend(start)?;
+            if end.value < best.value {
+                best = end;
+            }
+            if best.value <= self.floor {
+                break;
+            }
+        }
+        Some(best)
+    }
+
+    fn add_corners(&mut self, centre: &Sample, starts: &mut Vec<Sample>) -> Option<()> {
+        let dimensions = centre.point.len();
+        if dimensions <= MOST_FOR_ALL_CORNERS {
+            for bits in 0..1_u32 << dimensions {
+                let point: Vec<f64> = (0..dimensions)
+                    .map(|axis| if bits >> axis & 1 == 1 { 1.0 } else { -1.0 })
+                    .collect();
+                if starts.iter().all(|start| start.point != point) {
+                    starts.push(self.at(point)?);
+                }
+            }
+            return Some(());
+        }
+        for _ in 0..MOST_FOR_ALL_CORNERS {
+            let point = corner_below(&starts.last()?.slopes);
+            if starts.iter().any(|start| start.point == point) {
+                break;
+            }
+            starts.push(self.at(point)?);
+        }
+        Some(())
+    }
+
+    /// Steepest descent over lines, at kinks along the valley.
+    fn descend(&mut self, start: Sample) -> Option<Sample> {
+        let mut here = start;
+        let mut other: Option<Vec<f64>> = None;
+        for _ in 0..DESCENTS {
+            let Some(direction) = downhill(&here, other.as_deref()) else {
+                break;
+            };
+            let end = self.at(edge_of_box(&here.point, &direction))?;
+            let (next, far_slopes) = self.along(&here, &end)?;
+            let gained = here.value - next.value;
+            let moved = next.value < here.value;
+            other = Some(far_slopes);
+            if moved {
+                here = next;
+            }
+            if here.value <= self.floor || gained <= 1e-12 * here.value.abs() && !moved {
+                break;
+            }
+        }
+        Some(here)
+    }
+
+    /// The least value between two points, and the slopes on the far side of it.
+    fn along(&mut self, from: &Sample, to: &Sample) -> Option<(Sample, Vec<f64>)> {
+        let direction: Vec<f64> = to
+            .point
+            .iter()
+            .zip(&from.point)
+            .map(|(to, from)| to - from)
+            .collect();
+        let (mut low, mut high) = (0.0_f64, 1.0_f64);
+        let (mut left, mut right) = (from.clone(), to.clone());
+        if dot(&left.slopes, &direction) >= 0.0 {
+            return Some((from.clone(), right.slopes));
+        }
+        if dot(&right.slopes, &direction) <= 0.0 && right.value <= left.value {
+            return Some((right.clone(), left.slopes));
+        }
+        for step in 0..LINE_STEPS {
+            let middle = 0.5 * (low + high);
+            let try_at = if step % 3 == 2 {
+                middle
+            } else {
+                meeting(&left, &right, &direction, low, high)
+            };
+            let point = from
+                .point
+                .iter()
+                .zip(&direction)
+                .map(|(p, d)| (p + try_at * d).clamp(-1.0, 1.0))
+                .collect();
+            let sample = self.at(point)?;
+            if dot(&sample.slopes, &direction) < 0.0 && sample.value <= from.value {
+                (low, left) = (try_at, sample);
+            } else {
+                (high, right) = (try_at, sample);
+            }
+            let best = left.value.min(right.value);
+            // Between convex sides the value cannot fall below where the tangents meet.
+            let possible = meeting_height(&left, &right, &direction, low, high);
+            if best <= self.floor || high - low < 1e-13 || best - possible <= 1e-11 * best.abs() {
+                break;
+            }
+        }
+        let (best, far) = if left.value <= right.value {
+            (left, right)
+        } else {
+            (right, left)
+        };
+        Some((best, far.slopes))
+    }
+}
+
+/// Where the tangents from both ends meet; the middle where they do not meet between.
+fn meeting(left: &Sample, right: &Sample, direction: &[f64], low: f64, high: f64) -> f64 {
+    let (down, up) = (dot(&left.slopes, direction), dot(&right.slopes, direction));
+    let meet = (right.value - left.value + down * low - up * high) / (down - up);
+    let margin = 1e-3 * (high - low);
+    if meet > low + margin && meet < high - margin {
+        meet
+    } else {
+        0.5 * (low + high)
+    }
+}
+
+/// The value at which the tangents from both ends meet.
+fn meeting_height(left: &Sample, right: &Sample, direction: &[f64], low: f64, high: f64) -> f64 {
+    let (down, up) = (dot(&left.slopes, direction), dot(&right.slopes, direction));
+    let meet = (right.value - left.value + down * low - up * high) / (down - up);
+    left.value + down * (meet - low)
+}
+
+/// Pairs of neighbouring points between which the function first falls and then rises.
+fn crossings(samples: &[Sample]) -> Vec<(usize, usize)> {
+    let mut pairs = Vec::new();
+    for (i, a) in samples.iter().enumerate() {
+        for (j, b) in samples.iter().enumerate().skip(i + 1) {
+            let direction: Vec<f64> = b.point.iter().zip(&a.point).map(|(b, a)| b - a).collect();
+            let neighbours = direction.iter().filter(|step| **step != 0.0).count() <= 1;
+            let from_centre =
+                a.point.iter().all(|t| *t == 0.0) || b.point.iter().all(|t| *t == 0.0);
+            if (neighbours || from_centre)
+                && dot(&a.slopes, &direction) < 0.0
+                && dot(&b.slopes, &direction) > 0.0
+            {
+                pairs.push((i, j));
+            }
+        }
+    }
+    pairs
+}
+
+/// Minus the shortest vector between the slopes of both sides, kept inside the box.
+fn downhill(here: &Sample, other: Option<&[f64]>) -> Option<Vec<f64>> {
+    let mut slopes = here.slopes.clone();
+    if let Some(other) = other {
+        let difference: Vec<f64> = other.iter().zip(&slopes).map(|(b, a)| b - a).collect();
+        let size = dot(&difference, &difference);
+        if size > 0.0 {
+            let share = (-dot(&slopes, &difference) / size).clamp(0.0, 1.0);
+            slopes
+                .iter_mut()
+                .zip(&difference)
+                .for_each(|(slope, step)| *slope += share * step);
+        }
+    }
+    let steepest = here
+        .slopes
+        .iter()
+        .fold(0.0_f64, |most, slope| most.max(slope.abs()));
+    let direction: Vec<f64> = slopes
+        .iter()
+        .zip(&here.point)
+        .map(|(slope, at)| {
+            if (*at >= 1.0 && *slope < 0.0) || (*at <= -1.0 && *slope > 0.0) {
+                0.0
+            } else {
+                -slope
+            }
+        })
+        .collect();
+    let length = dot(&direction, &direction).sqrt();
+    (length > 1e-9 * steepest).then(|| direction.iter().map(|step| step / length).collect())
+}
+
+/// The last point of the box in a direction.
+fn edge_of_box(point: &[f64], direction: &[f64]) -> Vec<f64> {
+    let reach = point
+        .iter()
+        .zip(direction)
+        .filter(|(_, step)| **step != 0.0)
+        .map(|(at, step)| (step.signum() - at) / step)
+        .fold(f64::INFINITY, f64::min);
+    let reach = if reach.is_finite() {
+        reach.max(0.0)
+    } else {
+        0.0
+    };
+    point
+        .iter()
+        .zip(direction)
+        .map(|(at, step)| (at + reach * step).clamp(-1.0, 1.0))
+        .collect()
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    fn search(dimensions: usize, f: impl Fn(&[f64]) -> (f64, Vec<f64>)) -> (f64, usize) {
+        let mut count = 0;
+        let mut evaluate = |point: &[f64]| {
+            count += 1;
+            Some(f(point))
+        };
+        let value = least(dimensions, f64::NEG_INFINITY, &mut evaluate).map(|(_, best)| best.value);
+        (value.expect("a least value"), count)
+    }
+
+    /// A grid over the box, as fine as its dimension allows.
+    fn brute(dimensions: usize, f: impl Fn(&[f64]) -> f64) -> f64 {
+        let n: i32 = [1, 4001, 161, 41, 15][dimensions];
+        let mut least = f64::INFINITY;
+        for index in 0..n.pow(dimensions as u32) {
+            let point: Vec<f64> = (0..dimensions)
+                .map(|axis| {
+                    -1.0 + 2.0 * f64::from(index / n.pow(axis as u32) % n) / f64::from(n - 1)
+                })
+                .collect();
+            least = least.min(f(&point));
+        }
+        least
+    }
+
+    #[test]
+    fn a_monotone_function_takes_two_evaluations() {
+        let (value, count) = search(3, |t| {
+            (t[0] + 2.0 * t[1] - 0.5 * t[2], vec![1.0, 2.0, -0.5])
+        });
+        assert_eq!((value, count), (-3.5, 2));
+    }
+
+    #[test]
+    fn a_kink_between_good_corners_is_found() {
+        let f = |t: &[f64]| (3.0 * t[0] - 0.7).abs() + 0.1 * t[0];
+        let slopes = |t: &[f64]| vec![3.0 * (3.0 * t[0] - 0.7).signum() + 0.1];
+        let (value, count) = search(1, |t| (f(t), slopes(t)));
+        assert!((value - 0.1 * 0.7 / 3.0).abs() < 1e-9, "{value}");
+        assert!(count < 60, "{count} evaluations");
+    }
+
+    #[test]
+    fn a_narrow_hyperbola_is_found() {
+        let f = |t: &[f64]| ((t[0] - 0.3).powi(2) + 1e-10).sqrt();
+        let (value, _) = search(1, |t| (f(t), vec![(t[0] - 0.3) / f(t)]));
+        assert!((value - 1e-5).abs() < 1e-9, "{value}");
+    }
+
+    #[test]
+    fn a_sloping_valley_is_followed_to_its_end() {
+        for (a, b) in [
+            ([1.0, 0.8, -0.5], [0.1, -0.05, 0.12]),
+            ([0.4, -1.0, 0.9], [-0.2, 0.1, 0.03]),
+        ] {
+            let f = |t: &[f64]| (dot(&a, t) - 0.2).abs() + dot(&b, t);
+            let slopes = |t: &[f64]| {
+                let sign = (dot(&a, t) - 0.2).signum();
+                a.iter().zip(&b).map(|(a, b)| sign * a + b).collect()
+            };
+            let (value, _) = search(3, |t| (f(t), slopes(t)));
+            let grid = brute(3, f);
+            assert!(value <= grid + 1e-6, "{value} is above the grid's {grid}");
+        }
+    }
+
+    #[test]
+    fn a_bowl_is_found_in_four_tolerances() {
+        let f = |t: &[f64]| {
+            t.iter()
+                .enumerate()
+                .map(|(i, t)| (1.0 + i as f64) * (t - 0.2).powi(2))
+                .sum::<f64>()
+        };
+        let slopes = |t: &[f64]| {
+            t.iter()
+                .enumerate()
+                .map(|(i, t)| 2.0 * (1.0 + i as f64) * (t - 0.2))
+                .collect()
+        };
+        let (value, _) = search(4, |t| (f(t), slopes(t)));
+        assert!(value < 1e-6 && value <= brute(4, f), "{value}");
+    }
+}

@@ -1,0 +1,289 @@
+//! `show --format text`: each crystal's bands, gaps, masses, filling, measures and targets.
+
+use super::analysis::{FileAnalysis, SectionAnalysis};
+use super::grid::{Stand, lay};
+use super::locate::Locator;
+use super::paint::Paint;
+use super::units::{self, BOLTZMANN, Scale, Trade, exact};
+use super::words;
+use crate::bands::{Assessment, Extremum, Solution};
+use crate::model::{Crystal, Dimension};
+
+/// The crystals of a file, in order; `only` picks one.
+#[must_use]
+pub fn file(locator: &Locator<'_>, analysed: &FileAnalysis, only: Option<&str>, paint: Paint) -> String {
+    let chosen = analysed.crystals(only);
+    chosen
+        .map(|(section, crystal)| self::crystal(locator, section, crystal, paint) + "\n")
+        .collect()
+}
+
+/// One crystal.
+#[must_use]
+pub fn crystal(locator: &Locator<'_>, section: &SectionAnalysis, crystal: &Crystal, paint: Paint) -> String {
+    let trade = Trade::of(crystal);
+    let file = locator.file_name(crystal.place.file);
+    let line = locator.line(&crystal.place);
+    let mut text = format!(
+        "{}  {}\n",
+        paint.strong(&crystal.name),
+        paint.faint(&format!("{file}:{line}"))
+    );
+    if crystal.title != crystal.name && !crystal.title.is_empty() {
+        text += &format!("  {}\n", crystal.title);
+    }
+    text += &format!("  {}\n", structure(crystal, section.solution(), &trade));
+    if let Some(why) = section.unsolved() {
+        text += &format!("  no bands: {}\n", words::unsolved(why));
+    }
+    if let Some(solution) = section.solution() {
+        text.push('\n');
+        text += &bands(solution, &trade);
+        text += &filling(crystal, solution, &trade);
+    }
+    text += &wishes(locator, section, crystal, paint);
+    text
+}
+
+/// What repeats, who moves, and between which energies.
+fn structure(crystal: &Crystal, solution: Option<&Solution>, trade: &Trade) -> String {
+    let mut parts = vec![cell(crystal, trade)];
+    if let Some(recoil) = &crystal.recoil {
+        let energy = Trade { recoil: None, atoms: true }.tell_energy(exact(recoil.energy.value));
+        parts.push(format!("1 Er = {energy}"));
+    }
+    if let Some(solution) = solution {
+        parts.push(potential(solution, trade));
+    }
+    if let Some(temperature) = &crystal.temperature {
+        let told = trade.tell_exact(temperature.value, Dimension::TEMPERATURE);
+        let thermal = trade.tell_energy(exact(temperature.value * BOLTZMANN));
+        parts.push(format!("{told} (kT = {thermal})"));
+    }
+    parts.join(" · ")
+}
+
+/// The lattice in words.
+#[must_use]
+pub fn cell(crystal: &Crystal, trade: &Trade) -> String {
+    let lengths: Vec<f64> = crystal.conventional.iter().map(|vector| {
+        vector.iter().map(|entry| entry.value * entry.value).sum::<f64>().sqrt()
+    }).collect();
+    let told: Vec<String> = lengths
+        .iter()
+        .map(|length| trade.tell_exact(*length, Dimension::LENGTH))
+        .collect();
+    match (crystal.dimension, crystal.lattice_kind.as_deref()) {
+        (1, _) => format!("period {}", told.join("")),
+        (_, Some(kind)) => format!("{kind}, {}", told.join(" by ")),
+        (0, None) => "no lattice".to_owned(),
+        (dimension, None) => format!("{dimension}D, {}", told.join(" by ")),
+    }
+}
+
+/// Lowest, mean and highest of the potential.
+#[must_use]
+pub fn potential(solution: &Solution, trade: &Trade) -> String {
+    let range = &solution.potential;
+    let size = range.lowest.abs().max(range.highest.abs()).max(range.mean.abs());
+    let scale = trade.energy(size);
+    let number = |value: f64| units::digits(value / scale.factor, 0.0);
+    let (lowest, mean, highest) = (number(range.lowest), number(range.mean), number(range.highest));
+    match lowest == highest && lowest == mean {
+        true => format!("potential {lowest} {} throughout", scale.name),
+        false => format!("potential {lowest} to {highest} {}, mean {mean} {}", scale.name, scale.name),
+    }
+}
+
+/// The unit that all edges of a crystal are told in.
+#[must_use]
+pub fn edge_scale(solution: &Solution, trade: &Trade) -> Scale {
+    let energies = solution.bands.iter().take(2);
+    let sizes = energies.flat_map(|band| [band.bottom.energy.value.abs(), band.top.energy.value.abs()]);
+    trade.energy(sizes.fold(0.0, f64::max) / 4.0)
+}
+
+fn bands(solution: &Solution, trade: &Trade) -> String {
+    let scale = edge_scale(solution, trade);
+    let headings = ["band", "bottom", "", "top", "", "width", "gap above", "", "mass at bottom", "at top"];
+    let mut rows = vec![headings.map(str::to_owned).to_vec()];
+    for (index, band) in solution.bands.iter().enumerate() {
+        let gap = solution.gaps.get(index);
+        rows.push(vec![
+            (index + 1).to_string(),
+            units::tell_in(band.bottom.energy, &scale),
+            point(&band.bottom),
+            units::tell_in(band.top.energy, &scale),
+            point(&band.top),
+            trade.tell_energy(band.width),
+            gap.map(|gap| trade.tell_energy(gap.size)).unwrap_or_default(),
+            gap.map(|gap| words::gap_kind(gap.kind).to_owned()).unwrap_or_default(),
+            mass(&band.bottom, trade),
+            mass(&band.top, trade),
+        ]);
+    }
+    use Stand::{Left, Right};
+    let stands = [Right, Right, Left, Right, Left, Right, Right, Left, Right, Right];
+    lay(&stands, &rows, 2)
+}
+
+/// Where an extremum is: the point's name, or k.
+#[must_use]
+pub fn point(extremum: &Extremum) -> String {
+    if let Some(name) = &extremum.point {
+        return name.clone();
+    }
+    let told: Vec<String> = extremum.k.iter().map(|k| units::digits(*k, 0.0)).collect();
+    match told.as_slice() {
+        [one] => one.clone(),
+        several => format!("({})", several.join(", ")),
+    }
+}
+
+/// The mass at an extremum, a dash where there is none.
+#[must_use]
+pub fn mass(extremum: &Extremum, trade: &Trade) -> String {
+    match extremum.mass {
+        Some(mass) => units::tell_in(mass, &trade.mass()),
+        None => "–".to_owned(),
+    }
+}
+
+fn filling(crystal: &Crystal, solution: &Solution, trade: &Trade) -> String {
+    let Some(line) = filling_line(crystal, solution, trade) else {
+        return String::new();
+    };
+    format!("\n  {line}\n")
+}
+
+/// Filling, Fermi level and class in one line, where there is a filling.
+#[must_use]
+pub fn filling_line(crystal: &Crystal, solution: &Solution, trade: &Trade) -> Option<String> {
+    let filling = crystal.filling.as_ref()?;
+    let mut parts = vec![format!("{} per cell", units::digits(filling.value, 0.0))];
+    if let Some(fermi) = solution.fermi {
+        parts.push(format!("Fermi level {}", trade.tell_energy(fermi)));
+    }
+    if let Some(class) = solution.class {
+        parts.push(words::class(class).to_owned());
+    }
+    Some(parts.join(" · "))
+}
+
+/// Measures and targets.
+fn wishes(locator: &Locator<'_>, section: &SectionAnalysis, crystal: &Crystal, paint: Paint) -> String {
+    let trade = Trade::of(crystal);
+    let mut text = String::new();
+    if !section.measures.is_empty() {
+        let measures = section.measures.iter();
+        let rows: Vec<Vec<String>> = measures
+            .map(|measure| vec!["measure".to_owned(), measure.name.clone(), measured(measure, &trade)])
+            .collect();
+        text += "\n";
+        text += &lay(&[Stand::Left; 3], &rows, 2);
+    }
+    if !section.targets.is_empty() {
+        text += "\n";
+        text += &targets(locator, section, crystal, paint);
+    }
+    text
+}
+
+/// A measure's value, or why there is none.
+#[must_use]
+pub fn measured(measure: &crate::bands::MeasureValue, trade: &Trade) -> String {
+    match &measure.value {
+        Ok(value) => trade.tell(*value, measure.dimension),
+        Err(why) => format!("no value: {why}"),
+    }
+}
+
+fn targets(locator: &Locator<'_>, section: &SectionAnalysis, crystal: &Crystal, paint: Paint) -> String {
+    let trade = Trade::of(crystal);
+    let rows: Vec<Vec<String>> = section
+        .targets
+        .iter()
+        .map(|target| {
+            vec![
+                "require".to_owned(),
+                target.text.clone(),
+                words::target_state_spoken(target.state).to_owned(),
+                outcome(locator, crystal, target, &trade),
+            ]
+        })
+        .collect();
+    let plain = lay(&[Stand::Left; 4], &rows, 2);
+    let painted = plain.lines().zip(&section.targets).map(|(line, target)| {
+        // The state stands behind the text, so the last occurrence before the outcome is its own.
+        let word = words::target_state_spoken(target.state);
+        let from = 2 + "require  ".len() + target.text.len();
+        let (head, tail) = line.split_at_checked(from).unwrap_or((line, ""));
+        format!("{head}{}\n", tail.replacen(word, &paint.state(target.state, word), 1))
+    });
+    painted.collect()
+}
+
+/// What became of a target: its value, what is left, the worst case and what drives it.
+#[must_use]
+pub fn outcome(locator: &Locator<'_>, crystal: &Crystal, target: &Assessment, trade: &Trade) -> String {
+    let mut parts = Vec::new();
+    match (&target.found, target.value) {
+        (Some(found), _) => parts.push(found.clone()),
+        (None, Some(value)) => {
+            parts.push(trade.tell(value, target.dimension));
+            parts.extend(margin(target, trade));
+        }
+        (None, None) => {}
+    }
+    if let Some(worst) = worst(locator, crystal, target, trade) {
+        parts.push(worst);
+    }
+    if let Some(reason) = &target.reason {
+        parts.push(reason.clone());
+    }
+    parts.join(", ")
+}
+
+/// "72.4 meV to spare" or "7.6 meV short".
+#[must_use]
+pub fn margin(target: &Assessment, trade: &Trade) -> Option<String> {
+    let margin = spare(target)?;
+    let size = margin.abs();
+    let uncertainty = target.value.map_or(0.0, |value| value.uncertainty);
+    let told = trade.tell(
+        crate::bands::Measured {
+            value: size,
+            uncertainty,
+        },
+        target.dimension,
+    );
+    Some(match margin >= 0.0 {
+        true => format!("{told} to spare"),
+        false => format!("{told} short"),
+    })
+}
+
+/// How far the value is inside its limits; negative outside.
+#[must_use]
+pub fn spare(target: &Assessment) -> Option<f64> {
+    let value = target.value?.value;
+    let below = target.limits.0.map(|lower| value - lower);
+    let above = target.limits.1.map(|upper| upper - value);
+    [below, above].into_iter().flatten().reduce(f64::min)
+}
+
+fn worst(locator: &Locator<'_>, crystal: &Crystal, target: &Assessment, trade: &Trade) -> Option<String> {
+    let worst = target.worst?;
+    let uncertainty = target.value.map_or(0.0, |value| value.uncertainty);
+    let told = trade.tell(
+        crate::bands::Measured {
+            value: worst,
+            uncertainty,
+        },
+        target.dimension,
+    );
+    Some(match words::driver(locator, crystal, target) {
+        Some(driver) => format!("at worst {told} (most by {driver})"),
+        None => format!("at worst {told}"),
+    })
+}
