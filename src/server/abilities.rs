@@ -6,20 +6,14 @@ use tower_lsp::lsp_types::{
     WindowClientCapabilities, WorkspaceClientCapabilities,
 };
 
-/// How positions within a line are counted.
-#[derive(Clone, Copy, Debug, Default, PartialEq, Eq)]
-pub(super) enum Encoding {
-    /// In bytes.
-    Utf8,
-    /// In 16-bit units, as every client can.
-    #[default]
-    Utf16,
-}
+use crate::text::Encoding;
+
 
 /// The client's abilities; all absent until `initialize`.
 #[derive(Clone, Debug, Default)]
 pub(super) struct Abilities {
-    pub(super) encoding: Encoding,
+    /// Columns count bytes, not UTF-16 units.
+    pub(super) bytes: bool,
     pub(super) hover_markdown: bool,
     pub(super) completion_markdown: bool,
     pub(super) completion_snippets: bool,
@@ -44,7 +38,7 @@ impl Abilities {
     /// Reads them off what the client sent.
     pub(super) fn new(client: &ClientCapabilities) -> Self {
         let mut abilities = Self {
-            encoding: encoding(client),
+            bytes: offers_bytes(client),
             ..Self::default()
         };
         if let Some(text) = &client.text_document {
@@ -60,6 +54,11 @@ impl Abilities {
             .is_some_and(|text| text.diagnostic.is_some());
         abilities.pulls &= pulls;
         abilities
+    }
+
+    /// How positions within a line are counted.
+    pub(super) fn encoding(&self) -> Encoding {
+        if self.bytes { Encoding::Utf8 } else { Encoding::Utf16 }
     }
 
     fn read_text(&mut self, text: &TextDocumentClientCapabilities) {
@@ -122,15 +121,9 @@ impl Abilities {
 }
 
 /// Bytes where the client offers them, as our texts are in bytes; else the encoding that every client has.
-fn encoding(client: &ClientCapabilities) -> Encoding {
-    let offered = client
-        .general
-        .as_ref()
-        .and_then(|general| general.position_encodings.as_ref());
-    match offered {
-        Some(offered) if offered.contains(&PositionEncodingKind::UTF8) => Encoding::Utf8,
-        _ => Encoding::Utf16,
-    }
+fn offers_bytes(client: &ClientCapabilities) -> bool {
+    let offered = client.general.as_ref().and_then(|general| general.position_encodings.as_ref());
+    offered.is_some_and(|offered| offered.contains(&PositionEncodingKind::UTF8))
 }
 
 /// The first format in the client's list is the one that it likes best.

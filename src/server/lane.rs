@@ -2,6 +2,7 @@
 
 use std::collections::VecDeque;
 use std::path::{Path, PathBuf};
+use std::sync::Arc;
 use std::sync::mpsc::{Sender, channel};
 use std::time::{Duration, Instant};
 
@@ -17,6 +18,7 @@ use super::checker::{self, Job};
 use super::log::log;
 use super::outgoing::Outgoing;
 use super::owner::Message;
+use crate::report::Analyst;
 
 /// Work that takes longer than this tells the user so.
 const LONG_WORK: Duration = Duration::from_millis(500);
@@ -39,11 +41,11 @@ struct Running {
 
 impl Lane {
     /// Starts the worker.
-    pub(super) fn start(name: &str, owner: Sender<Message>, slow: Option<Duration>) -> Self {
+    pub(super) fn start(name: &str, owner: Sender<Message>, analyst: Arc<Analyst>, slow: Option<Duration>) -> Self {
         let (jobs, inbox) = channel::<Job>();
         let work = move || {
             while let Ok(job) = inbox.recv() {
-                if owner.send(Message::Checked(checker::check(job, slow))).is_err() {
+                if owner.send(Message::Checked(checker::check(&analyst, job, slow))).is_err() {
                     return;
                 }
             }

@@ -23,7 +23,7 @@ use super::files::{Files, OpenFile, path_of};
 use super::lane::Lane;
 use super::log::log;
 use super::outgoing::Outgoing;
-use crate::report::analysis::Analysis;
+use crate::report::{Analysis, Analyst};
 use crate::text::Document;
 
 /// How long the cheap findings wait for the dear ones, so that a quick edit changes the picture once.
@@ -108,10 +108,10 @@ pub(super) struct Owner(Sender<Message>);
 
 impl Owner {
     /// Starts the owner and its workers. Must be called within a tokio runtime.
-    pub(super) fn start(outgoing: Outgoing, slow: Option<Duration>) -> Self {
+    pub(super) fn start(outgoing: Outgoing, analyst: &Arc<Analyst>, slow: Option<Duration>) -> Self {
         let (sender, inbox) = channel();
         let runtime = tokio::runtime::Handle::current();
-        let lane = |name| Lane::start(name, sender.clone(), slow);
+        let lane = |name| Lane::start(name, sender.clone(), Arc::clone(analyst), slow);
         let state = State {
             inbox,
             outgoing,
@@ -237,7 +237,7 @@ impl State {
     fn open(&mut self, uri: Url, version: i32, text: &str) {
         let path = path_of(&uri);
         let document = Document::new(text);
-        let file = Arc::new(OpenFile::new(uri, version, &document, None));
+        let file = Arc::new(OpenFile::new(uri, version, &document));
         Arc::make_mut(&mut self.files).open.insert(path.clone(), Arc::clone(&file));
         let record = Record {
             document,
@@ -264,10 +264,11 @@ impl State {
             return;
         };
         for change in changes {
-            super::positions::apply(&mut record.document, change, self.abilities.encoding);
+            super::positions::apply(&mut record.document, change, self.abilities.encoding());
         }
         record.dirty = true;
-        record.file = Arc::new(OpenFile { version, ..(*record.file).clone() });
+        record.file.overtaken.cancel();
+        record.file = Arc::new(record.file.with_version(version));
         record.due = Some(Instant::now() + GRACE);
         record.waiting.drain(..).for_each(|want| want.send(Answer::Stale));
         self.focus = Some(path);
@@ -401,7 +402,7 @@ impl State {
         };
         let Some(checked) = record.known(depth, self.generation).filter(|checked| checked.analysis.is_some()) else {
             // They are shown as soon as they come.
-            if depth == Depth::Dear { record.due = None }
+            record.due = None;
             return;
         };
         let (version, diagnostics) = (record.file.version, checked.diagnostics.clone());

@@ -1,0 +1,73 @@
+//! What a feature looks at: a frozen document, what is known of it, and how the client counts.
+
+use std::path::{Path, PathBuf};
+use std::sync::Arc;
+
+use tower_lsp::lsp_types::{Location, Position, Range, TextEdit};
+
+use super::abilities::Abilities;
+use super::findings::Locations;
+use super::owner::View;
+use super::positions;
+use crate::report::editor_text::Tree;
+use crate::report::{Analysis, Analyst};
+use crate::text::Span;
+
+/// One document and all that is needed to answer a question about it.
+pub(super) struct Scene {
+    pub(super) view: View,
+    pub(super) analyst: Arc<Analyst>,
+    pub(super) abilities: Arc<Abilities>,
+}
+
+impl Scene {
+    /// The document's path.
+    pub(super) fn path(&self) -> PathBuf {
+        self.view.file.path()
+    }
+
+    /// What the document reads as.
+    pub(super) fn tree(&self) -> &Tree {
+        &self.view.file.tree
+    }
+
+    /// What is known of it.
+    pub(super) fn analysis(&self) -> Option<&Analysis> {
+        self.view.analysis.as_deref()
+    }
+
+    /// The byte of a position.
+    pub(super) fn offset(&self, position: Position) -> u32 {
+        positions::offset(self.view.file.lines(), position, self.abilities.encoding())
+    }
+
+    /// The bytes of a range.
+    pub(super) fn span(&self, range: Range) -> Span {
+        positions::span(self.view.file.lines(), range, self.abilities.encoding())
+    }
+
+    /// The position of a byte.
+    pub(super) fn position(&self, offset: u32) -> Position {
+        positions::position(self.view.file.lines(), offset, self.abilities.encoding())
+    }
+
+    /// The range of some bytes.
+    pub(super) fn range(&self, span: Span) -> Range {
+        positions::range(self.view.file.lines(), span, self.abilities.encoding())
+    }
+
+    /// Locations in this file and others.
+    pub(super) fn locations(&self) -> Option<Locations<'_>> {
+        Some(Locations::new(self.analysis()?, &self.view.files, &self.abilities))
+    }
+
+    /// Where some bytes of a file are.
+    pub(super) fn location(&self, path: &Path, span: Span) -> Option<Location> {
+        self.locations()?.span(path, span)
+    }
+
+    /// A replacement in the document.
+    pub(super) fn edit(&self, span: Span, text: &str) -> TextEdit {
+        TextEdit::new(self.range(span), text.to_owned())
+    }
+}
