@@ -30,6 +30,8 @@ pub enum Tier {
 pub struct Rule {
     /// Its name, as `waive` and the outputs write it.
     pub name: &'static str,
+    /// The group it stands in ("reading", "units" …).
+    pub group: &'static str,
     /// Its usual level (a finding may carry another where the design says so).
     pub level: Level,
     /// What it needs.

@@ -1,0 +1,89 @@
+//! # What it finds
+//! A line whose first word is a statement, but whose rest does not read as that statement. Also a `\` that has nothing
+//! to continue with, and brackets nested beyond all use.
+//!
+//! # Why it matters
+//! Such a line says nothing: the crystal is read as if it were not there. The lines around it are not affected.
+//!
+//! # Example
+//! ```cren
+//! material basin
+//!   mass 0.067 me
+//!   edge 0 meV
+//!
+//! crystal tern
+//!   layer 8.0 nm off basin
+//!                ^^^
+//! ```
+//! Also found: `missing-lattice`.
+//!
+//! # Instead
+//! ```cren
+//! material basin
+//!   mass 0.067 me
+//!   edge 0 meV
+//!
+//! crystal tern
+//!   layer 8.0 nm of basin
+//! ```
+//!
+//! # Fix
+//! A `\` with nothing behind it is taken away. For the rest, the message says what would have been readable.
+
+use super::{Finding, Fix, Level, Replacement, Rule, Subject, Tier};
+use crate::syntax::{Problem, ProblemKind};
+
+/// The rule.
+pub const RULE: Rule = Rule {
+    name: "unreadable-line",
+    group: "reading",
+    level: Level::Error,
+    tier: Tier::Read,
+    waivable: false,
+    source: include_str!("unreadable_line.rs"),
+    check,
+};
+
+fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
+    let problems = &subject.entry.section.problems;
+    findings.extend(problems.iter().filter_map(|problem| finding(subject, problem)));
+}
+
+fn finding(subject: &Subject<'_>, problem: &Problem) -> Option<Finding> {
+    let place = subject.place(problem.span);
+    let of = |message: String| Finding::new(&RULE, place, message);
+    match &problem.kind {
+        ProblemKind::Unreadable { expected, found } => {
+            Some(of(format!("expected {expected}, found {found}")))
+        }
+        ProblemKind::DanglingContinuation => Some(
+            of("`\\` continues this line, but the text ends here".to_owned())
+                .help("write the rest of the statement, or take the `\\` away")
+                .fix(Fix::safe("take the `\\` away", Replacement::new(place, ""))),
+        ),
+        ProblemKind::TooDeep => Some(
+            of("brackets are nested too deep to be read".to_owned())
+                .help("name parts of the expression with `let`"),
+        ),
+        _ => None,
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::super::fixture::{messages, silent};
+    use super::RULE;
+
+    #[test]
+    fn says_what_was_expected_and_what_is_there() {
+        let found = messages(&RULE, "crystal a\n  lattice chain 5 nm\n  layer 5 nm off b\n");
+        assert_eq!(found.len(), 1, "{found:?}");
+        assert!(found.iter().all(|text| text.starts_with("expected ") && text.contains("`off`")));
+    }
+
+    #[test]
+    fn a_continued_line_is_readable() {
+        silent(&RULE, "crystal a\n  lattice chain \\\n    5 nm\n");
+        assert_eq!(messages(&RULE, "crystal a\n  lattice chain 5 nm \\").len(), 1);
+    }
+}
