@@ -7,6 +7,7 @@
 
 mod build;
 mod grammar;
+mod locate;
 mod read;
 mod section;
 mod split;
@@ -14,6 +15,7 @@ mod tokens;
 // A statement is read once and then shared: boxing its larger forms would save nothing.
 #[allow(clippy::large_enum_variant)]
 mod tree;
+mod walk;
 mod wording;
 pub mod words;
 

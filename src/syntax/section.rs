@@ -9,7 +9,7 @@ use rustc_hash::FxHasher;
 
 use super::build::{self, Builder, Failure};
 use super::grammar::{LineParser, Rule, line_rule};
-use super::split::{SplitLine, logical_lines, span};
+use super::split::{SplitLine, is_blank, logical_lines, span};
 use super::tokens::{Token, TokenKind, instead_of, is_name_start, tokens, word_length};
 use super::wording::{Stop, found};
 use super::{Problem, ProblemKind, Section, SectionKind, Statement, StatementKind, words};
@@ -217,7 +217,7 @@ impl<'t> LineText<'t> {
                 return stray(self.offset + token.start, token.text);
             }
             if token.end() > stop {
-                offending = Some(token);
+                offending = Some(self.unquoted(token, tried));
                 break;
             }
             before.push(token);
@@ -231,6 +231,19 @@ impl<'t> LineText<'t> {
                 tried,
             },
         )
+    }
+
+    /// Where a text in quotes should stand, all that stands there up to the next blank is one token: a path without its quotes.
+    fn unquoted(self, token: Token<'t>, tried: &[Rule]) -> Token<'t> {
+        if tried != [Rule::string] || token.kind != TokenKind::Word {
+            return token;
+        }
+        let rest = self.content.get(token.start..).unwrap_or("");
+        let length = rest.find(is_blank).unwrap_or(rest.len());
+        Token {
+            text: rest.get(..length).unwrap_or(token.text),
+            ..token
+        }
     }
 
     fn unreadable(self, offending: Option<Token<'_>>, stop: &Stop<'_>) -> Problem {

@@ -37,6 +37,8 @@ impl Stop<'_> {
             return words;
         }
         let mut words = self.alternatives();
+        // Words to type come before words that describe.
+        words.sort_by_key(|word| !word.starts_with('`'));
         let operator = self.tried.iter().any(|rule| is_operator(*rule));
         if words.is_empty() && operator {
             words.push("an operator".to_owned());
@@ -68,8 +70,11 @@ impl Stop<'_> {
 
     /// Mistakes that a hint helps more with than a list does.
     fn special(&self) -> Option<String> {
+        if self.statement == "require" && self.before.len() == 2 && self.token.is_none() {
+            return self.lonely_requirement();
+        }
         let token = self.token?;
-        let wants_value = self.tried.iter().any(|rule| is_value(*rule));
+        let wants_value = self.wants_value();
         let words = match token.text {
             _ if token.kind == (TokenKind::Text { closed: false }) => "a closing `\"` on this line",
             "+" | "-" | "−" if wants_value && matches!(self.previous_text(1), "+" | "-" | "−") => {
@@ -85,6 +90,20 @@ impl Stop<'_> {
             "=" if wants_value && self.previous_text(1) == "=" => {
                 "a value (equality is a single `=`)"
             }
+            ">" if wants_value && self.previous_text(1) == "=" => "a value (at least is `>=`)",
+            "<" if wants_value && self.previous_text(1) == "=" => "a value (at most is `<=`)",
+            "," if self.tries(Rule::close) && !self.tries(Rule::comma) => {
+                "an operator or `)` (only a position is a tuple)"
+            }
+            "," if self.tries(Rule::multiply) && self.follows_digits(token) => {
+                "an operator or the end of the line (decimals are written with `.`)"
+            }
+            _ if self.tries(Rule::w_like) && token.kind != TokenKind::Word => {
+                "`like` or the end of the line (a name is letters, digits and `_`)"
+            }
+            _ if self.after_tuple() && !self.before.is_empty() => {
+                "the end of the line (a tuple takes no operators)"
+            }
             "+" | "-" | "−" if self.tries(Rule::multiply) && !self.tries(Rule::add) => {
                 "the end of the value (a sum after `±` needs parentheses)"
             }
@@ -98,6 +117,35 @@ impl Stop<'_> {
             _ => return None,
         };
         Some(words.to_owned())
+    }
+
+    /// `require gap` and `require metall`: one word and nothing behind it.
+    fn lonely_requirement(&self) -> Option<String> {
+        let words = match self.previous_text(1) {
+            _ if self.tries(Rule::count) => "a band's number",
+            _ if self.tries(Rule::above) || self.tries(Rule::relation) => {
+                "a relation such as `>=` (a class would be `metal`, `semimetal`, `semiconductor` or `insulator`)"
+            }
+            _ => return None,
+        };
+        Some(words.to_owned())
+    }
+
+    fn wants_value(&self) -> bool {
+        self.tried.iter().any(|rule| is_value(*rule))
+    }
+
+    /// Whether `token` stands directly behind a number, as a decimal comma does.
+    fn follows_digits(&self, token: Token<'_>) -> bool {
+        self.previous(1)
+            .is_some_and(|number| number.kind == TokenKind::Number && number.end() == token.start)
+    }
+
+    fn after_tuple(&self) -> bool {
+        let operator = self
+            .token
+            .is_some_and(|token| matches!(token.text, "+" | "-" | "−" | "*" | "/" | "^" | "±"));
+        operator && self.previous_text(1) == ")" && self.tried == [Rule::EOI]
     }
 
     fn no_tolerance(&self) -> String {
@@ -139,6 +187,9 @@ impl Stop<'_> {
 
     /// The words for one rule; none for what goes without saying or is told elsewhere.
     fn words(&self, rule: Rule) -> Option<String> {
+        if self.goes_without_saying(rule) {
+            return None;
+        }
         if is_value(rule) {
             return Some(self.value_words().to_owned());
         }
@@ -157,18 +208,19 @@ impl Stop<'_> {
             Rule::w_between if self.tries(Rule::above) => "a relation such as `>=`",
             Rule::equals => "`=`",
             Rule::comma => "`,`",
+            Rule::open if self.statement == "lattice" => self.value_or_tuple_words(),
             Rule::open => "`(`",
             Rule::close => "`)`",
-            Rule::count if self.statement == "stack" => "how many times",
+            Rule::count if self.statement == "stack" => "a whole number of times",
             Rule::count if matches!(self.statement, "require" | "measure") => "a band's number",
             Rule::count => "a whole number",
             Rule::integer => "a whole number",
-            Rule::index => "a whole number, or several in brackets as in `(1, 0)`",
+            Rule::index => "an index such as `1` or `(1, 0)`",
             Rule::unit_power => "a whole number as the unit's power (else write `(5 nm)^n`)",
             Rule::carrier => "`fermions` or `bosons`",
             Rule::interpolation => "`line` or `spline`",
-            Rule::class => "`metal` or another class",
-            Rule::gap_kind => "`direct`, `indirect` or `closed`",
+            Rule::class => "a class such as `metal`",
+            Rule::gap_kind => "a kind such as `direct`",
             Rule::layer_of => "`of`",
             Rule::layer_at => "`at`",
             Rule::vector | Rule::tuple | Rule::position => self.value_or_tuple_words(),
@@ -177,6 +229,20 @@ impl Stop<'_> {
             _ => return keyword(rule),
         };
         Some(words.to_owned())
+    }
+
+    /// What is possible there, and told by something better.
+    fn goes_without_saying(&self, rule: Rule) -> bool {
+        match rule {
+            Rule::open => self.tried.iter().any(|other| *other != Rule::open),
+            Rule::w_star => self.tries(Rule::index),
+            Rule::w_of => self.tries(Rule::above) || self.tries(Rule::relation),
+            Rule::w_gap => self.wants_value(),
+            _ if self.tries(Rule::count) && matches!(self.statement, "require" | "measure") => {
+                rule != Rule::count
+            }
+            _ => false,
+        }
     }
 
     fn value_or_tuple_words(&self) -> &'static str {
@@ -240,7 +306,9 @@ impl Stop<'_> {
             ("profile", "=") => "an expression in `x`",
             ("measure" | "require", "=" | "require") => "a value such as `gap 1`",
             ("lattice", word) if super::words::lattice(word).is_some() => LENGTH,
-            ("formfactor", _) if self.before.len() == 2 => "|G|² as a number, or `curve`",
+            ("formfactor", _) if !self.before.iter().any(|token| token.text == "=") => {
+                "|G|² as a number"
+            }
             _ => "a value",
         }
     }
