@@ -13,6 +13,31 @@ pub struct Trouble {
     pub related: Vec<(Place, String)>,
 }
 
+impl Trouble {
+    /// A mistake at one place.
+    #[must_use]
+    pub fn new(kind: TroubleKind, place: Place) -> Self {
+        Self {
+            kind,
+            place,
+            related: Vec::new(),
+        }
+    }
+
+    /// The same with another place that takes part.
+    #[must_use]
+    pub fn beside(mut self, place: Place, what: &str) -> Self {
+        self.related.push((place, what.to_owned()));
+        self
+    }
+
+    /// Whether the model cannot be solved with it.
+    #[must_use]
+    pub fn breaks(&self) -> bool {
+        !matches!(self.kind, TroubleKind::OutsideCell { .. })
+    }
+}
+
 /// The kinds of mistake. Energies in joule, lengths in metre.
 #[derive(Clone, Debug, PartialEq)]
 pub enum TroubleKind {
