@@ -20,7 +20,7 @@ use tower_lsp::lsp_types::{
 use super::Settings;
 use super::abilities::Abilities;
 use super::checker::Depth;
-use super::files::path_of;
+use super::files::{Files, path_of};
 use super::log::log;
 use super::outgoing::Outgoing;
 use super::owner::{Answer, Message, Owner, View};
@@ -89,7 +89,7 @@ impl Backend {
         let answer = match timeout(PATIENCE, wanted).await {
             Ok(answer) => answer,
             Err(_) => {
-                self.owner.tell(Message::OweHints(path_of(uri)));
+                self.owner.tell(Message::Owe(path_of(uri)));
                 self.owner.want(uri, Some(Depth::Cheap)).await
             }
         };
@@ -98,6 +98,11 @@ impl Backend {
             Ok(Answer::Stale) => Err(Error::content_modified()),
             Ok(Answer::Nothing) | Err(_) => Ok(None),
         }
+    }
+
+    /// All files as they are now.
+    pub(super) async fn files(&self) -> Arc<Files> {
+        self.owner.want_files().await.unwrap_or_default()
     }
 
     /// Makes a view of a document on a thread for such work.

@@ -14,6 +14,9 @@ use crate::report::editor_text::{Tree, normalise, read, reread};
 use crate::report::{FileSource, ReadFailure};
 use crate::text::{Document, LineIndex};
 
+/// Files of one folder that searches look at, at most.
+const MOST_FILES: usize = 10_000;
+
 /// Where the open documents, the folders and the disk meet.
 #[derive(Clone, Default)]
 pub(super) struct Files {
@@ -75,6 +78,19 @@ impl Files {
             Some(file) => Some(file.uri.clone()),
             None => Url::from_file_path(path).ok(),
         }
+    }
+
+    /// The open documents and the format's files in the folders, each once, in order.
+    pub(super) fn all(&self) -> Vec<PathBuf> {
+        let mut paths: Vec<PathBuf> = self.open.keys().cloned().collect();
+        for folder in &self.folders {
+            let walk = ignore::WalkBuilder::new(folder).build().flatten();
+            let ours = walk.filter(|entry| entry.path().extension().is_some_and(|extension| extension == "cren"));
+            paths.extend(ours.map(ignore::DirEntry::into_path).take(MOST_FILES));
+        }
+        paths.sort_unstable();
+        paths.dedup();
+        paths
     }
 
     fn in_folder(&self, path: &Path) -> bool {

@@ -10,22 +10,28 @@ mod backend;
 mod cancel;
 mod capabilities;
 mod checker;
+mod completion;
+mod edits;
 mod explanations;
 mod files;
 mod findings;
 mod frame;
 mod lane;
 mod log;
+mod navigation;
 mod outgoing;
 mod owner;
 mod parent;
 mod positions;
 mod protocol;
 mod scene;
+mod structure;
+mod symbols;
 mod tokens;
 mod transport;
 #[cfg(test)]
 mod transport_tests;
+mod views;
 
 use std::process::ExitCode;
 use std::time::Duration;

@@ -45,8 +45,10 @@ pub(super) enum Message {
     Folders { added: Vec<PathBuf>, removed: Vec<PathBuf> },
     /// Somebody wants to look at a document.
     Want(Want),
-    /// Inlay hints were answered before the bands were known.
-    OweHints(PathBuf),
+    /// Somebody wants to look at all files.
+    WantFiles(oneshot::Sender<Arc<Files>>),
+    /// A request was answered before the bands were known.
+    Owe(PathBuf),
     /// The client's user wants the long work to stop.
     StopWork,
     /// A worker is done.
@@ -100,7 +102,8 @@ struct Record {
     due: Option<Instant>,
     /// What the client shows.
     shown: Option<(i32, Vec<Diagnostic>)>,
-    owes_hints: bool,
+    /// Whether the client was answered before the bands were known.
+    owes: bool,
 }
 
 /// The handle of the owner; the owner ends with it.
@@ -136,6 +139,13 @@ impl Owner {
     pub(super) fn tell(&self, message: Message) {
         // The owner is gone only when the session is over.
         let _ = self.0.send(message);
+    }
+
+    /// Asks to look at all files as they are now.
+    pub(super) fn want_files(&self) -> oneshot::Receiver<Arc<Files>> {
+        let (reply, receiver) = oneshot::channel();
+        self.tell(Message::WantFiles(reply));
+        receiver
     }
 
     /// Asks to look at a document as it is now.
@@ -223,9 +233,13 @@ impl State {
                 self.touched();
             }
             Message::Want(want) => self.answer_or_keep(want),
-            Message::OweHints(path) => {
+            Message::WantFiles(reply) => {
+                self.freshen_all();
+                let _ = reply.send(Arc::clone(&self.files));
+            }
+            Message::Owe(path) => {
                 if let Some(record) = self.records.get_mut(&path) {
-                    record.owes_hints = true;
+                    record.owes = true;
                 }
             }
             Message::StopWork => self.dear.cancel(),
@@ -248,7 +262,7 @@ impl State {
             waiting: Vec::new(),
             due: Some(Instant::now() + GRACE),
             shown: None,
-            owes_hints: false,
+            owes: false,
         };
         if let Some(before) = self.records.insert(path.clone(), record) {
             before.waiting.into_iter().for_each(|want| want.send(Answer::Stale));
@@ -304,6 +318,12 @@ impl State {
         }
     }
 
+    fn freshen_all(&mut self) {
+        let dirty = self.records.iter().filter(|(_, record)| record.dirty);
+        let dirty: Vec<PathBuf> = dirty.map(|(path, _)| path.clone()).collect();
+        dirty.iter().for_each(|path| self.freshen(path));
+    }
+
     fn answer_or_keep(&mut self, want: Want) {
         let path = path_of(&want.uri);
         self.freshen(&path);
@@ -328,8 +348,7 @@ impl State {
     /// Gives the workers what is to be done and the client what is due.
     fn settle(&mut self) {
         if std::mem::take(&mut self.changed) {
-            let dirty: Vec<PathBuf> = self.records.iter().filter(|(_, record)| record.dirty).map(|(path, _)| path.clone()).collect();
-            dirty.iter().for_each(|path| self.freshen(path));
+            self.freshen_all();
             self.cheap.cancel();
             self.dear.cancel();
             self.cheap.queue = self.in_order();
@@ -409,15 +428,23 @@ impl State {
         record.due = None;
         let uri = record.file.uri.clone();
         let before = record.shown.replace((version, diagnostics.clone()));
-        let owes_hints = depth == Depth::Dear && std::mem::take(&mut record.owes_hints);
-        if self.abilities.pulls {
-            if before.is_some_and(|(_, before)| before != diagnostics) {
-                self.outgoing.ask::<request::WorkspaceDiagnosticRefresh>(());
-            }
-        } else if before.is_none_or(|before| before != (version, diagnostics.clone())) {
+        let owes = depth == Depth::Dear && std::mem::take(&mut record.owes);
+        let elsewhere = depth == Depth::Dear && self.focus.as_deref() != Some(path);
+        let changed = before.as_ref().is_some_and(|(_, before)| *before != diagnostics);
+        if !self.abilities.pulls && before.is_none_or(|before| before != (version, diagnostics.clone())) {
             self.show(uri, Some(version), diagnostics);
         }
-        if owes_hints && self.abilities.refresh_hints {
+        if owes || elsewhere && changed {
+            self.refresh();
+        }
+    }
+
+    /// Has the client ask anew for what it shows.
+    fn refresh(&self) {
+        if self.abilities.pulls {
+            self.outgoing.ask::<request::WorkspaceDiagnosticRefresh>(());
+        }
+        if self.abilities.refresh_hints {
             self.outgoing.ask::<request::InlayHintRefreshRequest>(());
         }
     }

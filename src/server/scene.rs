@@ -10,7 +10,7 @@ use super::findings::Locations;
 use super::owner::View;
 use super::positions;
 use crate::report::editor_text::Tree;
-use crate::report::{Analysis, Analyst};
+use crate::report::{Analysis, Analyst, Request, Tier};
 use crate::text::Span;
 
 /// One document and all that is needed to answer a question about it.
@@ -34,6 +34,18 @@ impl Scene {
     /// What is known of it.
     pub(super) fn analysis(&self) -> Option<&Analysis> {
         self.view.analysis.as_deref()
+    }
+
+    /// What is known of all files of the workspace, bands aside.
+    pub(super) fn workspace(&self) -> Analysis {
+        let overtaken = &self.view.file.overtaken;
+        self.analyst.analyse(&Request {
+            source: &*self.view.files,
+            roots: &self.view.files.all(),
+            others: &[],
+            depth: Tier::Model,
+            cancel: &|| overtaken.is_cancelled(),
+        })
     }
 
     /// The byte of a position.
