@@ -4,7 +4,8 @@ use std::path::Path;
 
 use super::analysis::Analysis;
 use super::editor_outline::word_at;
-use crate::model::{CONSTANTS, UNITS};
+use crate::model::constants::CONSTANTS;
+use crate::model::unit::UNITS;
 use crate::rules;
 use crate::syntax::{Section, SectionKind, StatementKind, Tree, words};
 use crate::text::Span;
@@ -75,7 +76,8 @@ pub fn proposals(tree: &Tree, analysis: Option<&Analysis>, path: &Path, offset: 
     let line = section.line_at(byte)?;
     let before = Span::new(line.span.start, byte).of(&section.text);
     if let Some(written) = open_string(before) {
-        let path = before.trim_start().starts_with(["u", "t"]).then(|| written.to_owned())?;
+        let first = before.split_whitespace().next();
+        let path = matches!(first, Some("use" | "table")).then(|| written.to_owned())?;
         let start = offset - u32::try_from(written.rsplit('/').next().unwrap_or(written).len()).ok()?;
         return Some(Proposals { replaces: Span::new(start, offset), proposals: Vec::new(), path: Some(path) });
     }

@@ -6,7 +6,8 @@ use unicode_ident::{is_xid_continue, is_xid_start};
 use unicode_normalization::UnicodeNormalization;
 
 use super::analysis::{Analysis, FileAnalysis};
-use crate::model::{FileId, NameSort, Place, holder_of};
+use crate::model::words::holder_of;
+use crate::model::{FileId, NameSort, Place};
 use crate::syntax::{Entry, StatementKind, Word};
 use crate::text::Span;
 

@@ -59,14 +59,10 @@ pub(super) fn check(analyst: &Analyst, job: Job, slow: Option<Duration>) -> Chec
     Checked { path, depth, generation, analysis: analysis.map(Arc::new), diagnostics: diagnostics.unwrap_or_default() }
 }
 
-/// The analysis of one open document; the other open documents take part, as they may use it.
 fn analyse(analyst: &Analyst, files: &Files, path: &PathBuf, depth: Depth, cancel: &Cancel) -> Analysis {
-    let mut others: Vec<PathBuf> = files.open.keys().filter(|other| *other != path).cloned().collect();
-    others.sort_unstable();
     analyst.analyse(&Request {
         source: files,
         roots: std::slice::from_ref(path),
-        others: &others,
         depth: match depth {
             Depth::Cheap => Tier::Model,
             Depth::Dear => Tier::Bands,

@@ -42,7 +42,6 @@ impl Scene {
         self.analyst.analyse(&Request {
             source: &*self.view.files,
             roots: &self.view.files.all(),
-            others: &[],
             depth: Tier::Model,
             cancel: &|| overtaken.is_cancelled(),
         })

@@ -32,7 +32,7 @@ pub(super) fn hinted(scene: &Scene, within: Span) -> Option<Vec<InlayHint>> {
         label: InlayHintLabel::String(hint.label),
         kind: None,
         text_edits: None,
-        tooltip: Some(InlayHintTooltip::String(hint.tooltip)).filter(|_| !hint.tooltip.is_empty()),
+        tooltip: Some(hint.tooltip).filter(|tooltip| !tooltip.is_empty()).map(InlayHintTooltip::String),
         padding_left: Some(true),
         padding_right: Some(false),
         data: None,
