@@ -56,7 +56,7 @@ fn finding(subject: &Subject<'_>, trouble: &Trouble) -> Option<Finding> {
             )
         }
         TroubleKind::TwoDescriptions { first, second } => {
-            let message = format!("{second} describe the whole cell, and so do the {first} of this crystal");
+            let message = format!("the whole cell is described twice: by {first}, and here by {second}");
             Some(
                 Finding::of_trouble(&RULE, trouble, message)
                     .help("keep one kind of description; cosines, sites and deltas add to it"),

@@ -1,6 +1,6 @@
 //! What rules ask of their subject, and how they put a finding together.
 
-use crate::model::{Crystal, Dual, ParameterId, Parameter, Place, Trouble};
+use crate::model::{Crystal, Dual, Parameter, ParameterId, Place, Trouble};
 use crate::syntax::{Line, Statement, StatementKind};
 use crate::text::Span;
 
@@ -75,7 +75,7 @@ impl<'a> Subject<'a> {
         }
         let crystal = self.crystal?;
         let own = |id: ParameterId| {
-            let parameter = crystal.parameter(id);
+            let parameter = parameter(crystal, id);
             parameter.is_some_and(|parameter| self.holds(parameter.place))
         };
         let slopes = numbers.iter().flat_map(|dual| &dual.slopes);
@@ -140,21 +140,12 @@ impl<'a> Subject<'a> {
     }
 }
 
-impl Crystal {
-    /// The parameter of that identity.
-    #[must_use]
-    pub fn parameter(&self, id: ParameterId) -> Option<&Parameter> {
-        self.parameters.iter().find(|parameter| parameter.id == id)
-    }
-
-    /// The length of a one-dimensional cell in metre, where it is known.
-    #[must_use]
-    pub fn period(&self) -> Option<&Dual> {
-        if self.dimension != 1 {
-            return None;
-        }
-        self.vectors.first()?.first()
-    }
+/// What a crystal's numbers depend on, by its identity.
+#[must_use]
+pub fn parameter(crystal: &Crystal, id: ParameterId) -> Option<&Parameter> {
+    let sorted = &crystal.parameters;
+    let found = sorted.binary_search_by_key(&id, |parameter| parameter.id);
+    found.ok().and_then(|index| sorted.get(index))
 }
 
 impl Finding {

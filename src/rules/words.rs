@@ -1,18 +1,8 @@
 //! How numbers and lists are worded in messages: units that a person would pick, and as many digits as tell two
 //! numbers apart.
 
+use crate::model::constants::{ATOMIC_MASS, ELECTRON_MASS, ELECTRONVOLT as EV, PLANCK};
 use crate::model::{Crystal, Dimension};
-
-/// One electronvolt in joule (exact, SI).
-pub const EV: f64 = 1.602_176_634e-19;
-/// The electron's mass in kg (CODATA 2022).
-pub const ELECTRON_MASS: f64 = 9.109_383_713_9e-31;
-/// The atomic mass unit in kg (CODATA 2022).
-pub const ATOMIC_MASS: f64 = 1.660_539_068_92e-27;
-/// Planck's constant in joule second (exact, SI).
-pub const PLANCK: f64 = 6.626_070_15e-34;
-/// Boltzmann's constant in joule per kelvin (exact, SI).
-pub const BOLTZMANN: f64 = 1.380_649e-23;
 
 /// Digits shown where nothing asks for more.
 const DIGITS: usize = 4;
