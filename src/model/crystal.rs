@@ -2,6 +2,8 @@
 
 use std::sync::Arc;
 
+use super::shape::centring::{Centring, LatticeKind, lattice_kind};
+use super::shape::zone_points::zone_points;
 use super::{Dimension, Dual, Measure, ParameterId, Place, Target};
 
 /// A crystal with all its names resolved.
@@ -49,6 +51,42 @@ pub struct Crystal {
     pub targets: Vec<Target>,
     /// Whether the model has errors that keep it from being solved.
     pub broken: bool,
+}
+
+impl Crystal {
+    /// The kind of its lattice; `None` for `vectors` and where none is stated. Every cell of one dimension is a chain.
+    #[must_use]
+    pub fn kind(&self) -> Option<&'static LatticeKind> {
+        match self.lattice_kind.as_deref() {
+            _ if self.dimension == 1 => lattice_kind("chain", false),
+            Some(word) => lattice_kind(word, self.dimension == 3).filter(|kind| kind.dimension > 0),
+            None => None,
+        }
+    }
+
+    /// How its conventional cell is centred.
+    #[must_use]
+    pub fn centring(&self) -> Centring {
+        self.kind()
+            .map_or(Centring::Primitive, |kind| kind.centring)
+    }
+
+    /// The primitive vectors without derivatives, in metre.
+    #[must_use]
+    pub fn primitive_values(&self) -> Vec<Vec<f64>> {
+        let rows = self.vectors.iter();
+        rows.map(|row| row.iter().map(|entry| entry.value).collect())
+            .collect()
+    }
+
+    /// The named points of its zone, in fractions of the primitive reciprocal vectors.
+    #[must_use]
+    pub fn zone_points(&self) -> Vec<(&'static str, Vec<f64>)> {
+        match self.kind() {
+            Some(kind) => zone_points(kind),
+            None => vec![("centre", vec![0.0; self.dimension])],
+        }
+    }
 }
 
 /// Something that the crystal's numbers depend on.
@@ -188,6 +226,8 @@ pub struct Table {
     pub positions: Vec<f64>,
     /// Potential in joule at each.
     pub energies: Vec<f64>,
+    /// The last sample's potential in joule, where it stands one period after the first and so is not among `energies`.
+    pub closing: Option<f64>,
     /// Whether straight lines, not a periodic cubic spline, join them.
     pub straight: bool,
 }

@@ -94,6 +94,26 @@ impl Dual {
         self
     }
 
+    /// The sum of many; the derivatives are sorted once.
+    #[must_use]
+    pub fn sum<'d>(parts: impl IntoIterator<Item = &'d Self>) -> Self {
+        let mut value = 0.0;
+        let mut all: Vec<(ParameterId, f64)> = Vec::new();
+        for part in parts {
+            value += part.value;
+            all.extend_from_slice(&part.slopes);
+        }
+        all.sort_unstable_by_key(|(id, _)| *id);
+        let mut slopes: Vec<(ParameterId, f64)> = Vec::with_capacity(all.len());
+        for (id, slope) in all {
+            match slopes.last_mut() {
+                Some(last) if last.0 == id => last.1 += slope,
+                _ => slopes.push((id, slope)),
+            }
+        }
+        Self { value, slopes }
+    }
+
     /// `value` with the derivatives `a`·self + `b`·other.
     fn merge(value: f64, left: &Self, a: f64, right: &Self, b: f64) -> Self {
         if right.slopes.is_empty() {

@@ -30,9 +30,11 @@ impl Formula {
             Self::Binary(Operator::Power, base, exponent) => {
                 power(&base.evaluate(position), exponent, position)
             }
-            Self::Binary(operator, left, right) => {
-                binary(*operator, &left.evaluate(position), &right.evaluate(position))
-            }
+            Self::Binary(operator, left, right) => binary(
+                *operator,
+                &left.evaluate(position),
+                &right.evaluate(position),
+            ),
             Self::Call(name, arguments) => match arguments.as_slice() {
                 [only] => apply(name, &[only.evaluate(position)]),
                 several => {
@@ -82,7 +84,10 @@ fn power<S: Scalar>(base: &S, exponent: &Formula, position: &[S; 3]) -> S {
 /// `base` to a whole power of at most 64 in magnitude.
 #[must_use]
 pub fn whole_power<S: Scalar>(base: &S, exponent: f64) -> S {
-    #[expect(clippy::cast_possible_truncation, reason = "the caller keeps it within 64")]
+    #[expect(
+        clippy::cast_possible_truncation,
+        reason = "the caller keeps it within 64"
+    )]
     let n = exponent as i32;
     let u = base.value();
     base.chain(u.powi(n), || {

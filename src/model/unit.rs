@@ -3,9 +3,7 @@
 use std::f64::consts::PI;
 
 use super::Dimension;
-use super::constants::{
-    ATOMIC_MASS, BOHR_RADIUS, ELECTRON_MASS, ELECTRONVOLT, HARTREE, RYDBERG,
-};
+use super::constants::{ATOMIC_MASS, BOHR_RADIUS, ELECTRON_MASS, ELECTRONVOLT, HARTREE, RYDBERG};
 
 /// A unit.
 #[derive(Clone, Copy, Debug, PartialEq)]

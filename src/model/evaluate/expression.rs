@@ -16,7 +16,10 @@ impl<'w> Evaluator<'w> {
         if self.depth >= super::DEEPEST {
             return self.bad(
                 context.place(expression.span),
-                format!("brackets and names nest more than {} deep here", super::DEEPEST),
+                format!(
+                    "brackets and names nest more than {} deep here",
+                    super::DEEPEST
+                ),
             );
         }
         self.depth += 1;
@@ -25,11 +28,7 @@ impl<'w> Evaluator<'w> {
         result
     }
 
-    fn dispatch(
-        &mut self,
-        expression: &'w Expression,
-        context: &Context<'_, 'w>,
-    ) -> Option<Typed> {
+    fn dispatch(&mut self, expression: &'w Expression, context: &Context<'_, 'w>) -> Option<Typed> {
         match &expression.kind {
             ExpressionKind::Number {
                 value,
@@ -84,15 +83,17 @@ impl<'w> Evaluator<'w> {
             (Some(a), Some(b)) => not_finite_words(operator, a.value, b.value),
             _ => "is not finite",
         };
-        self.finite(Term::binary(operator, a.term, b.term), dimension, whole, words, context)
+        self.finite(
+            Term::binary(operator, a.term, b.term),
+            dimension,
+            whole,
+            words,
+            context,
+        )
     }
 
     /// The exponent of a power; a literal there is a fixed number, not one that the results could move with.
-    fn exponent(
-        &mut self,
-        expression: &'w Expression,
-        context: &Context<'_, 'w>,
-    ) -> Option<Typed> {
+    fn exponent(&mut self, expression: &'w Expression, context: &Context<'_, 'w>) -> Option<Typed> {
         let fixed = match &expression.kind {
             ExpressionKind::Number {
                 value, unit: None, ..
@@ -228,14 +229,22 @@ impl<'w> Evaluator<'w> {
         let operands: Vec<(&Expression, &Typed)> = arguments.iter().zip(&values).collect();
         let dimension = match known.rule {
             ArgumentRule::Number => self.number_wanted(&operands, context)?,
-            ArgumentRule::Same | ArgumentRule::Alike => self.common_dimension(&operands, context)?,
+            ArgumentRule::Same | ArgumentRule::Alike => {
+                self.common_dimension(&operands, context)?
+            }
             ArgumentRule::Root => first.dimension.power(0.5).unwrap_or_default(),
         };
         let words = first.term.value().map_or("is not finite", |value| {
             call_not_finite_words(known.name, value.value)
         });
         let terms = values.into_iter().map(|value| value.term).collect();
-        self.finite(Term::call(known.name, terms), dimension, whole, words, context)
+        self.finite(
+            Term::call(known.name, terms),
+            dimension,
+            whole,
+            words,
+            context,
+        )
     }
 
     fn number_wanted(
@@ -285,7 +294,9 @@ fn call_not_finite_words(name: &str, argument: f64) -> &'static str {
         "sqrt" if argument < 0.0 => "takes the root of a negative number",
         "log" | "log10" if argument == 0.0 => "takes the logarithm of zero",
         "log" | "log10" if argument < 0.0 => "takes the logarithm of a negative number",
-        "asin" | "acos" if argument.abs() > 1.0 => "asks for an angle whose sine or cosine is above 1",
+        "asin" | "acos" if argument.abs() > 1.0 => {
+            "asks for an angle whose sine or cosine is above 1"
+        }
         _ => "is too large for a number",
     }
 }

@@ -20,7 +20,9 @@ use super::{
 use crate::syntax::{Expression, SectionId, Word};
 use crate::text::Span;
 
+pub(crate) use quantity::MOST_BANDS;
 pub(crate) use term::Term;
+pub(crate) use value::is_relative;
 
 /// How deep lets and brackets may nest together.
 const DEEPEST: usize = 600;

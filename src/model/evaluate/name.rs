@@ -42,7 +42,10 @@ impl<'w> Evaluator<'w> {
         }
         match (name, context.period) {
             ("period", Some(period)) => {
-                return Some(Typed::new(Term::Constant(period.clone()), Dimension::LENGTH));
+                return Some(Typed::new(
+                    Term::Constant(period.clone()),
+                    Dimension::LENGTH,
+                ));
             }
             _ => {}
         }
@@ -100,7 +103,9 @@ impl<'w> Evaluator<'w> {
             Trouble::new(kind, used).beside(hidden.name_place(), "the value of that name")
         };
         // One is enough, however often the variable stands there.
-        if self.troubles.contains(&trouble) || self.troubles.iter().any(|one| one.kind == trouble.kind) {
+        if self.troubles.contains(&trouble)
+            || self.troubles.iter().any(|one| one.kind == trouble.kind)
+        {
             return None;
         }
         self.report(trouble);
@@ -123,7 +128,11 @@ impl<'w> Evaluator<'w> {
         }
         self.open.push((place, found.name.text.clone()));
         let own = found.home.key() == self.home.key()
-            || context.scope.chain.iter().any(|section| section.key() == found.home.key());
+            || context
+                .scope
+                .chain
+                .iter()
+                .any(|section| section.key() == found.home.key());
         let value = if own {
             self.evaluate_let(found, context)
         } else {
@@ -139,7 +148,11 @@ impl<'w> Evaluator<'w> {
         found: LetRef<'w>,
         user: &Context<'_, 'w>,
     ) -> Option<(Dual, Dimension)> {
-        let in_chain = user.scope.chain.iter().any(|section| section.key() == found.home.key());
+        let in_chain = user
+            .scope
+            .chain
+            .iter()
+            .any(|section| section.key() == found.home.key());
         let context = if in_chain {
             Context {
                 scope: Scope {
@@ -227,18 +240,19 @@ impl<'w> Evaluator<'w> {
         done
     }
 
-    fn unknown_value<T>(
-        &mut self,
-        name: &str,
-        span: Span,
-        context: &Context<'_, 'w>,
-    ) -> Option<T> {
+    fn unknown_value<T>(&mut self, name: &str, span: Span, context: &Context<'_, 'w>) -> Option<T> {
         let lets = self.world.lets_in_sight(context.scope);
         let known = lets.iter().map(|found| found.name.text.as_str());
-        let measures = self.measures.iter().map(|measure| measure.name.text.as_str());
+        let measures = self
+            .measures
+            .iter()
+            .map(|measure| measure.name.text.as_str());
         let measures = measures.filter(|_| context.bands);
         let constants = CONSTANTS.iter().map(|constant| constant.name);
-        let units = UNITS.iter().map(|unit| unit.name).filter(|name| name.len() > 1);
+        let units = UNITS
+            .iter()
+            .map(|unit| unit.name)
+            .filter(|name| name.len() > 1);
         let nearest = nearest(name, known.chain(measures).chain(constants).chain(units));
         let kind = TroubleKind::UnknownName {
             name: name.to_owned(),

@@ -5,9 +5,7 @@ use crate::model::constants::constant;
 use crate::model::dual::ParameterSort;
 use crate::model::unit::{self, UNITS};
 use crate::model::words::nearest;
-use crate::model::{
-    Dimension, Dual, Parameter, ParameterId, ParameterKind, Scalar, TroubleKind,
-};
+use crate::model::{Dimension, Dual, Parameter, ParameterId, ParameterKind, Scalar, TroubleKind};
 use crate::syntax::{SectionKind, UnitUse};
 use crate::text::Span;
 
@@ -129,7 +127,9 @@ impl<'w> Evaluator<'w> {
         }
         let in_crystal = context.spot.section.kind == SectionKind::Crystal;
         let why = match (name, in_crystal) {
-            ("Er", true) => "`Er` needs a `recoil` in this crystal, and a mass that does not itself use `Er`",
+            ("Er", true) => {
+                "`Er` needs a `recoil` in this crystal, and a mass that does not itself use `Er`"
+            }
             ("Er", false) => "`Er` is known only in a crystal that says `recoil`",
             (_, true) => "`ML` needs a `monolayer` in the material or in this crystal",
             (_, false) => "`ML` is known only where a `monolayer` is",
@@ -180,14 +180,27 @@ fn is_variable(name: &str, context: &Context<'_, '_>) -> bool {
 
 /// The unit that was likely meant: another case first, a plural or full name, then one letter off.
 fn nearest_unit(word: &str) -> Option<String> {
-    let names = || UNITS.iter().map(|unit| unit.name).filter(|name| *name != "%");
+    let names = || {
+        UNITS
+            .iter()
+            .map(|unit| unit.name)
+            .filter(|name| *name != "%")
+    };
     let same_letters = names().find(|name| name.eq_ignore_ascii_case(word));
     let spelled_out = UNITS.iter().find(|unit| {
         unit.about.eq_ignore_ascii_case(word.trim_end_matches('s'))
-            || unit.about.replace("metre", "meter").eq_ignore_ascii_case(word.trim_end_matches('s'))
+            || unit
+                .about
+                .replace("metre", "meter")
+                .eq_ignore_ascii_case(word.trim_end_matches('s'))
     });
     same_letters
         .or(spelled_out.map(|unit| unit.name))
         .map(str::to_owned)
-        .or_else(|| nearest(word, names().chain(["Er", "ML"]).filter(|name| name.len() > 1)))
+        .or_else(|| {
+            nearest(
+                word,
+                names().chain(["Er", "ML"]).filter(|name| name.len() > 1),
+            )
+        })
 }

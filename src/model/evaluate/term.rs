@@ -34,7 +34,10 @@ impl Term {
     }
 
     pub(super) fn call(name: &'static str, arguments: Vec<Self>) -> Self {
-        let values: Vec<Dual> = arguments.iter().filter_map(|one| one.value().cloned()).collect();
+        let values: Vec<Dual> = arguments
+            .iter()
+            .filter_map(|one| one.value().cloned())
+            .collect();
         if values.len() == arguments.len() {
             return Self::Constant(apply(name, &values));
         }
@@ -63,7 +66,10 @@ impl Term {
             ),
             Self::Call(name, arguments) => Formula::Call(
                 name,
-                arguments.into_iter().map(Self::into_formula).collect::<Option<_>>()?,
+                arguments
+                    .into_iter()
+                    .map(Self::into_formula)
+                    .collect::<Option<_>>()?,
             ),
         })
     }
@@ -82,7 +88,10 @@ impl Term {
             ),
             Self::Call(name, arguments) => TargetFormula::Call(
                 name,
-                arguments.into_iter().map(Self::into_target).collect::<Option<_>>()?,
+                arguments
+                    .into_iter()
+                    .map(Self::into_target)
+                    .collect::<Option<_>>()?,
             ),
         })
     }
@@ -107,9 +116,11 @@ impl TargetFormula {
             Self::Constant(value) => S::lift(value),
             Self::Quantity(wanted) => quantity(wanted)?,
             Self::Negative(inner) => inner.evaluate(quantity)?.negative(),
-            Self::Binary(operator, left, right) => {
-                binary(*operator, &left.evaluate(quantity)?, &right.evaluate(quantity)?)
-            }
+            Self::Binary(operator, left, right) => binary(
+                *operator,
+                &left.evaluate(quantity)?,
+                &right.evaluate(quantity)?,
+            ),
             Self::Call(name, arguments) => {
                 let mut values = Vec::with_capacity(arguments.len());
                 for argument in arguments {

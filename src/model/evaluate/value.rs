@@ -54,7 +54,10 @@ impl<'w> Evaluator<'w> {
         let right = self.expression(tolerance, context)?;
         let place = context.place(tolerance.span);
         let (Some(centre), Some(half)) = (nominal.term.value(), right.term.value()) else {
-            return self.bad(place, "a tolerance stands only beside a value that is fixed");
+            return self.bad(
+                place,
+                "a tolerance stands only beside a value that is fixed",
+            );
         };
         let relative = is_relative(left, tolerance);
         let dimension = if relative {
@@ -67,7 +70,10 @@ impl<'w> Evaluator<'w> {
         }
         if half.value < 0.0 {
             let text = context.spot.text(tolerance.span);
-            return self.bad(place, format!("a tolerance is not negative, and `{text}` is"));
+            return self.bad(
+                place,
+                format!("a tolerance is not negative, and `{text}` is"),
+            );
         }
         let half = if relative {
             half.times(&magnitude(centre))

@@ -109,7 +109,11 @@ impl World {
 }
 
 fn own_scope(file: &WorldFile) -> u64 {
-    let parts = file.tree.entries.iter().filter(|entry| entry.section.kind != SectionKind::Crystal);
+    let parts = file
+        .tree
+        .entries
+        .iter()
+        .filter(|entry| entry.section.kind != SectionKind::Crystal);
     let mut hashes: Vec<u64> = parts.map(|entry| entry.section.hash).collect();
     hashes.push(file.id.0);
     // A file that appears or vanishes changes what its users know.

@@ -85,7 +85,10 @@ impl World {
     }
 
     fn load_tables(&mut self, source: &dyn FileSource, path: &Path, tree: &Tree) {
-        let crystals = tree.entries.iter().filter(|entry| entry.section.kind == SectionKind::Crystal);
+        let crystals = tree
+            .entries
+            .iter()
+            .filter(|entry| entry.section.kind == SectionKind::Crystal);
         for statement in crystals.flat_map(|entry| &entry.section.statements) {
             if let StatementKind::Table { file, .. } = &statement.kind {
                 let target = beside(path, &file.text);
@@ -105,7 +108,9 @@ impl World {
                 let Some(path) = target.and_then(|target| self.way(target, file.id)) else {
                     continue;
                 };
-                let circle = std::iter::once(file.id).chain(path).map(|id| self.short_name(id));
+                let circle = std::iter::once(file.id)
+                    .chain(path)
+                    .map(|id| self.short_name(id));
                 let kind = TroubleKind::CircularUse {
                     circle: circle.collect(),
                 };
@@ -128,7 +133,9 @@ impl World {
             if current == to {
                 return Some(trace(&came_from, from, to));
             }
-            let uses = self.file(current).map_or(&[][..], |file| file.uses.as_slice());
+            let uses = self
+                .file(current)
+                .map_or(&[][..], |file| file.uses.as_slice());
             for next in uses {
                 if !came_from.contains_key(next) {
                     came_from.insert(*next, current);
@@ -169,19 +176,26 @@ fn missing(place: Place, quoted: &Quoted, why: String) -> Trouble {
 
 /// The `use` statements of a file's preamble.
 fn use_statements(file: FileId, tree: &Tree) -> impl Iterator<Item = (Place, &Quoted)> {
-    let preamble = tree.entries.iter().filter(|entry| entry.section.kind == SectionKind::Preamble);
+    let preamble = tree
+        .entries
+        .iter()
+        .filter(|entry| entry.section.kind == SectionKind::Preamble);
     preamble.flat_map(move |entry| {
-        entry.section.statements.iter().filter_map(move |statement| {
-            let StatementKind::Use(quoted) = &statement.kind else {
-                return None;
-            };
-            let place = Place {
-                file,
-                section: entry.id,
-                span: quoted.span,
-            };
-            Some((place, quoted))
-        })
+        entry
+            .section
+            .statements
+            .iter()
+            .filter_map(move |statement| {
+                let StatementKind::Use(quoted) = &statement.kind else {
+                    return None;
+                };
+                let place = Place {
+                    file,
+                    section: entry.id,
+                    span: quoted.span,
+                };
+                Some((place, quoted))
+            })
     })
 }
 

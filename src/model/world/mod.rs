@@ -21,7 +21,8 @@ use crate::syntax::{Entry, Section, SectionId, SectionKind, Tree};
 use crate::text::Span;
 
 pub use names::LetRef;
-pub(crate) use names::Scope;
+pub(crate) use names::{Scope, lets_of};
+pub(crate) use path::beside;
 pub use path::normalise;
 pub use source::{FileSource, ReadFailure, TableFile, TableSamples};
 
@@ -115,7 +116,10 @@ impl<'w> SectionRef<'w> {
     /// Its name, empty where it has none.
     #[must_use]
     pub fn name(&self) -> &'w str {
-        self.section.name.as_ref().map_or("", |word| word.text.as_str())
+        self.section
+            .name
+            .as_ref()
+            .map_or("", |word| word.text.as_str())
     }
 
     /// File and section.

@@ -76,15 +76,21 @@ impl World {
     pub(crate) fn in_sight(&self, file: FileId) -> impl Iterator<Item = &WorldFile> {
         let own = self.file(file);
         let used = own.map_or(&[][..], |own| own.uses.as_slice());
-        own.into_iter()
-            .chain(used.iter().filter(move |id| **id != file).filter_map(|id| self.file(*id)))
+        own.into_iter().chain(
+            used.iter()
+                .filter(move |id| **id != file)
+                .filter_map(|id| self.file(*id)),
+        )
     }
 
     /// All `let`s in sight of a scope, nearest first; hidden ones left out.
     pub(crate) fn lets_in_sight<'w>(&'w self, scope: Scope<'_, 'w>) -> Vec<LetRef<'w>> {
         let mut found: Vec<LetRef<'w>> = Vec::new();
         let near = scope.chain.iter().flat_map(|section| lets_of(*section));
-        let far = self.in_sight(scope.file).filter_map(preamble_of).flat_map(lets_of);
+        let far = self
+            .in_sight(scope.file)
+            .filter_map(preamble_of)
+            .flat_map(lets_of);
         for one in near.chain(far) {
             if !found.iter().any(|seen| seen.name.text == one.name.text) {
                 found.push(one);
@@ -144,7 +150,10 @@ fn preamble_of(file: &WorldFile) -> Option<SectionRef<'_>> {
 }
 
 fn at(file: &WorldFile, index: usize) -> Option<SectionRef<'_>> {
-    file.tree.entries.get(index).map(|entry| as_ref(file, entry))
+    file.tree
+        .entries
+        .get(index)
+        .map(|entry| as_ref(file, entry))
 }
 
 fn as_ref<'w>(file: &WorldFile, entry: &'w Entry) -> SectionRef<'w> {
@@ -152,5 +161,18 @@ fn as_ref<'w>(file: &WorldFile, entry: &'w Entry) -> SectionRef<'w> {
         file: file.id,
         id: entry.id,
         section: &entry.section,
+    }
+}
+
+impl World {
+    /// The material of that name in one file alone.
+    pub(crate) fn own_material(&self, file: FileId, name: &str) -> Option<SectionRef<'_>> {
+        let file = self.file(file)?;
+        at(file, *file.materials.get(name)?)
+    }
+
+    /// The `let` of that name in the preamble of one file alone.
+    pub(crate) fn own_preamble_let(&self, file: FileId, name: &str) -> Option<LetRef<'_>> {
+        own_let(self.file(file)?, name)
     }
 }

@@ -35,7 +35,10 @@ mod tests {
 
     #[test]
     fn dots_are_resolved_as_far_as_the_path_tells() {
-        assert_eq!(normalise(Path::new("/a/./b/../c.cren")), Path::new("/a/c.cren"));
+        assert_eq!(
+            normalise(Path::new("/a/./b/../c.cren")),
+            Path::new("/a/c.cren")
+        );
         assert_eq!(normalise(Path::new("../a/../../c")), Path::new("../../c"));
         assert_eq!(normalise(Path::new("/../a")), Path::new("/a"));
         assert_eq!(
