@@ -1,0 +1,387 @@
+//! Brackets by zero count, roots by safeguarded Newton steps. No grid of energies is ever scanned.
+//!
+//! Every sweep is kept in a ledger ordered by energy, where N(E) never falls. For each band a point
+//! inside it (n < N < n + 1) is sought between the last entry with N ≤ n and the first with
+//! N ≥ n + 1, by interpolation in N while other bands lie between, by Newton's step on D once the
+//! neighbouring gaps are reached, and by halving whenever a step did not halve the bracket. Between points in
+//! two neighbouring bands s D has one maximum and no other stationary point; either a point
+//! with s D > 2 turns up on the way to it, or the maximum itself is found as the simple root of D′, well
+//! conditioned even where the gap is closed. Edges and levels are roots of s D − 2 = −4 sin²(θ/2),
+//! θ = distance of ka from the edge.
+
+use super::cell::{Meter, Ready, SolveError};
+use super::scalar::{Dual, Scalar, power_of_two};
+use super::sweep::{Reading, product, read};
+
+/// Steps after which a search gives up.
+const PATIENCE: usize = 260;
+/// s D − 2 above which a gap is wide: its edges are found apart.
+const WIDE: f64 = 1e-4;
+/// A band point is taken when N is at least this far from whole.
+const INSIDE: f64 = 0.02;
+
+/// An energy from both sides.
+fn less<T: Scalar>(a: T, b: T) -> bool {
+    (a - b).leading() < 0.0
+}
+
+/// The ledger of one search.
+pub(crate) struct Finder<'a, T> {
+    pub ready: &'a Ready,
+    pub meter: &'a Meter<'a>,
+    readings: Vec<Reading<T>>,
+}
+
+/// A band narrower than the arithmetic can separate, or a reading inside it.
+pub(crate) enum Inside<T> {
+    At(Reading<T>),
+    Unresolved,
+}
+
+/// Where s D is greatest between two bands, or a point of a wide gap.
+pub(crate) enum GapPoint<T> {
+    Wide(T),
+    Narrow(T),
+}
+
+/// What a root search is after: N = `states` reached from below (`upper`: the edge at the upper
+/// end of a gap, where N = states still holds just below it), with s D − 2 = `depth`.
+#[derive(Clone, Copy)]
+pub(crate) struct Target<T> {
+    pub states: f64,
+    pub upper: bool,
+    pub positive: bool,
+    pub depth: T,
+}
+
+/// The sign of D at the edges next to gap `gap` − 1, that is where N = `gap`.
+pub(crate) fn is_positive(gap: usize) -> bool {
+    gap % 2 == 0
+}
+
+impl<T: Scalar> Target<T> {
+    /// The edge where N = `gap`: its upper end (a bottom of a band) or its lower (a top).
+    pub fn edge(gap: usize, upper: bool) -> Self {
+        Target {
+            states: gap as f64,
+            upper,
+            positive: is_positive(gap),
+            depth: T::constant(0.0),
+        }
+    }
+
+    fn is_left(&self, reading: &Reading<T>) -> bool {
+        if self.upper {
+            reading.states <= self.states
+        } else {
+            reading.states < self.states
+        }
+    }
+
+    /// s D − 2 − depth, its derivative, and its noise, without the exponent.
+    pub fn residual(&self, reading: &Reading<T>) -> (T, T, f64) {
+        let (excess, noise) = reading.excess(self.positive);
+        let slope = reading.trace().slope;
+        let slope = if self.positive { slope } else { -slope };
+        (excess - self.depth.shifted(-reading.exponent), slope, noise)
+    }
+}
+
+impl<'a, T: Scalar> Finder<'a, T> {
+    pub fn new(ready: &'a Ready, meter: &'a Meter<'a>) -> Self {
+        Finder {
+            ready,
+            meter,
+            readings: Vec::with_capacity(64),
+        }
+    }
+
+    /// A sweep, kept in the ledger.
+    pub fn read(&mut self, energy: T) -> Result<Reading<T>, SolveError> {
+        let reading = read(self.ready, energy, self.meter)?;
+        let place = self.readings.partition_point(|r| less(r.energy, energy));
+        self.readings.insert(place, reading);
+        Ok(reading)
+    }
+
+    /// Size of one unit in the last place of energies near `energy`.
+    pub fn resolution(&self, energy: T) -> f64 {
+        2.0 * T::UNIT * energy.leading().abs().max(f64::MIN_POSITIVE)
+    }
+
+    /// Makes the ledger reach from below the first band to above band `band`.
+    pub fn surround(&mut self, band: usize) -> Result<(), SolveError> {
+        let ready = self.ready;
+        let step = ready.kinetic_scale() + (ready.ceiling - ready.floor) + ready.delta_depth;
+        if self.readings.first().is_none_or(|r| r.states > 0.0) {
+            self.reach_down(step)?;
+        }
+        let wanted = (band + 1) as f64;
+        if self.readings.last().is_some_and(|r| r.states >= wanted) {
+            return Ok(());
+        }
+        let mean = 0.5 * (ready.ceiling + ready.floor);
+        let mut above = mean + ready.kinetic_scale() * ((band + 1) * (band + 1)) as f64;
+        above = above.max(ready.least_energy + step);
+        for _ in 0..PATIENCE {
+            if self.read(T::constant(above))?.states >= wanted {
+                return Ok(());
+            }
+            above += 0.5 * (above - ready.floor).abs().max(step);
+            if !above.is_finite() {
+                break;
+            }
+        }
+        Err(SolveError::NoBracket)
+    }
+
+    fn reach_down(&mut self, step: f64) -> Result<(), SolveError> {
+        let mut below = self.ready.floor - 1e-3 * self.ready.kinetic_scale();
+        let mut step = step.max(self.ready.floor.abs() * 1e-12);
+        for _ in 0..PATIENCE {
+            let lowest = self.ready.least_energy;
+            if below <= lowest {
+                return Err(SolveError::MassOutOfRange);
+            }
+            if self.read(T::constant(below))?.states <= 0.0 {
+                return Ok(());
+            }
+            below -= step;
+            step *= 2.0;
+            if !below.is_finite() {
+                break;
+            }
+        }
+        Err(SolveError::NoBracket)
+    }
+
+    /// A reading inside band `band`. The ledger must surround it.
+    pub fn inside(&mut self, band: usize) -> Result<Inside<T>, SolveError> {
+        let (low, high) = (band as f64, (band + 1) as f64);
+        let mut halve = false;
+        for _ in 0..PATIENCE {
+            let first = self.readings.partition_point(|r| r.states <= low);
+            let last = self.readings.partition_point(|r| r.states < high);
+            if let Some(found) = self.best_inside(first, last, low) {
+                return Ok(Inside::At(found));
+            }
+            if first == 0 || last >= self.readings.len() {
+                return Err(SolveError::NoBracket);
+            }
+            let (left, right) = (self.readings[first - 1], self.readings[last]);
+            let width = (right.energy - left.energy).leading();
+            if width
+                <= 2.0
+                    * self
+                        .resolution(left.energy)
+                        .max(self.resolution(right.energy))
+            {
+                // a point too near an edge is better than none
+                return Ok(self
+                    .readings
+                    .get(first)
+                    .filter(|_| first < last)
+                    .map_or(Inside::Unresolved, |r| Inside::At(*r)));
+            }
+            let next = self.propose_inside(first, last, low, halve);
+            self.read(next)?;
+            let first = self.readings.partition_point(|r| r.states <= low);
+            let last = self.readings.partition_point(|r| r.states < high);
+            let remaining = if first == 0 || last >= self.readings.len() {
+                width
+            } else {
+                (self.readings[last].energy - self.readings[first - 1].energy).leading()
+            };
+            halve = !halve && remaining > 0.5 * width;
+        }
+        Err(SolveError::NoBracket)
+    }
+
+    /// The entry of first..last nearest to the middle of the band, if well inside.
+    fn best_inside(&self, first: usize, last: usize, low: f64) -> Option<Reading<T>> {
+        let distance = |r: &Reading<T>| (r.states - low - 0.5).abs();
+        let inside = self.readings.get(first..last)?.iter();
+        let best = inside.min_by(|a, b| distance(a).total_cmp(&distance(b)))?;
+        (distance(best) <= 0.5 - INSIDE).then_some(*best)
+    }
+
+    /// Next energy to try on the way into a band.
+    fn propose_inside(&self, first: usize, last: usize, low: f64, halve: bool) -> T {
+        let (left, right) = (&self.readings[first - 1], &self.readings[last]);
+        let middle = (left.energy + right.energy).times(0.5);
+        if first < last {
+            // some entry just inside an edge: step away from it
+            let (inner_left, inner_right) = (&self.readings[first], &self.readings[last - 1]);
+            let left_room = (inner_left.energy - left.energy).leading();
+            let right_room = (right.energy - inner_right.energy).leading();
+            return if right_room > left_room {
+                (inner_right.energy + right.energy).times(0.5)
+            } else {
+                (left.energy + inner_left.energy).times(0.5)
+            };
+        }
+        if halve {
+            return middle;
+        }
+        let width = (right.energy - left.energy).leading();
+        let step_from = |r: &Reading<T>| {
+            let trace = r.trace();
+            -(trace.value / trace.slope)
+        };
+        let within = |step: T, direction: f64| {
+            let size = step.leading() * direction;
+            size.is_finite() && size > 0.0 && size < width
+        };
+        let mut best: Option<(f64, T)> = None;
+        for (reading, adjacent, direction) in [
+            (left, left.states == low, 1.0),
+            (right, right.states == low + 1.0, -1.0),
+        ] {
+            let step = step_from(reading);
+            if adjacent && within(step, direction) {
+                let size = step.leading().abs();
+                if best.is_none_or(|(other, _)| size < other) {
+                    best = Some((size, reading.energy + step));
+                }
+            }
+        }
+        if let Some((_, energy)) = best {
+            return energy;
+        }
+        if left.states < low || right.states > low + 1.0 {
+            let share = (low + 0.5 - left.states) / (right.states - left.states);
+            return left.energy + T::constant(width * share.clamp(0.1, 0.9));
+        }
+        middle
+    }
+
+    /// A point in the gap between readings in neighbouring bands, or where s D is greatest.
+    pub fn gap_point(
+        &mut self,
+        left: Reading<T>,
+        right: Reading<T>,
+        positive: bool,
+    ) -> Result<GapPoint<T>, SolveError> {
+        let (mut left, mut right) = (left, right);
+        // entries already in the gap
+        let excess = |r: &Reading<T>| r.excess(positive).0.leading() * power_of_two(r.exponent);
+        for r in &self.readings {
+            if less(left.energy, r.energy) && less(r.energy, right.energy) && excess(r) > WIDE {
+                return Ok(GapPoint::Wide(r.energy));
+            }
+        }
+        let signed = |r: &Reading<T>| {
+            let slope = r.trace().slope.leading() * power_of_two(r.exponent);
+            if positive { slope } else { -slope }
+        };
+        let (mut up, mut down) = (signed(&left), signed(&right));
+        let mut halve = false;
+        for _ in 0..PATIENCE {
+            let width = (right.energy - left.energy).leading();
+            let middle = (left.energy + right.energy).times(0.5);
+            if width <= 4.0 * self.resolution(middle) {
+                return Ok(GapPoint::Narrow(middle));
+            }
+            let share = up / (up - down);
+            let energy = if halve || !share.is_finite() {
+                middle
+            } else {
+                let least = (self.resolution(middle) / width).min(0.25);
+                left.energy + T::constant(width * share.clamp(least, 1.0 - least))
+            };
+            let reading = self.read(energy)?;
+            if excess(&reading) > WIDE {
+                return Ok(GapPoint::Wide(energy));
+            }
+            let slope = signed(&reading);
+            let noise = 8.0
+                * T::UNIT
+                * reading
+                    .matrix
+                    .a
+                    .slope
+                    .leading()
+                    .abs()
+                    .max(reading.matrix.d.slope.leading().abs())
+                * power_of_two(reading.exponent);
+            if slope.abs() <= noise {
+                return Ok(GapPoint::Narrow(energy));
+            }
+            if slope > 0.0 {
+                // Illinois: an end kept twice counts half
+                down *= if up > 0.0 && less(left.energy, energy) {
+                    0.5
+                } else {
+                    1.0
+                };
+                left = reading;
+                up = slope;
+            } else {
+                up *= 0.5;
+                right = reading;
+                down = slope;
+            }
+            halve = !halve && (right.energy - left.energy).leading() > 0.6 * width;
+        }
+        Err(SolveError::NoBracket)
+    }
+
+    /// D″ at an energy, and a reading there, without the exponent's effect: as `f64`.
+    pub fn curvature(&self, energy: T) -> Result<f64, SolveError> {
+        self.meter.spend()?;
+        let variable = Dual {
+            value: Dual::variable(energy),
+            slope: Dual::constant(1.0),
+        };
+        let (m, exponent, _) = product(self.ready, variable);
+        Ok((m.a + m.d).slope.slope.leading() * power_of_two(exponent))
+    }
+
+    /// The root of a target, from `start`, within what the ledger brackets. Gives the root and the
+    /// reading nearest to it.
+    pub fn root(&mut self, target: Target<T>, start: T) -> Result<(T, Reading<T>), SolveError> {
+        let split = self.readings.partition_point(|r| target.is_left(r));
+        if split == 0 || split >= self.readings.len() {
+            return Err(SolveError::NoBracket);
+        }
+        let mut low = self.readings[split - 1].energy;
+        let mut high = self.readings[split].energy;
+        let mut energy = start;
+        let mut previous = f64::INFINITY;
+        for _ in 0..PATIENCE {
+            if !(less(low, energy) && less(energy, high)) {
+                energy = (low + high).times(0.5);
+            }
+            let reading = self.read(energy)?;
+            let (residual, slope, noise) = target.residual(&reading);
+            if target.is_left(&reading) {
+                low = energy;
+            } else {
+                high = energy;
+            }
+            let resolution = self.resolution(energy);
+            let step = -(residual / slope);
+            let size = step.leading().abs();
+            if size <= resolution || residual.leading().abs() <= 2.0 * noise {
+                let refined = energy + step;
+                let kept = size.is_finite() && size <= 64.0 * resolution;
+                return Ok((if kept { refined } else { energy }, reading));
+            }
+            let width = (high - low).leading();
+            if width <= 2.0 * resolution {
+                return Ok((energy, reading));
+            }
+            energy = if size.is_finite() && size < 0.6 * previous {
+                energy + step
+            } else {
+                (low + high).times(0.5)
+            };
+            previous = if size.is_finite() {
+                size.min(width)
+            } else {
+                width
+            };
+        }
+        Err(SolveError::NoBracket)
+    }
+}

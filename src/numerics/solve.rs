@@ -1,0 +1,281 @@
+//! Bands, gaps and masses of a cell.
+
+use super::cell::{Bounded, Budget, Cell, Meter, Ready, SolveError, prepare};
+use super::double::Double;
+use super::scalar::{Scalar, power_of_two};
+use super::search::{Finder, GapPoint, Inside, Target, is_positive};
+use super::sweep::{Reading, read};
+
+/// Where in the zone an edge lies.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Wave {
+    /// k = 0
+    Centre,
+    /// k = π/a
+    Edge,
+}
+
+/// One end of a band.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct BandEdge {
+    /// Its energy.
+    pub energy: Bounded,
+    /// Its place in the zone.
+    pub at: Wave,
+    /// The signed effective mass, in the unit of the cell's masses; `None` where two bands touch.
+    pub mass: Option<Bounded>,
+}
+
+/// A band.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Band {
+    /// Its lowest energy.
+    pub bottom: BandEdge,
+    /// Its highest energy.
+    pub top: BandEdge,
+    /// top − bottom, with relative accuracy also where the band is narrower than the rounding of
+    /// its energy.
+    pub width: Bounded,
+}
+
+/// The gap above a band.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Gap {
+    /// Its size; 0 with the bound as error if `closed`.
+    pub size: Bounded,
+    /// Cannot be told from zero.
+    pub closed: bool,
+}
+
+/// The lowest bands of a cell.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Bands {
+    /// From the lowest.
+    pub bands: Vec<Band>,
+    /// `gaps[n]` lies above band n.
+    pub gaps: Vec<Gap>,
+    /// Sweeps over the cell that were needed.
+    pub sweeps: usize,
+}
+
+/// An edge as found.
+#[derive(Clone, Copy)]
+pub(crate) struct RawEdge {
+    pub energy: Double,
+    /// D′ there, |D′| possibly beyond the range of f64
+    pub slope: f64,
+}
+
+/// A gap as found: its lower and upper edge, or closed.
+#[derive(Clone, Copy)]
+pub(crate) struct RawGap {
+    pub lower: RawEdge,
+    pub upper: RawEdge,
+    /// half-gap noise where narrow: 0 for a wide gap
+    pub noise: f64,
+    /// found as a stationary point of D
+    pub narrow: bool,
+}
+
+/// Everything found before bounds are put on.
+pub(crate) struct Raw {
+    pub bottom: RawEdge,
+    pub gaps: Vec<RawGap>,
+    /// a reading inside each band: energy, D, D′
+    pub inside: Vec<(Double, f64, f64)>,
+    pub exact: bool,
+}
+
+/// The lowest `bands` bands of a cell, their edges and masses, and the gaps above each.
+/// Errors: see [`SolveError`].
+pub fn solve(cell: &Cell, bands: usize, budget: &Budget) -> Result<Bands, SolveError> {
+    let ready = prepare(cell)?;
+    let meter = Meter::new(budget);
+    let raw = find(&ready, bands, &meter)?;
+    Ok(super::uncertainty::finish(&ready, &raw, meter.used()))
+}
+
+/// Finds all edges, in `f64` and where that cannot separate bands in double-double.
+pub(crate) fn find(ready: &Ready, bands: usize, meter: &Meter) -> Result<Raw, SolveError> {
+    if let Some(raw) = find_in::<f64>(ready, bands, meter)? {
+        return Ok(raw);
+    }
+    find_in::<Double>(ready, bands, meter)?.ok_or(SolveError::NoBracket)
+}
+
+/// `None` if a band is narrower than the arithmetic resolves.
+fn find_in<T: Scalar>(
+    ready: &Ready,
+    bands: usize,
+    meter: &Meter,
+) -> Result<Option<Raw>, SolveError> {
+    let mut finder = Finder::<T>::new(ready, meter);
+    finder.surround(bands)?;
+    let mut inside = Vec::with_capacity(bands + 1);
+    for band in 0..=bands {
+        match finder.inside(band)? {
+            Inside::At(reading) => inside.push(reading),
+            Inside::Unresolved => return Ok(None),
+        }
+    }
+    let polish = ready.layered;
+    let (energy, reading) = finder.root(Target::edge(0, true), inside[0].energy)?;
+    let bottom = settle(
+        ready,
+        meter,
+        Target::edge(0, true),
+        energy,
+        &reading,
+        polish,
+    )?;
+    let mut gaps = Vec::with_capacity(bands);
+    for band in 0..bands {
+        gaps.push(find_gap(&mut finder, &inside, band, polish)?);
+    }
+    let inside = inside
+        .iter()
+        .map(|r| (r.energy.to_double(), r.discriminant(), r.slope()))
+        .collect();
+    Ok(Some(Raw {
+        bottom,
+        gaps,
+        inside,
+        exact: polish || T::UNIT < f64::UNIT,
+    }))
+}
+
+/// Both edges of the gap above `band`.
+fn find_gap<T: Scalar>(
+    finder: &mut Finder<T>,
+    inside: &[Reading<T>],
+    band: usize,
+    polish: bool,
+) -> Result<RawGap, SolveError> {
+    let gap = band + 1;
+    let (ready, meter) = (finder.ready, finder.meter);
+    let lower = Target::edge(gap, false);
+    let upper = Target::edge(gap, true);
+    match finder.gap_point(inside[band], inside[band + 1], is_positive(gap))? {
+        GapPoint::Wide(_) => {
+            let (energy, reading) = finder.root(lower, inside[band].energy)?;
+            let lower = settle(ready, meter, lower, energy, &reading, polish)?;
+            let (energy, reading) = finder.root(upper, inside[band + 1].energy)?;
+            let upper = settle(ready, meter, upper, energy, &reading, polish)?;
+            Ok(RawGap {
+                lower,
+                upper,
+                noise: 0.0,
+                narrow: false,
+            })
+        }
+        GapPoint::Narrow(centre) => {
+            if polish {
+                narrow_pair(ready, meter, centre.to_double(), is_positive(gap))
+            } else {
+                narrow_pair(ready, meter, centre, is_positive(gap))
+            }
+        }
+    }
+}
+
+/// One Newton step in double-double on an edge found in `f64`.
+fn settle<T: Scalar>(
+    ready: &Ready,
+    meter: &Meter,
+    target: Target<T>,
+    energy: T,
+    reading: &Reading<T>,
+    polish: bool,
+) -> Result<RawEdge, SolveError> {
+    if !polish || T::UNIT < f64::UNIT {
+        return Ok(RawEdge {
+            energy: energy.to_double(),
+            slope: reading.slope(),
+        });
+    }
+    let start = energy.to_double();
+    let reading = read(ready, start, meter)?;
+    let fine = Target {
+        depth: Double::ZERO,
+        states: target.states,
+        upper: target.upper,
+        positive: target.positive,
+    };
+    let (residual, slope, _) = fine.residual(&reading);
+    let step = -(residual / slope);
+    Ok(RawEdge {
+        energy: start + step,
+        slope: reading.slope(),
+    })
+}
+
+/// Both edges of a gap so narrow that s D − 2 hardly rises above 0 in it, from the place where
+/// s D is greatest: E* ± √(2 (s D* − 2)/|D″|), then Newton on each.
+fn narrow_pair<T: Scalar>(
+    ready: &Ready,
+    meter: &Meter,
+    centre: T,
+    positive: bool,
+) -> Result<RawGap, SolveError> {
+    let finder = Finder::<T>::new(ready, meter);
+    let mut centre = centre;
+    let mut curvature = 0.0;
+    for _ in 0..2 {
+        curvature = finder.curvature(centre)?;
+        let reading = read(ready, centre, meter)?;
+        let step = -(reading.trace().slope.shifted(reading.exponent) / T::constant(curvature));
+        centre = centre + step;
+    }
+    let reading = read(ready, centre, meter)?;
+    let (excess, noise) = reading.excess(positive);
+    let scale = power_of_two(reading.exponent);
+    let height = excess.leading() * scale;
+    // the half-gap's noise: rounding of the height, and of the place
+    let half_noise = (2.0 * noise * scale / curvature.abs()).sqrt() + finder.resolution(centre);
+    let half = (2.0 * height.max(0.0) / curvature.abs()).sqrt();
+    if half <= half_noise {
+        let edge = RawEdge {
+            energy: centre.to_double(),
+            slope: 0.0,
+        };
+        return Ok(RawGap {
+            lower: edge,
+            upper: edge,
+            noise: 2.0 * half_noise,
+            narrow: true,
+        });
+    }
+    let mut edges = [RawEdge {
+        energy: centre.to_double(),
+        slope: 0.0,
+    }; 2];
+    let mut noises = 0.0;
+    for (edge, direction) in edges.iter_mut().zip([-1.0, 1.0]) {
+        let mut energy = centre + T::constant(direction * half);
+        let mut last = read(ready, energy, meter)?;
+        for _ in 0..3 {
+            let target = Target::<T>::edge(usize::from(!positive), direction > 0.0);
+            let (residual, slope, noise) = target.residual(&last);
+            let step = -(residual / slope);
+            if !(step.leading().abs() < 0.5 * half) {
+                break;
+            }
+            energy = energy + step;
+            noises = (noise / slope.leading().abs()) + finder.resolution(energy);
+            last = read(ready, energy, meter)?;
+            if step.leading().abs() <= finder.resolution(energy) {
+                break;
+            }
+        }
+        *edge = RawEdge {
+            energy: energy.to_double(),
+            slope: last.slope(),
+        };
+    }
+    Ok(RawGap {
+        lower: edges[0],
+        upper: edges[1],
+        noise: 2.0 * noises,
+        narrow: true,
+    })
+}
