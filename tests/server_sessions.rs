@@ -20,7 +20,6 @@ material wall
   edge 235 meV
 
 crystal tern_8
-  monolayer 0.283 nm
   layer 5.4 nm of basin
   layer 2.6 nm of wall
   require gap 1 >= 60 meV
@@ -342,7 +341,7 @@ async fn a_request_waits_for_the_bands_only_so_long() {
             .as_array()
             .unwrap()
             .iter()
-            .any(|hint| hint["position"]["line"] == 8)
+            .any(|hint| hint["position"]["line"] == 8 )
     };
     assert!(!gaps(&early), "numbers that nobody has computed: {early}");
     client

@@ -18,12 +18,3 @@ impl Cancel {
         self.0.load(Ordering::Relaxed)
     }
 }
-
-/// Cancels when dropped: a request that the client gives up drops its handler, and with it this.
-pub(super) struct CancelOnDrop(pub(super) Cancel);
-
-impl Drop for CancelOnDrop {
-    fn drop(&mut self) {
-        self.0.cancel();
-    }
-}

@@ -1,7 +1,5 @@
 //! The protocol's methods, one short handler each.
 
-use std::sync::Arc;
-
 use serde_json::Value;
 use tower_lsp::LanguageServer;
 use tower_lsp::jsonrpc::Result;
@@ -9,7 +7,7 @@ use tower_lsp::lsp_types::{
     CodeActionParams, CodeActionResponse, CodeLens, CodeLensParams, CompletionParams, CompletionResponse, DidChangeTextDocumentParams,
     DidChangeWatchedFilesParams, DidChangeWorkspaceFoldersParams, DidCloseTextDocumentParams, DidOpenTextDocumentParams,
     DocumentDiagnosticParams, DocumentDiagnosticReport, DocumentDiagnosticReportResult, DocumentFormattingParams, DocumentHighlight,
-    DocumentHighlightParams, DocumentLink, DocumentLinkParams, DocumentSymbolParams, DocumentSymbolResponse, ExecuteCommandParams,
+    DocumentHighlightParams, DocumentLink, DocumentLinkParams, DocumentSymbolParams, DocumentSymbolResponse,
     FoldingRange, FoldingRangeParams, FullDocumentDiagnosticReport, GotoDefinitionParams, GotoDefinitionResponse, Hover, HoverParams,
     InitializeParams, InitializeResult, InitializedParams, InlayHint, InlayHintParams, Location, PrepareRenameResponse, ReferenceParams,
     RelatedFullDocumentDiagnosticReport, RenameParams, SelectionRange, SelectionRangeParams, SemanticTokensParams,
@@ -163,6 +161,13 @@ impl LanguageServer for Backend {
 
     async fn code_lens(&self, params: CodeLensParams) -> Result<Option<Vec<CodeLens>>> {
         self.look(&params.text_document.uri, None, |scene| Some(structure::lenses(scene))).await
+    }
+
+    async fn formatting(&self, params: DocumentFormattingParams) -> Result<Option<Vec<TextEdit>>> {
+        self.look(&params.text_document.uri, None, |scene| {
+            Some(views::formatted(scene))
+        })
+        .await
     }
 
     async fn semantic_tokens_full(&self, params: SemanticTokensParams) -> Result<Option<SemanticTokensResult>> {

@@ -1,9 +1,9 @@
 //! What a feature looks at: a frozen document, what is known of it, and how the client counts.
 
-use std::path::{Path, PathBuf};
+use std::path::PathBuf;
 use std::sync::Arc;
 
-use tower_lsp::lsp_types::{Location, Position, Range, TextEdit};
+use tower_lsp::lsp_types::{Position, Range};
 
 use super::abilities::Abilities;
 use super::findings::Locations;
@@ -70,15 +70,5 @@ impl Scene {
     /// Locations in this file and others.
     pub(super) fn locations(&self) -> Option<Locations<'_>> {
         Some(Locations::new(self.analysis()?, &self.view.files, &self.abilities))
-    }
-
-    /// Where some bytes of a file are.
-    pub(super) fn location(&self, path: &Path, span: Span) -> Option<Location> {
-        self.locations()?.span(path, span)
-    }
-
-    /// A replacement in the document.
-    pub(super) fn edit(&self, span: Span, text: &str) -> TextEdit {
-        TextEdit::new(self.range(span), text.to_owned())
     }
 }

@@ -1,4 +1,4 @@
-//! Hover, inlay hints and code actions.
+//! Hover, inlay hints, code actions and the standard layout.
 
 use std::collections::HashMap;
 
@@ -10,6 +10,7 @@ use tower_lsp::lsp_types::{
 use super::edits;
 use super::scene::Scene;
 use crate::report::actions::{Action, ActionKind, actions};
+use crate::report::editor_format;
 use crate::report::hints::hints;
 use crate::report::hover::hover;
 use crate::text::Span;
@@ -98,4 +99,10 @@ fn mended(params: &CodeActionParams, rule: &str) -> Vec<Diagnostic> {
 
 fn touch(one: Range, other: Range) -> bool {
     one.start <= other.end && other.start <= one.end
+}
+
+/// The edits that bring the document into the standard layout.
+pub(super) fn formatted(scene: &Scene) -> Vec<TextEdit> {
+    let edits = editor_format::edits(scene.tree()).into_iter();
+    edits.map(|(span, text)| TextEdit::new(scene.range(span), text)).collect()
 }
