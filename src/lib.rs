@@ -18,3 +18,5 @@ pub mod rules;
 pub mod report;
 
 pub mod server;
+
+pub mod cli;

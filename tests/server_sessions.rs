@@ -341,7 +341,7 @@ async fn a_request_waits_for_the_bands_only_so_long() {
             .as_array()
             .unwrap()
             .iter()
-            .any(|hint| hint["position"]["line"] == 8 )
+            .any(|hint| hint["position"]["line"] == 8)
     };
     assert!(!gaps(&early), "numbers that nobody has computed: {early}");
     client

@@ -138,7 +138,9 @@ fn exit() -> Value {
 /// The line of the unknown statement among published findings.
 fn unknown(published: &Value) -> Option<u64> {
     let findings = published["params"]["diagnostics"].as_array()?;
-    let found = findings.iter().find(|finding| finding["code"] == "unknown-statement")?;
+    let found = findings
+        .iter()
+        .find(|finding| finding["code"] == "unknown-statement")?;
     found["range"]["start"]["line"].as_u64()
 }
 
@@ -276,7 +278,9 @@ fn ten_megabytes_are_read_and_edited() {
     server.send(&open(&text));
     let lines = u64::try_from(lines).unwrap();
     let published = |version, line| {
-        move |message: &Value| message["params"]["version"] == version && unknown(message) == Some(line)
+        move |message: &Value| {
+            message["params"]["version"] == version && unknown(message) == Some(line)
+        }
     };
     server.wait(published(1, lines - 1));
     let before = Instant::now();

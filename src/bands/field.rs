@@ -1,6 +1,8 @@
 //! Positions, potential and mass on the stretches of a one-dimensional crystal, as plain numbers or with their
 //! derivatives.
 
+use crate::model::shape::images::sum_of_images;
+use crate::model::shape::spline::CubicPiece;
 use crate::model::{Crystal, Dual, MassLaw, Scalar, SiteShape};
 
 use super::layout::{Cut, Mark, Stretch};
@@ -9,9 +11,17 @@ use super::layout::{Cut, Mark, Stretch};
 pub(super) struct Field<'a> {
     pub crystal: &'a Crystal,
     pub period: f64,
+    /// The table between its samples.
+    table: Vec<CubicPiece>,
 }
 
-impl Field<'_> {
+impl<'a> Field<'a> {
+    /// Of a crystal with this period.
+    pub fn new(crystal: &'a Crystal, period: f64) -> Self {
+        let table = crystal.potential.table.as_ref().map_or_else(Vec::new, |table| table.pieces(period));
+        Self { crystal, period, table }
+    }
+
     /// The period.
     pub fn period<S: Scalar>(&self) -> S {
         let layers = &self.crystal.potential.layers;
@@ -103,24 +113,37 @@ impl Field<'_> {
             let inside = if shift == 0 { x.clone() } else { x.plus(&self.period::<S>().scaled(shift as f64)) };
             sum = sum.plus(&piece.formula.evaluate(&[inside, S::number(0.0), S::number(0.0)]));
         }
-        if let (Some(table), Some(knot)) = (&potential.table, stretch.knot) {
-            sum = sum.plus(&table.evaluate(knot, x, self.period));
+        if let Some(piece) = stretch.knot.and_then(|knot| self.table.get(knot)) {
+            // The last piece reaches past the cell's end to the first sample, one period on.
+            let turns = if x.value() < piece.start - 1e-9 * self.period { 1.0 } else { 0.0 };
+            let at = x.value() + turns * self.period;
+            sum = sum.plus(&x.chain(piece.at(at), || piece.slope_at(at)));
         }
-        if !potential.waves.is_empty() {
-            let period = self.period::<S>();
-            for wave in &potential.waves {
-                sum = sum.plus(&wave.at_1d(x, &period));
-            }
+        sum.plus(&self.waves_and_sites(x)).plus(&self.boxes(stretch))
+    }
+
+    fn boxes<S: Scalar>(&self, stretch: &Stretch) -> S {
+        let sites = stretch.boxes.iter().filter_map(|index| self.crystal.potential.sites.get(*index));
+        sites.fold(S::number(0.0), |sum, site| sum.plus(&S::lift(&site.energy)))
+    }
+
+    fn waves_and_sites<S: Scalar>(&self, x: &S) -> S {
+        let potential = &self.crystal.potential;
+        let mut sum = S::number(0.0);
+        if potential.waves.is_empty() && potential.sites.is_empty() {
+            return sum;
         }
-        for site in &potential.sites {
-            match &site.shape {
-                SiteShape::Box(_) => {}
-                _ => sum = sum.plus(&site.at_1d(x, &self.period::<S>())),
-            }
+        let period = self.period::<S>();
+        let turn = x.over(&period).scaled(2.0 * std::f64::consts::PI);
+        for wave in &potential.waves {
+            let indices = wave.indices.iter().filter_map(|index| index.first());
+            let angles: Vec<S> = indices.map(|index| turn.scaled(*index as f64)).collect();
+            sum = sum.plus(&wave.value_at(&angles));
         }
-        for index in &stretch.boxes {
-            if let Some(site) = potential.sites.get(*index) {
-                sum = sum.plus(&S::lift(&site.energy));
+        for site in potential.sites.iter().filter(|site| !matches!(site.shape, SiteShape::Box(_))) {
+            let Some(at) = site.at.first() else { continue };
+            if let Some(shape) = sum_of_images(&site.shape, &x.minus(&S::lift(at)), &period) {
+                sum = sum.plus(&shape.times(&S::lift(&site.energy)));
             }
         }
         sum

@@ -13,7 +13,8 @@ pub fn links(tree: &Tree, path: &Path) -> Vec<(Span, PathBuf)> {
     let mut found = Vec::new();
     for entry in &tree.entries {
         for statement in &entry.section.statements {
-            let (StatementKind::Use(file) | StatementKind::Table { file, .. }) = &statement.kind else {
+            let (StatementKind::Use(file) | StatementKind::Table { file, .. }) = &statement.kind
+            else {
                 continue;
             };
             let span = entry.absolute(file.span);
@@ -34,7 +35,16 @@ mod tests {
     fn links_are_the_paths_between_the_quotes() {
         let text = "use \"../b.cren\"\ncrystal a\n  table \"t.csv\" in nm, meV\n";
         let links = links(&read(text), Path::new("/w/x/a.cren"));
-        let found: Vec<(&str, &Path)> = links.iter().map(|(span, path)| (span.of(text), path.as_path())).collect();
-        assert_eq!(found, [("../b.cren", Path::new("/w/b.cren")), ("t.csv", Path::new("/w/x/t.csv"))]);
+        let found: Vec<(&str, &Path)> = links
+            .iter()
+            .map(|(span, path)| (span.of(text), path.as_path()))
+            .collect();
+        assert_eq!(
+            found,
+            [
+                ("../b.cren", Path::new("/w/b.cren")),
+                ("t.csv", Path::new("/w/x/t.csv"))
+            ]
+        );
     }
 }

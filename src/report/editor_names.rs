@@ -30,14 +30,23 @@ pub fn named_at(analysis: &Analysis, path: &Path, offset: u32) -> Option<Named> 
     let file = analysis.file(path)?;
     let (entry, _) = file.section_at(offset)?;
     let used = used_at(file, entry, offset);
-    used.or_else(|| given(file.file, entry).into_iter().find(|named| named.word.touches(offset)))
+    used.or_else(|| {
+        given(file.file, entry)
+            .into_iter()
+            .find(|named| named.word.touches(offset))
+    })
 }
 
 fn used_at(file: &FileAnalysis, entry: &Entry, offset: u32) -> Option<Named> {
     let (_, section) = file.section_at(entry.start)?;
     let byte = offset.checked_sub(entry.start)?;
-    let here = |place: &Place| place.file == file.file && place.section == entry.id && place.span.touches(byte);
-    let mut found = section.references.iter().filter(|reference| here(&reference.place));
+    let here = |place: &Place| {
+        place.file == file.file && place.section == entry.id && place.span.touches(byte)
+    };
+    let mut found = section
+        .references
+        .iter()
+        .filter(|reference| here(&reference.place));
     let reference = found.find(|reference| reference.definition.is_some())?;
     Some(Named {
         name: reference.name.clone(),
@@ -53,19 +62,27 @@ fn given(file: FileId, entry: &Entry) -> Vec<Named> {
         name: word.text.clone(),
         sort,
         word: entry.absolute(word.span),
-        definition: Place { file, section: entry.id, span: word.span },
+        definition: Place {
+            file,
+            section: entry.id,
+            span: word.span,
+        },
     };
     let own = match entry.section.kind {
         crate::syntax::SectionKind::Material => NameSort::Material,
         _ => NameSort::Crystal,
     };
     let heading = entry.section.name.iter().map(|name| named(name, own));
-    let inside = entry.section.statements.iter().filter_map(|statement| match &statement.kind {
-        StatementKind::Let { name, .. } => Some(named(name, NameSort::Value)),
-        StatementKind::Measure { name, .. } => Some(named(name, NameSort::Measure)),
-        StatementKind::Atom { name, .. } => Some(named(name, NameSort::Atom)),
-        _ => None,
-    });
+    let inside = entry
+        .section
+        .statements
+        .iter()
+        .filter_map(|statement| match &statement.kind {
+            StatementKind::Let { name, .. } => Some(named(name, NameSort::Value)),
+            StatementKind::Measure { name, .. } => Some(named(name, NameSort::Measure)),
+            StatementKind::Atom { name, .. } => Some(named(name, NameSort::Atom)),
+            _ => None,
+        });
     heading.chain(inside).collect()
 }
 
@@ -87,7 +104,10 @@ pub fn uses(analysis: &Analysis, named: &Named, with_definition: bool) -> Vec<(P
     }
     for file in &analysis.files {
         for section in &file.sections {
-            let same = section.references.iter().filter(|reference| reference.definition == Some(named.definition));
+            let same = section
+                .references
+                .iter()
+                .filter(|reference| reference.definition == Some(named.definition));
             places.extend(same.map(|reference| reference.place));
         }
     }
@@ -96,7 +116,10 @@ pub fn uses(analysis: &Analysis, named: &Named, with_definition: bool) -> Vec<(P
         let Some((path, span)) = analysis.absolute(&place) else {
             continue;
         };
-        if !found.iter().any(|(known, seen)| known == path && *seen == span) {
+        if !found
+            .iter()
+            .any(|(known, seen)| known == path && *seen == span)
+        {
             found.push((path.to_owned(), span));
         }
     }
@@ -109,9 +132,13 @@ pub fn uses(analysis: &Analysis, named: &Named, with_definition: bool) -> Vec<(P
 /// What is wrong with it, in words.
 pub fn check_new_name(analysis: &Analysis, named: &Named, new: &str) -> Result<(), String> {
     let mut letters = new.chars();
-    let starts = letters.next().is_some_and(|first| first == '_' || is_xid_start(first));
+    let starts = letters
+        .next()
+        .is_some_and(|first| first == '_' || is_xid_start(first));
     if !starts || !letters.all(is_xid_continue) {
-        return Err(format!("`{new}` is no name: names are letters, digits and `_`, and start with no digit"));
+        return Err(format!(
+            "`{new}` is no name: names are letters, digits and `_`, and start with no digit"
+        ));
     }
     if matches!(named.sort, NameSort::Value | NameSort::Measure) {
         if let Some(holder) = holder_of(new) {
@@ -119,12 +146,27 @@ pub fn check_new_name(analysis: &Analysis, named: &Named, new: &str) -> Result<(
         }
     }
     let new: String = new.nfc().collect();
-    let plain = |sort| if sort == NameSort::Measure { NameSort::Value } else { sort };
+    let plain = |sort| {
+        if sort == NameSort::Measure {
+            NameSort::Value
+        } else {
+            sort
+        }
+    };
     let taken = analysis.files.iter().any(|file| {
-        let others = file.tree.entries.iter().flat_map(|entry| given(file.file, entry));
-        let others = others.filter(|other| plain(other.sort) == plain(named.sort) && other.definition != named.definition);
-        let near = |other: &Named| other.definition.section == named.definition.section || is_shared(named);
-        let mut others = others.filter(|other| other.definition.file == named.definition.file && near(other));
+        let others = file
+            .tree
+            .entries
+            .iter()
+            .flat_map(|entry| given(file.file, entry));
+        let others = others.filter(|other| {
+            plain(other.sort) == plain(named.sort) && other.definition != named.definition
+        });
+        let near = |other: &Named| {
+            other.definition.section == named.definition.section || is_shared(named)
+        };
+        let mut others =
+            others.filter(|other| other.definition.file == named.definition.file && near(other));
         others.any(|other| other.name == new)
     });
     if taken {

@@ -54,8 +54,15 @@ fn section(entry: &Entry) -> Option<Outline> {
         SectionKind::Crystal => OutlineSort::Crystal,
     };
     let name = section.name.as_ref()?;
-    let like = section.like.as_ref().map(|like| format!("like {}", like.text));
-    let detail = [like, title(section)].into_iter().flatten().collect::<Vec<_>>().join(", ");
+    let like = section
+        .like
+        .as_ref()
+        .map(|like| format!("like {}", like.text));
+    let detail = [like, title(section)]
+        .into_iter()
+        .flatten()
+        .collect::<Vec<_>>()
+        .join(", ");
     Some(Outline {
         name: name.text.clone(),
         detail,
@@ -67,10 +74,13 @@ fn section(entry: &Entry) -> Option<Outline> {
 }
 
 fn title(section: &Section) -> Option<String> {
-    section.statements.iter().find_map(|statement| match &statement.kind {
-        StatementKind::Title(title) => Some(title.text.clone()),
-        _ => None,
-    })
+    section
+        .statements
+        .iter()
+        .find_map(|statement| match &statement.kind {
+            StatementKind::Title(title) => Some(title.text.clone()),
+            _ => None,
+        })
 }
 
 /// The values and measures that a section names.
@@ -78,7 +88,9 @@ fn values(entry: &Entry) -> impl Iterator<Item = Outline> {
     entry.section.statements.iter().filter_map(|statement| {
         let (name, sort, value) = match &statement.kind {
             StatementKind::Let { name, value } => (name, OutlineSort::Value, value.span),
-            StatementKind::Measure { name, expression } => (name, OutlineSort::Measure, expression.span),
+            StatementKind::Measure { name, expression } => {
+                (name, OutlineSort::Measure, expression.span)
+            }
             _ => return None,
         };
         Some(Outline {
@@ -94,9 +106,14 @@ fn values(entry: &Entry) -> impl Iterator<Item = Outline> {
 
 /// A section without the blank lines and comments that end it.
 fn whole(section: &Section) -> Span {
-    let contents = section.lines.iter().map(|line| line.content);
-    let last = contents.filter(|content| !content.is_empty()).next_back().unwrap_or(section.heading);
-    let start = if section.heading.is_empty() { Span::new(last.start, last.start) } else { section.heading };
+    let mut contents = section.lines.iter().map(|line| line.content);
+    let last = contents.rfind(|content| !content.is_empty());
+    let last = last.unwrap_or(section.heading);
+    let start = if section.heading.is_empty() {
+        Span::new(last.start, last.start)
+    } else {
+        section.heading
+    };
     start.cover(last)
 }
 
@@ -120,10 +137,20 @@ pub fn folds(tree: &Tree) -> Vec<(Span, FoldSort)> {
         if section.kind != SectionKind::Preamble {
             folds.push((whole(section).shifted(entry.start), FoldSort::Section));
         }
-        let runs = runs(section, |line| line.content.is_empty() && !line.comment.is_empty(), |line| line.comment);
-        folds.extend(runs.into_iter().map(|span| (span.shifted(entry.start), FoldSort::Comment)));
+        let runs = runs(
+            section,
+            |line| line.content.is_empty() && !line.comment.is_empty(),
+            |line| line.comment,
+        );
+        folds.extend(
+            runs.into_iter()
+                .map(|span| (span.shifted(entry.start), FoldSort::Comment)),
+        );
         let uses = runs_of_uses(section);
-        folds.extend(uses.into_iter().map(|span| (span.shifted(entry.start), FoldSort::Uses)));
+        folds.extend(
+            uses.into_iter()
+                .map(|span| (span.shifted(entry.start), FoldSort::Uses)),
+        );
     }
     folds
 }
@@ -148,7 +175,11 @@ fn runs(
         }
         open = belongs;
     }
-    found.into_iter().filter(|(_, count)| *count > 1).map(|(span, _)| span).collect()
+    found
+        .into_iter()
+        .filter(|(_, count)| *count > 1)
+        .map(|(span, _)| span)
+        .collect()
 }
 
 fn runs_of_uses(section: &Section) -> Vec<Span> {
@@ -156,7 +187,11 @@ fn runs_of_uses(section: &Section) -> Vec<Span> {
         let statement = section.statement_at(span.start);
         statement.is_some_and(|statement| matches!(statement.kind, StatementKind::Use(_)))
     };
-    runs(section, |line| !line.content.is_empty() && is_use(line.content), |line| line.content)
+    runs(
+        section,
+        |line| !line.content.is_empty() && is_use(line.content),
+        |line| line.content,
+    )
 }
 
 /// Ever larger stretches of text around a byte, the smallest first.
@@ -172,17 +207,32 @@ pub fn selections(tree: &Tree, offset: u32) -> Vec<Span> {
         inside.extend(around(statement, byte));
         inside.push(statement.span);
     }
-    inside.extend(section.line_at(byte).map(|line| line.content).filter(|content| content.touches(byte)));
+    inside.extend(
+        section
+            .line_at(byte)
+            .map(|line| line.content)
+            .filter(|content| content.touches(byte)),
+    );
     inside.push(whole(section));
-    inside.push(Span::new(0, u32::try_from(section.text.len()).unwrap_or(u32::MAX)));
-    let mut spans: Vec<Span> = inside.into_iter().map(|span| span.shifted(entry.start)).collect();
-    spans.push(Span::new(0, u32::try_from(tree.text.len()).unwrap_or(u32::MAX)));
+    inside.push(Span::new(
+        0,
+        u32::try_from(section.text.len()).unwrap_or(u32::MAX),
+    ));
+    let mut spans: Vec<Span> = inside
+        .into_iter()
+        .map(|span| span.shifted(entry.start))
+        .collect();
+    spans.push(Span::new(
+        0,
+        u32::try_from(tree.text.len()).unwrap_or(u32::MAX),
+    ));
     spans.retain(|span| span.touches(offset) && !span.is_empty());
     spans.sort_by_key(|span| span.len());
     // Each must hold the one before it.
     let mut nested: Vec<Span> = Vec::new();
     for span in spans {
-        let holds = |inner: &Span| span.start <= inner.start && inner.end <= span.end && *inner != span;
+        let holds =
+            |inner: &Span| span.start <= inner.start && inner.end <= span.end && *inner != span;
         if nested.last().is_none_or(holds) {
             nested.push(span);
         }
@@ -206,9 +256,21 @@ pub(crate) fn word_at(text: &str, byte: u32) -> Span {
         byte -= 1;
     }
     let (before, behind) = text.split_at(byte);
-    let belongs = |character: char| character.is_alphanumeric() || matches!(character, '_' | '%' | '.');
-    let start = byte - before.chars().rev().take_while(|c| belongs(*c)).map(char::len_utf8).sum::<usize>();
-    let end = byte + behind.chars().take_while(|c| belongs(*c)).map(char::len_utf8).sum::<usize>();
+    let belongs =
+        |character: char| character.is_alphanumeric() || matches!(character, '_' | '%' | '.');
+    let start = byte
+        - before
+            .chars()
+            .rev()
+            .take_while(|c| belongs(*c))
+            .map(char::len_utf8)
+            .sum::<usize>();
+    let end = byte
+        + behind
+            .chars()
+            .take_while(|c| belongs(*c))
+            .map(char::len_utf8)
+            .sum::<usize>();
     let narrow = |byte: usize| u32::try_from(byte).unwrap_or(u32::MAX);
     Span::new(narrow(start), narrow(end))
 }
@@ -221,24 +283,44 @@ mod tests {
     const TEXT: &str = "use \"a.cren\"\nuse \"b.cren\"\nlet s = 8 nm\n\n# One wall.\n# Two lines.\nmaterial wall like base\n  edge 2 * (s + 1) meV\n\ncrystal tern\n  title \"T\"\n  layer s of wall\n  measure line = gap 1\n\n# end\n";
 
     fn offset(needle: &str) -> u32 {
-        TEXT.find(needle).and_then(|at| u32::try_from(at).ok()).expect("in the text")
+        TEXT.find(needle)
+            .and_then(|at| u32::try_from(at).ok())
+            .expect("in the text")
     }
 
     #[test]
     fn the_outline_names_sections_and_values() {
         let outline = outline(&read(TEXT));
-        let names: Vec<(&str, &str)> = outline.iter().map(|item| (item.name.as_str(), item.detail.as_str())).collect();
+        let names: Vec<(&str, &str)> = outline
+            .iter()
+            .map(|item| (item.name.as_str(), item.detail.as_str()))
+            .collect();
         assert_eq!(names, [("s", "8 nm"), ("wall", "like base"), ("tern", "T")]);
         let tern = outline.last().expect("a crystal");
-        assert!(tern.whole.of(TEXT).starts_with("crystal tern") && tern.whole.of(TEXT).ends_with("gap 1"));
+        assert!(
+            tern.whole.of(TEXT).starts_with("crystal tern")
+                && tern.whole.of(TEXT).ends_with("gap 1")
+        );
         assert_eq!(tern.name_span.of(TEXT), "tern");
-        assert_eq!(tern.children.iter().map(|child| child.name.as_str()).collect::<Vec<_>>(), ["line"]);
+        assert_eq!(
+            tern.children
+                .iter()
+                .map(|child| child.name.as_str())
+                .collect::<Vec<_>>(),
+            ["line"]
+        );
     }
 
     #[test]
     fn sections_comments_and_uses_fold() {
         let folds = folds(&read(TEXT));
-        let of = |sort| folds.iter().filter(move |fold| fold.1 == sort).map(|fold| fold.0.of(TEXT)).collect::<Vec<_>>();
+        let of = |sort| {
+            folds
+                .iter()
+                .filter(move |fold| fold.1 == sort)
+                .map(|fold| fold.0.of(TEXT))
+                .collect::<Vec<_>>()
+        };
         assert_eq!(of(FoldSort::Uses), ["use \"a.cren\"\nuse \"b.cren\""]);
         assert_eq!(of(FoldSort::Comment), ["# One wall.\n# Two lines."]);
         assert_eq!(of(FoldSort::Section).len(), 2);

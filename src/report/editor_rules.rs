@@ -5,7 +5,9 @@ use crate::rules;
 
 /// Each rule's name and its explanation in Markdown.
 pub fn pages() -> impl Iterator<Item = (&'static str, String)> {
-    rules::all().iter().map(|rule| (rule.name, rule_page::markdown(rule)))
+    rules::all()
+        .iter()
+        .map(|rule| (rule.name, rule_page::markdown(rule)))
 }
 
 /// A rule's explanation in Markdown; `None` where there is no such rule.

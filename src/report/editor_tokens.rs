@@ -6,7 +6,9 @@ use std::collections::HashMap;
 
 use unicode_ident::{is_xid_continue, is_xid_start};
 
-use crate::syntax::{Entry, ExpressionKind, Section, SectionKind, Statement, StatementKind, Tree, words};
+use crate::syntax::{
+    Entry, ExpressionKind, Section, SectionKind, Statement, StatementKind, Tree, words,
+};
 use crate::text::Span;
 
 /// The sorts of token.
@@ -64,7 +66,11 @@ fn section(entry: &Entry) -> Vec<Token> {
     let known = known(section);
     let mut found = Vec::new();
     for line in &section.lines {
-        let first = if line.content.is_empty() { line.span.end } else { line.content.start };
+        let first = if line.content.is_empty() {
+            line.span.end
+        } else {
+            line.content.start
+        };
         for (span, raw) in Scan::new(&section.text, line.span) {
             let word = span.of(&section.text);
             let sort = match raw {
@@ -75,7 +81,11 @@ fn section(entry: &Entry) -> Vec<Token> {
                 Raw::Word => known.get(&span.start).copied().or_else(|| by_word(word)),
             };
             if let Some((sort, defines)) = sort {
-                found.push(Token { span: entry.absolute(span), sort, defines });
+                found.push(Token {
+                    span: entry.absolute(span),
+                    sort,
+                    defines,
+                });
             }
         }
     }
@@ -93,9 +103,7 @@ fn by_word(word: &str) -> Option<(TokenSort, bool)> {
         TokenSort::Keyword
     } else if words::FUNCTIONS.contains(&word) {
         TokenSort::Function
-    } else if words::FIXED.contains(&word) || words::CLASSES.contains(&word) || words::SHAPES.contains(&word) {
-        TokenSort::Choice
-    } else if words::lattice(word).is_some() {
+    } else if is_choice(word) {
         TokenSort::Choice
     } else if words::QUANTITIES.contains(&word) {
         TokenSort::Quantity
@@ -105,6 +113,11 @@ fn by_word(word: &str) -> Option<(TokenSort, bool)> {
     Some((sort, false))
 }
 
+fn is_choice(word: &str) -> bool {
+    let lists = [words::FIXED, words::CLASSES, words::SHAPES];
+    lists.iter().any(|list| list.contains(&word)) || words::lattice(word).is_some()
+}
+
 /// What the words of the readable statements are, by their first byte.
 fn known(section: &Section) -> HashMap<u32, (TokenSort, bool)> {
     let mut known = HashMap::new();
@@ -112,7 +125,12 @@ fn known(section: &Section) -> HashMap<u32, (TokenSort, bool)> {
         SectionKind::Material => TokenSort::Material,
         _ => TokenSort::Crystal,
     };
-    for (word, defines) in section.name.iter().map(|name| (name, true)).chain(section.like.iter().map(|like| (like, false))) {
+    for (word, defines) in section
+        .name
+        .iter()
+        .map(|name| (name, true))
+        .chain(section.like.iter().map(|like| (like, false)))
+    {
         known.insert(word.span.start, (own, defines));
     }
     for statement in &section.statements {
@@ -127,7 +145,9 @@ fn expressions(statement: &Statement, known: &mut HashMap<u32, (TokenSort, bool)
         let (start, sort) = match &expression.kind {
             ExpressionKind::Name(_) => (expression.span.start, TokenSort::Value),
             ExpressionKind::Call { function, .. } => (function.span.start, TokenSort::Function),
-            ExpressionKind::Number { unit: Some(unit), .. } => (unit.name.span.start, TokenSort::Unit),
+            ExpressionKind::Number {
+                unit: Some(unit), ..
+            } => (unit.name.span.start, TokenSort::Unit),
             _ => return,
         };
         known.insert(start, (sort, false));
@@ -151,9 +171,13 @@ fn names(statement: &Statement, known: &mut HashMap<u32, (TokenSort, bool)>) {
         StatementKind::Let { name: word, .. } => name(word.span, TokenSort::Value, true),
         StatementKind::Measure { name: word, .. } => name(word.span, TokenSort::Measure, true),
         StatementKind::Atom { name: word, .. } => name(word.span, TokenSort::Atom, true),
-        StatementKind::Formfactor { name: word, second, .. } => {
+        StatementKind::Formfactor {
+            name: word, second, ..
+        } => {
             name(word.span, TokenSort::Atom, false);
-            second.iter().for_each(|second| name(second.span, TokenSort::Atom, false));
+            second
+                .iter()
+                .for_each(|second| name(second.span, TokenSort::Atom, false));
         }
         StatementKind::Waive { rule, .. } => name(rule.span, TokenSort::Rule, false),
         _ => {}
@@ -178,7 +202,11 @@ struct Scan<'t> {
 
 impl<'t> Scan<'t> {
     fn new(text: &'t str, span: Span) -> Self {
-        Self { text, position: span.start as usize, end: (span.end as usize).min(text.len()) }
+        Self {
+            text,
+            position: span.start as usize,
+            end: (span.end as usize).min(text.len()),
+        }
     }
 
     fn rest(&self) -> &'t str {
@@ -190,11 +218,19 @@ impl<'t> Scan<'t> {
         let rest = self.rest();
         let line_end = rest.find(['\n', '\r']).unwrap_or(rest.len());
         let line = rest.get(..line_end).unwrap_or(rest);
-        let starts_number = first.is_ascii_digit() || first == '.' && line.chars().nth(1).is_some_and(|next| next.is_ascii_digit());
+        let starts_number = first.is_ascii_digit()
+            || first == '.'
+                && line
+                    .chars()
+                    .nth(1)
+                    .is_some_and(|next| next.is_ascii_digit());
         if first == '#' {
             Some((Raw::Comment, line_end))
         } else if first == '"' {
-            let close = line.get(1..).and_then(|tail| tail.find('"')).map_or(line_end, |at| at + 2);
+            let close = line
+                .get(1..)
+                .and_then(|tail| tail.find('"'))
+                .map_or(line_end, |at| at + 2);
             Some((Raw::Text, close))
         } else if is_xid_start(first) || first == '_' {
             Some((Raw::Word, word_length(line)))
@@ -224,10 +260,19 @@ impl Iterator for Scan<'_> {
 
 /// A word; a hyphen joins (`unit-slip`, `centred-rectangular`) where the whole is a word of the format.
 fn word_length(line: &str) -> usize {
-    let plain: usize = line.chars().take_while(|c| is_xid_continue(*c)).map(char::len_utf8).sum();
-    let joined: usize = line.chars().take_while(|c| is_xid_continue(*c) || *c == '-').map(char::len_utf8).sum();
+    let plain: usize = line
+        .chars()
+        .take_while(|c| is_xid_continue(*c))
+        .map(char::len_utf8)
+        .sum();
+    let joined: usize = line
+        .chars()
+        .take_while(|c| is_xid_continue(*c) || *c == '-')
+        .map(char::len_utf8)
+        .sum();
     let whole = line.get(..joined).unwrap_or("");
-    if words::lattice(whole).is_some() || crate::rules::all().iter().any(|rule| rule.name == whole) {
+    if words::lattice(whole).is_some() || crate::rules::all().iter().any(|rule| rule.name == whole)
+    {
         joined
     } else {
         plain
@@ -236,7 +281,13 @@ fn word_length(line: &str) -> usize {
 
 fn number_length(line: &str) -> usize {
     let bytes = line.as_bytes();
-    let digits = |from: usize| from + bytes.iter().skip(from).take_while(|byte| byte.is_ascii_digit()).count();
+    let digits = |from: usize| {
+        from + bytes
+            .iter()
+            .skip(from)
+            .take_while(|byte| byte.is_ascii_digit())
+            .count()
+    };
     let mut end = digits(0);
     if bytes.get(end) == Some(&b'.') {
         end = digits(end + 1);
@@ -263,15 +314,33 @@ mod tests {
 
     #[test]
     fn words_are_what_their_place_makes_them() {
-        use TokenSort::{Comment, Crystal, Function, Keyword, Material, Number, Quantity, Text, Unit, Value};
+        use TokenSort::{
+            Comment, Crystal, Function, Keyword, Material, Number, Quantity, Text, Unit, Value,
+        };
         let text = "crystal tern # a \"b\"\n  layer 5.4e0 nm of basin\n  require gap 1 >= sqrt(s) * 2 meV\n  title \"x # y\"\n";
         let expected = [
-            ("crystal", Keyword), ("tern", Crystal), ("# a \"b\"", Comment),
-            ("layer", Keyword), ("5.4e0", Number), ("nm", Unit), ("of", Keyword), ("basin", Material),
-            ("require", Keyword), ("gap", Quantity), ("1", Number), ("sqrt", Function), ("s", Value), ("2", Number), ("meV", Unit),
-            ("title", Keyword), ("\"x # y\"", Text),
+            ("crystal", Keyword),
+            ("tern", Crystal),
+            ("# a \"b\"", Comment),
+            ("layer", Keyword),
+            ("5.4e0", Number),
+            ("nm", Unit),
+            ("of", Keyword),
+            ("basin", Material),
+            ("require", Keyword),
+            ("gap", Quantity),
+            ("1", Number),
+            ("sqrt", Function),
+            ("s", Value),
+            ("2", Number),
+            ("meV", Unit),
+            ("title", Keyword),
+            ("\"x # y\"", Text),
         ];
-        let expected: Vec<_> = expected.iter().map(|(text, sort)| ((*text).to_owned(), *sort)).collect();
+        let expected: Vec<_> = expected
+            .iter()
+            .map(|(text, sort)| ((*text).to_owned(), *sort))
+            .collect();
         assert_eq!(sorted(text), expected);
     }
 

@@ -12,7 +12,9 @@ pub enum Stand {
 /// Lays rows out in columns two blanks apart, each line behind `indent` blanks; empty columns vanish.
 #[must_use]
 pub fn lay(stands: &[Stand], rows: &[Vec<String>], indent: usize) -> String {
-    let widths: Vec<usize> = (0..stands.len()).map(|column| width(rows, column)).collect();
+    let widths: Vec<usize> = (0..stands.len())
+        .map(|column| width(rows, column))
+        .collect();
     let mut text = String::new();
     for row in rows {
         let mut line = " ".repeat(indent);

@@ -28,14 +28,20 @@ pub fn suite(
     analysed: &FileAnalysis,
     findings: &[&Finding],
     fail_on: Option<Level>,
-    only: Option<&str>,
+    only: &[String],
 ) -> TestSuite {
     let file = super::locate::shown_path(&analysed.path);
     let mut suite = TestSuite::new(file.clone());
     suite.add_test_case(file_case(locator, &file, findings, fail_on));
     for (section, crystal) in analysed.crystals(only) {
         for target in &section.targets {
-            suite.add_test_case(target_case(locator, (section, crystal), target, findings, fail_on));
+            suite.add_test_case(target_case(
+                locator,
+                (section, crystal),
+                target,
+                findings,
+                fail_on,
+            ));
         }
     }
     suite
@@ -50,8 +56,16 @@ fn about_target(finding: &Finding) -> bool {
     finding.rule.starts_with("target-")
 }
 
-fn file_case(locator: &Locator<'_>, file: &str, findings: &[&Finding], fail_on: Option<Level>) -> TestCase {
-    let own: Vec<&&Finding> = findings.iter().filter(|finding| !about_target(finding)).collect();
+fn file_case(
+    locator: &Locator<'_>,
+    file: &str,
+    findings: &[&Finding],
+    fail_on: Option<Level>,
+) -> TestCase {
+    let own: Vec<&&Finding> = findings
+        .iter()
+        .filter(|finding| !about_target(finding))
+        .collect();
     let lines: Vec<String> = own.iter().map(|finding| line(locator, finding)).collect();
     let failing = own.iter().find(|finding| fails(finding, fail_on));
     let mut status = match failing {
@@ -72,10 +86,15 @@ fn file_case(locator: &Locator<'_>, file: &str, findings: &[&Finding], fail_on: 
 }
 
 fn line(locator: &Locator<'_>, finding: &Finding) -> String {
-    let (line, column) = locator.position(&finding.place).map_or((1, 1), |at| (at.line, at.column));
+    let (line, column) = locator
+        .position(&finding.place)
+        .map_or((1, 1), |at| (at.line, at.column));
     let file = locator.file_name(finding.place.file);
     let level = words::level(finding.level);
-    format!("{file}:{line}:{column}: {level}: {} [{}]", finding.message, finding.rule)
+    format!(
+        "{file}:{line}:{column}: {level}: {} [{}]",
+        finding.message, finding.rule
+    )
 }
 
 fn target_case(
@@ -86,9 +105,15 @@ fn target_case(
     fail_on: Option<Level>,
 ) -> TestCase {
     let told = show_text::outcome(locator, crystal, target, &Trade::of(crystal));
-    let found = findings.iter().find(|finding| about_target(finding) && finding.place.section == target.place.section && target.place.span.touches(finding.place.span.start));
+    let found = findings.iter().find(|finding| {
+        about_target(finding)
+            && finding.place.section == target.place.section
+            && target.place.span.touches(finding.place.span.start)
+    });
     let mut status = match (target.state, found) {
-        (_, Some(finding)) if fails(finding, fail_on) => TestCaseStatus::non_success(NonSuccessKind::Failure),
+        (_, Some(finding)) if fails(finding, fail_on) => {
+            TestCaseStatus::non_success(NonSuccessKind::Failure)
+        }
         (TargetState::Untestable, _) => TestCaseStatus::skipped(),
         (TargetState::Missed, None) => TestCaseStatus::skipped(),
         _ => TestCaseStatus::success(),
@@ -104,7 +129,12 @@ fn target_case(
         status.set_message(message.clone());
     }
     let mut case = TestCase::new(format!("{}: {}", crystal.name, target.text), status);
-    case.set_classname(super::locate::shown_path(locator.analysis().path(target.place.file).unwrap_or(std::path::Path::new(""))));
+    case.set_classname(super::locate::shown_path(
+        locator
+            .analysis()
+            .path(target.place.file)
+            .unwrap_or(std::path::Path::new("")),
+    ));
     if passed {
         case.set_system_out(message);
     }

@@ -72,9 +72,19 @@ pub fn record(locator: &Locator<'_>, finding: &Finding) -> FindingRecord {
         level: words::level(finding.level),
         message: finding.message.clone(),
         help: finding.help.clone(),
-        fixes: finding.fixes.iter().map(|fix| fix_record(locator, fix)).collect(),
+        fixes: finding
+            .fixes
+            .iter()
+            .map(|fix| fix_record(locator, fix))
+            .collect(),
         related: related(locator, finding),
     }
+}
+
+/// The record of one finding as one line.
+#[must_use]
+pub fn line(locator: &Locator<'_>, finding: &Finding) -> String {
+    serde_json::to_string(&record(locator, finding)).unwrap_or_default()
 }
 
 fn related(locator: &Locator<'_>, finding: &Finding) -> Vec<RelatedRecord> {
@@ -96,7 +106,11 @@ fn fix_record(locator: &Locator<'_>, fix: &Fix) -> FixRecord {
     FixRecord {
         title: fix.title.clone(),
         safe: fix.safe,
-        edits: fix.edits.iter().map(|edit| edit_record(locator, edit)).collect(),
+        edits: fix
+            .edits
+            .iter()
+            .map(|edit| edit_record(locator, edit))
+            .collect(),
     }
 }
 

@@ -59,9 +59,9 @@ impl Tally {
     }
 }
 
-/// The closing line: what was found in how many files.
+/// "2 errors, 1 note", empty where there is nothing.
 #[must_use]
-pub fn summary(tally: Tally, files: usize, paint: Paint) -> String {
+pub fn counts(tally: Tally, paint: Paint) -> String {
     let parts = [
         (Level::Error, tally.errors, "error"),
         (Level::Warning, tally.warnings, "warning"),
@@ -72,16 +72,27 @@ pub fn summary(tally: Tally, files: usize, paint: Paint) -> String {
         .filter(|(_, number, _)| *number > 0)
         .map(|(level, number, one)| paint.level(*level, &words::count(*number, one)))
         .collect();
+    told.join(", ")
+}
+
+/// The closing line: what was found in how many files.
+#[must_use]
+pub fn summary(tally: Tally, files: usize, paint: Paint) -> String {
     let files = words::count(files, "file");
-    match told.is_empty() {
-        true => format!("{files}, nothing to report\n"),
-        false => format!("{files}: {}\n", told.join(", ")),
+    match tally.at_least(Level::Note) {
+        0 => format!("{files}, nothing to report\n"),
+        _ => format!("{files}: {}\n", counts(tally, paint)),
     }
 }
 
 /// The findings of one file; empty where there are none.
 #[must_use]
-pub fn file(locator: &Locator<'_>, analysed: &FileAnalysis, findings: &[&Finding], paint: Paint) -> String {
+pub fn file(
+    locator: &Locator<'_>,
+    analysed: &FileAnalysis,
+    findings: &[&Finding],
+    paint: Paint,
+) -> String {
     let Some(lines) = locator.lines(analysed.file) else {
         return String::new();
     };
@@ -235,7 +246,9 @@ impl Snippet {
                 '\n' | '\t' => shown.push(character),
                 '\u{80}'..='\u{9f}' => shown.push_str("  "),
                 // A mark of three bytes that shows nothing; direction marks could reorder the line.
-                '\u{feff}' | '\u{202a}'..='\u{202e}' | '\u{2066}'..='\u{2069}' => shown.push_str("   "),
+                '\u{feff}' | '\u{202a}'..='\u{202e}' | '\u{2066}'..='\u{2069}' => {
+                    shown.push_str("   ")
+                }
                 other if other.is_control() => shown.push(' '),
                 other => shown.push(other),
             }
@@ -256,7 +269,9 @@ impl Snippet {
         if marked > 0 {
             return Some((start, marked).into());
         }
-        let line = self.lines.range(self.lines.line_of(u32::try_from(start).ok()?));
+        let line = self
+            .lines
+            .range(self.lines.line_of(u32::try_from(start).ok()?));
         let content = self.shown.get(line.clone())?.trim_end().len();
         let after = self.shown.get(start..line.start + content).unwrap_or("");
         if let Some(character) = after.chars().next() {
@@ -286,18 +301,23 @@ impl SourceCode for Snippet {
         lines_after: usize,
     ) -> Result<Box<dyn SpanContents<'a> + 'a>, MietteError> {
         let line_of = |byte: usize| self.lines.line_of(u32::try_from(byte).unwrap_or(u32::MAX));
-        let first = line_of(span.offset()).saturating_sub(lines_before);
+        let count = |lines: usize| u32::try_from(lines).unwrap_or(u32::MAX);
+        let (before, after) = (count(lines_before), count(lines_after));
+        let first = line_of(span.offset()).saturating_sub(before);
         let end = span.offset() + span.len().max(1) - 1;
-        let last = (line_of(end) + lines_after).min(self.lines.count() - 1);
+        let last = (line_of(end) + after).min(self.lines.last());
         let bytes = self.lines.range(first).start..self.lines.range(last).end;
-        let data = self.shown.get(bytes.clone()).ok_or(MietteError::OutOfBounds)?;
+        let data = self
+            .shown
+            .get(bytes.clone())
+            .ok_or(MietteError::OutOfBounds)?;
         let covered = SourceSpan::from((bytes.start, bytes.len()));
         Ok(Box::new(MietteSpanContents::new(
             data.as_bytes(),
             covered,
-            first,
+            first as usize,
             0,
-            last - first + 1,
+            (last - first) as usize + 1,
         )))
     }
 }

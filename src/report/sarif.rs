@@ -55,7 +55,11 @@ fn level(level: Level) -> &'static str {
 
 /// The results of one file, in order.
 #[must_use]
-pub fn results(locator: &Locator<'_>, analysed: &FileAnalysis, findings: &[&Finding]) -> Vec<Value> {
+pub fn results(
+    locator: &Locator<'_>,
+    analysed: &FileAnalysis,
+    findings: &[&Finding],
+) -> Vec<Value> {
     let mut seen = HashMap::new();
     findings
         .iter()
@@ -69,18 +73,22 @@ pub fn results(locator: &Locator<'_>, analysed: &FileAnalysis, findings: &[&Find
 }
 
 fn result(locator: &Locator<'_>, finding: &Finding, print: &str) -> Value {
-    let index = rules::all().iter().position(|rule| rule.name == finding.rule);
+    let index = rules::all()
+        .iter()
+        .position(|rule| rule.name == finding.rule);
     let message = match &finding.help {
         Some(help) => format!("{}\n{help}", finding.message),
         None => finding.message.clone(),
     };
-    let related = finding.related.iter().enumerate().map(|(id, (place, what))| {
-        let mut location = location(locator, place);
-        location["id"] = json!(id + 1);
-        location["message"] = json!({ "text": what });
-        location
-    });
-    let mut result = json!({
+    let related = finding
+        .related
+        .iter()
+        .enumerate()
+        .map(|(id, (place, what))| {
+            let described = json!({ "id": id + 1, "message": { "text": what } });
+            merged(location(locator, place), described)
+        });
+    let result = json!({
         "ruleId": finding.rule,
         "level": level(finding.level),
         "message": { "text": message },
@@ -89,16 +97,29 @@ fn result(locator: &Locator<'_>, finding: &Finding, print: &str) -> Value {
         "partialFingerprints": { "crenateLine/v1": print },
         "fixes": finding.fixes.iter().map(|fix| self::fix(locator, fix)).collect::<Vec<_>>(),
     });
-    if let Some(index) = index {
-        result["ruleIndex"] = json!(index);
+    match index {
+        Some(index) => merged(result, json!({ "ruleIndex": index })),
+        None => result,
     }
-    result
+}
+
+/// One object with the fields of both.
+fn merged(first: Value, second: Value) -> Value {
+    match (first, second) {
+        (Value::Object(mut fields), Value::Object(more)) => {
+            fields.extend(more);
+            Value::Object(fields)
+        }
+        (first, _) => first,
+    }
 }
 
 fn location(locator: &Locator<'_>, place: &Place) -> Value {
     let artifact = artifact(locator, place);
     match locator.position(place) {
-        Some(at) => json!({ "physicalLocation": { "artifactLocation": artifact, "region": region(at) } }),
+        Some(at) => {
+            json!({ "physicalLocation": { "artifactLocation": artifact, "region": region(at) } })
+        }
         None => json!({ "physicalLocation": { "artifactLocation": artifact } }),
     }
 }
@@ -126,7 +147,10 @@ fn fix(locator: &Locator<'_>, fix: &Fix) -> Value {
             "deletedRegion": region(at),
             "insertedContent": { "text": edit.text },
         });
-        match changes.iter_mut().find(|(place, _)| place.file == edit.place.file) {
+        match changes
+            .iter_mut()
+            .find(|(place, _)| place.file == edit.place.file)
+        {
             Some((_, list)) => list.push(replacement),
             None => changes.push((edit.place, vec![replacement])),
         }
@@ -161,7 +185,11 @@ pub fn uri(path: &Path) -> String {
 
 /// Rule, section and line text, hashed.
 fn fingerprint(locator: &Locator<'_>, analysed: &FileAnalysis, finding: &Finding) -> String {
-    let entry = analysed.tree.entries.iter().find(|entry| entry.id == finding.place.section);
+    let entry = analysed
+        .tree
+        .entries
+        .iter()
+        .find(|entry| entry.id == finding.place.section);
     let section = entry.map(|entry| &entry.section);
     let kind = match section.map(|section| section.kind) {
         Some(SectionKind::Material) => "material",
@@ -169,9 +197,15 @@ fn fingerprint(locator: &Locator<'_>, analysed: &FileAnalysis, finding: &Finding
         Some(SectionKind::Preamble) | None => "preamble",
     };
     let name = section.and_then(|section| section.name.as_ref());
-    let line = locator.position(&finding.place).map_or(1, |at| at.line);
+    let span = locator
+        .analysis()
+        .absolute(&finding.place)
+        .map(|(_, span)| span);
     let lines = locator.lines(analysed.file);
-    let text = lines.as_ref().and_then(|lines| lines.text().get(lines.range(line - 1)));
+    let text = lines.as_ref().and_then(|lines| {
+        let line = lines.line_of(span?.start);
+        lines.text().get(lines.range(line))
+    });
     let words: Vec<&str> = text.unwrap_or("").split_whitespace().collect();
     let mut hash = Fnv::default();
     hash.write(finding.rule);

@@ -39,7 +39,7 @@ pub fn line(fields: &[String]) -> String {
 
 /// The rows of a file's crystals; crystals without bands have none.
 #[must_use]
-pub fn rows(analysed: &FileAnalysis, file: &str, only: Option<&str>) -> String {
+pub fn rows(analysed: &FileAnalysis, file: &str, only: &[String]) -> String {
     let mut text = String::new();
     for (section, crystal) in analysed.crystals(only) {
         let Some(solution) = section.solution() else {
@@ -65,8 +65,10 @@ pub fn band_rows(solution: &Solution) -> Vec<Vec<String>> {
             number(band.bottom.energy, ELECTRONVOLT),
             number(band.top.energy, ELECTRONVOLT),
             number(band.width, ELECTRONVOLT),
-            gap.map(|gap| number(gap.size, ELECTRONVOLT)).unwrap_or_default(),
-            gap.map(|gap| words::gap_kind(gap.kind).to_owned()).unwrap_or_default(),
+            gap.map(|gap| number(gap.size, ELECTRONVOLT))
+                .unwrap_or_default(),
+            gap.map(|gap| words::gap_kind(gap.kind).to_owned())
+                .unwrap_or_default(),
             mass(&band.bottom),
             mass(&band.top),
         ]
@@ -75,7 +77,10 @@ pub fn band_rows(solution: &Solution) -> Vec<Vec<String>> {
 }
 
 fn mass(extremum: &Extremum) -> String {
-    extremum.mass.map(|mass| number(mass, ELECTRON_MASS)).unwrap_or_default()
+    extremum
+        .mass
+        .map(|mass| number(mass, ELECTRON_MASS))
+        .unwrap_or_default()
 }
 
 fn number(value: Measured, unit: f64) -> String {

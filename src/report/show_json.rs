@@ -116,11 +116,26 @@ pub fn crystals(
     locator: &Locator<'_>,
     analysed: &FileAnalysis,
     file: &str,
-    only: Option<&str>,
+    only: &[String],
 ) -> Vec<CrystalRecord> {
     let chosen = analysed.crystals(only);
     chosen
         .map(|(section, crystal)| record(locator, section, crystal, file))
+        .collect()
+}
+
+/// The same, each as one line.
+#[must_use]
+pub fn lines(
+    locator: &Locator<'_>,
+    analysed: &FileAnalysis,
+    file: &str,
+    only: &[String],
+) -> Vec<String> {
+    let records = crystals(locator, analysed, file, only);
+    records
+        .iter()
+        .map(|record| serde_json::to_string(record).unwrap_or_default())
         .collect()
 }
 
@@ -131,7 +146,9 @@ fn record(
     file: &str,
 ) -> CrystalRecord {
     let solution = section.solution();
-    let fermi = solution.and_then(|solution| solution.fermi).map(electronvolt);
+    let fermi = solution
+        .and_then(|solution| solution.fermi)
+        .map(electronvolt);
     CrystalRecord {
         file: file.to_owned(),
         name: crystal.name.clone(),
@@ -143,14 +160,19 @@ fn record(
             .recoil
             .as_ref()
             .and_then(|recoil| finite(recoil.energy.value / ELECTRONVOLT)),
-        temperature_k: crystal.temperature.as_ref().and_then(|dual| finite(dual.value)),
+        temperature_k: crystal
+            .temperature
+            .as_ref()
+            .and_then(|dual| finite(dual.value)),
         potential_ev: solution.map(potential),
         bands: solution.map(bands).unwrap_or_default(),
         gaps: solution.map(gaps).unwrap_or_default(),
         filling: crystal.filling.as_ref().and_then(|dual| finite(dual.value)),
         fermi_ev: fermi.map(|level| level.value),
         fermi_uncertainty_ev: fermi.map(|level| level.uncertainty),
-        class: solution.and_then(|solution| solution.class).map(words::class),
+        class: solution
+            .and_then(|solution| solution.class)
+            .map(words::class),
         measures: section.measures.iter().map(measure).collect(),
         targets: section
             .targets
@@ -189,17 +211,25 @@ fn cell(crystal: &Crystal) -> Vec<Vec<f64>> {
 }
 
 fn potential(solution: &Solution) -> PotentialRecord {
-    let told = |joule: f64| -> f64 { format!("{:.14e}", joule / ELECTRONVOLT).parse().unwrap_or(0.0) };
+    let range = &solution.potential;
+    let size = range.lowest.abs().max(range.highest.abs());
+    // Digits that rounding leaves meaningless are cut; a mean that cancels is nought.
+    let told = |joule: f64| match joule.abs() < 1e-13 * size {
+        true => 0.0,
+        false => format!("{:.13e}", joule / ELECTRONVOLT).parse().unwrap_or(0.0),
+    };
     PotentialRecord {
-        lowest: told(solution.potential.lowest),
-        mean: told(solution.potential.mean),
-        highest: told(solution.potential.highest),
+        lowest: told(range.lowest),
+        mean: told(range.mean),
+        highest: told(range.highest),
     }
 }
 
 fn bands(solution: &Solution) -> Vec<BandRecord> {
     let numbered = solution.bands.iter().enumerate();
-    numbered.map(|(index, band)| band_record(index + 1, band)).collect()
+    numbered
+        .map(|(index, band)| band_record(index + 1, band))
+        .collect()
 }
 
 fn band_record(number: usize, band: &Band) -> BandRecord {
@@ -231,7 +261,9 @@ fn mass(extremum: &Extremum) -> Option<Measured> {
 
 fn gaps(solution: &Solution) -> Vec<GapRecord> {
     let numbered = solution.gaps.iter().enumerate();
-    numbered.map(|(index, gap)| gap_record(index + 1, gap)).collect()
+    numbered
+        .map(|(index, gap)| gap_record(index + 1, gap))
+        .collect()
 }
 
 fn gap_record(above_band: usize, gap: &Gap) -> GapRecord {
@@ -261,7 +293,11 @@ pub fn machine_unit(dimension: Dimension) -> (f64, Option<String>) {
 
 fn measure(measure: &MeasureValue) -> MeasureRecord {
     let (factor, unit) = machine_unit(measure.dimension);
-    let value = measure.value.as_ref().ok().map(|value| scaled(*value, factor));
+    let value = measure
+        .value
+        .as_ref()
+        .ok()
+        .map(|value| scaled(*value, factor));
     MeasureRecord {
         name: measure.name.clone(),
         value: value.map(|value| value.value),

@@ -6,12 +6,17 @@ use super::locate::Locator;
 use super::paint::Paint;
 use super::units::{self, BOLTZMANN, Scale, Trade, exact};
 use super::words;
-use crate::bands::{Assessment, Extremum, Solution};
+use crate::bands::{Assessment, Extremum, MeasureValue, Measured, Solution};
 use crate::model::{Crystal, Dimension};
 
 /// The crystals of a file, in order; `only` picks one.
 #[must_use]
-pub fn file(locator: &Locator<'_>, analysed: &FileAnalysis, only: Option<&str>, paint: Paint) -> String {
+pub fn file(
+    locator: &Locator<'_>,
+    analysed: &FileAnalysis,
+    only: &[String],
+    paint: Paint,
+) -> String {
     let chosen = analysed.crystals(only);
     chosen
         .map(|(section, crystal)| self::crystal(locator, section, crystal, paint) + "\n")
@@ -20,7 +25,12 @@ pub fn file(locator: &Locator<'_>, analysed: &FileAnalysis, only: Option<&str>, 
 
 /// One crystal.
 #[must_use]
-pub fn crystal(locator: &Locator<'_>, section: &SectionAnalysis, crystal: &Crystal, paint: Paint) -> String {
+pub fn crystal(
+    locator: &Locator<'_>,
+    section: &SectionAnalysis,
+    crystal: &Crystal,
+    paint: Paint,
+) -> String {
     let trade = Trade::of(crystal);
     let file = locator.file_name(crystal.place.file);
     let line = locator.line(&crystal.place);
@@ -49,7 +59,11 @@ pub fn crystal(locator: &Locator<'_>, section: &SectionAnalysis, crystal: &Cryst
 fn structure(crystal: &Crystal, solution: Option<&Solution>, trade: &Trade) -> String {
     let mut parts = vec![cell(crystal, trade)];
     if let Some(recoil) = &crystal.recoil {
-        let energy = Trade { recoil: None, atoms: true }.tell_energy(exact(recoil.energy.value));
+        let energy = Trade {
+            recoil: None,
+            atoms: true,
+        }
+        .tell_energy(exact(recoil.energy.value));
         parts.push(format!("1 Er = {energy}"));
     }
     if let Some(solution) = solution {
@@ -66,9 +80,17 @@ fn structure(crystal: &Crystal, solution: Option<&Solution>, trade: &Trade) -> S
 /// The lattice in words.
 #[must_use]
 pub fn cell(crystal: &Crystal, trade: &Trade) -> String {
-    let lengths: Vec<f64> = crystal.conventional.iter().map(|vector| {
-        vector.iter().map(|entry| entry.value * entry.value).sum::<f64>().sqrt()
-    }).collect();
+    let lengths: Vec<f64> = crystal
+        .conventional
+        .iter()
+        .map(|vector| {
+            vector
+                .iter()
+                .map(|entry| entry.value * entry.value)
+                .sum::<f64>()
+                .sqrt()
+        })
+        .collect();
     let told: Vec<String> = lengths
         .iter()
         .map(|length| trade.tell_exact(*length, Dimension::LENGTH))
@@ -85,13 +107,28 @@ pub fn cell(crystal: &Crystal, trade: &Trade) -> String {
 #[must_use]
 pub fn potential(solution: &Solution, trade: &Trade) -> String {
     let range = &solution.potential;
-    let size = range.lowest.abs().max(range.highest.abs()).max(range.mean.abs());
+    let size = range
+        .lowest
+        .abs()
+        .max(range.highest.abs())
+        .max(range.mean.abs());
     let scale = trade.energy(size);
-    let number = |value: f64| units::digits(value / scale.factor, 0.0);
-    let (lowest, mean, highest) = (number(range.lowest), number(range.mean), number(range.highest));
+    // A mean that cancels to rounding is nought.
+    let number = |value: f64| match value.abs() < 1e-13 * size {
+        true => "0".to_owned(),
+        false => units::digits(value / scale.factor, 0.0),
+    };
+    let (lowest, mean, highest) = (
+        number(range.lowest),
+        number(range.mean),
+        number(range.highest),
+    );
     match lowest == highest && lowest == mean {
         true => format!("potential {lowest} {} throughout", scale.name),
-        false => format!("potential {lowest} to {highest} {}, mean {mean} {}", scale.name, scale.name),
+        false => format!(
+            "potential {lowest} to {highest} {}, mean {mean} {}",
+            scale.name, scale.name
+        ),
     }
 }
 
@@ -99,13 +136,25 @@ pub fn potential(solution: &Solution, trade: &Trade) -> String {
 #[must_use]
 pub fn edge_scale(solution: &Solution, trade: &Trade) -> Scale {
     let energies = solution.bands.iter().take(2);
-    let sizes = energies.flat_map(|band| [band.bottom.energy.value.abs(), band.top.energy.value.abs()]);
+    let sizes =
+        energies.flat_map(|band| [band.bottom.energy.value.abs(), band.top.energy.value.abs()]);
     trade.energy(sizes.fold(0.0, f64::max) / 4.0)
 }
 
 fn bands(solution: &Solution, trade: &Trade) -> String {
     let scale = edge_scale(solution, trade);
-    let headings = ["band", "bottom", "", "top", "", "width", "gap above", "", "mass at bottom", "at top"];
+    let headings = [
+        "band",
+        "bottom",
+        "",
+        "top",
+        "",
+        "width",
+        "gap above",
+        "",
+        "mass at bottom",
+        "at top",
+    ];
     let mut rows = vec![headings.map(str::to_owned).to_vec()];
     for (index, band) in solution.bands.iter().enumerate() {
         let gap = solution.gaps.get(index);
@@ -116,14 +165,18 @@ fn bands(solution: &Solution, trade: &Trade) -> String {
             units::tell_in(band.top.energy, &scale),
             point(&band.top),
             trade.tell_energy(band.width),
-            gap.map(|gap| trade.tell_energy(gap.size)).unwrap_or_default(),
-            gap.map(|gap| words::gap_kind(gap.kind).to_owned()).unwrap_or_default(),
+            gap.map(|gap| trade.tell_energy(gap.size))
+                .unwrap_or_default(),
+            gap.map(|gap| words::gap_kind(gap.kind).to_owned())
+                .unwrap_or_default(),
             mass(&band.bottom, trade),
             mass(&band.top, trade),
         ]);
     }
     use Stand::{Left, Right};
-    let stands = [Right, Right, Left, Right, Left, Right, Right, Left, Right, Right];
+    let stands = [
+        Right, Right, Left, Right, Left, Right, Right, Left, Right, Right,
+    ];
     lay(&stands, &rows, 2)
 }
 
@@ -171,13 +224,24 @@ pub fn filling_line(crystal: &Crystal, solution: &Solution, trade: &Trade) -> Op
 }
 
 /// Measures and targets.
-fn wishes(locator: &Locator<'_>, section: &SectionAnalysis, crystal: &Crystal, paint: Paint) -> String {
+fn wishes(
+    locator: &Locator<'_>,
+    section: &SectionAnalysis,
+    crystal: &Crystal,
+    paint: Paint,
+) -> String {
     let trade = Trade::of(crystal);
     let mut text = String::new();
     if !section.measures.is_empty() {
         let measures = section.measures.iter();
         let rows: Vec<Vec<String>> = measures
-            .map(|measure| vec!["measure".to_owned(), measure.name.clone(), measured(measure, &trade)])
+            .map(|measure| {
+                vec![
+                    "measure".to_owned(),
+                    measure.name.clone(),
+                    measured(measure, &trade),
+                ]
+            })
             .collect();
         text += "\n";
         text += &lay(&[Stand::Left; 3], &rows, 2);
@@ -191,14 +255,19 @@ fn wishes(locator: &Locator<'_>, section: &SectionAnalysis, crystal: &Crystal, p
 
 /// A measure's value, or why there is none.
 #[must_use]
-pub fn measured(measure: &crate::bands::MeasureValue, trade: &Trade) -> String {
+pub fn measured(measure: &MeasureValue, trade: &Trade) -> String {
     match &measure.value {
         Ok(value) => trade.tell(*value, measure.dimension),
         Err(why) => format!("no value: {why}"),
     }
 }
 
-fn targets(locator: &Locator<'_>, section: &SectionAnalysis, crystal: &Crystal, paint: Paint) -> String {
+fn targets(
+    locator: &Locator<'_>,
+    section: &SectionAnalysis,
+    crystal: &Crystal,
+    paint: Paint,
+) -> String {
     let trade = Trade::of(crystal);
     let rows: Vec<Vec<String>> = section
         .targets
@@ -218,14 +287,22 @@ fn targets(locator: &Locator<'_>, section: &SectionAnalysis, crystal: &Crystal, 
         let word = words::target_state_spoken(target.state);
         let from = 2 + "require  ".len() + target.text.len();
         let (head, tail) = line.split_at_checked(from).unwrap_or((line, ""));
-        format!("{head}{}\n", tail.replacen(word, &paint.state(target.state, word), 1))
+        format!(
+            "{head}{}\n",
+            tail.replacen(word, &paint.state(target.state, word), 1)
+        )
     });
     painted.collect()
 }
 
 /// What became of a target: its value, what is left, the worst case and what drives it.
 #[must_use]
-pub fn outcome(locator: &Locator<'_>, crystal: &Crystal, target: &Assessment, trade: &Trade) -> String {
+pub fn outcome(
+    locator: &Locator<'_>,
+    crystal: &Crystal,
+    target: &Assessment,
+    trade: &Trade,
+) -> String {
     let mut parts = Vec::new();
     match (&target.found, target.value) {
         (Some(found), _) => parts.push(found.clone()),
@@ -251,7 +328,7 @@ pub fn margin(target: &Assessment, trade: &Trade) -> Option<String> {
     let size = margin.abs();
     let uncertainty = target.value.map_or(0.0, |value| value.uncertainty);
     let told = trade.tell(
-        crate::bands::Measured {
+        Measured {
             value: size,
             uncertainty,
         },
@@ -272,18 +349,26 @@ pub fn spare(target: &Assessment) -> Option<f64> {
     [below, above].into_iter().flatten().reduce(f64::min)
 }
 
-fn worst(locator: &Locator<'_>, crystal: &Crystal, target: &Assessment, trade: &Trade) -> Option<String> {
-    let worst = target.worst?;
-    let uncertainty = target.value.map_or(0.0, |value| value.uncertainty);
-    let told = trade.tell(
-        crate::bands::Measured {
-            value: worst,
-            uncertainty,
-        },
-        target.dimension,
-    );
+fn worst(
+    locator: &Locator<'_>,
+    crystal: &Crystal,
+    target: &Assessment,
+    trade: &Trade,
+) -> Option<String> {
+    let told = worst_value(target, target.worst?, trade);
     Some(match words::driver(locator, crystal, target) {
         Some(driver) => format!("at worst {told} (most by {driver})"),
         None => format!("at worst {told}"),
     })
+}
+
+/// The worst value of a target, known as well as the nominal one.
+#[must_use]
+pub fn worst_value(target: &Assessment, worst: f64, trade: &Trade) -> String {
+    let uncertainty = target.value.map_or(0.0, |value| value.uncertainty);
+    let worst = Measured {
+        value: worst,
+        uncertainty,
+    };
+    trade.tell(worst, target.dimension)
 }

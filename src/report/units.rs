@@ -82,12 +82,7 @@ impl Trade {
         if self.atoms {
             return frequency(size / PLANCK, PLANCK);
         }
-        let steps = [
-            (1.0, "eV"),
-            (1e-3, "meV"),
-            (1e-6, "µeV"),
-            (1e-9, "neV"),
-        ];
+        let steps = [(1.0, "eV"), (1e-3, "meV"), (1e-6, "µeV"), (1e-9, "neV")];
         pick(size, ELECTRONVOLT, &steps, "eV")
     }
 
@@ -239,7 +234,12 @@ fn powered(unit: &str, twelfths: i16) -> String {
 #[must_use]
 pub fn digits(value: f64, uncertainty: f64) -> String {
     if !value.is_finite() {
-        return if value.is_nan() { "undefined" } else { "unbounded" }.to_owned();
+        return if value.is_nan() {
+            "undefined"
+        } else {
+            "unbounded"
+        }
+        .to_owned();
     }
     if uncertainty <= 0.0 || !uncertainty.is_finite() {
         return exact_digits(value);
@@ -248,12 +248,15 @@ pub fn digits(value: f64, uncertainty: f64) -> String {
         return format!("0 ± {}", one_digit_up(uncertainty));
     }
     let finest = place_when_shown(value) - (USUAL - 1);
-    let certain = place(uncertainty);
-    if certain <= finest {
+    if uncertainty <= 0.5 * 10f64.powi(finest) {
         return rounded(value, finest);
     }
-    let shown = rounded(value, certain);
-    format!("{shown} ± {}", one_digit_up(uncertainty))
+    let last = finest.max(place(uncertainty));
+    let step = 10f64.powi(last);
+    let kept = (value / step).round() * step;
+    // What the cut costs is part of the bound.
+    let bound = uncertainty + (value - kept).abs();
+    format!("{} ± {}", rounded(value, last), one_digit_up(bound))
 }
 
 /// A number without uncertainty: the usual digits, trailing zeros dropped.
@@ -279,14 +282,22 @@ fn exact_digits(value: f64) -> String {
 /// The power of ten of the leading digit.
 fn place(value: f64) -> i32 {
     let text = format!("{:e}", value.abs());
-    let exponent = text.split_once('e').and_then(|(_, power)| power.parse().ok());
+    let exponent = text
+        .split_once('e')
+        .and_then(|(_, power)| power.parse().ok());
     exponent.unwrap_or(0)
 }
 
 /// The same once rounded to the usual digits: 9.99997 counts as 10.00.
 fn place_when_shown(value: f64) -> i32 {
-    let text = format!("{:.*e}", usize::try_from(USUAL - 1).unwrap_or(0), value.abs());
-    let exponent = text.split_once('e').and_then(|(_, power)| power.parse().ok());
+    let text = format!(
+        "{:.*e}",
+        usize::try_from(USUAL - 1).unwrap_or(0),
+        value.abs()
+    );
+    let exponent = text
+        .split_once('e')
+        .and_then(|(_, power)| power.parse().ok());
     exponent.unwrap_or(0)
 }
 
@@ -300,7 +311,11 @@ fn rounded(value: f64, last: i32) -> String {
         };
         format!("{:.*}", usize::try_from(-last).unwrap_or(0), coarse)
     } else {
-        format!("{:.*e}", usize::try_from(leading - last).unwrap_or(0), value)
+        format!(
+            "{:.*e}",
+            usize::try_from(leading - last).unwrap_or(0),
+            value
+        )
     };
     with_minus(&text)
 }
@@ -340,7 +355,9 @@ pub fn machine(value: Measured) -> Measured {
         return value;
     }
     let last = place(value.uncertainty) - 1;
-    let kept = usize::try_from(place(value.value) - last).unwrap_or(0).min(17);
+    let kept = usize::try_from(place(value.value) - last)
+        .unwrap_or(0)
+        .min(17);
     if kept >= 17 {
         return value;
     }
@@ -348,7 +365,11 @@ pub fn machine(value: Measured) -> Measured {
     let cut = text.parse().unwrap_or(value.value);
     let cost = value.uncertainty + 0.5 * 10f64.powi(last);
     Measured {
-        value: if value.value.abs() < 10f64.powi(last) { 0.0 } else { cut },
+        value: if value.value.abs() < 10f64.powi(last) {
+            0.0
+        } else {
+            cut
+        },
         uncertainty: two_digits_up(cost),
     }
 }
@@ -357,7 +378,9 @@ pub fn machine(value: Measured) -> Measured {
 fn two_digits_up(value: f64) -> f64 {
     let step = 10f64.powi(place(value) - 1);
     let count = (value / step - 1e-9).ceil();
-    format!("{}e{}", count, place(value) - 1).parse().unwrap_or(value)
+    format!("{}e{}", count, place(value) - 1)
+        .parse()
+        .unwrap_or(value)
 }
 
 #[cfg(test)]
@@ -372,13 +395,15 @@ mod tests {
     fn digits_stop_at_the_uncertainty() {
         assert_eq!(digits(132.418_39, 1e-12), "132.4");
         assert_eq!(digits(132.418_39, 0.23), "132.4 ± 0.3");
-        assert_eq!(digits(132.418_39, 3.0), "132 ± 3");
+        assert_eq!(digits(132.418_39, 3.0), "132 ± 4");
         assert_eq!(digits(132.418_39, 17.0), "130 ± 20");
+        assert_eq!(digits(132.418_39, 0.07), "132.4 ± 0.09");
+        assert_eq!(digits(132.418_39, 0.04), "132.4");
         assert_eq!(digits(0.2, 0.5), "0 ± 0.5");
         assert_eq!(digits(-12.5, 0.0), "−12.5");
         assert_eq!(digits(60.0, 1e-13), "60.00");
         assert_eq!(digits(8.0, 0.0), "8");
-        assert_eq!(digits(3.216e-17, 1e-20), "3.216e-17");
+        assert_eq!(digits(3.216e-17, 1e-21), "3.216e-17");
         assert_eq!(digits(9.999_97, 1e-9), "10.00");
     }
 

@@ -8,7 +8,6 @@ use tower_lsp::lsp_types::{
 
 use crate::text::Encoding;
 
-
 /// The client's abilities; all absent until `initialize`.
 #[derive(Clone, Debug, Default)]
 pub(super) struct Abilities {
@@ -58,7 +57,11 @@ impl Abilities {
 
     /// How positions within a line are counted.
     pub(super) fn encoding(&self) -> Encoding {
-        if self.bytes { Encoding::Utf8 } else { Encoding::Utf16 }
+        if self.bytes {
+            Encoding::Utf8
+        } else {
+            Encoding::Utf16
+        }
     }
 
     fn read_text(&mut self, text: &TextDocumentClientCapabilities) {
@@ -122,7 +125,10 @@ impl Abilities {
 
 /// Bytes where the client offers them, as our texts are in bytes; else the encoding that every client has.
 fn offers_bytes(client: &ClientCapabilities) -> bool {
-    let offered = client.general.as_ref().and_then(|general| general.position_encodings.as_ref());
+    let offered = client
+        .general
+        .as_ref()
+        .and_then(|general| general.position_encodings.as_ref());
     offered.is_some_and(|offered| offered.contains(&PositionEncodingKind::UTF8))
 }
 

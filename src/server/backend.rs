@@ -12,7 +12,8 @@ use tokio::sync::Semaphore;
 use tokio::time::timeout;
 use tower_lsp::jsonrpc::{Error, Result};
 use tower_lsp::lsp_types::{
-    DidChangeWatchedFilesRegistrationOptions, FileSystemWatcher, GlobPattern, InitializeParams, Registration, RegistrationParams, Url,
+    DidChangeWatchedFilesRegistrationOptions, FileSystemWatcher, GlobPattern, InitializeParams,
+    Registration, RegistrationParams, Url,
     notification::{DidChangeWatchedFiles, Notification},
     request,
 };
@@ -64,7 +65,8 @@ impl Backend {
     pub(super) fn meet(&self, params: &InitializeParams) -> Arc<Abilities> {
         let abilities = Arc::new(Abilities::new(&params.capabilities));
         let _ = self.abilities.set(Arc::clone(&abilities));
-        self.owner.tell(Message::Start(Arc::clone(&abilities), folders(params)));
+        self.owner
+            .tell(Message::Start(Arc::clone(&abilities), folders(params)));
         abilities
     }
 
@@ -73,14 +75,22 @@ impl Backend {
         if !self.abilities().watch {
             return;
         }
-        let watcher = |pattern: &str| FileSystemWatcher { glob_pattern: GlobPattern::String(pattern.to_owned()), kind: None };
-        let options = DidChangeWatchedFilesRegistrationOptions { watchers: vec![watcher("**/*.cren"), watcher("**/*.csv")] };
+        let watcher = |pattern: &str| FileSystemWatcher {
+            glob_pattern: GlobPattern::String(pattern.to_owned()),
+            kind: None,
+        };
+        let options = DidChangeWatchedFilesRegistrationOptions {
+            watchers: vec![watcher("**/*.cren"), watcher("**/*.csv")],
+        };
         let registration = Registration {
             id: "crenate/files".to_owned(),
             method: DidChangeWatchedFiles::METHOD.to_owned(),
             register_options: serde_json::to_value(options).ok(),
         };
-        self.outgoing.ask::<request::RegisterCapability>(RegistrationParams { registrations: vec![registration] });
+        self.outgoing
+            .ask::<request::RegisterCapability>(RegistrationParams {
+                registrations: vec![registration],
+            });
     }
 
     /// The document as it is now, with what is known of it; with less than `depth` where that takes too long.
@@ -106,7 +116,12 @@ impl Backend {
     }
 
     /// Makes a view of a document on a thread for such work.
-    pub(super) async fn look<T, F>(&self, uri: &Url, depth: Option<Depth>, make: F) -> Result<Option<T>>
+    pub(super) async fn look<T, F>(
+        &self,
+        uri: &Url,
+        depth: Option<Depth>,
+        make: F,
+    ) -> Result<Option<T>>
     where
         T: Send + 'static,
         F: FnOnce(&Scene) -> Option<T> + Send + 'static,
@@ -114,7 +129,11 @@ impl Backend {
         let Some(view) = self.view(uri, depth).await? else {
             return Ok(None);
         };
-        let scene = Scene { view, analyst: Arc::clone(&self.analyst), abilities: self.abilities() };
+        let scene = Scene {
+            view,
+            analyst: Arc::clone(&self.analyst),
+            abilities: self.abilities(),
+        };
         let overtaken = scene.view.file.overtaken.clone();
         let made = self.work(move || make(&scene)).await?;
         if overtaken.is_cancelled() {
@@ -124,8 +143,14 @@ impl Backend {
     }
 
     /// Runs work that may take a moment; a fault in it is an error of this request alone.
-    pub(super) async fn work<T: Send + 'static>(&self, work: impl FnOnce() -> T + Send + 'static) -> Result<T> {
-        let permit = Arc::clone(&self.views).acquire_owned().await.map_err(|_| Error::internal_error())?;
+    pub(super) async fn work<T: Send + 'static>(
+        &self,
+        work: impl FnOnce() -> T + Send + 'static,
+    ) -> Result<T> {
+        let permit = Arc::clone(&self.views)
+            .acquire_owned()
+            .await
+            .map_err(|_| Error::internal_error())?;
         let work = move || {
             let made = work();
             drop(permit);
@@ -140,7 +165,11 @@ impl Backend {
 
 /// The workspace folders, in either of the ways in which clients name them.
 fn folders(params: &InitializeParams) -> Vec<PathBuf> {
-    let folders = params.workspace_folders.iter().flatten().map(|folder| path_of(&folder.uri));
+    let folders = params
+        .workspace_folders
+        .iter()
+        .flatten()
+        .map(|folder| path_of(&folder.uri));
     let folders: Vec<PathBuf> = folders.collect();
     if !folders.is_empty() {
         return folders;

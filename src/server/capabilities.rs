@@ -1,11 +1,14 @@
 //! What the server offers.
 
 use tower_lsp::lsp_types::{
-    CodeActionKind, CodeActionOptions, CodeActionProviderCapability, CodeLensOptions, CompletionOptions, DiagnosticOptions,
-    DiagnosticServerCapabilities, DocumentLinkOptions, FoldingRangeProviderCapability, HoverProviderCapability, InlayHintOptions,
-    InlayHintServerCapabilities, OneOf, PositionEncodingKind, RenameOptions, SelectionRangeProviderCapability, SemanticTokensFullOptions,
-    SemanticTokensOptions, SemanticTokensServerCapabilities, ServerCapabilities, SignatureHelpOptions, TextDocumentSyncCapability,
-    TextDocumentSyncKind, TextDocumentSyncOptions, WorkDoneProgressOptions, WorkspaceFoldersServerCapabilities, WorkspaceServerCapabilities,
+    CodeActionKind, CodeActionOptions, CodeActionProviderCapability, CodeLensOptions,
+    CompletionOptions, DiagnosticOptions, DiagnosticServerCapabilities, DocumentLinkOptions,
+    FoldingRangeProviderCapability, HoverProviderCapability, InlayHintOptions,
+    InlayHintServerCapabilities, OneOf, PositionEncodingKind, RenameOptions,
+    SelectionRangeProviderCapability, SemanticTokensFullOptions, SemanticTokensOptions,
+    SemanticTokensServerCapabilities, ServerCapabilities, SignatureHelpOptions,
+    TextDocumentSyncCapability, TextDocumentSyncKind, TextDocumentSyncOptions,
+    WorkDoneProgressOptions, WorkspaceFoldersServerCapabilities, WorkspaceServerCapabilities,
 };
 
 use super::abilities::Abilities;
@@ -13,7 +16,11 @@ use super::tokens;
 
 /// The server's side of the bargain.
 pub(super) fn offered(abilities: &Abilities) -> ServerCapabilities {
-    let encoding = if abilities.bytes { PositionEncodingKind::UTF8 } else { PositionEncodingKind::UTF16 };
+    let encoding = if abilities.bytes {
+        PositionEncodingKind::UTF8
+    } else {
+        PositionEncodingKind::UTF16
+    };
     ServerCapabilities {
         position_encoding: Some(encoding),
         text_document_sync: Some(sync()),
@@ -33,7 +40,9 @@ pub(super) fn offered(abilities: &Abilities) -> ServerCapabilities {
         document_symbol_provider: Some(OneOf::Left(true)),
         workspace_symbol_provider: Some(OneOf::Left(true)),
         code_action_provider: Some(code_actions(abilities)),
-        code_lens_provider: Some(CodeLensOptions { resolve_provider: Some(false) }),
+        code_lens_provider: Some(CodeLensOptions {
+            resolve_provider: Some(false),
+        }),
         document_formatting_provider: Some(OneOf::Left(true)),
         rename_provider: Some(OneOf::Right(RenameOptions {
             prepare_provider: Some(true),
@@ -45,10 +54,12 @@ pub(super) fn offered(abilities: &Abilities) -> ServerCapabilities {
         }),
         folding_range_provider: Some(FoldingRangeProviderCapability::Simple(true)),
         semantic_tokens_provider: Some(semantic_tokens()),
-        inlay_hint_provider: Some(OneOf::Right(InlayHintServerCapabilities::Options(InlayHintOptions {
-            work_done_progress_options: WorkDoneProgressOptions::default(),
-            resolve_provider: Some(false),
-        }))),
+        inlay_hint_provider: Some(OneOf::Right(InlayHintServerCapabilities::Options(
+            InlayHintOptions {
+                work_done_progress_options: WorkDoneProgressOptions::default(),
+                resolve_provider: Some(false),
+            },
+        ))),
         diagnostic_provider: abilities.pulls.then(pulled),
         workspace: Some(workspace()),
         ..ServerCapabilities::default()

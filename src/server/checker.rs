@@ -45,7 +45,14 @@ pub(super) struct Checked {
 
 /// Does the job. A fault in it costs its result and nothing else.
 pub(super) fn check(analyst: &Analyst, job: Job, slow: Option<Duration>) -> Checked {
-    let Job { path, depth, generation, files, abilities, cancel } = job;
+    let Job {
+        path,
+        depth,
+        generation,
+        files,
+        abilities,
+        cancel,
+    } = job;
     let work = || {
         if let (Some(slow), Depth::Dear) = (slow, depth) {
             dawdle(slow, &cancel);
@@ -54,12 +61,26 @@ pub(super) fn check(analyst: &Analyst, job: Job, slow: Option<Duration>) -> Chec
         let diagnostics = findings::of_file(&analysis, &files, &path, &abilities);
         (analysis, diagnostics)
     };
-    let done = catch_unwind(AssertUnwindSafe(work)).inspect_err(|_| log!("a fault while analysing {}", path.display())).ok();
+    let done = catch_unwind(AssertUnwindSafe(work))
+        .inspect_err(|_| log!("a fault while analysing {}", path.display()))
+        .ok();
     let (analysis, diagnostics) = done.unzip();
-    Checked { path, depth, generation, analysis: analysis.map(Arc::new), diagnostics: diagnostics.unwrap_or_default() }
+    Checked {
+        path,
+        depth,
+        generation,
+        analysis: analysis.map(Arc::new),
+        diagnostics: diagnostics.unwrap_or_default(),
+    }
 }
 
-fn analyse(analyst: &Analyst, files: &Files, path: &PathBuf, depth: Depth, cancel: &Cancel) -> Analysis {
+fn analyse(
+    analyst: &Analyst,
+    files: &Files,
+    path: &PathBuf,
+    depth: Depth,
+    cancel: &Cancel,
+) -> Analysis {
     analyst.analyse(&Request {
         source: files,
         roots: std::slice::from_ref(path),

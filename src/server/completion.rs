@@ -3,8 +3,8 @@
 use std::path::Path;
 
 use tower_lsp::lsp_types::{
-    CompletionItem, CompletionItemKind, CompletionTextEdit, Documentation, ParameterInformation, ParameterLabel, SignatureHelp,
-    SignatureInformation, TextEdit,
+    CompletionItem, CompletionItemKind, CompletionTextEdit, Documentation, ParameterInformation,
+    ParameterLabel, SignatureHelp, SignatureInformation, TextEdit,
 };
 
 use super::scene::Scene;
@@ -23,7 +23,14 @@ pub(super) fn complete(scene: &Scene, offset: u32) -> Option<Vec<CompletionItem>
         return Some(files(scene, &path, &written, found.replaces));
     }
     let number = |(index, proposal)| item(scene, index, proposal, found.replaces);
-    Some(found.proposals.into_iter().enumerate().map(number).collect())
+    Some(
+        found
+            .proposals
+            .into_iter()
+            .enumerate()
+            .map(number)
+            .collect(),
+    )
 }
 
 fn item(scene: &Scene, index: usize, proposal: Proposal, replaces: Span) -> CompletionItem {
@@ -44,7 +51,10 @@ fn item(scene: &Scene, index: usize, proposal: Proposal, replaces: Span) -> Comp
         detail: Some(proposal.detail),
         // Clients sort by this text; the order here is that of likelihood.
         sort_text: Some(format!("{index:04}")),
-        text_edit: Some(CompletionTextEdit::Edit(TextEdit::new(scene.range(replaces), proposal.label.clone()))),
+        text_edit: Some(CompletionTextEdit::Edit(TextEdit::new(
+            scene.range(replaces),
+            proposal.label.clone(),
+        ))),
         label: proposal.label,
         ..CompletionItem::default()
     }
@@ -56,23 +66,40 @@ fn files(scene: &Scene, path: &Path, written: &str, replaces: Span) -> Vec<Compl
     let Some(folder) = path.parent().map(|parent| parent.join(folder)) else {
         return Vec::new();
     };
-    let entries = std::fs::read_dir(folder).into_iter().flatten().flatten().take(LARGEST_FOLDER);
-    let mut found: Vec<CompletionItem> = entries.filter_map(|entry| file(scene, &entry, replaces)).collect();
+    let entries = std::fs::read_dir(folder)
+        .into_iter()
+        .flatten()
+        .flatten()
+        .take(LARGEST_FOLDER);
+    let mut found: Vec<CompletionItem> = entries
+        .filter_map(|entry| file(scene, &entry, replaces))
+        .collect();
     found.sort_by(|one, other| one.label.cmp(&other.label));
     found
 }
 
 fn file(scene: &Scene, entry: &std::fs::DirEntry, replaces: Span) -> Option<CompletionItem> {
-    let name = entry.file_name().into_string().ok().filter(|name| !name.starts_with('.'))?;
+    let name = entry
+        .file_name()
+        .into_string()
+        .ok()
+        .filter(|name| !name.starts_with('.'))?;
     let is_folder = entry.file_type().is_ok_and(|sort| sort.is_dir());
     if !is_folder && !name.ends_with(".cren") && !name.ends_with(".csv") {
         return None;
     }
     let label = if is_folder { format!("{name}/") } else { name };
-    let kind = if is_folder { CompletionItemKind::FOLDER } else { CompletionItemKind::FILE };
+    let kind = if is_folder {
+        CompletionItemKind::FOLDER
+    } else {
+        CompletionItemKind::FILE
+    };
     Some(CompletionItem {
         kind: Some(kind),
-        text_edit: Some(CompletionTextEdit::Edit(TextEdit::new(scene.range(replaces), label.clone()))),
+        text_edit: Some(CompletionTextEdit::Edit(TextEdit::new(
+            scene.range(replaces),
+            label.clone(),
+        ))),
         label,
         ..CompletionItem::default()
     })
@@ -81,7 +108,11 @@ fn file(scene: &Scene, entry: &std::fs::DirEntry, replaces: Span) -> Option<Comp
 /// How the statement at a byte is written.
 pub(super) fn help(scene: &Scene, offset: u32) -> Option<SignatureHelp> {
     let found = signature(scene.tree(), offset)?;
-    let active = found.forms.get(found.active).and_then(|form| form.active).and_then(|part| u32::try_from(part).ok());
+    let active = found
+        .forms
+        .get(found.active)
+        .and_then(|form| form.active)
+        .and_then(|part| u32::try_from(part).ok());
     let forms = found.forms.iter().map(|form| SignatureInformation {
         label: form.label.to_owned(),
         documentation: Some(Documentation::String(found.summary.to_owned())),
@@ -107,5 +138,11 @@ fn parameters(scene: &Scene, form: &Form) -> Vec<ParameterInformation> {
         };
         ParameterLabel::LabelOffsets([units(span.start), units(span.end)])
     };
-    form.parts.iter().map(|part| ParameterInformation { label: label(part), documentation: None }).collect()
+    form.parts
+        .iter()
+        .map(|part| ParameterInformation {
+            label: label(part),
+            documentation: None,
+        })
+        .collect()
 }

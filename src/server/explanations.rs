@@ -18,17 +18,27 @@ pub(super) fn page(rule: &str) -> Option<Url> {
     static FOLDER: OnceLock<Option<PathBuf>> = OnceLock::new();
     let folder = FOLDER.get_or_init(|| {
         let written = folder().map(|folder| write(&folder).map(|()| folder));
-        written.and_then(|written| written.inspect_err(|error| log!("no pages about rules: {error}")).ok())
+        written.and_then(|written| {
+            written
+                .inspect_err(|error| log!("no pages about rules: {error}"))
+                .ok()
+        })
     });
     Url::from_file_path(folder.as_ref()?.join(format!("{rule}.md"))).ok()
 }
 
 fn folder() -> Option<PathBuf> {
-    let from = |name: &str| env::var_os(name).filter(|value| !value.is_empty()).map(PathBuf::from);
+    let from = |name: &str| {
+        env::var_os(name)
+            .filter(|value| !value.is_empty())
+            .map(PathBuf::from)
+    };
     let cache = from("XDG_CACHE_HOME").or_else(|| from("LOCALAPPDATA"));
     let cache = cache.or_else(|| from("HOME").map(|home| home.join(".cache")))?;
     let version = env!("CARGO_PKG_VERSION");
-    cache.is_absolute().then(|| cache.join("crenate").join(format!("rules-{version}")))
+    cache
+        .is_absolute()
+        .then(|| cache.join("crenate").join(format!("rules-{version}")))
 }
 
 /// Writes the pages that are not there yet, or not as they should be.

@@ -46,23 +46,38 @@ impl OpenFile {
     /// The document as it is now.
     pub(super) fn new(uri: Url, version: i32, document: &Document) -> Self {
         let tree = Arc::new(read(&document.text()));
-        Self { uri, version, tree, overtaken: Cancel::default(), lines: OnceLock::new() }
+        Self {
+            uri,
+            version,
+            tree,
+            overtaken: Cancel::default(),
+            lines: OnceLock::new(),
+        }
     }
 
     /// The same document after edits; sections that they left alone are shared.
     pub(super) fn after(&self, document: &Document) -> Self {
         let tree = Arc::new(reread(&document.text(), &self.tree));
-        Self { tree, lines: OnceLock::new(), ..self.clone() }
+        Self {
+            tree,
+            lines: OnceLock::new(),
+            ..self.clone()
+        }
     }
 
     /// The same document under another version; its text is still to follow.
     pub(super) fn with_version(&self, version: i32) -> Self {
-        Self { version, overtaken: Cancel::default(), ..self.clone() }
+        Self {
+            version,
+            overtaken: Cancel::default(),
+            ..self.clone()
+        }
     }
 
     /// Its lines, counted when first asked for.
     pub(super) fn lines(&self) -> &LineIndex {
-        self.lines.get_or_init(|| Arc::new(LineIndex::new(&self.tree.text)))
+        self.lines
+            .get_or_init(|| Arc::new(LineIndex::new(&self.tree.text)))
     }
 
     /// Its path.
@@ -85,7 +100,12 @@ impl Files {
         let mut paths: Vec<PathBuf> = self.open.keys().cloned().collect();
         for folder in &self.folders {
             let walk = ignore::WalkBuilder::new(folder).build().flatten();
-            let ours = walk.filter(|entry| entry.path().extension().is_some_and(|extension| extension == "cren"));
+            let ours = walk.filter(|entry| {
+                entry
+                    .path()
+                    .extension()
+                    .is_some_and(|extension| extension == "cren")
+            });
             paths.extend(ours.map(ignore::DirEntry::into_path).take(MOST_FILES));
         }
         paths.sort_unstable();
@@ -100,7 +120,9 @@ impl Files {
     /// Whether a document that belongs to no folder lies at or above the path.
     fn beside_loose_file(&self, path: &Path) -> bool {
         let loose = self.open.keys().filter(|open| !self.in_folder(open));
-        loose.filter_map(|open| open.parent()).any(|folder| path.starts_with(folder))
+        loose
+            .filter_map(|open| open.parent())
+            .any(|folder| path.starts_with(folder))
     }
 }
 
@@ -149,9 +171,11 @@ impl Disk {
     }
 
     fn tree(&self, path: &Path) -> Result<Arc<Tree>, ReadFailure> {
-        kept(&self.trees, path, |bytes| match std::str::from_utf8(&bytes) {
-            Ok(text) => Ok(Arc::new(read(text))),
-            Err(_) => Err(ReadFailure::NotText),
+        kept(&self.trees, path, |bytes| {
+            match std::str::from_utf8(&bytes) {
+                Ok(text) => Ok(Arc::new(read(text))),
+                Err(_) => Err(ReadFailure::NotText),
+            }
         })
     }
 
@@ -177,7 +201,13 @@ fn kept<T: ?Sized>(
         return Ok(Arc::clone(&kept.content));
     }
     let content = make(fs::read(path).map_err(|error| failure(&error))?)?;
-    known.insert(path.to_owned(), Stamped { stamp, content: Arc::clone(&content) });
+    known.insert(
+        path.to_owned(),
+        Stamped {
+            stamp,
+            content: Arc::clone(&content),
+        },
+    );
     Ok(content)
 }
 

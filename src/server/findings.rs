@@ -4,7 +4,8 @@ use std::collections::HashMap;
 use std::path::Path;
 
 use tower_lsp::lsp_types::{
-    CodeDescription, Diagnostic, DiagnosticRelatedInformation, DiagnosticSeverity, DiagnosticTag, Location, NumberOrString, Url,
+    CodeDescription, Diagnostic, DiagnosticRelatedInformation, DiagnosticSeverity, DiagnosticTag,
+    Location, NumberOrString, Url,
 };
 
 use super::abilities::Abilities;
@@ -17,14 +18,26 @@ use crate::text::{LineIndex, Span};
 pub(super) const SOURCE: &str = "crenate";
 
 /// All findings of the file at `path`.
-pub(super) fn of_file(analysis: &Analysis, files: &Files, path: &Path, abilities: &Abilities) -> Vec<Diagnostic> {
+pub(super) fn of_file(
+    analysis: &Analysis,
+    files: &Files,
+    path: &Path,
+    abilities: &Abilities,
+) -> Vec<Diagnostic> {
     let mut locations = Locations::new(analysis, files, abilities);
     let findings = analysis.file(path).map_or(&[][..], |file| &file.findings);
-    findings.iter().filter_map(|finding| diagnostic(finding, &mut locations, abilities)).collect()
+    findings
+        .iter()
+        .filter_map(|finding| diagnostic(finding, &mut locations, abilities))
+        .collect()
 }
 
 /// One finding; `None` where its place is gone.
-pub(super) fn diagnostic(finding: &Finding, locations: &mut Locations<'_>, abilities: &Abilities) -> Option<Diagnostic> {
+pub(super) fn diagnostic(
+    finding: &Finding,
+    locations: &mut Locations<'_>,
+    abilities: &Abilities,
+) -> Option<Diagnostic> {
     let range = locations.of(&finding.place)?.range;
     let message = match &finding.help {
         Some(help) => format!("{}\n{help}", finding.message),
@@ -32,7 +45,10 @@ pub(super) fn diagnostic(finding: &Finding, locations: &mut Locations<'_>, abili
     };
     let related = finding.related.iter().filter_map(|(place, message)| {
         let location = locations.of(place)?;
-        Some(DiagnosticRelatedInformation { location, message: message.clone() })
+        Some(DiagnosticRelatedInformation {
+            location,
+            message: message.clone(),
+        })
     });
     let related: Vec<DiagnosticRelatedInformation> = related.collect();
     Some(Diagnostic {
@@ -43,7 +59,8 @@ pub(super) fn diagnostic(finding: &Finding, locations: &mut Locations<'_>, abili
         source: Some(SOURCE.to_owned()),
         message,
         related_information: (abilities.finding_related && !related.is_empty()).then_some(related),
-        tags: (abilities.finding_unnecessary && finding.unused).then(|| vec![DiagnosticTag::UNNECESSARY]),
+        tags: (abilities.finding_unnecessary && finding.unused)
+            .then(|| vec![DiagnosticTag::UNNECESSARY]),
         data: None,
     })
 }
@@ -72,7 +89,12 @@ pub(super) struct Locations<'a> {
 impl<'a> Locations<'a> {
     /// For places of this analysis.
     pub(super) fn new(analysis: &'a Analysis, files: &'a Files, abilities: &'a Abilities) -> Self {
-        Self { analysis, files, abilities, lines: HashMap::new() }
+        Self {
+            analysis,
+            files,
+            abilities,
+            lines: HashMap::new(),
+        }
     }
 
     /// Where a place is; `None` where it is gone.
@@ -85,7 +107,10 @@ impl<'a> Locations<'a> {
     pub(super) fn span(&mut self, path: &Path, span: Span) -> Option<Location> {
         let encoding = self.abilities.encoding();
         if let Some(file) = self.files.open.get(path) {
-            return Some(Location::new(file.uri.clone(), positions::range(file.lines(), span, encoding)));
+            return Some(Location::new(
+                file.uri.clone(),
+                positions::range(file.lines(), span, encoding),
+            ));
         }
         let uri = self.files.uri(path)?;
         let lines = match self.lines.entry(uri.clone()) {

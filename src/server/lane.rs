@@ -8,8 +8,8 @@ use std::time::{Duration, Instant};
 
 use tokio::sync::oneshot;
 use tower_lsp::lsp_types::{
-    NumberOrString, ProgressParams, ProgressParamsValue, WorkDoneProgress, WorkDoneProgressBegin, WorkDoneProgressCreateParams,
-    WorkDoneProgressEnd, notification, request,
+    NumberOrString, ProgressParams, ProgressParamsValue, WorkDoneProgress, WorkDoneProgressBegin,
+    WorkDoneProgressCreateParams, WorkDoneProgressEnd, notification, request,
 };
 
 use super::abilities::Abilities;
@@ -41,11 +41,19 @@ struct Running {
 
 impl Lane {
     /// Starts the worker.
-    pub(super) fn start(name: &str, owner: Sender<Message>, analyst: Arc<Analyst>, slow: Option<Duration>) -> Self {
+    pub(super) fn start(
+        name: &str,
+        owner: Sender<Message>,
+        analyst: Arc<Analyst>,
+        slow: Option<Duration>,
+    ) -> Self {
         let (jobs, inbox) = channel::<Job>();
         let work = move || {
             while let Ok(job) = inbox.recv() {
-                if owner.send(Message::Checked(checker::check(&analyst, job, slow))).is_err() {
+                if owner
+                    .send(Message::Checked(checker::check(&analyst, job, slow)))
+                    .is_err()
+                {
                     return;
                 }
             }
@@ -53,7 +61,11 @@ impl Lane {
         if let Err(error) = std::thread::Builder::new().name(name.into()).spawn(work) {
             log!("no thread for the work: {error}");
         }
-        Self { queue: VecDeque::new(), jobs, running: None }
+        Self {
+            queue: VecDeque::new(),
+            jobs,
+            running: None,
+        }
     }
 
     /// Stops what is running; its result comes all the same, and is ignored.
@@ -78,7 +90,12 @@ impl Lane {
         }
         if let Some(path) = self.queue.pop_front() {
             let cancel = Cancel::default();
-            let running = Running { path: path.clone(), cancel: cancel.clone(), since: Instant::now(), progress: None };
+            let running = Running {
+                path: path.clone(),
+                cancel: cancel.clone(),
+                since: Instant::now(),
+                progress: None,
+            };
             self.running = Some(running);
             let _ = self.jobs.send(job(path, cancel));
         }
@@ -97,8 +114,16 @@ impl Lane {
     }
 
     /// Tells the user about long work.
-    pub(super) fn show_progress(&mut self, abilities: &Abilities, outgoing: &Outgoing, runtime: &tokio::runtime::Handle) {
-        if self.progress_due(abilities).is_none_or(|due| due > Instant::now()) {
+    pub(super) fn show_progress(
+        &mut self,
+        abilities: &Abilities,
+        outgoing: &Outgoing,
+        runtime: &tokio::runtime::Handle,
+    ) {
+        if self
+            .progress_due(abilities)
+            .is_none_or(|due| due > Instant::now())
+        {
             return;
         }
         let Some(running) = &mut self.running else {
@@ -106,7 +131,12 @@ impl Lane {
         };
         let (sender, done) = oneshot::channel();
         running.progress = Some(sender);
-        let name = running.path.file_name().unwrap_or_default().to_string_lossy().into_owned();
+        let name = running
+            .path
+            .file_name()
+            .unwrap_or_default()
+            .to_string_lossy()
+            .into_owned();
         runtime.spawn(report(outgoing.clone(), name, done));
     }
 }
@@ -114,13 +144,22 @@ impl Lane {
 /// One progress report, from its creation to the end of the work.
 async fn report(outgoing: Outgoing, name: String, done: oneshot::Receiver<()>) {
     let token = NumberOrString::String(format!("crenate/bands/{name}"));
-    let create = WorkDoneProgressCreateParams { token: token.clone() };
-    if outgoing.request::<request::WorkDoneProgressCreate>(create).await.is_none() {
+    let create = WorkDoneProgressCreateParams {
+        token: token.clone(),
+    };
+    if outgoing
+        .request::<request::WorkDoneProgressCreate>(create)
+        .await
+        .is_none()
+    {
         return;
     }
     let tell = |progress| {
         let value = ProgressParamsValue::WorkDone(progress);
-        outgoing.notify::<notification::Progress>(ProgressParams { token: token.clone(), value });
+        outgoing.notify::<notification::Progress>(ProgressParams {
+            token: token.clone(),
+            value,
+        });
     };
     tell(WorkDoneProgress::Begin(WorkDoneProgressBegin {
         title: "crenate".into(),

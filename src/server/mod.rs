@@ -51,7 +51,10 @@ pub struct Settings {
 /// Serves on standard input and output until the client is done; 0 after an orderly end, else 1.
 #[must_use]
 pub fn run() -> ExitCode {
-    let runtime = tokio::runtime::Builder::new_multi_thread().worker_threads(2).enable_all().build();
+    let runtime = tokio::runtime::Builder::new_multi_thread()
+        .worker_threads(2)
+        .enable_all()
+        .build();
     let runtime = match runtime {
         Ok(runtime) => runtime,
         Err(error) => {
@@ -87,7 +90,10 @@ where
         service = service.custom_method("crenate/test/panic", backend::Backend::panic);
     }
     let (service, _) = service
-        .custom_method("window/workDoneProgress/cancel", backend::Backend::stop_work)
+        .custom_method(
+            "window/workDoneProgress/cancel",
+            backend::Backend::stop_work,
+        )
         .finish();
     transport::serve(service, outgoing, parcels, input, output).await
 }

@@ -15,7 +15,10 @@ use std::sync::mpsc::{Receiver, RecvTimeoutError, Sender, channel};
 use std::time::{Duration, Instant};
 
 use tokio::sync::oneshot;
-use tower_lsp::lsp_types::{Diagnostic, PublishDiagnosticsParams, TextDocumentContentChangeEvent, Url, notification, request};
+use tower_lsp::lsp_types::{
+    Diagnostic, PublishDiagnosticsParams, TextDocumentContentChangeEvent, Url, notification,
+    request,
+};
 
 use super::abilities::Abilities;
 use super::checker::{Checked, Depth, Job};
@@ -34,15 +37,26 @@ pub(super) enum Message {
     /// The client is known: what it can do and its folders.
     Start(Arc<Abilities>, Vec<PathBuf>),
     /// A document is opened.
-    Open { uri: Url, version: i32, text: String },
+    Open {
+        uri: Url,
+        version: i32,
+        text: String,
+    },
     /// A document changes.
-    Change { uri: Url, version: i32, changes: Vec<TextDocumentContentChangeEvent> },
+    Change {
+        uri: Url,
+        version: i32,
+        changes: Vec<TextDocumentContentChangeEvent>,
+    },
     /// A document is closed.
     Close { uri: Url },
     /// Files may have changed on the disk.
     Disk(Vec<PathBuf>),
     /// Workspace folders come and go.
-    Folders { added: Vec<PathBuf>, removed: Vec<PathBuf> },
+    Folders {
+        added: Vec<PathBuf>,
+        removed: Vec<PathBuf>,
+    },
     /// Somebody wants to look at a document.
     Want(Want),
     /// Somebody wants to look at all files.
@@ -111,7 +125,11 @@ pub(super) struct Owner(Sender<Message>);
 
 impl Owner {
     /// Starts the owner and its workers. Must be called within a tokio runtime.
-    pub(super) fn start(outgoing: Outgoing, analyst: &Arc<Analyst>, slow: Option<Duration>) -> Self {
+    pub(super) fn start(
+        outgoing: Outgoing,
+        analyst: &Arc<Analyst>,
+        slow: Option<Duration>,
+    ) -> Self {
         let (sender, inbox) = channel();
         let runtime = tokio::runtime::Handle::current();
         let lane = |name| Lane::start(name, sender.clone(), Arc::clone(analyst), slow);
@@ -128,10 +146,10 @@ impl Owner {
             cheap: lane("cheap"),
             dear: lane("bands"),
         };
-        std::thread::Builder::new().name("owner".into()).spawn(move || state.run()).map_or_else(
-            |error| log!("no thread for the documents: {error}"),
-            drop,
-        );
+        std::thread::Builder::new()
+            .name("owner".into())
+            .spawn(move || state.run())
+            .map_or_else(|error| log!("no thread for the documents: {error}"), drop);
         Self(sender)
     }
 
@@ -151,7 +169,11 @@ impl Owner {
     /// Asks to look at a document as it is now.
     pub(super) fn want(&self, uri: &Url, depth: Option<Depth>) -> oneshot::Receiver<Answer> {
         let (reply, receiver) = oneshot::channel();
-        self.tell(Message::Want(Want { uri: uri.clone(), depth, reply }));
+        self.tell(Message::Want(Want {
+            uri: uri.clone(),
+            depth,
+            reply,
+        }));
         receiver
     }
 }
@@ -183,8 +205,13 @@ impl State {
     fn run(mut self) {
         loop {
             let first = match self.next_deadline() {
-                None => self.inbox.recv().map_err(|_| RecvTimeoutError::Disconnected),
-                Some(at) => self.inbox.recv_timeout(at.saturating_duration_since(Instant::now())),
+                None => self
+                    .inbox
+                    .recv()
+                    .map_err(|_| RecvTimeoutError::Disconnected),
+                Some(at) => self
+                    .inbox
+                    .recv_timeout(at.saturating_duration_since(Instant::now())),
             };
             let mut next = match first {
                 Err(RecvTimeoutError::Disconnected) => break,
@@ -220,7 +247,11 @@ impl State {
                 Arc::make_mut(&mut self.files).folders = folders;
             }
             Message::Open { uri, version, text } => self.open(uri, version, &text),
-            Message::Change { uri, version, changes } => self.change(&uri, version, changes),
+            Message::Change {
+                uri,
+                version,
+                changes,
+            } => self.change(&uri, version, changes),
             Message::Close { uri } => self.close(uri),
             Message::Disk(paths) => {
                 self.files.disk.forget(&paths);
@@ -252,7 +283,9 @@ impl State {
         let path = path_of(&uri);
         let document = Document::new(text);
         let file = Arc::new(OpenFile::new(uri, version, &document));
-        Arc::make_mut(&mut self.files).open.insert(path.clone(), Arc::clone(&file));
+        Arc::make_mut(&mut self.files)
+            .open
+            .insert(path.clone(), Arc::clone(&file));
         let record = Record {
             document,
             file,
@@ -265,7 +298,10 @@ impl State {
             owes: false,
         };
         if let Some(before) = self.records.insert(path.clone(), record) {
-            before.waiting.into_iter().for_each(|want| want.send(Answer::Stale));
+            before
+                .waiting
+                .into_iter()
+                .for_each(|want| want.send(Answer::Stale));
         }
         self.focus = Some(path);
         self.touched();
@@ -284,7 +320,10 @@ impl State {
         record.file.overtaken.cancel();
         record.file = Arc::new(record.file.with_version(version));
         record.due = Some(Instant::now() + GRACE);
-        record.waiting.drain(..).for_each(|want| want.send(Answer::Stale));
+        record
+            .waiting
+            .drain(..)
+            .for_each(|want| want.send(Answer::Stale));
         self.focus = Some(path);
         self.touched();
     }
@@ -292,7 +331,10 @@ impl State {
     fn close(&mut self, uri: Url) {
         let path = path_of(&uri);
         if let Some(record) = self.records.remove(&path) {
-            record.waiting.into_iter().for_each(|want| want.send(Answer::Nothing));
+            record
+                .waiting
+                .into_iter()
+                .for_each(|want| want.send(Answer::Nothing));
         }
         let files = Arc::make_mut(&mut self.files);
         files.open.remove(&path);
@@ -314,7 +356,9 @@ impl State {
             record.file = Arc::new(record.file.after(&record.document));
             record.dirty = false;
             let file = Arc::clone(&record.file);
-            Arc::make_mut(&mut self.files).open.insert(path.to_owned(), file);
+            Arc::make_mut(&mut self.files)
+                .open
+                .insert(path.to_owned(), file);
         }
     }
 
@@ -332,11 +376,17 @@ impl State {
         };
         let known = match want.depth {
             None => Some(None),
-            Some(depth) => record.known(depth, self.generation).map(|checked| checked.analysis.clone()),
+            Some(depth) => record
+                .known(depth, self.generation)
+                .map(|checked| checked.analysis.clone()),
         };
         match known {
             Some(analysis) => {
-                want.send(Answer::View(View { files: Arc::clone(&self.files), file: Arc::clone(&record.file), analysis }));
+                want.send(Answer::View(View {
+                    files: Arc::clone(&self.files),
+                    file: Arc::clone(&record.file),
+                    analysis,
+                }));
             }
             None => {
                 record.waiting.push(want);
@@ -355,15 +405,34 @@ impl State {
             self.dear.queue.clear();
         }
         for depth in [Depth::Cheap, Depth::Dear] {
-            let (generation, files, abilities) = (self.generation, Arc::clone(&self.files), Arc::clone(&self.abilities));
-            let job = move |path, cancel| Job { path, depth, generation, files, abilities, cancel };
+            let (generation, files, abilities) = (
+                self.generation,
+                Arc::clone(&self.files),
+                Arc::clone(&self.abilities),
+            );
+            let job = move |path, cancel| Job {
+                path,
+                depth,
+                generation,
+                files,
+                abilities,
+                cancel,
+            };
             self.lane(depth).pump(job);
         }
         let now = Instant::now();
         let due = |record: &Record| record.due.is_some_and(|due| due <= now);
-        let paths: Vec<PathBuf> = self.records.iter().filter(|(_, record)| due(record)).map(|(path, _)| path.clone()).collect();
-        paths.iter().for_each(|path| self.publish(path, Depth::Cheap));
-        self.dear.show_progress(&self.abilities, &self.outgoing, &self.runtime);
+        let paths: Vec<PathBuf> = self
+            .records
+            .iter()
+            .filter(|(_, record)| due(record))
+            .map(|(path, _)| path.clone())
+            .collect();
+        paths
+            .iter()
+            .for_each(|path| self.publish(path, Depth::Cheap));
+        self.dear
+            .show_progress(&self.abilities, &self.outgoing, &self.runtime);
     }
 
     fn lane(&mut self, depth: Depth) -> &mut Lane {
@@ -390,7 +459,11 @@ impl State {
         let Some(record) = self.records.get_mut(&path) else {
             return;
         };
-        let view = View { files: Arc::clone(&self.files), file: Arc::clone(&record.file), analysis: checked.analysis.clone() };
+        let view = View {
+            files: Arc::clone(&self.files),
+            file: Arc::clone(&record.file),
+            analysis: checked.analysis.clone(),
+        };
         for want in std::mem::take(&mut record.waiting) {
             match &view.analysis {
                 _ if want.depth.is_some_and(|wanted| wanted > depth) => record.waiting.push(want),
@@ -419,7 +492,10 @@ impl State {
         let Some(record) = self.records.get_mut(path) else {
             return;
         };
-        let Some(checked) = record.known(depth, self.generation).filter(|checked| checked.analysis.is_some()) else {
+        let Some(checked) = record
+            .known(depth, self.generation)
+            .filter(|checked| checked.analysis.is_some())
+        else {
             // They are shown as soon as they come.
             record.due = None;
             return;
@@ -430,8 +506,12 @@ impl State {
         let before = record.shown.replace((version, diagnostics.clone()));
         let owes = depth == Depth::Dear && std::mem::take(&mut record.owes);
         let elsewhere = depth == Depth::Dear && self.focus.as_deref() != Some(path);
-        let changed = before.as_ref().is_some_and(|(_, before)| *before != diagnostics);
-        if !self.abilities.pulls && before.is_none_or(|before| before != (version, diagnostics.clone())) {
+        let changed = before
+            .as_ref()
+            .is_some_and(|(_, before)| *before != diagnostics);
+        if !self.abilities.pulls
+            && before.is_none_or(|before| before != (version, diagnostics.clone()))
+        {
             self.show(uri, Some(version), diagnostics);
         }
         if owes || elsewhere && changed {
@@ -450,7 +530,12 @@ impl State {
     }
 
     fn show(&self, uri: Url, version: Option<i32>, diagnostics: Vec<Diagnostic>) {
-        self.outgoing.notify::<notification::PublishDiagnostics>(PublishDiagnosticsParams { uri, diagnostics, version });
+        self.outgoing
+            .notify::<notification::PublishDiagnostics>(PublishDiagnosticsParams {
+                uri,
+                diagnostics,
+                version,
+            });
     }
 }
 
@@ -459,7 +544,12 @@ impl Record {
     fn known(&self, depth: Depth, generation: u64) -> Option<&Checked> {
         let current = |checked: &&Checked| checked.generation == generation;
         let dear = self.dear.as_ref().filter(current);
-        dear.or_else(|| self.cheap.as_ref().filter(current).filter(|_| depth == Depth::Cheap))
+        dear.or_else(|| {
+            self.cheap
+                .as_ref()
+                .filter(current)
+                .filter(|_| depth == Depth::Cheap)
+        })
     }
 }
 

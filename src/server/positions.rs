@@ -5,9 +5,21 @@ use tower_lsp::lsp_types::{Position, Range, TextDocumentContentChangeEvent};
 use crate::text::{Document, Edit, Encoding, LineIndex, Place, Span};
 
 /// Applies a change as the client words it.
-pub(super) fn apply(document: &mut Document, change: TextDocumentContentChangeEvent, encoding: Encoding) {
-    let range = change.range.map(|range| (place(range.start), place(range.end)));
-    document.apply(&Edit { range, text: change.text }, encoding);
+pub(super) fn apply(
+    document: &mut Document,
+    change: TextDocumentContentChangeEvent,
+    encoding: Encoding,
+) {
+    let range = change
+        .range
+        .map(|range| (place(range.start), place(range.end)));
+    document.apply(
+        &Edit {
+            range,
+            text: change.text,
+        },
+        encoding,
+    );
 }
 
 /// The client's position of a byte.
@@ -18,7 +30,10 @@ pub(super) fn position(lines: &LineIndex, offset: u32, encoding: Encoding) -> Po
 
 /// The client's range of some bytes.
 pub(super) fn range(lines: &LineIndex, span: Span, encoding: Encoding) -> Range {
-    Range::new(position(lines, span.start, encoding), position(lines, span.end, encoding))
+    Range::new(
+        position(lines, span.start, encoding),
+        position(lines, span.end, encoding),
+    )
 }
 
 /// The byte of a position, clamped to the text.

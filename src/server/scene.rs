@@ -69,6 +69,10 @@ impl Scene {
 
     /// Locations in this file and others.
     pub(super) fn locations(&self) -> Option<Locations<'_>> {
-        Some(Locations::new(self.analysis()?, &self.view.files, &self.abilities))
+        Some(Locations::new(
+            self.analysis()?,
+            &self.view.files,
+            &self.abilities,
+        ))
     }
 }

@@ -1,6 +1,8 @@
 //! Outline of a document and names of the workspace.
 
-use tower_lsp::lsp_types::{DocumentSymbol, DocumentSymbolResponse, Location, SymbolInformation, SymbolKind};
+use tower_lsp::lsp_types::{
+    DocumentSymbol, DocumentSymbolResponse, Location, SymbolInformation, SymbolKind,
+};
 
 use super::abilities::Abilities;
 use super::files::Files;
@@ -17,7 +19,12 @@ const MOST_SYMBOLS: usize = 2000;
 pub(super) fn document(scene: &Scene) -> DocumentSymbolResponse {
     let outline = outline(scene.tree());
     if scene.abilities.nested_symbols {
-        return DocumentSymbolResponse::Nested(outline.into_iter().map(|item| nested(scene, item)).collect());
+        return DocumentSymbolResponse::Nested(
+            outline
+                .into_iter()
+                .map(|item| nested(scene, item))
+                .collect(),
+        );
     }
     let uri = &scene.view.file.uri;
     let locate = |span| Location::new(uri.clone(), scene.range(span));
@@ -40,7 +47,11 @@ fn kind(sort: OutlineSort) -> SymbolKind {
 // The type has a field that it asks not to be used and cannot be made without.
 #[allow(deprecated)]
 fn nested(scene: &Scene, item: Outline) -> DocumentSymbol {
-    let children: Vec<DocumentSymbol> = item.children.into_iter().map(|child| nested(scene, child)).collect();
+    let children: Vec<DocumentSymbol> = item
+        .children
+        .into_iter()
+        .map(|child| nested(scene, child))
+        .collect();
     DocumentSymbol {
         name: item.name,
         detail: Some(item.detail).filter(|detail| !detail.is_empty()),
@@ -55,7 +66,12 @@ fn nested(scene: &Scene, item: Outline) -> DocumentSymbol {
 
 /// The same without nesting, which older clients want and the workspace's list has.
 #[allow(deprecated)]
-fn flatten(item: &Outline, container: Option<&str>, locate: &dyn Fn(Span) -> Location, found: &mut Vec<SymbolInformation>) {
+fn flatten(
+    item: &Outline,
+    container: Option<&str>,
+    locate: &dyn Fn(Span) -> Location,
+    found: &mut Vec<SymbolInformation>,
+) {
     found.push(SymbolInformation {
         name: item.name.clone(),
         kind: kind(item.sort),
@@ -70,14 +86,23 @@ fn flatten(item: &Outline, container: Option<&str>, locate: &dyn Fn(Span) -> Loc
 }
 
 /// The names of the workspace that hold the letters of `query` in their order.
-pub(super) fn workspace(files: &Files, abilities: &Abilities, query: &str) -> Vec<SymbolInformation> {
+pub(super) fn workspace(
+    files: &Files,
+    abilities: &Abilities,
+    query: &str,
+) -> Vec<SymbolInformation> {
     let mut found = Vec::new();
     for path in files.all() {
         let (Ok(tree), Some(uri)) = (files.tree(&path), files.uri(&path)) else {
             continue;
         };
         let lines = LineIndex::new(&tree.text);
-        let locate = |span| Location::new(uri.clone(), positions::range(&lines, span, abilities.encoding()));
+        let locate = |span| {
+            Location::new(
+                uri.clone(),
+                positions::range(&lines, span, abilities.encoding()),
+            )
+        };
         for item in outline(&tree) {
             flatten(&item, None, &locate, &mut found);
         }
@@ -89,5 +114,8 @@ pub(super) fn workspace(files: &Files, abilities: &Abilities, query: &str) -> Ve
 
 fn holds(name: &str, query: &str) -> bool {
     let mut letters = name.chars().flat_map(char::to_lowercase);
-    query.chars().flat_map(char::to_lowercase).all(|wanted| letters.any(|letter| letter == wanted))
+    query
+        .chars()
+        .flat_map(char::to_lowercase)
+        .all(|wanted| letters.any(|letter| letter == wanted))
 }

@@ -1,6 +1,8 @@
 //! Semantic tokens.
 
-use tower_lsp::lsp_types::{SemanticToken, SemanticTokenModifier, SemanticTokenType, SemanticTokens, SemanticTokensLegend};
+use tower_lsp::lsp_types::{
+    SemanticToken, SemanticTokenModifier, SemanticTokenType, SemanticTokens, SemanticTokensLegend,
+};
 
 use super::positions;
 use super::scene::Scene;
@@ -40,13 +42,22 @@ pub(super) fn semantic(scene: &Scene, within: Option<Span>) -> SemanticTokens {
     let mut last = tower_lsp::lsp_types::Position::default();
     let mut data = Vec::new();
     for token in tokens(scene.tree()) {
-        if within.is_some_and(|within| token.span.end < within.start || within.end < token.span.start) {
+        if within
+            .is_some_and(|within| token.span.end < within.start || within.end < token.span.start)
+        {
             continue;
         }
         let range = positions::range(lines, token.span, encoding);
         let line = range.start.line - last.line;
-        let start = if line == 0 { range.start.character - last.character } else { range.start.character };
-        let number = TYPES.iter().position(|(sort, _)| *sort == token.sort).unwrap_or_default();
+        let start = if line == 0 {
+            range.start.character - last.character
+        } else {
+            range.start.character
+        };
+        let number = TYPES
+            .iter()
+            .position(|(sort, _)| *sort == token.sort)
+            .unwrap_or_default();
         data.push(SemanticToken {
             delta_line: line,
             delta_start: start,
@@ -56,5 +67,8 @@ pub(super) fn semantic(scene: &Scene, within: Option<Span>) -> SemanticTokens {
         });
         last = range.start;
     }
-    SemanticTokens { result_id: None, data }
+    SemanticTokens {
+        result_id: None,
+        data,
+    }
 }

@@ -3,8 +3,9 @@
 use std::collections::HashMap;
 
 use tower_lsp::lsp_types::{
-    CodeAction, CodeActionKind, CodeActionOrCommand, CodeActionParams, Diagnostic, Hover, HoverContents, InlayHint, InlayHintLabel,
-    InlayHintTooltip, MarkupContent, MarkupKind, NumberOrString, Range, TextEdit, Url,
+    CodeAction, CodeActionKind, CodeActionOrCommand, CodeActionParams, Diagnostic, Hover,
+    HoverContents, InlayHint, InlayHintLabel, InlayHintTooltip, MarkupContent, MarkupKind,
+    NumberOrString, Range, TextEdit, Url,
 };
 
 use super::edits;
@@ -22,7 +23,10 @@ pub(super) fn hovered(scene: &Scene, offset: u32) -> Option<Hover> {
         true => (MarkupKind::Markdown, found.markdown),
         false => (MarkupKind::PlainText, found.plain),
     };
-    Some(Hover { contents: HoverContents::Markup(MarkupContent { kind, value }), range: Some(scene.range(found.span)) })
+    Some(Hover {
+        contents: HoverContents::Markup(MarkupContent { kind, value }),
+        range: Some(scene.range(found.span)),
+    })
 }
 
 /// The notes within some bytes.
@@ -33,7 +37,9 @@ pub(super) fn hinted(scene: &Scene, within: Span) -> Option<Vec<InlayHint>> {
         label: InlayHintLabel::String(hint.label),
         kind: None,
         text_edits: None,
-        tooltip: Some(hint.tooltip).filter(|tooltip| !tooltip.is_empty()).map(InlayHintTooltip::String),
+        tooltip: Some(hint.tooltip)
+            .filter(|tooltip| !tooltip.is_empty())
+            .map(InlayHintTooltip::String),
         padding_left: Some(true),
         padding_right: Some(false),
         data: None,
@@ -42,7 +48,10 @@ pub(super) fn hinted(scene: &Scene, within: Span) -> Option<Vec<InlayHint>> {
 }
 
 /// What can be done within the range that the client names.
-pub(super) fn offered(scene: &Scene, params: &CodeActionParams) -> Option<Vec<CodeActionOrCommand>> {
+pub(super) fn offered(
+    scene: &Scene,
+    params: &CodeActionParams,
+) -> Option<Vec<CodeActionOrCommand>> {
     // A client that knows only commands would need one that we carry out: it gets none.
     if !scene.abilities.action_literals {
         return Some(Vec::new());
@@ -52,8 +61,18 @@ pub(super) fn offered(scene: &Scene, params: &CodeActionParams) -> Option<Vec<Co
         only.is_none_or(|only| only.iter().any(|wanted| includes(wanted, kind)))
     };
     let found = actions(scene.analysis()?, &scene.path(), scene.span(params.range));
-    let found = found.into_iter().filter(|action| wanted(&kind(action.kind)));
-    Some(found.filter_map(|action| Some(CodeActionOrCommand::CodeAction(worded(scene, params, action)?))).collect())
+    let found = found
+        .into_iter()
+        .filter(|action| wanted(&kind(action.kind)));
+    Some(
+        found
+            .filter_map(|action| {
+                Some(CodeActionOrCommand::CodeAction(worded(
+                    scene, params, action,
+                )?))
+            })
+            .collect(),
+    )
 }
 
 /// Kinds are paths: `refactor` includes `refactor.extract`.
@@ -75,14 +94,24 @@ fn worded(scene: &Scene, params: &CodeActionParams, action: Action) -> Option<Co
     let mut changes: HashMap<Url, Vec<TextEdit>> = HashMap::new();
     for (path, span, text) in action.edits {
         let location = locations.span(&path, span)?;
-        changes.entry(location.uri).or_default().push(TextEdit::new(location.range, text));
+        changes
+            .entry(location.uri)
+            .or_default()
+            .push(TextEdit::new(location.range, text));
     }
-    let mends: Vec<Diagnostic> = action.rule.map(|rule| mended(params, rule)).unwrap_or_default();
+    let mends: Vec<Diagnostic> = action
+        .rule
+        .map(|rule| mended(params, rule))
+        .unwrap_or_default();
     Some(CodeAction {
         title: action.title,
         kind: Some(kind(action.kind)),
         diagnostics: (!mends.is_empty()).then_some(mends),
-        edit: Some(edits::workspace_edit(changes, &scene.view.files, &scene.abilities)),
+        edit: Some(edits::workspace_edit(
+            changes,
+            &scene.view.files,
+            &scene.abilities,
+        )),
         is_preferred: (scene.abilities.action_preferred && action.preferred).then_some(true),
         ..CodeAction::default()
     })
@@ -94,7 +123,13 @@ fn mended(params: &CodeActionParams, rule: &str) -> Vec<Diagnostic> {
         let named = matches!(&diagnostic.code, Some(NumberOrString::String(code)) if code == rule);
         named && touch(diagnostic.range, params.range)
     };
-    params.context.diagnostics.iter().filter(meant).cloned().collect()
+    params
+        .context
+        .diagnostics
+        .iter()
+        .filter(meant)
+        .cloned()
+        .collect()
 }
 
 fn touch(one: Range, other: Range) -> bool {
@@ -104,5 +139,7 @@ fn touch(one: Range, other: Range) -> bool {
 /// The edits that bring the document into the standard layout.
 pub(super) fn formatted(scene: &Scene) -> Vec<TextEdit> {
     let edits = editor_format::edits(scene.tree()).into_iter();
-    edits.map(|(span, text)| TextEdit::new(scene.range(span), text)).collect()
+    edits
+        .map(|(span, text)| TextEdit::new(scene.range(span), text))
+        .collect()
 }

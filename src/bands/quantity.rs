@@ -1,0 +1,240 @@
+//! The quantities of `measure` and `require`: values, error bounds and exact derivatives, and expressions over them.
+
+use std::sync::Arc;
+
+use crate::model::{Crystal, CrystalRef, Dual, ParameterId, Quantity, QuantityKind, TargetFormula};
+use crate::numerics;
+
+use super::chain::{Chain, budget, unsolved};
+use super::filling::Filled;
+use super::{Extremum, Feature, Measured, Solution, Solver, Unsolved, solve};
+
+/// Why a quantity has no value.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub(super) enum Untested {
+    /// The work was overtaken.
+    Cancelled,
+    /// For the reason given.
+    Because(String),
+}
+
+impl From<Unsolved> for Untested {
+    fn from(unsolved: Unsolved) -> Self {
+        match unsolved {
+            Unsolved::Cancelled => Self::Cancelled,
+            Unsolved::BrokenModel => because("the model has errors"),
+            Unsolved::Dimension(dimension) => {
+                Self::Because(format!("bands in {dimension} dimensions are not solved"))
+            }
+            Unsolved::NotConverged(why) => Self::Because(format!("the bands are not converged: {why}")),
+        }
+    }
+}
+
+fn because(why: &str) -> Untested {
+    Untested::Because(why.to_string())
+}
+
+/// A value with its error bound and derivatives.
+#[derive(Clone, Debug, Default)]
+pub(super) struct Leaf {
+    pub value: Measured,
+    pub slopes: Vec<(ParameterId, f64)>,
+}
+
+/// The crystals that an expression may speak of, at one setting of the tolerances.
+pub(super) type Crystals<'a> = dyn Fn(CrystalRef) -> Option<Arc<Crystal>> + 'a;
+
+/// What evaluates expressions: the solver, the crystals, the hook, and whether derivatives are wanted.
+pub(super) struct Evaluation<'a> {
+    pub solver: &'a Solver,
+    pub crystals: &'a Crystals<'a>,
+    pub cancelled: &'a (dyn Fn() -> bool + Sync),
+    pub with_slopes: bool,
+}
+
+/// Leaves are numbered from here while an expression is evaluated; parameters are hashes far above.
+const FIRST_LEAF: u64 = 0x10;
+
+impl Evaluation<'_> {
+    /// An expression's value, error bound and, where wanted, derivatives.
+    pub fn formula(&self, formula: &TargetFormula) -> Result<Leaf, Untested> {
+        let mut leaves: Vec<Leaf> = Vec::new();
+        let mut failure = None;
+        let value = formula.evaluate(&mut |quantity| {
+            let leaf = self.quantity(quantity).map_err(|untested| failure = Some(untested)).ok()?;
+            let id = ParameterId(FIRST_LEAF + leaves.len() as u64);
+            let number = Dual::parameter(leaf.value.value, id);
+            leaves.push(leaf);
+            Some(number)
+        });
+        match (value, failure) {
+            (_, Some(untested)) => Err(untested),
+            (Some(value), None) if value.value.is_finite() => Ok(collect(&value, &leaves)),
+            _ => Err(because("the expression has no finite value")),
+        }
+    }
+
+    fn quantity(&self, quantity: &Quantity) -> Result<Leaf, Untested> {
+        let crystal = (self.crystals)(quantity.of).ok_or_else(|| because("its crystal cannot be read"))?;
+        let solution = self.solver.solve(&crystal, self.cancelled)?;
+        let mut leaf = Leaf { value: self.value(&crystal, &solution, &quantity.kind)?, slopes: Vec::new() };
+        if self.with_slopes {
+            leaf.slopes = self.slopes(&crystal, &solution, &quantity.kind)?;
+        }
+        Ok(leaf)
+    }
+
+    fn value(&self, crystal: &Crystal, solution: &Solution, kind: &QuantityKind) -> Result<Measured, Untested> {
+        let band = |number: &usize| {
+            solution.bands.get(number.wrapping_sub(1)).ok_or_else(|| too_few(*number, solution.bands.len()))
+        };
+        match kind {
+            QuantityKind::Gap(number) => solution
+                .gaps
+                .get(number.wrapping_sub(1))
+                .map(|gap| gap.size)
+                .ok_or_else(|| too_few(*number, solution.gaps.len())),
+            QuantityKind::Width(number) => Ok(band(number)?.width),
+            QuantityKind::Bottom(number) => Ok(band(number)?.bottom.energy),
+            QuantityKind::Top(number) => Ok(band(number)?.top.energy),
+            QuantityKind::MassBottom(number) => mass(&band(number)?.bottom),
+            QuantityKind::MassTop(number) => mass(&band(number)?.top),
+            QuantityKind::Fermi => solution.fermi.ok_or_else(|| no_fermi(crystal, solution)),
+            QuantityKind::Level(number, k) => {
+                band(number)?;
+                self.level(crystal, *number, k)
+            }
+            QuantityKind::Hopping(number, hop) => {
+                band(number)?;
+                self.hopping(crystal, *number, hop)
+            }
+        }
+    }
+
+    fn level(&self, crystal: &Crystal, number: usize, k: &[f64]) -> Result<Measured, Untested> {
+        let budget = budget(self.cancelled);
+        let chain = Chain::new(crystal, &budget)?;
+        let level = numerics::level(&chain.cell, number - 1, turn(k), &budget).map_err(unsolved)?;
+        Ok(chain.energy(level))
+    }
+
+    fn hopping(&self, crystal: &Crystal, number: usize, hop: &[i64]) -> Result<Measured, Untested> {
+        let budget = budget(self.cancelled);
+        let chain = Chain::new(crystal, &budget)?;
+        let cells = hop.first().map_or(0, |cells| cells.unsigned_abs());
+        let cells = usize::try_from(cells).map_err(|_| because("the hop is too far"))?;
+        let _ = (chain, number, cells);
+        Err(because("hopping is not computed yet"))
+    }
+
+    /// Exact derivatives of a quantity; masses and hoppings have none here and give an empty list.
+    fn slopes(
+        &self,
+        crystal: &Crystal,
+        solution: &Solution,
+        kind: &QuantityKind,
+    ) -> Result<Vec<(ParameterId, f64)>, Untested> {
+        let budget = budget(self.cancelled);
+        let feature = match kind {
+            QuantityKind::Gap(number) => Feature::Gap(*number),
+            QuantityKind::Width(number) => Feature::Width(*number),
+            QuantityKind::Bottom(number) => Feature::Bottom(*number),
+            QuantityKind::Top(number) => Feature::Top(*number),
+            QuantityKind::Level(number, k) => {
+                return Ok(Chain::new(crystal, &budget)?.level_slopes(*number, turn(k), &budget)?);
+            }
+            QuantityKind::Fermi => return self.fermi_slopes(crystal, solution),
+            QuantityKind::MassBottom(_) | QuantityKind::MassTop(_) | QuantityKind::Hopping(..) => {
+                return Ok(Vec::new());
+            }
+        };
+        Ok(Chain::new(crystal, &budget)?.feature_slopes(feature, &budget)?)
+    }
+
+    /// The Fermi level of a part-filled band moves with the level at its k; that of whole bands with the middle of the gap.
+    fn fermi_slopes(&self, crystal: &Crystal, solution: &Solution) -> Result<Vec<(ParameterId, f64)>, Untested> {
+        let budget = budget(self.cancelled);
+        let chain = Chain::new(crystal, &budget)?;
+        match solve::filled(crystal) {
+            Some(Filled::Part(part)) => {
+                let band = part.floor() as usize;
+                let share = part - part.floor();
+                // Levels fill from the bottom: at k = 0 in odd bands, at the zone edge in even ones.
+                let share = if band % 2 == 0 { share } else { 1.0 - share };
+                Ok(chain.level_slopes(band + 1, share * std::f64::consts::PI, &budget)?)
+            }
+            Some(Filled::Whole(whole)) => {
+                let top = chain.feature_slopes(Feature::Top(whole), &budget)?;
+                let bottom = chain.feature_slopes(Feature::Bottom(whole + 1), &budget)?;
+                Ok(sum_slopes(&[(0.5, &top), (0.5, &bottom)]))
+            }
+            _ => Err(no_fermi(crystal, solution)),
+        }
+    }
+}
+
+/// ka of a point given in fractions of the reciprocal vector.
+fn turn(k: &[f64]) -> f64 {
+    2.0 * std::f64::consts::PI * k.first().copied().unwrap_or(0.0)
+}
+
+fn mass(extremum: &Extremum) -> Result<Measured, Untested> {
+    let mass = extremum.mass.ok_or_else(|| because("there is no mass where two bands touch"))?;
+    Ok(Measured { value: mass.value.abs(), uncertainty: mass.uncertainty })
+}
+
+fn too_few(number: usize, solved: usize) -> Untested {
+    Untested::Because(format!("it speaks of band {number}, and {solved} bands are solved"))
+}
+
+fn no_fermi(crystal: &Crystal, solution: &Solution) -> Untested {
+    if crystal.bosons {
+        return because("bosons have no Fermi level");
+    }
+    match crystal.filling {
+        None => because("the crystal says no `filling`"),
+        Some(_) => Untested::Because(format!("the filling is not within the {} bands solved", solution.bands.len())),
+    }
+}
+
+/// Replaces the leaves in a value's derivatives by what they depend on.
+fn collect(value: &Dual, leaves: &[Leaf]) -> Leaf {
+    let mut uncertainty = 4.0 * f64::EPSILON * value.value.abs();
+    let mut parts: Vec<(f64, &[(ParameterId, f64)])> = Vec::new();
+    let mut direct = Vec::new();
+    for (id, slope) in &value.slopes {
+        let leaf = id.0.checked_sub(FIRST_LEAF).and_then(|index| leaves.get(usize::try_from(index).ok()?));
+        match leaf {
+            Some(leaf) => {
+                uncertainty += slope.abs() * leaf.value.uncertainty;
+                parts.push((*slope, &leaf.slopes));
+            }
+            None => direct.push((*id, *slope)),
+        }
+    }
+    if let [(only, slopes)] = parts.as_slice()
+        && direct.is_empty()
+        && *only == 1.0
+        && value.slopes.len() == 1
+        && leaves.len() == 1
+    {
+        return Leaf { value: leaves.first().map_or_else(Measured::default, |leaf| leaf.value), slopes: slopes.to_vec() };
+    }
+    parts.push((1.0, &direct));
+    let slopes = sum_slopes(&parts);
+    Leaf { value: Measured { value: value.value, uncertainty }, slopes }
+}
+
+/// Σ factor · slopes, sorted by parameter.
+pub(super) fn sum_slopes<T: AsRef<[(ParameterId, f64)]>>(parts: &[(f64, T)]) -> Vec<(ParameterId, f64)> {
+    let mut sum = rustc_hash::FxHashMap::default();
+    for (factor, slopes) in parts {
+        for (id, slope) in slopes.as_ref() {
+            *sum.entry(*id).or_insert(0.0) += factor * slope;
+        }
+    }
+    let mut sum: Vec<_> = sum.into_iter().collect();
+    sum.sort_by_key(|(id, _)| *id);
+    sum
+}

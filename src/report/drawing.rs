@@ -1,0 +1,161 @@
+//! A small picture of a one-dimensional cell in plain characters: where the potential stands above an
+//! energy, and which energies are bands.
+//!
+//! Energy runs upward. `░` is below the potential, `━` a band where the carrier may be, `╌` the
+//! same band inside a wall, where it tunnels. Two cells are drawn, as walls only show between wells.
+
+use super::units::Trade;
+use crate::model::Dimension;
+
+/// Characters for two cells.
+const COLUMNS: usize = 44;
+/// Lines.
+const ROWS: usize = 9;
+/// Bands drawn at most.
+const BANDS: usize = 3;
+
+/// The picture, at most 60 columns wide and 10 lines high, or nothing where there is nothing to see.
+///
+/// `potential` samples one cell evenly, `bands` are (bottom, top); all in joule.
+#[must_use]
+pub fn draw(potential: &[f64], bands: &[(f64, f64)], trade: &Trade) -> Vec<String> {
+    let bands = bands.get(..BANDS.min(bands.len())).unwrap_or(bands);
+    let Some(frame) = Frame::around(potential, bands) else {
+        return Vec::new();
+    };
+    (0..ROWS)
+        .map(|row| {
+            let line = frame.line(row, potential, bands);
+            let label = frame.label(row, bands, trade);
+            format!("{line} {label}").trim_end().to_owned()
+        })
+        .collect()
+}
+
+/// The energies shown.
+struct Frame {
+    lowest: f64,
+    step: f64,
+}
+
+impl Frame {
+    fn around(potential: &[f64], bands: &[(f64, f64)]) -> Option<Self> {
+        let highest_band = bands.last()?.1;
+        let finite = potential.iter().copied().filter(|value| value.is_finite());
+        let floor = finite.clone().fold(bands.first()?.0, f64::min);
+        let roof = finite.fold(highest_band, f64::max);
+        // A wall far above the bands is cut, so that the bands stay apart.
+        let roof = roof.min(highest_band + 0.5 * (highest_band - floor));
+        let step = (roof - floor) / (ROWS as f64 - 0.5);
+        (step > 0.0 && step.is_finite()).then_some(Self {
+            lowest: floor - 0.25 * step,
+            step,
+        })
+    }
+
+    /// The energies of a row, counted from the top.
+    fn span(&self, row: usize) -> (f64, f64) {
+        let from_below = (ROWS - 1 - row) as f64;
+        let low = self.lowest + from_below * self.step;
+        (low, low + self.step)
+    }
+
+    /// The bands that a row shows: those that reach its middle, or lie wholly between two middles.
+    fn bands_in(&self, row: usize, bands: &[(f64, f64)]) -> Vec<usize> {
+        let (low, high) = self.span(row);
+        let middle = 0.5 * (low + high);
+        let numbered = bands.iter().enumerate();
+        numbered
+            .filter(|(_, (bottom, top))| {
+                let centre = 0.5 * (bottom + top);
+                (*bottom <= middle && middle <= *top) || (low <= centre && centre < high)
+            })
+            .map(|(index, _)| index)
+            .collect()
+    }
+
+    fn line(&self, row: usize, potential: &[f64], bands: &[(f64, f64)]) -> String {
+        let (low, high) = self.span(row);
+        let middle = 0.5 * (low + high);
+        let band = !self.bands_in(row, bands).is_empty();
+        let cell = COLUMNS / 2;
+        (0..COLUMNS)
+            .map(|column| {
+                let sample = (column % cell) * potential.len() / cell;
+                let wall = potential.get(sample).is_some_and(|value| *value > middle);
+                match (band, wall) {
+                    (true, true) => '╌',
+                    (true, false) => '━',
+                    (false, true) => '░',
+                    (false, false) => ' ',
+                }
+            })
+            .collect()
+    }
+
+    /// The band whose middle a row holds, with its middle energy.
+    fn label(&self, row: usize, bands: &[(f64, f64)], trade: &Trade) -> String {
+        let (low, high) = self.span(row);
+        let numbered = bands.iter().enumerate();
+        let here: Vec<String> = numbered
+            .filter(|(_, (bottom, top))| {
+                let centre = 0.5 * (bottom + top);
+                low <= centre && centre < high
+            })
+            .map(|(index, _)| (index + 1).to_string())
+            .collect();
+        let told = match here.as_slice() {
+            [] => return String::new(),
+            [one] => bands
+                .get(one.parse::<usize>().unwrap_or(1) - 1)
+                .map(|(bottom, top)| trade.tell_exact(0.5 * (bottom + top), Dimension::ENERGY)),
+            _ => None,
+        };
+        match told {
+            Some(told) => format!("{} {told}", here.join(" ")),
+            None => here.join(" "),
+        }
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::report::units::ELECTRONVOLT;
+
+    fn wells() -> Vec<f64> {
+        let wall = 0.235 * ELECTRONVOLT;
+        (0..120)
+            .map(|sample| if sample < 81 { 0.0 } else { wall })
+            .collect()
+    }
+
+    #[test]
+    fn a_picture_fits_a_hover() {
+        let bands = [(0.048, 0.080), (0.19, 0.32), (0.41, 0.80)];
+        let joule: Vec<(f64, f64)> = bands
+            .iter()
+            .map(|(bottom, top)| (bottom * ELECTRONVOLT, top * ELECTRONVOLT))
+            .collect();
+        let lines = draw(&wells(), &joule, &Trade::default());
+        assert!(!lines.is_empty() && lines.len() <= 10, "{lines:#?}");
+        assert!(
+            lines.iter().all(|line| line.chars().count() <= 60),
+            "{lines:#?}"
+        );
+        let text = lines.join("\n");
+        for band in ["1 64 meV", "2 255 meV", "3 605 meV"] {
+            assert!(text.contains(band), "{band} in\n{text}");
+        }
+        assert!(
+            text.contains('╌') && text.contains('━') && text.contains('░'),
+            "{text}"
+        );
+    }
+
+    #[test]
+    fn nothing_is_drawn_of_nothing() {
+        assert!(draw(&[0.0; 8], &[], &Trade::default()).is_empty());
+        assert!(draw(&[f64::NAN], &[(0.0, 0.0)], &Trade::default()).is_empty());
+    }
+}

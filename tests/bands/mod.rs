@@ -1,0 +1,73 @@
+//! Text in memory → solved crystals.
+
+use std::path::{Path, PathBuf};
+use std::sync::Arc;
+
+use crenate::bands::{Assessment, MeasureValue, Solution, Solver, Unsolved};
+use crenate::model::{Built, CrystalRef, FileSource, ReadFailure, Setting, World, build_crystal};
+use crenate::syntax::{Tree, read};
+
+/// One elementary charge: joule per electronvolt (exact in the SI).
+pub const EV: f64 = 1.602_176_634e-19;
+
+/// A single file in memory.
+struct Memory(Arc<Tree>);
+
+impl FileSource for Memory {
+    fn tree(&self, path: &Path) -> Result<Arc<Tree>, ReadFailure> {
+        if path == Path::new("model.cren") { Ok(Arc::clone(&self.0)) } else { Err(ReadFailure::NotFound) }
+    }
+    fn bytes(&self, _: &Path) -> Result<Arc<[u8]>, ReadFailure> {
+        Err(ReadFailure::NotFound)
+    }
+    fn inside(&self, _: &Path) -> bool {
+        true
+    }
+}
+
+/// The crystals of a text.
+pub struct Bench {
+    world: World,
+    source: Memory,
+    pub solver: Solver,
+}
+
+impl Bench {
+    pub fn new(text: &str) -> Self {
+        let source = Memory(Arc::new(read(text)));
+        let world = World::gather(&source, &[PathBuf::from("model.cren")]);
+        Self { world, source, solver: Solver::default() }
+    }
+
+    pub fn crystal_ref(&self, index: usize) -> CrystalRef {
+        let file = self.world.file_at(Path::new("model.cren")).expect("the file").id;
+        let section = self.world.crystals(file)[index].0;
+        CrystalRef { file, section }
+    }
+
+    pub fn build(&self, index: usize, setting: &Setting) -> Built {
+        build_crystal(&self.world, self.crystal_ref(index), setting, &self.source)
+    }
+
+    pub fn solve_at(&self, index: usize, setting: &Setting) -> Arc<Solution> {
+        let built = self.build(index, setting);
+        assert!(!built.crystal.broken, "{:#?}", built.troubles);
+        self.solver.solve(&built.crystal, &|| false).expect("solved bands")
+    }
+
+    pub fn solve(&self, index: usize) -> Arc<Solution> {
+        self.solve_at(index, &Setting::default())
+    }
+
+    pub fn assess(&self, index: usize) -> (Vec<Assessment>, Vec<MeasureValue>) {
+        let built = self.build(index, &Setting::default());
+        assert!(!built.crystal.broken, "{:#?}", built.troubles);
+        let rebuild = |of: CrystalRef, setting: &Setting| {
+            let built = build_crystal(&self.world, of, setting, &self.source);
+            (!built.crystal.broken).then(|| Arc::new(built.crystal))
+        };
+        let assessed: Result<_, Unsolved> =
+            self.solver.assess(self.crystal_ref(index), &Arc::new(built.crystal), &rebuild, &|| false);
+        assessed.expect("assessed targets")
+    }
+}
