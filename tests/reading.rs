@@ -9,6 +9,8 @@ mod broken;
 mod places;
 #[path = "reading/properties.rs"]
 mod properties;
+#[path = "reading/reference.rs"]
+mod reference;
 #[path = "reading/shape.rs"]
 mod shape;
 #[path = "reading/statements.rs"]

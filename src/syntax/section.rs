@@ -10,7 +10,9 @@ use rustc_hash::FxHasher;
 use super::build::{self, Builder, Failure};
 use super::grammar::{LineParser, Rule, line_rule};
 use super::split::{SplitLine, is_blank, logical_lines, span};
-use super::tokens::{Token, TokenKind, instead_of, is_name_start, tokens, word_length};
+use super::tokens::{
+    Token, TokenKind, instead_of, is_name_start, stray_joiner, tokens, word_length,
+};
 use super::wording::{Stop, found};
 use super::{Problem, ProblemKind, Section, SectionKind, Statement, StatementKind, words};
 use crate::text::Span;
@@ -70,6 +72,9 @@ fn read_line(
         offset: place.start as usize,
     };
     let (word, rule) = line.opening(section.kind, heading)?;
+    if let Some(token) = stray_joiner(content) {
+        return Err(stray(line.offset + token.start, token.text));
+    }
     line.hold_bracket_limit()?;
     let pairs = LineParser::parse(rule, content).map_err(|error| line.refused(word, &error))?;
     let pair = pairs.into_iter().next().ok_or_else(|| line.broken())?;
@@ -208,7 +213,10 @@ impl<'t> LineText<'t> {
         };
         let tried = match &error.variant {
             ErrorVariant::ParsingError { positives, .. } => positives.as_slice(),
-            ErrorVariant::CustomError { .. } => &[],
+            // The parser's own guard of the thread's stack.
+            ErrorVariant::CustomError { .. } => {
+                return self.problem(0, self.content.len(), ProblemKind::TooDeep);
+            }
         };
         let mut before = Vec::new();
         let mut offending = None;

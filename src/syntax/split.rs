@@ -8,6 +8,7 @@ use crate::text::Span;
 
 use super::Line;
 use super::SectionKind;
+use super::tokens::is_name_character;
 
 /// The byte-order mark, skipped at the start of a text.
 pub(super) const BYTE_ORDER_MARK: char = '\u{feff}';
@@ -65,10 +66,7 @@ fn heading_kind(rest: &str, first_of_text: bool) -> Option<SectionKind> {
         Some(b'c') => (SectionKind::Crystal, line.strip_prefix("crystal")?),
         _ => return None,
     };
-    let goes_on = behind
-        .chars()
-        .next()
-        .is_some_and(unicode_ident::is_xid_continue);
+    let goes_on = behind.chars().next().is_some_and(is_name_character);
     (!goes_on).then_some(kind)
 }
 

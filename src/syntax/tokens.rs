@@ -128,9 +128,29 @@ pub(super) fn is_name_start(character: char) -> bool {
     character == '_' || unicode_ident::is_xid_start(character)
 }
 
+/// Middle dots and invisible joiners, which Unicode lets continue a name: here the first are signs for `*`, and the
+/// second would make two names that look the same.
+const NOT_IN_NAMES: [char; 6] = [
+    '·', '\u{387}', '\u{30fb}', '\u{ff65}', '\u{200c}', '\u{200d}',
+];
+
+/// Whether a name may go on with `character`.
+pub(super) fn is_name_character(character: char) -> bool {
+    unicode_ident::is_xid_continue(character) && !NOT_IN_NAMES.contains(&character)
+}
+
+/// The first token that the grammar alone would take for a part of a name.
+pub(super) fn stray_joiner(content: &str) -> Option<Token<'_>> {
+    if content.is_ascii() || !content.contains(NOT_IN_NAMES) {
+        return None;
+    }
+    tokens(content)
+        .find(|token| token.kind == TokenKind::Stray && token.text.starts_with(NOT_IN_NAMES))
+}
+
 /// The length of the name that `rest` begins with.
 pub(super) fn word_length(rest: &str) -> usize {
-    rest.find(|character| !unicode_ident::is_xid_continue(character))
+    rest.find(|character| !is_name_character(character))
         .unwrap_or(rest.len())
 }
 
@@ -194,7 +214,7 @@ fn plain_superscript(character: char) -> Option<char> {
 
 /// Characters that are often pasted or typed for one that the format reads.
 const INSTEAD: &[(&str, &str)] = &[
-    ("×·⋅∙•∗✕✖", "*"),
+    ("×·\u{387}⋅∙•∗✕✖", "*"),
     ("÷∕⁄", "/"),
     ("–—‐‑‒﹣－", "-"),
     ("＋", "+"),

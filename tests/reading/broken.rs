@@ -11,6 +11,7 @@ fn rendered(text: &str) -> String {
             let line = section.line_at(problem.span.start).unwrap();
             let source = line.span.of(&section.text).trim_end();
             let before = &section.text[line.span.start as usize..problem.span.start as usize];
+            let before = before.rsplit(['\n', '\r']).next().unwrap();
             let marked = problem.span.of(&section.text).chars().count().max(1);
             rendered += &format!(
                 "{source}\n{}{}\n{}\n\n",

@@ -139,6 +139,19 @@ fn nesting_has_a_limit_and_never_ends_the_process() {
     assert!(too_deep(&format!("let a = 1{}", "+1".repeat(100_000))));
     assert!(too_deep(&format!("let a = 1{}", "^1".repeat(100_000))));
     assert!(too_deep(&format!("let a = 1{}", "^-1".repeat(100_000))));
+    // Unclosed nests within the limit are refused without trying each level more than a few times.
+    for opener in [
+        "(",
+        "f(",
+        "1^(",
+        "2*-(",
+        "level 1 at (",
+        "(1, ",
+        "gap 1 of a + (",
+    ] {
+        let text = format!("crystal a\nmeasure b = {}", opener.repeat(256));
+        assert_eq!(read(&text).entries[1].section.problems.len(), 1, "{opener}");
+    }
     let terms = format!("let a = 1{}", "+2*x^2".repeat(400));
     assert_eq!(read(&terms).entries[0].section.statements.len(), 1);
     let calls = format!("let a = {}1{}", "f(".repeat(256), ")".repeat(256));
