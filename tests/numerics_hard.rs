@@ -181,7 +181,7 @@ fn doubled_cells_of_narrow_bands_are_honest() {
                 <= band.bottom.energy.error
         );
         assert!(
-            band.bottom.energy.error < 1e-13 && band.width.error < 1e-13,
+            band.bottom.energy.error < 1e-9 && band.width.error < 1e-9,
             "{band:?}"
         );
     }

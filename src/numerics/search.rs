@@ -157,21 +157,33 @@ impl<'a, T: Scalar> Finder<'a, T> {
         Err(SolveError::NoBracket)
     }
 
+    /// Downwards from the lowest potential until no level lies below; towards, never past, the energy
+    /// at which a mass would vanish.
     fn reach_down(&mut self, step: f64) -> Result<(), SolveError> {
+        let lowest = self.ready.least_energy;
         let mut below = self.ready.floor - 1e-3 * self.ready.kinetic_scale();
+        if below <= lowest {
+            below = lowest + 1e-6 * (lowest.abs() + self.ready.kinetic_scale());
+        }
         let mut step = step.max(self.ready.floor.abs() * 1e-12);
         for _ in 0..PATIENCE {
-            let lowest = self.ready.least_energy;
-            if below <= lowest {
-                return Err(SolveError::MassOutOfRange);
-            }
             if self.read(T::constant(below))?.states <= 0.0 {
                 return Ok(());
             }
-            below -= step;
+            let next = below - step;
             step *= 2.0;
+            below = if next > lowest {
+                next
+            } else {
+                0.5 * (below + lowest)
+            };
             if !below.is_finite() {
                 break;
+            }
+            if lowest.is_finite()
+                && below - lowest <= 1e-9 * (lowest.abs() + self.ready.kinetic_scale())
+            {
+                return Err(SolveError::MassOutOfRange);
             }
         }
         Err(SolveError::NoBracket)
@@ -240,15 +252,10 @@ impl<'a, T: Scalar> Finder<'a, T> {
         let (left, right) = (&self.readings[first - 1], &self.readings[last]);
         let middle = (left.energy + right.energy).times(0.5);
         if first < last {
-            // some entry just inside an edge: step away from it
-            let (inner_left, inner_right) = (&self.readings[first], &self.readings[last - 1]);
-            let left_room = (inner_left.energy - left.energy).leading();
-            let right_room = (right.energy - inner_right.energy).leading();
-            return if right_room > left_room {
-                (inner_right.energy + right.energy).times(0.5)
-            } else {
-                (left.energy + inner_left.energy).times(0.5)
-            };
+            // some entry just inside an edge: between the two on either side of the band's middle
+            let split =
+                first + self.readings[first..last].partition_point(|r| r.states < low + 0.5);
+            return (self.readings[split - 1].energy + self.readings[split].energy).times(0.5);
         }
         if halve {
             return middle;

@@ -68,7 +68,7 @@ pub(crate) fn level_bound(ready: &Ready, energy: f64) -> f64 {
     let found = gradient(ready, energy);
     let slopes = ratio(&found, |p| -p / found.energy_slope);
     let (inputs, mesh) = spread(ready, &slopes);
-    let near = pair_error(ready, energy, false);
+    let (near, _) = pair_error(ready, energy, false);
     let bound = energy.abs() * UNIT
         + f64::EPSILON * inputs
         + mesh
@@ -111,16 +111,17 @@ fn near_edge(found: &Gradient<f64>) -> bool {
     slope == 0.0 || found.rounding * UNIT > 1e-10 * slope.max(whole)
 }
 
-/// Bound on the error of either of two levels in a doublet.
-fn pair_error(ready: &Ready, energy: f64, exact: bool) -> f64 {
+/// Bound on the error of either of two levels in a doublet, and the rounding in it.
+fn pair_error(ready: &Ready, energy: f64, exact: bool) -> (f64, f64) {
     let found = pair(ready, energy);
     let (mean, mesh) = spread(ready, &found.means);
     let (rate, split) = spread(ready, &found.rates);
-    energy.abs() * UNIT
-        + f64::EPSILON * (mean + 0.5 * rate)
-        + mesh
-        + split
-        + 6.0 * UNIT * found.rounding
+    let rounding = units(exact) * found.rounding;
+    let inputs = f64::EPSILON * (mean + 0.5 * rate);
+    (
+        energy.abs() * UNIT + inputs + mesh + split + rounding,
+        rounding,
+    )
 }
 
 /// Size of a gap and the bound on it.
@@ -177,10 +178,13 @@ fn edge_bound(ready: &Ready, raw: &RawEdge, gap: usize, exact: bool, narrow: boo
     } else {
         raw.slope * power_of_two(-found.exponent)
     };
-    let rounding = units(exact) * found.rounding / found_slope.abs();
+    let mut rounding = units(exact) * found.rounding / found_slope.abs();
     let mut error = energy.abs() * UNIT + f64::EPSILON * inputs + mesh + rounding;
     if narrow {
-        error = pair_error(ready, energy, exact).min(error);
+        let (near, own) = pair_error(ready, energy, exact);
+        if near < error || error.is_nan() {
+            (error, rounding) = (near, own);
+        }
     }
     error += raw.noise;
     // m* = −s D′/a², the derivative of D′ along the edge
@@ -239,7 +243,14 @@ pub(crate) fn finish(ready: &Ready, raw: &Raw, sweeps: usize) -> Bands {
             },
             closed,
         });
-        let width = width(ready, raw, band, (&bottom, &below), (&gap.lower, &top));
+        let width = width(
+            ready,
+            raw,
+            band,
+            (&bottom, &below),
+            (&gap.lower, &top),
+            (touching, closed),
+        );
         bands.push(Band {
             bottom: edge(&bottom, &below, band, touching),
             top: edge(&gap.lower, &top, band + 1, closed),
@@ -280,10 +291,12 @@ fn width(
     band: usize,
     bottom: (&RawEdge, &EdgeBound),
     top: (&RawEdge, &EdgeBound),
+    touching: (bool, bool),
 ) -> Bounded {
     let difference_of_edges = (top.0.energy - bottom.0.energy).round();
     let (middle, _, _) = raw.inside[band];
-    if let Some(value) = raw.widths[band] {
+    let isolated = !(touching.0 || touching.1);
+    if let Some(value) = raw.widths[band].filter(|_| isolated) {
         let (inputs, mesh) = spread(ready, &width_slopes(ready, middle.round()));
         let own = UNIT * (8.0 + 6.0 * ready.elements.len() as f64) * value;
         return Bounded {
