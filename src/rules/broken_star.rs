@@ -46,6 +46,9 @@ fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
     let Some(crystal) = subject.crystal.filter(|crystal| crystal.dimension >= 2) else {
         return;
     };
+    if crystal.potential.waves.iter().all(|wave| wave.star) {
+        return;
+    }
     let operations = point_operations(&crystal.primitive_values());
     let written: Vec<&[i64]> = crystal.potential.waves.iter().flat_map(|wave| &wave.indices).map(Vec::as_slice).collect();
     let mut spoken: Vec<Vec<i64>> = Vec::new();
@@ -82,7 +85,7 @@ fn finding(
         star.len(),
         words::index(index)
     );
-    let some: Vec<_> = missing.iter().take(3).map(|index| words::index(index)).collect();
+    let some: Vec<_> = missing.iter().take(3).map(|index| words::index(&upright(index))).collect();
     let more = if missing.len() > 3 { " …" } else { "" };
     let alone = missing.len() + 1 == star.len();
     Some(
@@ -90,6 +93,13 @@ fn finding(
             .help(format!("the lattice makes it equal to {}{more}; `star` writes them all", some.join(", ")))
             .fix(if alone { fix(subject, wave) } else { None }),
     )
+}
+
+/// The one of ±G whose first index that is not zero is positive.
+fn upright(index: &[i64]) -> Vec<i64> {
+    let first = index.iter().find(|entry| **entry != 0);
+    let sign = if first.is_some_and(|entry| *entry < 0) { -1 } else { 1 };
+    index.iter().map(|entry| sign * entry).collect()
 }
 
 fn contains(all: &[Vec<i64>], index: &[i64]) -> bool {
