@@ -44,9 +44,11 @@ fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
                 .help("ask for fewer `bands`, or smooth the potential"),
         ),
         Unsolved::Dimension(dimension) => findings.push(
-            finding(format!("bands in {dimension} dimensions are not solved by this version"))
-                .at_level(Level::Note)
-                .help("the model itself was read and checked"),
+            finding(format!(
+                "bands in {dimension} dimensions are not solved by this version"
+            ))
+            .at_level(Level::Note)
+            .help("the model itself was read and checked"),
         ),
         Unsolved::BrokenModel | Unsolved::Cancelled => {}
     }
@@ -60,8 +62,14 @@ mod tests {
 
     #[test]
     fn a_solver_that_gives_up_is_heard() {
-        let found = unsolved(&RULE, Unsolved::NotConverged("4096 plane waves were not enough".into()));
-        assert_eq!(found, ["the bands did not settle: 4096 plane waves were not enough"]);
+        let found = unsolved(
+            &RULE,
+            Unsolved::NotConverged("4096 plane waves were not enough".into()),
+        );
+        assert_eq!(
+            found,
+            ["the bands did not settle: 4096 plane waves were not enough"]
+        );
     }
 
     #[test]

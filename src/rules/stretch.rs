@@ -127,11 +127,15 @@ pub fn joints(crystal: &Crystal) -> Vec<Joint<'_>> {
         return Vec::new();
     }
     let inner = pieces.iter().zip(pieces.iter().skip(1));
-    let mut joints: Vec<_> = inner.map(|(left, right)| joint(left, right, false)).collect();
+    let mut joints: Vec<_> = inner
+        .map(|(left, right)| joint(left, right, false))
+        .collect();
     joints.push(joint(last, first, true));
     joints.retain(|joint| {
         let numbers = [joint.before, joint.after];
-        numbers.iter().all(|(value, slope)| value.is_finite() && slope.is_finite())
+        numbers
+            .iter()
+            .all(|(value, slope)| value.is_finite() && slope.is_finite())
     });
     joints
 }
@@ -146,7 +150,9 @@ fn tiles(crystal: &Crystal) -> bool {
     let mut pairs = pieces.iter().zip(pieces.iter().skip(1));
     let follow = pairs.all(|(left, right)| near(left.range[1].value, right.range[0].value));
     let ends = pieces.first().zip(pieces.last());
-    follow && ends.is_some_and(|(first, last)| near(last.range[1].value - first.range[0].value, period))
+    follow
+        && ends
+            .is_some_and(|(first, last)| near(last.range[1].value - first.range[0].value, period))
 }
 
 fn joint<'a>(left: &'a ProfilePiece, right: &'a ProfilePiece, seam: bool) -> Joint<'a> {

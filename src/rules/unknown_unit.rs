@@ -65,7 +65,10 @@ fn finding(trouble: &Trouble) -> Option<Finding> {
 /// Of the units that are equally close, the one that the trade uses most.
 fn nearest_usual(word: &str) -> Option<&'static str> {
     let distance = |unit: &&unit::Unit| strsim::damerau_levenshtein(word, unit.name);
-    unit::UNITS.iter().min_by_key(distance).map(|unit| unit.name)
+    unit::UNITS
+        .iter()
+        .min_by_key(distance)
+        .map(|unit| unit.name)
 }
 
 /// Putting the missing `*` before a name only says what was written; another unit is a guess.
@@ -98,7 +101,17 @@ mod tests {
 
     #[test]
     fn a_recoil_makes_its_unit() {
-        assert_eq!(messages(&RULE, "crystal c\n  mass 87 u\n  lattice chain 400 nm\n  cosine 1 = 2 Er\n").len(), 1);
-        silent(&RULE, "crystal c\n  mass 87 u\n  lattice chain 400 nm\n  recoil 800 nm\n  cosine 1 = 2 Er\n");
+        assert_eq!(
+            messages(
+                &RULE,
+                "crystal c\n  mass 87 u\n  lattice chain 400 nm\n  cosine 1 = 2 Er\n"
+            )
+            .len(),
+            1
+        );
+        silent(
+            &RULE,
+            "crystal c\n  mass 87 u\n  lattice chain 400 nm\n  recoil 800 nm\n  cosine 1 = 2 Er\n",
+        );
     }
 }

@@ -49,7 +49,9 @@ fn check(_: &Subject<'_>, _: &mut Vec<Finding>) {}
 /// Finds the names of a file that nothing uses.
 pub fn file_check(file: &FileSubject<'_>, findings: &mut Vec<Finding>) {
     let mut sections = file.tree.entries.iter().map(|entry| &entry.section);
-    let has_crystals = sections.clone().any(|section| section.kind == SectionKind::Crystal);
+    let has_crystals = sections
+        .clone()
+        .any(|section| section.kind == SectionKind::Crystal);
     // A line that does not read may be the one that uses a name.
     let unreadable = sections.any(|section| !section.problems.is_empty());
     if file.used_by_others || !has_crystals || unreadable {
@@ -70,7 +72,10 @@ fn material(file: &FileSubject<'_>, entry: &Entry) -> Option<Finding> {
     if file.may_use(place, NameSort::Material) {
         return None;
     }
-    Some(unused(place, format!("nothing uses the material `{}`", name.text)))
+    Some(unused(
+        place,
+        format!("nothing uses the material `{}`", name.text),
+    ))
 }
 
 fn names<'a>(file: &'a FileSubject<'_>, entry: &'a Entry) -> impl Iterator<Item = Finding> + 'a {
@@ -105,7 +110,8 @@ fn unused(place: Place, message: String) -> Finding {
 
 fn take_out(file: &FileSubject<'_>, entry: &Entry, statement: Span) -> Option<Fix> {
     let mut lines = entry.section.lines.iter();
-    let line = lines.find(|line| line.span.start <= statement.start && statement.end <= line.span.end)?;
+    let line =
+        lines.find(|line| line.span.start <= statement.start && statement.end <= line.span.end)?;
     let edit = Replacement::new(file.place(entry, line.span), "");
     Some(Fix::guess("take this line out", edit))
 }
@@ -117,25 +123,36 @@ mod tests {
 
     #[test]
     fn a_let_and_a_material_that_nothing_uses_are_found() {
-        let text = "let a = 3 nm\nmaterial m\n  mass 1 me\n  edge 0 eV\ncrystal c\n  lattice chain 5 nm\n";
+        let text =
+            "let a = 3 nm\nmaterial m\n  mass 1 me\n  edge 0 eV\ncrystal c\n  lattice chain 5 nm\n";
         let found = messages(&RULE, text);
         assert_eq!(found, ["nothing uses `a`", "nothing uses the material `m`"]);
     }
 
     #[test]
     fn where_a_name_is_misspelt_none_is_called_unused() {
-        silent(&RULE, "material wall\n  mass 1 me\n  edge 0 eV\ncrystal c\n  layer 5 nm of wal\n");
-        silent(&RULE, "material wall\n  mass 1 me\n  edge 0 eV\ncrystal c\n  layer 5 nm off wall\n");
+        silent(
+            &RULE,
+            "material wall\n  mass 1 me\n  edge 0 eV\ncrystal c\n  layer 5 nm of wal\n",
+        );
+        silent(
+            &RULE,
+            "material wall\n  mass 1 me\n  edge 0 eV\ncrystal c\n  layer 5 nm off wall\n",
+        );
     }
 
     #[test]
     fn a_file_of_materials_alone_is_a_shelf() {
-        silent(&RULE, "let a = 3 nm\nmaterial m\n  mass 1 me\n  edge 0 eV\n");
+        silent(
+            &RULE,
+            "let a = 3 nm\nmaterial m\n  mass 1 me\n  edge 0 eV\n",
+        );
     }
 
     #[test]
     fn a_let_that_replaces_an_inherited_one_is_used() {
-        let text = "crystal c\n  let a = 3 nm\n  lattice chain a\ncrystal d like c\n  let a = 4 nm\n";
+        let text =
+            "crystal c\n  let a = 3 nm\n  lattice chain a\ncrystal d like c\n  let a = 4 nm\n";
         silent(&RULE, text);
     }
 }

@@ -158,11 +158,7 @@ pub fn mass(kilogram: f64) -> String {
 
 /// Values in one unit, with digits enough to tell neighbours apart that are not equal.
 #[must_use]
-pub fn apart<const N: usize>(
-    values: [f64; N],
-    dimension: Dimension,
-    trade: Trade,
-) -> [String; N] {
+pub fn apart<const N: usize>(values: [f64; N], dimension: Dimension, trade: Trade) -> [String; N] {
     let largest = values.iter().fold(0.0_f64, |most, v| most.max(v.abs()));
     let unit = unit_for(largest, dimension, trade);
     let shown = |digits| values.map(|value| in_unit(value, unit, digits));
@@ -192,10 +188,17 @@ pub fn in_unit(value: f64, unit: Option<Unit>, digits: usize) -> String {
 #[must_use]
 pub fn number(value: f64, digits: usize) -> String {
     if value == 0.0 || !value.is_finite() {
-        return if value == 0.0 { "0".into() } else { format!("{value}") };
+        return if value == 0.0 {
+            "0".into()
+        } else {
+            format!("{value}")
+        };
     }
     let scientific = format!("{:.*e}", digits.max(1) - 1, value);
-    let exponent = scientific.rsplit('e').next().and_then(|e| e.parse::<i32>().ok());
+    let exponent = scientific
+        .rsplit('e')
+        .next()
+        .and_then(|e| e.parse::<i32>().ok());
     match exponent {
         Some(exponent) if (-4..=7).contains(&exponent) => plain(value, digits, exponent),
         _ => without_zeros_before_exponent(&scientific),
@@ -289,7 +292,10 @@ mod tests {
             recoil: None,
             ..light
         };
-        assert_eq!(quantity(2.5e3 * PLANCK, Dimension::ENERGY, atoms), "2.5 kHz");
+        assert_eq!(
+            quantity(2.5e3 * PLANCK, Dimension::ENERGY, atoms),
+            "2.5 kHz"
+        );
     }
 
     #[test]
@@ -309,7 +315,11 @@ mod tests {
 
     #[test]
     fn close_numbers_get_the_digits_that_tell_them_apart() {
-        let texts = apart([59.9996e-3 * EV, 60e-3 * EV], Dimension::ENERGY, Trade::default());
+        let texts = apart(
+            [59.9996e-3 * EV, 60e-3 * EV],
+            Dimension::ENERGY,
+            Trade::default(),
+        );
         assert_eq!(texts, ["59.9996 meV", "60 meV"].map(str::to_owned));
     }
 
