@@ -30,6 +30,7 @@
 //! A `\` with nothing behind it is taken away. For the rest, the message says what would have been readable.
 
 use super::{Finding, Fix, Level, Replacement, Rule, Subject, Tier};
+use crate::syntax::words::{lattice, statement};
 use crate::syntax::{Problem, ProblemKind};
 
 /// The rule.
@@ -57,7 +58,8 @@ fn finding(subject: &Subject<'_>, problem: &Problem) -> Option<Finding> {
     let of = |message: String| Finding::new(&RULE, place, message);
     match &problem.kind {
         ProblemKind::Unreadable { expected, found } => {
-            Some(of(format!("expected {expected}, found {found}")))
+            let finding = of(format!("expected {expected}, found {found}"));
+            Some(finding.help_if(form(subject, problem)))
         }
         ProblemKind::DanglingContinuation => Some(
             of("`\\` continues this line, but the text ends here".to_owned())
@@ -70,6 +72,23 @@ fn finding(subject: &Subject<'_>, problem: &Problem) -> Option<Finding> {
         ),
         _ => None,
     }
+}
+
+/// How the statement on the line is written.
+fn form(subject: &Subject<'_>, problem: &Problem) -> Option<String> {
+    let line = subject.line_at(problem.span.start)?;
+    let content = line.content.of(&subject.entry.section.text);
+    let mut words = content.split([' ', '\t']).filter(|word| !word.is_empty());
+    let first = words.next()?;
+    let kind = words
+        .next()
+        .filter(|_| first == "lattice")
+        .and_then(lattice);
+    let form = match kind {
+        Some(kind) => format!("lattice {}", kind.form),
+        None => statement(first)?.form.to_owned(),
+    };
+    Some(format!("it is written `{form}`"))
 }
 
 #[cfg(test)]
