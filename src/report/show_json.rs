@@ -216,7 +216,9 @@ fn potential(solution: &Solution) -> PotentialRecord {
     // Digits that rounding leaves meaningless are cut; a mean that cancels is nought.
     let told = |joule: f64| match joule.abs() < 1e-13 * size {
         true => 0.0,
-        false => format!("{:.13e}", joule / ELECTRONVOLT).parse().unwrap_or(0.0),
+        false => format!("{:.13e}", joule / ELECTRONVOLT)
+            .parse()
+            .unwrap_or(0.0),
     };
     PotentialRecord {
         lowest: told(range.lowest),

@@ -30,7 +30,9 @@
 
 use super::formula::{same, value};
 use super::{Finding, Level, Rule, Subject, Tier};
-use crate::model::{ClassWish, Dimension, GapWish, Limits, QuantityKind, Target, TargetFormula, Wish};
+use crate::model::{
+    ClassWish, Dimension, GapWish, Limits, QuantityKind, Target, TargetFormula, Wish,
+};
 
 /// The rule.
 pub const RULE: Rule = Rule {
@@ -86,10 +88,22 @@ fn clash(one: &Target, other: &Target) -> bool {
                 ..
             },
         ) => same(expression, other_expression) && apart(limits, other_limits),
-        (Wish::Compare { expression, limits, dimension }, gap @ Wish::GapIs { .. })
-        | (gap @ Wish::GapIs { .. }, Wish::Compare { expression, limits, dimension }) => {
-            *dimension == Dimension::ENERGY && closure_clashes(expression, limits, gap)
-        }
+        (
+            Wish::Compare {
+                expression,
+                limits,
+                dimension,
+            },
+            gap @ Wish::GapIs { .. },
+        )
+        | (
+            gap @ Wish::GapIs { .. },
+            Wish::Compare {
+                expression,
+                limits,
+                dimension,
+            },
+        ) => *dimension == Dimension::ENERGY && closure_clashes(expression, limits, gap),
         _ => false,
     }
 }
@@ -102,7 +116,8 @@ fn classes_clash(one: ClassWish, other: ClassWish) -> bool {
 
 /// A gap that is to be closed cannot be above zero, one that is to be open cannot be at most zero.
 fn closure_clashes(expression: &TargetFormula, limits: &Limits, gap: &Wish) -> bool {
-    let (TargetFormula::Quantity(quantity), Wish::GapIs { of, band, kind }) = (expression, gap) else {
+    let (TargetFormula::Quantity(quantity), Wish::GapIs { of, band, kind }) = (expression, gap)
+    else {
         return false;
     };
     if quantity.of != *of || quantity.kind != QuantityKind::Gap(*band) {
@@ -172,7 +187,9 @@ fn interval(limits: &Limits) -> Option<Interval> {
 
 fn apart(one: &Limits, other: &Limits) -> bool {
     match (interval(one), interval(other)) {
-        (Some(one), Some(other)) => !one.is_empty() && !other.is_empty() && one.meet(&other).is_empty(),
+        (Some(one), Some(other)) => {
+            !one.is_empty() && !other.is_empty() && one.meet(&other).is_empty()
+        }
         _ => false,
     }
 }
@@ -189,7 +206,10 @@ mod tests {
     #[test]
     fn limits_that_exclude_each_other_clash() {
         let text = crystal("  require gap 1 >= 3 eV\n  require gap 1 < 3 eV\n");
-        assert_eq!(messages(&RULE, &text), ["`gap 1 >= 3 eV` and `gap 1 < 3 eV` cannot both hold"]);
+        assert_eq!(
+            messages(&RULE, &text),
+            ["`gap 1 >= 3 eV` and `gap 1 < 3 eV` cannot both hold"]
+        );
     }
 
     #[test]
@@ -202,8 +222,17 @@ mod tests {
 
     #[test]
     fn limits_that_touch_can_both_hold() {
-        silent(&RULE, &crystal("  require gap 1 >= 3 eV\n  require gap 1 <= 3 eV\n"));
-        silent(&RULE, &crystal("  require gap 1 >= 3 eV\n  require gap 2 <= 2 eV\n"));
-        silent(&RULE, &crystal("  filling 2\n  require semiconductor\n  require insulator\n"));
+        silent(
+            &RULE,
+            &crystal("  require gap 1 >= 3 eV\n  require gap 1 <= 3 eV\n"),
+        );
+        silent(
+            &RULE,
+            &crystal("  require gap 1 >= 3 eV\n  require gap 2 <= 2 eV\n"),
+        );
+        silent(
+            &RULE,
+            &crystal("  filling 2\n  require semiconductor\n  require insulator\n"),
+        );
     }
 }

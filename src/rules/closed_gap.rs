@@ -55,7 +55,11 @@ fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
 
 fn finding(crystal: &Crystal, named: &NamedGap) -> Finding {
     let bound = named.gap.size.value.abs() + named.gap.size.uncertainty;
-    let unit = words::unit_for(bound, crate::model::Dimension::ENERGY, words::recoil_of(crystal));
+    let unit = words::unit_for(
+        bound,
+        crate::model::Dimension::ENERGY,
+        words::recoil_of(crystal),
+    );
     let band = named.band;
     let message = match named.fermi {
         true => format!("gap {band}, which holds the Fermi level, is closed"),
@@ -75,19 +79,43 @@ mod tests {
 
     #[test]
     fn a_closed_gap_that_a_target_names_is_found() {
-        let found = solved(&RULE, "  require gap 2 >= 5 meV\n", 2, GapKind::Closed, 0.0, 1e-15);
+        let found = solved(
+            &RULE,
+            "  require gap 2 >= 5 meV\n",
+            2,
+            GapKind::Closed,
+            0.0,
+            1e-15,
+        );
         assert_eq!(found, ["gap 2 is closed"]);
     }
 
     #[test]
     fn closure_that_is_wanted_and_gaps_that_nobody_names_are_silent() {
-        for target in ["  require gap 2 closed\n", "  require gap 2 <= 1 meV\n", "  require gap 1 >= 5 meV\n"] {
-            assert!(solved(&RULE, target, 2, GapKind::Closed, 0.0, 1e-15).is_empty(), "{target}");
+        for target in [
+            "  require gap 2 closed\n",
+            "  require gap 2 <= 1 meV\n",
+            "  require gap 1 >= 5 meV\n",
+        ] {
+            assert!(
+                solved(&RULE, target, 2, GapKind::Closed, 0.0, 1e-15).is_empty(),
+                "{target}"
+            );
         }
     }
 
     #[test]
     fn a_small_gap_is_not_closed() {
-        assert!(solved(&RULE, "  require gap 2 >= 0 meV\n", 2, GapKind::Direct, 1e-9, 1e-15).is_empty());
+        assert!(
+            solved(
+                &RULE,
+                "  require gap 2 >= 0 meV\n",
+                2,
+                GapKind::Direct,
+                1e-9,
+                1e-15
+            )
+            .is_empty()
+        );
     }
 }

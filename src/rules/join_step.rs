@@ -54,7 +54,9 @@ fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
         return;
     };
     let joints = joints(crystal);
-    let steps = joints.iter().filter(|joint| !joint.seam && joint.steps(&swing));
+    let steps = joints
+        .iter()
+        .filter(|joint| !joint.seam && joint.steps(&swing));
     findings.extend(steps.filter_map(|joint| finding(subject, crystal, &swing, joint, &joints)));
 }
 
@@ -73,7 +75,9 @@ fn finding(
     let recoil = words::recoil_of(crystal);
     let [before, after] = words::apart([left.value, right.value], Dimension::ENERGY, recoil);
     let finding = Finding::new(&RULE, place, message)
-        .help(format!("it is {before} to the left and {after} to the right"))
+        .help(format!(
+            "it is {before} to the left and {after} to the right"
+        ))
         .related(joint.left.formula_place, "the piece to the left");
     if joint.step().abs() > MEANT * swing.height {
         return Some(finding.at_level(Level::Note));
@@ -122,7 +126,10 @@ mod tests {
     #[test]
     fn a_piece_that_is_off_by_a_constant_is_shifted() {
         let text = format!("{PIECES} + 0.5 meV\n");
-        assert_eq!(messages(&RULE, &text), ["the potential jumps by 0.5 meV at 4 nm"]);
+        assert_eq!(
+            messages(&RULE, &text),
+            ["the potential jumps by 0.5 meV at 4 nm"]
+        );
         let mended = fixed(&RULE, &text);
         assert!(mended.contains("+ 0.5 meV - 0.5 meV"), "{mended}");
         silent(&RULE, &mended);
@@ -131,7 +138,10 @@ mod tests {
     #[test]
     fn a_large_jump_is_likely_meant() {
         assert_eq!(levels(&RULE, &format!("{PIECES} + 5 meV\n")), [Level::Note]);
-        assert_eq!(levels(&RULE, &format!("{PIECES} + 0.5 meV\n")), [Level::Warning]);
+        assert_eq!(
+            levels(&RULE, &format!("{PIECES} + 0.5 meV\n")),
+            [Level::Warning]
+        );
     }
 
     #[test]

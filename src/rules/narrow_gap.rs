@@ -93,7 +93,10 @@ mod tests {
     fn a_gap_below_kt_is_found() {
         // kT at 300 K is 25.85 meV (CODATA 2022: 8.617333262e-5 eV/K).
         let found = solved(&RULE, WARM, 1, GapKind::Direct, 0.020, 1e-9);
-        assert_eq!(found, ["gap 1 is 20 meV, less than kT = 25.85 meV at 300 K"]);
+        assert_eq!(
+            found,
+            ["gap 1 is 20 meV, less than kT = 25.85 meV at 300 K"]
+        );
     }
 
     #[test]

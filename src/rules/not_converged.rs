@@ -58,8 +58,14 @@ mod tests {
 
     #[test]
     fn a_solver_that_gives_up_is_heard() {
-        let found = unsolved(&RULE, Unsolved::NotConverged("4096 plane waves were not enough".into()));
-        assert_eq!(found, ["the bands did not settle: 4096 plane waves were not enough"]);
+        let found = unsolved(
+            &RULE,
+            Unsolved::NotConverged("4096 plane waves were not enough".into()),
+        );
+        assert_eq!(
+            found,
+            ["the bands did not settle: 4096 plane waves were not enough"]
+        );
     }
 
     #[test]

@@ -91,7 +91,10 @@ fn forbidden(trouble: &Trouble) -> Option<Finding> {
     let TroubleKind::ForbiddenWave { index, condition } = &trouble.kind else {
         return None;
     };
-    let message = format!("{} is no reciprocal vector of this lattice", words::index(index));
+    let message = format!(
+        "{} is no reciprocal vector of this lattice",
+        words::index(index)
+    );
     Some(
         Finding::of_trouble(&RULE, trouble, message)
             .at_level(Level::Error)
@@ -141,26 +144,39 @@ fn finding(
         Some(span) if place == piece.formula_place => subject.place(span),
         _ => place,
     };
-    let cell = vector.iter().map(|along| along.value.powi(2)).sum::<f64>().sqrt();
+    let cell = vector
+        .iter()
+        .map(|along| along.value.powi(2))
+        .sum::<f64>()
+        .sqrt();
     let name = match wave.call {
         Formula::Call("sin", _) => "sine",
         _ => "cosine",
     };
-    let name = if wave.power > 1.0 { format!("squared {name}") } else { name.to_owned() };
+    let name = if wave.power > 1.0 {
+        format!("squared {name}")
+    } else {
+        name.to_owned()
+    };
     let fitting = cell / periods.abs().round().max(1.0);
     let [own, whole, fits] = words::apart(
         [cell / periods.abs(), cell, fitting],
         crate::model::Dimension::LENGTH,
         None,
     );
-    let message = format!("this {name} repeats every {own}, which does not divide the cell of {whole}");
-    Some(Finding::new(&RULE, place, message).help(format!("the nearest period that does is {fits}")))
+    let message =
+        format!("this {name} repeats every {own}, which does not divide the cell of {whole}");
+    Some(
+        Finding::new(&RULE, place, message).help(format!("the nearest period that does is {fits}")),
+    )
 }
 
 /// How many of its periods lie along a lattice vector.
 fn periods_along(wave: &Wave<'_>, vector: &[Dual]) -> f64 {
     let phases = wave.vector.iter().zip(vector);
-    let phase: f64 = phases.map(|(per_metre, along)| per_metre.value * along.value).sum();
+    let phase: f64 = phases
+        .map(|(per_metre, along)| per_metre.value * along.value)
+        .sum();
     wave.power * phase / TAU
 }
 
@@ -185,7 +201,9 @@ fn gather<'f>(formula: &'f Formula, power: f64, waves: &mut Vec<Option<Wave<'f>>
         Formula::Call("sin" | "cos", arguments) if formula.varies() => {
             waves.push(wave(formula, arguments, power));
         }
-        Formula::Call("abs", arguments) => arguments.iter().for_each(|part| gather(part, 2.0, waves)),
+        Formula::Call("abs", arguments) => {
+            arguments.iter().for_each(|part| gather(part, 2.0, waves))
+        }
         Formula::Call(_, arguments) => arguments.iter().for_each(|part| gather(part, 1.0, waves)),
     }
 }
@@ -242,7 +260,10 @@ fn calls(expression: &Expression, spans: &mut Vec<Span>) {
             calls(left, spans);
             calls(right, spans);
         }
-        ExpressionKind::Call { function, arguments } => {
+        ExpressionKind::Call {
+            function,
+            arguments,
+        } => {
             let wave = matches!(function.text.as_str(), "sin" | "cos");
             if wave && arguments.iter().any(has_position) {
                 spans.push(expression.span);
@@ -290,7 +311,10 @@ mod tests {
 
     #[test]
     fn harmonics_fit_and_shifts_do_not_matter() {
-        silent(&RULE, &chain("(cos(2*pi*(x - 1 nm)/(4 nm)) + sin(2*pi*x/(8 nm)))"));
+        silent(
+            &RULE,
+            &chain("(cos(2*pi*(x - 1 nm)/(4 nm)) + sin(2*pi*x/(8 nm)))"),
+        );
     }
 
     #[test]

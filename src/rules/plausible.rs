@@ -142,7 +142,9 @@ pub fn allowed(kind: Kind, setting: &Setting) -> Option<Range> {
         Kind::Energy => {
             let highest = highest_energy(setting)?;
             let lowest = match carrier {
-                Carrier::Electron => setting.kinetic().map_or(0.0, |kinetic| LOWEST_ELECTRON_RATIO * kinetic),
+                Carrier::Electron => setting
+                    .kinetic()
+                    .map_or(0.0, |kinetic| LOWEST_ELECTRON_RATIO * kinetic),
                 _ => 0.0,
             };
             Some((lowest, highest))
@@ -177,7 +179,11 @@ pub fn is_plausible(kind: Kind, value: f64, setting: &Setting) -> bool {
 }
 
 fn plausible_mass(mass: f64, setting: &Setting) -> bool {
-    let heaviest = if setting.is_optical() { HEAVIEST_IN_LIGHT } else { HEAVIEST_ELECTRON };
+    let heaviest = if setting.is_optical() {
+        HEAVIEST_IN_LIGHT
+    } else {
+        HEAVIEST_ELECTRON
+    };
     (LIGHTEST..=heaviest).contains(&mass) || (LIGHTEST_ATOM..=HEAVIEST_MOLECULE).contains(&mass)
 }
 
@@ -204,8 +210,12 @@ pub fn is_typical(kind: Kind, value: f64, setting: &Setting) -> bool {
             _ if setting.atoms => within(0.2e-9, 1.5e-9),
             _ => within(0.2e-9, 300e-9),
         },
-        Kind::Recoil => setting.period.is_some_and(|period| within(0.9 * period, 4.0 * period)),
-        Kind::SiteSize => setting.period.is_some_and(|period| within(0.02 * period, period)),
+        Kind::Recoil => setting
+            .period
+            .is_some_and(|period| within(0.9 * period, 4.0 * period)),
+        Kind::SiteSize => setting
+            .period
+            .is_some_and(|period| within(0.02 * period, period)),
         Kind::Temperature => match setting.carrier() {
             Carrier::Atom => within(1e-9, 1e-3),
             _ => within(1e-3, 1000.0),
@@ -293,8 +303,18 @@ mod tests {
     #[test]
     fn masses_between_electrons_and_atoms_are_nobodys() {
         let plain = Setting::default();
-        for (mass, plausible) in [(0.0135, true), (2.0, true), (122.0, false), (1837.0, true), (2.4e5, true)] {
-            assert_eq!(is_plausible(Kind::Mass, mass * ELECTRON_MASS, &plain), plausible, "{mass}");
+        for (mass, plausible) in [
+            (0.0135, true),
+            (2.0, true),
+            (122.0, false),
+            (1837.0, true),
+            (2.4e5, true),
+        ] {
+            assert_eq!(
+                is_plausible(Kind::Mass, mass * ELECTRON_MASS, &plain),
+                plausible,
+                "{mass}"
+            );
         }
     }
 }

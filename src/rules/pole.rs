@@ -41,7 +41,10 @@ pub const RULE: Rule = Rule {
 fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
     for trouble in subject.troubles {
         if let TroubleKind::Pole { at } = &trouble.kind {
-            let message = format!("this profile has no finite value near {}", words::length(*at));
+            let message = format!(
+                "this profile has no finite value near {}",
+                words::length(*at)
+            );
             findings.push(
                 Finding::of_trouble(&RULE, trouble, message)
                     .help("soften it there, or cut it off with `max` or `min`"),
@@ -57,7 +60,10 @@ mod tests {
 
     #[test]
     fn a_pole_between_the_grid_points_is_found() {
-        for formula in ["1 meV / sin(pi*(x - 2.4567 nm)/period)", "1 meV * log(x / (8 nm) - 0.5)"] {
+        for formula in [
+            "1 meV / sin(pi*(x - 2.4567 nm)/period)",
+            "1 meV * log(x / (8 nm) - 0.5)",
+        ] {
             let text = format!("crystal a\n  lattice chain 8 nm\n  profile = {formula}\n");
             assert_eq!(messages(&RULE, &text).len(), 1, "{formula}");
         }
@@ -65,6 +71,9 @@ mod tests {
 
     #[test]
     fn a_steep_profile_is_no_pole() {
-        silent(&RULE, "crystal a\n  lattice chain 8 nm\n  profile = 1 meV / (1e-4 + sin(pi*x/period)^2)\n");
+        silent(
+            &RULE,
+            "crystal a\n  lattice chain 8 nm\n  profile = 1 meV / (1e-4 + sin(pi*x/period)^2)\n",
+        );
     }
 }

@@ -74,11 +74,20 @@ fn along_a_chain(subject: &Subject<'_>, crystal: &Crystal) -> Option<Finding> {
 fn of_table(subject: &Subject<'_>, crystal: &Crystal) -> Option<Finding> {
     let table = crystal.potential.table.as_ref()?;
     let (first, last) = (*table.energies.first()?, table.closing?);
-    let largest = table.energies.iter().fold(first.abs(), |most, energy| most.max(energy.abs()));
+    let largest = table
+        .energies
+        .iter()
+        .fold(first.abs(), |most, energy| most.max(energy.abs()));
     if (first - last).abs() <= SAMPLE_ROUNDING * largest || !subject.holds(table.place) {
         return None;
     }
-    Some(step_finding(crystal, table.place, first - last, last, first))
+    Some(step_finding(
+        crystal,
+        table.place,
+        first - last,
+        last,
+        first,
+    ))
 }
 
 fn step_finding(
@@ -187,8 +196,14 @@ mod tests {
 
     #[test]
     fn rounding_at_the_seam_is_no_jump() {
-        silent(&RULE, "crystal a\n  lattice chain 8 nm\n  profile = 3 meV * cos(2*pi*x/period)^2\n");
-        silent(&RULE, "crystal a\n  lattice chain 8 nm\n  profile -4 nm to 4 nm = 3 meV * (x/(1 nm))^2\n");
+        silent(
+            &RULE,
+            "crystal a\n  lattice chain 8 nm\n  profile = 3 meV * cos(2*pi*x/period)^2\n",
+        );
+        silent(
+            &RULE,
+            "crystal a\n  lattice chain 8 nm\n  profile -4 nm to 4 nm = 3 meV * (x/(1 nm))^2\n",
+        );
     }
 
     #[test]
@@ -203,6 +218,9 @@ mod tests {
 
     #[test]
     fn layers_may_jump() {
-        silent(&RULE, "crystal a\n  mass 1 me\n  layer 4 nm at 0\n  layer 4 nm at 0 to 9 meV\n");
+        silent(
+            &RULE,
+            "crystal a\n  mass 1 me\n  layer 4 nm at 0\n  layer 4 nm at 0 to 9 meV\n",
+        );
     }
 }

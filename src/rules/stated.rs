@@ -27,7 +27,10 @@ pub fn quantities(subject: &Subject<'_>) -> Vec<Stated> {
     match subject.entry.section.kind {
         SectionKind::Preamble => Vec::new(),
         SectionKind::Material => of_material(subject),
-        SectionKind::Crystal => subject.crystal.map(|crystal| of_crystal(subject, crystal)).unwrap_or_default(),
+        SectionKind::Crystal => subject
+            .crystal
+            .map(|crystal| of_crystal(subject, crystal))
+            .unwrap_or_default(),
     }
 }
 
@@ -35,12 +38,25 @@ pub fn quantities(subject: &Subject<'_>) -> Vec<Stated> {
 #[must_use]
 pub fn setting(crystal: &Crystal) -> Setting {
     let layers = &crystal.potential.layers;
-    let masses = layers.iter().flat_map(|layer| &layer.mass).map(|law| law.mass.value);
+    let masses = layers
+        .iter()
+        .flat_map(|layer| &layer.mass)
+        .map(|law| law.mass.value);
     let lightest = masses.fold(f64::INFINITY, f64::min);
     let vector = crystal.conventional.first();
-    let period = vector.map(|vector| vector.iter().map(|along| along.value.powi(2)).sum::<f64>().sqrt());
+    let period = vector.map(|vector| {
+        vector
+            .iter()
+            .map(|along| along.value.powi(2))
+            .sum::<f64>()
+            .sqrt()
+    });
     Setting {
-        mass: if lightest.is_finite() { lightest } else { crystal.mass.value },
+        mass: if lightest.is_finite() {
+            lightest
+        } else {
+            crystal.mass.value
+        },
         period: period.filter(|period| period.is_finite() && *period > 0.0),
         atoms: !crystal.potential.formfactors.is_empty(),
         recoil: crystal.recoil.is_some(),
@@ -57,7 +73,10 @@ struct Collector<'s, 'a> {
 impl Collector<'_, '_> {
     fn add(&mut self, kind: Kind, dual: &Dual, statement: Place) {
         let number = self.number_of(dual, dimension_of(kind)).cloned();
-        let own = number.as_ref().map(|number| number.place).filter(|place| self.subject.holds(*place));
+        let own = number
+            .as_ref()
+            .map(|number| number.place)
+            .filter(|place| self.subject.holds(*place));
         let Some(place) = own.or(self.subject.holds(statement).then_some(statement)) else {
             return;
         };
@@ -75,7 +94,10 @@ impl Collector<'_, '_> {
     /// The number with a unit that a quantity is proportional to.
     fn number_of(&self, dual: &Dual, dimension: Dimension) -> Option<&Parameter> {
         dual.slopes.iter().find_map(|(id, slope)| {
-            let found = self.parameters.iter().find(|parameter| parameter.id == *id)?;
+            let found = self
+                .parameters
+                .iter()
+                .find(|parameter| parameter.id == *id)?;
             let proportional = (slope * found.value - dual.value).abs() <= 1e-9 * dual.value.abs();
             let literal = found.kind == ParameterKind::Literal && found.dimension == dimension;
             (literal && proportional).then_some(found)
@@ -86,11 +108,9 @@ impl Collector<'_, '_> {
 fn dimension_of(kind: Kind) -> Dimension {
     match kind {
         Kind::Mass => Dimension::MASS,
-        Kind::Thickness
-        | Kind::LatticeLength
-        | Kind::Recoil
-        | Kind::Monolayer
-        | Kind::SiteSize => Dimension::LENGTH,
+        Kind::Thickness | Kind::LatticeLength | Kind::Recoil | Kind::Monolayer | Kind::SiteSize => {
+            Dimension::LENGTH
+        }
         Kind::Temperature => Dimension::TEMPERATURE,
         Kind::Energy | Kind::TargetEnergy | Kind::NonparabolicGap => Dimension::ENERGY,
         Kind::Rate => Dimension::NUMBER,
@@ -169,7 +189,11 @@ fn cell(collector: &mut Collector<'_, '_>, crystal: &Crystal) {
 
 /// The length of a vector, with its derivatives.
 fn norm(vector: &[Dual]) -> Dual {
-    let length = vector.iter().map(|along| along.value.powi(2)).sum::<f64>().sqrt();
+    let length = vector
+        .iter()
+        .map(|along| along.value.powi(2))
+        .sum::<f64>()
+        .sqrt();
     let mut norm = Dual::constant(length);
     for along in vector {
         for (id, slope) in &along.slopes {
@@ -227,7 +251,10 @@ fn constants<'f>(formula: &'f Formula, found: &mut Vec<&'f Dual>) {
 
 fn targets(collector: &mut Collector<'_, '_>, crystal: &Crystal) {
     for target in &crystal.targets {
-        let Wish::Compare { limits, dimension, .. } = &target.wish else {
+        let Wish::Compare {
+            limits, dimension, ..
+        } = &target.wish
+        else {
             continue;
         };
         if *dimension != Dimension::ENERGY {

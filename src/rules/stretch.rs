@@ -127,11 +127,15 @@ pub fn joints(crystal: &Crystal) -> Vec<Joint<'_>> {
         return Vec::new();
     }
     let inner = pieces.iter().zip(pieces.iter().skip(1));
-    let mut joints: Vec<_> = inner.map(|(left, right)| joint(left, right, false)).collect();
+    let mut joints: Vec<_> = inner
+        .map(|(left, right)| joint(left, right, false))
+        .collect();
     joints.push(joint(last, first, true));
     joints.retain(|joint| {
         let numbers = [joint.before, joint.after];
-        numbers.iter().all(|(value, slope)| value.is_finite() && slope.is_finite())
+        numbers
+            .iter()
+            .all(|(value, slope)| value.is_finite() && slope.is_finite())
     });
     joints
 }

@@ -56,7 +56,10 @@ pub const RULE: Rule = Rule {
 };
 
 fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
-    let missed = subject.targets.iter().filter(|target| target.state == TargetState::Missed);
+    let missed = subject
+        .targets
+        .iter()
+        .filter(|target| target.state == TargetState::Missed);
     for target in missed {
         let finding = at_target(&RULE, subject, target, message(subject, target));
         findings.push(finding.help_if(help(target)));
@@ -90,14 +93,23 @@ fn help(target: &Assessment) -> Option<String> {
 /// The limit that a value breaks, and on which side of it the value lies.
 fn broken_limit(target: &Assessment, value: f64) -> Option<(f64, &'static str)> {
     let (lower, upper) = target.limits;
-    let below = lower.filter(|limit| value < *limit).map(|limit| (limit, "below"));
-    below.or_else(|| upper.filter(|limit| value > *limit).map(|limit| (limit, "above")))
+    let below = lower
+        .filter(|limit| value < *limit)
+        .map(|limit| (limit, "below"));
+    below.or_else(|| {
+        upper
+            .filter(|limit| value > *limit)
+            .map(|limit| (limit, "above"))
+    })
 }
 
 /// What is required, and the relation behind it.
 pub fn halves(text: &str) -> (&str, &str) {
     let relations = [" >=", " <=", " ≥", " ≤", " >", " <", " =", " between "];
-    let first = relations.iter().filter_map(|relation| text.find(relation)).min();
+    let first = relations
+        .iter()
+        .filter_map(|relation| text.find(relation))
+        .min();
     match first.and_then(|at| text.split_at_checked(at)) {
         Some((what, relation)) => (what.trim(), relation.trim()),
         None => (text.trim(), ""),
@@ -132,7 +144,10 @@ mod tests {
             target.value = Some(electronvolts(0.0542));
             target.limits = (Some(electronvolts(0.06).value), None);
         });
-        assert_eq!(found, ["`gap 1` is 54.2 meV, 5.8 meV below the limit of 60 meV"]);
+        assert_eq!(
+            found,
+            ["`gap 1` is 54.2 meV, 5.8 meV below the limit of 60 meV"]
+        );
     }
 
     #[test]

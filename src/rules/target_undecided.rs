@@ -62,7 +62,10 @@ fn message(subject: &Subject<'_>, target: &Assessment) -> String {
         words::unit_for(value.uncertainty, target.dimension, recoil),
         2,
     );
-    format!("whether this holds cannot be told: `{what}` is {} to within {bound}", of(value.value))
+    format!(
+        "whether this holds cannot be told: `{what}` is {} to within {bound}",
+        of(value.value)
+    )
 }
 
 #[cfg(test)]
@@ -81,7 +84,10 @@ mod tests {
                 ..electronvolts(0.06)
             });
         });
-        assert_eq!(found, ["whether this holds cannot be told: `gap 1` is 60 meV to within 1 µeV"]);
+        assert_eq!(
+            found,
+            ["whether this holds cannot be told: `gap 1` is 60 meV to within 1 µeV"]
+        );
     }
 
     #[test]

@@ -50,7 +50,11 @@ fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
     };
     for layer in &crystal.potential.layers {
         let finding = finding(subject, layer);
-        let new = |finding: &Finding| findings.iter().all(|other| other.place != finding.place || other.rule != RULE.name);
+        let new = |finding: &Finding| {
+            findings
+                .iter()
+                .all(|other| other.place != finding.place || other.rule != RULE.name)
+        };
         findings.extend(finding.filter(new).into_iter().collect::<Vec<_>>());
     }
 }
@@ -80,7 +84,9 @@ mod tests {
     use super::RULE;
 
     fn text(thin: &str) -> String {
-        format!("crystal a\n  mass 1 me\n  monolayer 0.283 nm\n  layer 2.83 nm at 0\n  layer {thin} at 9 meV\n")
+        format!(
+            "crystal a\n  mass 1 me\n  monolayer 0.283 nm\n  layer 2.83 nm at 0\n  layer {thin} at 9 meV\n"
+        )
     }
 
     #[test]

@@ -58,7 +58,9 @@ fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
 /// Sizes that another unit would explain. With an odd mass or cell, nothing else can be judged by it.
 fn sizes(subject: &Subject<'_>) -> Vec<Finding> {
     let stated = stated::quantities(subject);
-    let setting = subject.crystal.map_or_else(|| of_material(&stated), stated::setting);
+    let setting = subject
+        .crystal
+        .map_or_else(|| of_material(&stated), stated::setting);
     for first in [Kind::Mass, Kind::LatticeLength] {
         let slips = slips(&stated, &setting, |kind| kind == first);
         if !slips.is_empty() {
@@ -93,10 +95,19 @@ fn slip(stated: &Stated, setting: &Setting) -> Option<Finding> {
         Some((lowest, highest)) => {
             let dimension = number.dimension;
             let side = match stated.value.abs() > highest {
-                true => format!("at most about {}", words::quantity(highest, dimension, None)),
-                false => format!("at least about {}", words::quantity(lowest, dimension, None)),
+                true => format!(
+                    "at most about {}",
+                    words::quantity(highest, dimension, None)
+                ),
+                false => format!(
+                    "at least about {}",
+                    words::quantity(lowest, dimension, None)
+                ),
             };
-            format!("`{}` is an unlikely size for {what}, usually {side}", number.text)
+            format!(
+                "`{}` is an unlikely size for {what}, usually {side}",
+                number.text
+            )
         }
         None => format!("`{}` is an unlikely size for {what}", number.text),
     };
@@ -117,7 +128,10 @@ fn slip(stated: &Stated, setting: &Setting) -> Option<Finding> {
 #[must_use]
 pub fn likely_unit(stated: &Stated, setting: &Setting) -> Option<&'static str> {
     let number = stated.number.as_ref()?;
-    let (written, size) = number.unit.as_ref().map_or(("", 1.0), |(name, size)| (name.as_str(), *size));
+    let (written, size) = number
+        .unit
+        .as_ref()
+        .map_or(("", 1.0), |(name, size)| (name.as_str(), *size));
     if matches!(written, "Er" | "ML") {
         return None;
     }
@@ -143,25 +157,39 @@ fn rewritten(number: &Parameter, unit: &str) -> Option<String> {
 /// Bare angles of the lattice that no cell has in radians.
 fn lattice_angles(subject: &Subject<'_>) -> Vec<Finding> {
     let statements = &subject.entry.section.statements;
-    let angles = statements.iter().flat_map(|statement| match &statement.kind {
-        StatementKind::Lattice(form) => form.angles.as_slice(),
-        _ => &[],
-    });
-    angles.filter_map(|angle| bare_angle(subject, angle)).collect()
+    let angles = statements
+        .iter()
+        .flat_map(|statement| match &statement.kind {
+            StatementKind::Lattice(form) => form.angles.as_slice(),
+            _ => &[],
+        });
+    angles
+        .filter_map(|angle| bare_angle(subject, angle))
+        .collect()
 }
 
 fn bare_angle(subject: &Subject<'_>, angle: &Value) -> Option<Finding> {
     let number = literal::of_value(angle).filter(|number| number.unit.is_none())?;
     let above = number.number.abs() > PI;
-    above.then(|| degrees(subject.place(number.span), number.span.of(&subject.entry.section.text), "a lattice angle above π"))
+    above.then(|| {
+        degrees(
+            subject.place(number.span),
+            number.span.of(&subject.entry.section.text),
+            "a lattice angle above π",
+        )
+    })
 }
 
 fn degrees(place: Place, text: &str, what: &str) -> Finding {
     let instead = format!("{text} deg");
     let edit = Replacement::new(place, instead.clone());
-    Finding::new(&RULE, place, format!("a bare `{text}` is in radians, and {what} is unlikely"))
-        .help(format!("is `{instead}` meant?"))
-        .fix(Fix::guess(format!("write `{instead}`"), edit))
+    Finding::new(
+        &RULE,
+        place,
+        format!("a bare `{text}` is in radians, and {what} is unlikely"),
+    )
+    .help(format!("is `{instead}` meant?"))
+    .fix(Fix::guess(format!("write `{instead}`"), edit))
 }
 
 /// A bare phase of more than one turn.
@@ -170,10 +198,17 @@ fn phase(subject: &Subject<'_>, crystal: &Crystal, wave: &Wave) -> Option<Findin
     if turns <= 1.0 {
         return None;
     }
-    let sources: Vec<&Parameter> =
-        wave.phase.slopes.iter().filter_map(|(id, _)| parameter(crystal, *id)).collect();
+    let sources: Vec<&Parameter> = wave
+        .phase
+        .slopes
+        .iter()
+        .filter_map(|(id, _)| parameter(crystal, *id))
+        .collect();
     let statement = subject.statement_at(wave.place)?;
-    let StatementKind::Wave { phase: Some(value), .. } = &statement.kind else {
+    let StatementKind::Wave {
+        phase: Some(value), ..
+    } = &statement.kind
+    else {
         return None;
     };
     let written = value.span.of(&subject.entry.section.text);
@@ -250,14 +285,18 @@ mod tests {
     fn bare_angles_that_are_degrees_are_found_and_mended() {
         let phase = "crystal a\n  lattice chain 5 nm\n  cosine 1 = 1 meV phase 90 deg\n";
         check_slip(phase, "phase 90\n", "phase 90 deg\n");
-        let angle = "crystal a\n  lattice oblique 5 nm by 4 nm angle 80 deg\n  cosine (1, 0) = 1 meV\n";
+        let angle =
+            "crystal a\n  lattice oblique 5 nm by 4 nm angle 80 deg\n  cosine (1, 0) = 1 meV\n";
         check_slip(angle, "angle 80\n", "angle 80 deg\n");
     }
 
     #[test]
     fn angles_that_name_their_unit_or_pi_are_silent() {
         for phase in ["phase 7*pi/2", "phase 400 deg", "phase 6.2", "phase 9 rad"] {
-            silent(&RULE, &format!("crystal a\n  lattice chain 5 nm\n  cosine 1 = 1 meV {phase}\n"));
+            silent(
+                &RULE,
+                &format!("crystal a\n  lattice chain 5 nm\n  cosine 1 = 1 meV {phase}\n"),
+            );
         }
     }
 

@@ -50,7 +50,9 @@ fn finding(trouble: &Trouble) -> Option<Finding> {
         Some(why) => format!("`{unit}` is no unit here: {why}"),
         None => format!("`{unit}` is not a unit"),
     };
-    let help = instead.as_ref().map(|text| format!("did you mean `{text}`?"));
+    let help = instead
+        .as_ref()
+        .map(|text| format!("did you mean `{text}`?"));
     Some(
         Finding::of_trouble(&RULE, trouble, message)
             .help_if(help)
@@ -87,7 +89,17 @@ mod tests {
 
     #[test]
     fn a_recoil_makes_its_unit() {
-        assert_eq!(messages(&RULE, "crystal c\n  mass 87 u\n  lattice chain 400 nm\n  cosine 1 = 2 Er\n").len(), 1);
-        silent(&RULE, "crystal c\n  mass 87 u\n  lattice chain 400 nm\n  recoil 800 nm\n  cosine 1 = 2 Er\n");
+        assert_eq!(
+            messages(
+                &RULE,
+                "crystal c\n  mass 87 u\n  lattice chain 400 nm\n  cosine 1 = 2 Er\n"
+            )
+            .len(),
+            1
+        );
+        silent(
+            &RULE,
+            "crystal c\n  mass 87 u\n  lattice chain 400 nm\n  recoil 800 nm\n  cosine 1 = 2 Er\n",
+        );
     }
 }

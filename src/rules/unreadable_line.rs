@@ -46,7 +46,11 @@ pub const RULE: Rule = Rule {
 
 fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
     let problems = &subject.entry.section.problems;
-    findings.extend(problems.iter().filter_map(|problem| finding(subject, problem)));
+    findings.extend(
+        problems
+            .iter()
+            .filter_map(|problem| finding(subject, problem)),
+    );
 }
 
 fn finding(subject: &Subject<'_>, problem: &Problem) -> Option<Finding> {
@@ -76,14 +80,24 @@ mod tests {
 
     #[test]
     fn says_what_was_expected_and_what_is_there() {
-        let found = messages(&RULE, "crystal a\n  lattice chain 5 nm\n  layer 5 nm off b\n");
+        let found = messages(
+            &RULE,
+            "crystal a\n  lattice chain 5 nm\n  layer 5 nm off b\n",
+        );
         assert_eq!(found.len(), 1, "{found:?}");
-        assert!(found.iter().all(|text| text.starts_with("expected ") && text.contains("`off`")));
+        assert!(
+            found
+                .iter()
+                .all(|text| text.starts_with("expected ") && text.contains("`off`"))
+        );
     }
 
     #[test]
     fn a_continued_line_is_readable() {
         silent(&RULE, "crystal a\n  lattice chain \\\n    5 nm\n");
-        assert_eq!(messages(&RULE, "crystal a\n  lattice chain 5 nm \\").len(), 1);
+        assert_eq!(
+            messages(&RULE, "crystal a\n  lattice chain 5 nm \\").len(),
+            1
+        );
     }
 }

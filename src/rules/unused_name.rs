@@ -66,7 +66,10 @@ fn material(file: &FileSubject<'_>, entry: &Entry) -> Option<Finding> {
     if file.uses(place, NameSort::Material) {
         return None;
     }
-    Some(unused(place, format!("nothing uses the material `{}`", name.text)))
+    Some(unused(
+        place,
+        format!("nothing uses the material `{}`", name.text),
+    ))
 }
 
 fn names<'a>(file: &'a FileSubject<'_>, entry: &'a Entry) -> impl Iterator<Item = Finding> + 'a {
@@ -98,7 +101,8 @@ fn unused(place: Place, message: String) -> Finding {
 
 fn take_out(file: &FileSubject<'_>, entry: &Entry, statement: Span) -> Option<Fix> {
     let mut lines = entry.section.lines.iter();
-    let line = lines.find(|line| line.span.start <= statement.start && statement.end <= line.span.end)?;
+    let line =
+        lines.find(|line| line.span.start <= statement.start && statement.end <= line.span.end)?;
     let edit = Replacement::new(file.place(entry, line.span), "");
     Some(Fix::guess("take this line out", edit))
 }
@@ -110,19 +114,24 @@ mod tests {
 
     #[test]
     fn a_let_and_a_material_that_nothing_uses_are_found() {
-        let text = "let a = 3 nm\nmaterial m\n  mass 1 me\n  edge 0 eV\ncrystal c\n  lattice chain 5 nm\n";
+        let text =
+            "let a = 3 nm\nmaterial m\n  mass 1 me\n  edge 0 eV\ncrystal c\n  lattice chain 5 nm\n";
         let found = messages(&RULE, text);
         assert_eq!(found, ["nothing uses `a`", "nothing uses the material `m`"]);
     }
 
     #[test]
     fn a_file_of_materials_alone_is_a_shelf() {
-        silent(&RULE, "let a = 3 nm\nmaterial m\n  mass 1 me\n  edge 0 eV\n");
+        silent(
+            &RULE,
+            "let a = 3 nm\nmaterial m\n  mass 1 me\n  edge 0 eV\n",
+        );
     }
 
     #[test]
     fn a_let_that_replaces_an_inherited_one_is_used() {
-        let text = "crystal c\n  let a = 3 nm\n  lattice chain a\ncrystal d like c\n  let a = 4 nm\n";
+        let text =
+            "crystal c\n  let a = 3 nm\n  lattice chain a\ncrystal d like c\n  let a = 4 nm\n";
         silent(&RULE, text);
     }
 }

@@ -158,10 +158,17 @@ pub fn in_unit(value: f64, unit: Option<Unit>, digits: usize) -> String {
 #[must_use]
 pub fn number(value: f64, digits: usize) -> String {
     if value == 0.0 || !value.is_finite() {
-        return if value == 0.0 { "0".into() } else { format!("{value}") };
+        return if value == 0.0 {
+            "0".into()
+        } else {
+            format!("{value}")
+        };
     }
     let scientific = format!("{:.*e}", digits.max(1) - 1, value);
-    let exponent = scientific.rsplit('e').next().and_then(|e| e.parse::<i32>().ok());
+    let exponent = scientific
+        .rsplit('e')
+        .next()
+        .and_then(|e| e.parse::<i32>().ok());
     match exponent {
         Some(exponent) if (-4..=7).contains(&exponent) => plain(value, digits, exponent),
         _ => without_zeros_before_exponent(&scientific),
