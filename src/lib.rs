@@ -17,4 +17,6 @@ pub mod rules;
 
 pub mod report;
 
+pub mod server;
+
 pub mod cli;

@@ -3,10 +3,11 @@
 use std::process::ExitCode;
 
 use crenate::cli::{self, Outcome};
+use crenate::server;
 
 fn main() -> ExitCode {
     match cli::run() {
         Outcome::Done(status) => status.into(),
-        Outcome::Serve => ExitCode::from(2),
+        Outcome::Serve => server::run(),
     }
 }

@@ -10,6 +10,7 @@ mod field;
 mod filling;
 mod fingerprint;
 mod layout;
+mod picture;
 mod probe;
 mod quantity;
 mod range;
@@ -24,6 +25,7 @@ use std::sync::Arc;
 use crate::model::{Crystal, CrystalRef};
 
 pub use assess::{Rebuild, class_word, gap_word};
+pub use picture::{EdgeWave, Picture, potential_line};
 pub use types::*;
 
 use assess::Assessor;
@@ -110,5 +112,19 @@ impl Solver {
         };
         let targets = assessor.targets().ok_or(Unsolved::Cancelled)?;
         Ok((targets, assessor.measures()))
+    }
+
+    /// What a picture of a one-dimensional crystal is drawn from, with about `points` points a line.
+    ///
+    /// # Errors
+    /// [`Unsolved`] says why there is none.
+    pub fn picture(
+        &self,
+        crystal: &Crystal,
+        points: usize,
+        cancelled: &Cancelled<'_>,
+    ) -> Result<Picture, Unsolved> {
+        let solution = self.solve(crystal, cancelled)?;
+        picture::picture(crystal, &solution, points, cancelled)
     }
 }

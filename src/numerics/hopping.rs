@@ -84,8 +84,7 @@ fn integrate<T: Scalar>(
     meter: &Meter,
 ) -> Result<Option<(Bounded, f64)>, SolveError> {
     let mut finder = Finder::<T>::new(ready, meter);
-    finder.surround(band)?;
-    let Inside::At(start) = finder.inside(band)? else {
+    let Inside::At(start) = finder.isolate(band)? else {
         return Ok(None);
     };
     let mut curve = Curve {
@@ -96,10 +95,10 @@ fn integrate<T: Scalar>(
         size: 0.0,
     };
     let mut points = POINTS[0].max(2 * r);
-    let mut sum = curve.trapezoid(points, 0)?;
+    let mut sum = curve.trapezoid(points, false)?;
     let mut value = sum.leading() / points as f64;
     while points < POINTS[1] {
-        sum = sum + curve.trapezoid(points, 1)?;
+        sum = sum + curve.trapezoid(points, true)?;
         points *= 2;
         let next = sum.leading() / points as f64;
         let change = (next - value).abs();
@@ -113,6 +112,18 @@ fn integrate<T: Scalar>(
     curve.tanh_sinh().map(|value| Some((value, curve.size)))
 }
 
+/// π to 106 bits.
+const PI_DOUBLE: Double = Double {
+    high: PI,
+    low: 1.224_646_799_147_353_2e-16,
+};
+
+/// sin x = x f₁(−x²).
+fn sine<T: Scalar>(x: T) -> T {
+    let (f, _) = (-(x * x)).entire(2);
+    x * f[1]
+}
+
 /// A band swept along k.
 struct Curve<'a, T> {
     finder: Finder<'a, T>,
@@ -124,14 +135,18 @@ struct Curve<'a, T> {
 }
 
 impl<T: Scalar> Curve<'_, T> {
-    /// −(2/r) sin θ sin rθ / D′ at θ = ka.
-    fn integrand(&mut self, angle: f64, sine: f64, multiple: f64) -> Result<T, SolveError> {
-        let share = if self.band % 2 == 0 {
-            angle / PI
+    /// −(2/r) sin θ sin rθ / D′ at θ = ka, given by its distance from the nearer of 0 and π. All in the
+    /// arithmetic of the sweep: for r > 1 the terms cancel down to the change of D′ over the band.
+    fn integrand(&mut self, near: T, upper_half: bool) -> Result<T, SolveError> {
+        let share = near.leading() / PI;
+        let share = if upper_half == (self.band % 2 == 0) {
+            1.0 - share
         } else {
-            1.0 - angle / PI
+            share
         };
-        let target = level_target::<T>(self.band, share);
+        let mut target = level_target::<T>(self.band, share);
+        let half = sine(near.times(0.5));
+        target.depth = -(half * half).times(4.0);
         let (energy, reading) = self.finder.root(target, self.last.energy)?;
         let reading = if energy.leading() == reading.energy.leading() && T::UNIT == f64::UNIT {
             reading
@@ -140,23 +155,38 @@ impl<T: Scalar> Curve<'_, T> {
         };
         self.last = reading;
         let slope = reading.trace().slope;
-        let weight = -2.0 * sine * multiple / self.r as f64;
-        let value = (T::constant(weight) / slope).shifted(-reading.exponent);
-        let size = 2.0 * sine * sine / (slope.leading() * power_of_two(reading.exponent)).abs();
+        let multiple = sine(near.times(self.r as f64));
+        let sign = if upper_half && self.r % 2 == 0 {
+            2.0
+        } else {
+            -2.0
+        };
+        let sine = sine(near);
+        let value = (sine * multiple).times(sign) / (slope.times(self.r as f64));
+        let size =
+            2.0 * sine.leading().powi(2) / (slope.leading() * power_of_two(reading.exponent)).abs();
         self.size = self.size.max(size);
-        Ok(value)
+        Ok(value.shifted(-reading.exponent))
     }
 
-    /// Sum of the integrand at θ = π j/points, all j (`odd` = 0) or the points halfway between.
-    fn trapezoid(&mut self, points: usize, odd: usize) -> Result<T, SolveError> {
+    /// Sum of the integrand at θ = π j/points, all j (`odd` false) or the points halfway between.
+    fn trapezoid(&mut self, points: usize, odd: bool) -> Result<T, SolveError> {
+        let pi = T::lift(T::real(PI_DOUBLE));
         let mut sum = T::constant(0.0);
         for j in 1..=points {
-            let angle = PI * (j as f64 - 0.5 * odd as f64) / points as f64;
-            if odd == 0 && j == points {
+            // in half steps
+            let steps = 2 * j - usize::from(odd);
+            if steps == 2 * points {
                 break;
             }
-            let term = self.integrand(angle, angle.sin(), (self.r as f64 * angle).sin())?;
-            sum = sum + term;
+            let upper_half = steps > points;
+            let near = if upper_half {
+                2 * points - steps
+            } else {
+                steps
+            };
+            let near = pi.times(near as f64) / T::constant(2.0 * points as f64);
+            sum = sum + self.integrand(near, upper_half)?;
         }
         Ok(sum)
     }
@@ -175,21 +205,12 @@ impl<T: Scalar> Curve<'_, T> {
                 let share = 1.0 / (1.0 + e);
                 // distance from the nearer end keeps the sine's digits
                 let near = share.min(e * share);
-                let sine = (PI * near).sin();
-                let multiple = (self.r as f64 * PI * near).sin();
-                let sign = if share > 0.5 && self.r % 2 == 0 {
-                    -1.0
-                } else {
-                    1.0
-                };
                 if near < 1e-15 {
                     continue;
                 }
                 let weight = PI * t.cosh() * share * (e * share) * step;
-                sum = sum
-                    + self
-                        .integrand(PI * share, sine, sign * multiple)?
-                        .times(weight);
+                let term = self.integrand(T::constant(PI * near), share > 0.5)?;
+                sum = sum + term.times(weight);
             }
             let next = sum.leading();
             let change = (next - value).abs();

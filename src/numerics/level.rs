@@ -172,9 +172,10 @@ pub(crate) fn level_target<T: Scalar>(band: usize, share: f64) -> Target<T> {
     let sine = (0.5 * angle).sin();
     Target {
         states: band as f64 + share,
-        upper: true,
+        upper: gap == band,
         positive: is_positive(gap),
         depth: T::constant(-4.0 * sine * sine),
+        margin: 1e-3 * share.min(1.0 - share),
     }
 }
 
@@ -185,8 +186,7 @@ fn root_at<T: Scalar>(
     meter: &Meter,
 ) -> Result<Option<Double>, SolveError> {
     let mut finder = Finder::<T>::new(ready, meter);
-    finder.surround(band)?;
-    let start = match finder.inside(band)? {
+    let start = match finder.isolate(band)? {
         Inside::At(reading) => reading.energy,
         Inside::Unresolved => return Ok(None),
     };

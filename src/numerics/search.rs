@@ -52,6 +52,8 @@ pub(crate) struct Target<T> {
     pub upper: bool,
     pub positive: bool,
     pub depth: T,
+    /// this close to `states` the sign of the residual tells the side, more finely than N
+    pub margin: f64,
 }
 
 /// The sign of D at the edges next to gap `gap` − 1, that is where N = `gap`.
@@ -67,10 +69,15 @@ impl<T: Scalar> Target<T> {
             upper,
             positive: is_positive(gap),
             depth: T::constant(0.0),
+            margin: 0.0,
         }
     }
 
     fn is_left(&self, reading: &Reading<T>) -> bool {
+        if (reading.states - self.states).abs() < self.margin {
+            let above = self.residual(reading).0.leading() > 0.0;
+            return above == self.upper;
+        }
         if self.upper {
             reading.states <= self.states
         } else {
@@ -253,6 +260,26 @@ impl<'a, T: Scalar> Finder<'a, T> {
             return left.energy + T::constant(width * share.clamp(0.1, 0.9));
         }
         middle
+    }
+
+    /// A reading inside band `band`, with points in the gaps on both sides in the ledger, so that between those
+    /// D is monotone.
+    pub fn isolate(&mut self, band: usize) -> Result<Inside<T>, SolveError> {
+        self.surround(band + 1)?;
+        let Inside::At(middle) = self.inside(band)? else {
+            return Ok(Inside::Unresolved);
+        };
+        let Inside::At(above) = self.inside(band + 1)? else {
+            return Ok(Inside::Unresolved);
+        };
+        self.gap_point(middle, above, is_positive(band + 1))?;
+        if band > 0 {
+            let Inside::At(below) = self.inside(band - 1)? else {
+                return Ok(Inside::Unresolved);
+            };
+            self.gap_point(below, middle, is_positive(band))?;
+        }
+        Ok(Inside::At(middle))
     }
 
     /// A point in the gap between readings in neighbouring bands, or where s D is greatest.

@@ -260,6 +260,7 @@ fn settle<T: Scalar>(
     let reading = read(ready, start, meter)?;
     let fine = Target {
         depth: Double::ZERO,
+        margin: 0.0,
         states: target.states,
         upper: target.upper,
         positive: target.positive,

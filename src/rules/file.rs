@@ -28,11 +28,12 @@ impl FileSubject<'_> {
         }
     }
 
-    /// Whether a name that is defined at `definition` is used.
+    /// Whether a name that is defined at `definition` is used, or may be meant where a name of that sort is unknown.
     #[must_use]
-    pub fn uses(&self, definition: Place, sort: NameSort) -> bool {
-        let mut all = self.references.iter().copied().flatten();
-        all.any(|reference| reference.sort == sort && reference.definition == Some(definition))
+    pub fn may_use(&self, definition: Place, sort: NameSort) -> bool {
+        let all = self.references.iter().copied().flatten();
+        let mut of_sort = all.filter(|reference| reference.sort == sort);
+        of_sort.any(|reference| reference.definition.is_none_or(|place| place == definition))
     }
 
     /// Whether a value of that name is used anywhere in the file.

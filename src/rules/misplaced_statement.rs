@@ -10,7 +10,7 @@
 //! material basin
 //!   mass 0.067 me
 //!   edge 0 meV
-//!   filling 2
+//!   filling 1
 //!   ^^^^^^^
 //!
 //! crystal tern
@@ -25,7 +25,7 @@
 //!
 //! crystal tern
 //!   layer 8.0 nm of basin
-//!   filling 2
+//!   filling 1
 //! ```
 //!
 //! # Fix

@@ -15,7 +15,6 @@
 //!   layer 8.0 nm off basin
 //!                ^^^
 //! ```
-//! Also found: `missing-lattice`.
 //!
 //! # Instead
 //! ```cren

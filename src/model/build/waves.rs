@@ -124,7 +124,12 @@ impl<'w> CrystalBuild<'_, 'w> {
 
     /// All equivalents of a wave under the lattice's own symmetry.
     fn members(&self, indices: &[i64]) -> Vec<Vec<i64>> {
-        let operations = point_operations(&self.crystal.primitive_values());
+        let vectors = if self.evaluator.setting.draws.is_empty() {
+            self.crystal.primitive_values()
+        } else {
+            self.undrawn_vectors()
+        };
+        let operations = point_operations(&vectors);
         star(indices, self.centring(), &operations)
     }
 

@@ -1,0 +1,58 @@
+//! Pages that explain rules, for the link beside a diagnostic.
+//!
+//! Editors open such links as they open any other; what they all can open
+//! without a network is a file. So the explanations are written, once a
+//! session, into the user's cache folder, and the link names a file there.
+
+use std::path::PathBuf;
+use std::sync::OnceLock;
+use std::{env, fs, io};
+
+use tower_lsp::lsp_types::Url;
+
+use super::log::log;
+use crate::report::editor_rules;
+
+/// The page of a rule, where the pages could be written.
+pub(super) fn page(rule: &str) -> Option<Url> {
+    static FOLDER: OnceLock<Option<PathBuf>> = OnceLock::new();
+    let folder = FOLDER.get_or_init(|| {
+        let written = folder().map(|folder| write(&folder).map(|()| folder));
+        written.and_then(|written| {
+            written
+                .inspect_err(|error| log!("no pages about rules: {error}"))
+                .ok()
+        })
+    });
+    Url::from_file_path(folder.as_ref()?.join(format!("{rule}.md"))).ok()
+}
+
+fn folder() -> Option<PathBuf> {
+    let from = |name: &str| {
+        env::var_os(name)
+            .filter(|value| !value.is_empty())
+            .map(PathBuf::from)
+    };
+    let cache = from("XDG_CACHE_HOME").or_else(|| from("LOCALAPPDATA"));
+    let cache = cache.or_else(|| from("HOME").map(|home| home.join(".cache")))?;
+    let version = env!("CARGO_PKG_VERSION");
+    cache
+        .is_absolute()
+        .then(|| cache.join("crenate").join(format!("rules-{version}")))
+}
+
+/// Writes the pages that are not there yet, or not as they should be.
+fn write(folder: &std::path::Path) -> io::Result<()> {
+    fs::create_dir_all(folder)?;
+    for (name, text) in editor_rules::pages() {
+        let page = folder.join(format!("{name}.md"));
+        if fs::read_to_string(&page).is_ok_and(|there| there == text) {
+            continue;
+        }
+        // Another server may write the same page: a rename is all or nothing.
+        let draft = folder.join(format!(".{name}.{}", std::process::id()));
+        fs::write(&draft, &text)?;
+        fs::rename(&draft, &page)?;
+    }
+    Ok(())
+}
