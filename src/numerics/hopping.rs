@@ -119,7 +119,7 @@ fn unresolved<T: Scalar>(
     r: usize,
 ) -> Result<(Bounded, f64), SolveError> {
     let first = -1.0 / nearest.slope();
-    let (curvature, exponent) = finder.curvature(nearest.energy)?;
+    let (_, curvature, exponent) = finder.curvature(nearest.energy)?;
     let second = curvature * power_of_two(exponent) * first * first * first;
     if r == 1 {
         return Ok((

@@ -17,6 +17,8 @@ use super::sweep::{Reading, product, read};
 const PATIENCE: usize = 260;
 /// s D − 2 above which a gap is wide: its edges are found apart.
 const WIDE: f64 = 1e-4;
+/// D′ relative to its size in the bands at which the top of s D is as good as found.
+const SETTLED: f64 = 1e-5;
 /// Noise of D above which a reading inside a band means nothing.
 const NOISY: f64 = 0.1;
 /// A band point is taken when N is at least this far from whole.
@@ -327,6 +329,7 @@ impl<'a, T: Scalar> Finder<'a, T> {
             if positive { slope } else { -slope }
         };
         let (mut up, mut down) = (signed(&left), signed(&right));
+        let steepest = up.abs().max(down.abs());
         let mut halve = false;
         for _ in 0..PATIENCE {
             let width = (right.energy - left.energy).leading();
@@ -349,17 +352,8 @@ impl<'a, T: Scalar> Finder<'a, T> {
                 return Ok(GapPoint::Noisy(energy));
             }
             let slope = signed(&reading);
-            let noise = 8.0
-                * T::UNIT
-                * reading
-                    .matrix
-                    .a
-                    .slope
-                    .leading()
-                    .abs()
-                    .max(reading.matrix.d.slope.leading().abs())
-                * power_of_two(reading.exponent);
-            if slope.abs() <= noise {
+            // near enough for Newton's steps by D″
+            if slope.abs() <= SETTLED * steepest {
                 return Ok(GapPoint::Narrow(energy));
             }
             if slope > 0.0 {
@@ -381,16 +375,20 @@ impl<'a, T: Scalar> Finder<'a, T> {
         Err(SolveError::NoBracket)
     }
 
-    /// D″ at an energy, and its power of two.
-    pub fn curvature(&self, energy: T) -> Result<(f64, i64), SolveError> {
+    /// D′/D″ at an energy, D″, and the power of two of D″.
+    pub fn curvature(&self, energy: T) -> Result<(T, f64, i64), SolveError> {
         self.meter.spend()?;
         let variable = Dual {
             value: Dual::variable(energy),
             slope: Dual::constant(1.0),
         };
         let whole = product(self.ready, variable);
-        let trace = whole.matrix.a + whole.matrix.d;
-        Ok((trace.slope.slope.leading(), whole.exponent))
+        let second = (whole.matrix.a + whole.matrix.d).slope;
+        Ok((
+            second.value / second.slope,
+            second.slope.leading(),
+            whole.exponent,
+        ))
     }
 
     /// The root of a target, from `start`, within what the ledger brackets. Gives the root and the

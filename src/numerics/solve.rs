@@ -298,13 +298,21 @@ fn narrow_pair<T: Scalar>(
 ) -> Result<RawGap, SolveError> {
     let finder = Finder::<T>::new(ready, meter);
     let mut centre = centre;
-    for _ in 0..2 {
-        let (curvature, exponent) = finder.curvature(centre)?;
-        let reading = read(ready, centre, meter)?;
-        let slope = reading.trace().slope.shifted(reading.exponent - exponent);
-        centre = centre - slope / T::constant(curvature);
+    let (mut curvature, mut exponent) = (0.0, 0);
+    for _ in 0..6 {
+        let (step, second, power) = finder.curvature(centre)?;
+        (curvature, exponent) = (second, power);
+        if !step.leading().is_finite() {
+            break;
+        }
+        centre = centre - step;
+        if step.leading().abs()
+            <= 1e-2 * finder.resolution(centre).sqrt() * ready.kinetic_scale().sqrt()
+        {
+            // the next step would be below the arithmetic's resolution
+            break;
+        }
     }
-    let (curvature, exponent) = finder.curvature(centre)?;
     let reading = read(ready, centre, meter)?;
     let (excess, noise) = reading.excess(positive);
     let over_curvature = 2.0 * power_of_two(reading.exponent - exponent) / curvature.abs();
@@ -333,19 +341,24 @@ fn narrow_pair<T: Scalar>(
             ..Target::<T>::edge(0, upper)
         };
         let mut last = read(ready, energy, meter)?;
-        for _ in 0..3 {
+        let mut offset = 0.0;
+        for _ in 0..4 {
             let (residual, slope, _) = target.residual(&last);
             let step = -(residual / slope);
-            if !(step.leading().abs() < 0.5 * half) {
+            let size = step.leading().abs();
+            if !(size < 0.5 * half) {
                 break;
             }
             energy = energy + step;
-            last = read(ready, energy, meter)?;
-            if step.leading().abs() <= finder.resolution(energy) {
+            // Newton's next step would be about size²/half
+            if size * size <= 0.1 * half * finder.resolution(energy) {
+                offset = step.leading();
                 break;
             }
+            last = read(ready, energy, meter)?;
         }
         *edge = raw_edge(&target, energy, &last);
+        edge.offset = offset;
         edge.noise += finder.resolution(energy);
     }
     let noise = edges[0].noise + edges[1].noise;

@@ -148,11 +148,11 @@ pub(crate) fn is_closed(ready: &Ready, raw: &Raw, band: usize) -> bool {
     size <= error
 }
 
-/// Relative rounding of an entry of a factor: of the `f64` sweep, or of the double-double one whose thick walls
-/// lose a few bits to doubling.
+/// Relative rounding of an entry of a factor: of the `f64` sweep, or of the double-double one whose series and
+/// doublings lose up to ten bits in a thick wall.
 fn units(exact: bool) -> f64 {
     if exact {
-        64.0 * Double::UNIT
+        1024.0 * Double::UNIT
     } else {
         6.0 * UNIT
     }
