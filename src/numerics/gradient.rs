@@ -24,9 +24,6 @@ pub(crate) fn quadrature() -> &'static [(f64, f64)] {
     &QUADRATURE
 }
 
-/// Rounding of one factor's entries in units, for the bound on what a sweep in `f64` loses.
-const FACTOR_ROUNDING: f64 = 6.0;
-
 /// A matrix and its power of two.
 #[derive(Clone, Copy)]
 pub(crate) struct Scaled<T> {
@@ -123,7 +120,7 @@ pub(crate) struct Gradient<T> {
     pub energy: T,
     /// D′
     pub energy_slope: T,
-    /// Σ |K||M_j| over factors: rounding of D, in units of a factor's relative rounding
+    /// Σ |K||M_j| over factors: change of D by a relative change of one in every entry
     pub rounding: f64,
     pub exponent: i64,
 }
@@ -158,7 +155,7 @@ pub(crate) fn gradient<T: Scalar>(ready: &Ready, energy: T) -> Gradient<T> {
     for factor in &list {
         let shift = factor.rest.exponent + factor.scaled.exponent - exponent;
         let around = factor.rest.matrix.shifted(shift);
-        result.rounding += FACTOR_ROUNDING * absolute(&factor.scaled.matrix, &around);
+        result.rounding += absolute(&factor.scaled.matrix, &around);
         match &ready.elements[factor.element] {
             Element::Delta { .. } => {
                 result.pieces.push(PieceSlope {

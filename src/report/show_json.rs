@@ -310,7 +310,7 @@ fn measure(measure: &MeasureValue) -> MeasureRecord {
 }
 
 fn target(locator: &Locator<'_>, crystal: &Crystal, assessment: &Assessment) -> TargetRecord {
-    let (factor, unit) = machine_unit(assessment.dimension);
+    let (factor, unit) = machine_unit(words::target_dimension(assessment));
     let value = assessment.value.map(|value| scaled(value, factor));
     let reach = assessment.value.map_or(0.0, |value| value.uncertainty);
     let worst = assessment.worst.map(|value| {
