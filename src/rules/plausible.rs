@@ -148,7 +148,7 @@ pub fn allowed(kind: Kind, setting: &Setting) -> Option<Range> {
             Carrier::Neither => None,
         },
         Kind::Recoil => setting.period.map(|period| (0.1 * period, 50.0 * period)),
-        Kind::SiteSize => setting.period.map(|period| (1e-3 * period, 20.0 * period)),
+        Kind::SiteSize => setting.period.map(|period| (2e-4 * period, 20.0 * period)),
         Kind::Temperature => match (carrier, setting.period) {
             (Carrier::Electron, _) => Some((0.0, 3000.0)),
             (Carrier::Atom, Some(period)) if period > OPTICAL => Some((0.0, 1e-2)),

@@ -1,7 +1,8 @@
 //! # What it finds
 //! A quantity of the right dimension and an implausible size for what it is, where another unit would make it
-//! plausible: eV for meV, um for nm, nm for angstrom, `u` for `me`. Electrons and atoms are told apart. Also a bare
-//! lattice angle above π and a bare phase above 2π, which are likely degrees.
+//! plausible: eV for meV, um for nm, nm for angstrom, `u` for `me`. Electrons and atoms are told apart. Also layers
+//! whose edges hardly differ, samples of a table in another unit than it says, and a bare lattice angle above π or a
+//! bare phase above 2π, which are likely degrees.
 //!
 //! # Why it matters
 //! A wrong unit passes every check of dimensions and moves the bands by powers of ten.

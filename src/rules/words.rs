@@ -115,7 +115,7 @@ fn energy_unit(size: f64, trade: Trade) -> Unit {
 
 fn length_unit(size: f64) -> Unit {
     let nanometre = LENGTHS[3];
-    if size == 0.0 || (size >= 0.05e-9 && size < 2e-6) {
+    if size == 0.0 || (0.05e-9..2e-6).contains(&size) {
         return nanometre;
     }
     first_at_most(&LENGTHS, size)
