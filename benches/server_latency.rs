@@ -38,8 +38,8 @@ fn main() {
     let mut times = [const { Vec::new() }; 3];
     for edit in 0..edits {
         let index = (edit * 131) % CRYSTALS;
-        let thin = (edit / CRYSTALS) % 2 == 0;
-        let measured = server.edit(digits[index], thin, i32::try_from(edit + 2).unwrap());
+        let thick = (edit / CRYSTALS) % 2 == 0;
+        let measured = server.edit(digits[index], thick, i32::try_from(edit + 2).unwrap());
         for (all, one) in times.iter_mut().zip(measured) {
             all.push(one);
         }
