@@ -3,15 +3,17 @@
 use std::sync::Arc;
 
 use crate::model::{
-    ClassWish, Crystal, CrystalRef, Dimension, GapWish, ParameterId, ParameterKind, Quantity, QuantityKind, Setting,
-    Target, TargetFormula, Wish,
+    ClassWish, Crystal, CrystalRef, Dimension, GapWish, ParameterId, ParameterKind, Quantity,
+    QuantityKind, Setting, Target, TargetFormula, Wish,
 };
 
 use super::filling::Filled;
 use super::probe::{Measures, Probe, Reading, Side};
 use super::quantity::{Crystals, Evaluation, Untested};
 use super::worst::Sample;
-use super::{Assessment, Class, GapKind, MeasureValue, Measured, Solution, Solver, TargetState, solve};
+use super::{
+    Assessment, Class, GapKind, MeasureValue, Measured, Solution, Solver, TargetState, solve,
+};
 
 /// Gives a crystal at a setting of its tolerances; `None` where it cannot be built.
 pub type Rebuild<'a> = dyn Fn(CrystalRef, &Setting) -> Option<Arc<Crystal>> + Sync + 'a;
@@ -39,7 +41,10 @@ impl Assessor<'_> {
             .map(|measure| MeasureValue {
                 place: measure.place,
                 name: measure.name.clone(),
-                value: evaluation.formula(&measure.expression).map(|leaf| leaf.value).map_err(words),
+                value: evaluation
+                    .formula(&measure.expression)
+                    .map(|leaf| leaf.value)
+                    .map_err(words),
                 dimension: measure.dimension,
             })
             .collect()
@@ -47,11 +52,22 @@ impl Assessor<'_> {
 
     /// What became of each target, in order; `None` when the work was overtaken.
     pub fn targets(&self) -> Option<Vec<Assessment>> {
-        (0..self.crystal.targets.len()).map(|index| self.target(index)).collect()
+        (0..self.crystal.targets.len())
+            .map(|index| self.target(index))
+            .collect()
     }
 
-    pub fn evaluation<'b>(&'b self, crystals: &'b Crystals<'b>, with_slopes: bool) -> Evaluation<'b> {
-        Evaluation { solver: self.solver, crystals, cancelled: self.cancelled, with_slopes }
+    pub fn evaluation<'b>(
+        &'b self,
+        crystals: &'b Crystals<'b>,
+        with_slopes: bool,
+    ) -> Evaluation<'b> {
+        Evaluation {
+            solver: self.solver,
+            crystals,
+            cancelled: self.cancelled,
+            with_slopes,
+        }
     }
 
     /// A crystal at a setting; this one's nominal self is at hand.
@@ -72,22 +88,35 @@ impl Assessor<'_> {
         match found {
             Ok(assessment) => Some(assessment),
             Err(Untested::Cancelled) => None,
-            Err(Untested::Because(reason)) => {
-                Some(Assessment { reason: Some(reason), ..blank(target, TargetState::Untestable) })
-            }
+            Err(Untested::Because(reason)) => Some(Assessment {
+                reason: Some(reason),
+                ..blank(target, TargetState::Untestable)
+            }),
         }
     }
 
-    fn compare(&self, index: usize, target: &Target, dimension: Dimension) -> Result<Assessment, Untested> {
+    fn compare(
+        &self,
+        index: usize,
+        target: &Target,
+        dimension: Dimension,
+    ) -> Result<Assessment, Untested> {
         let draws = self.draws(target);
-        let probe = Probe { assessor: self, measures: Measures::Target(index), draws: &draws };
+        let probe = Probe {
+            assessor: self,
+            measures: Measures::Target(index),
+            draws: &draws,
+        };
         let nominal = probe.at(&vec![0.0; draws.len()], false)?;
         let limits = limits(&nominal);
         let mut assessment = Assessment {
             state: state(nominal.value.value, limits),
             value: Some(nominal.value.value),
             dimension,
-            limits: (limits.0.map(|limit| limit.value), limits.1.map(|limit| limit.value)),
+            limits: (
+                limits.0.map(|limit| limit.value),
+                limits.1.map(|limit| limit.value),
+            ),
             ..blank(target, TargetState::Met)
         };
         if assessment.state == TargetState::Undecided {
@@ -100,17 +129,28 @@ impl Assessor<'_> {
     }
 
     /// Adds the worst case over the tolerances.
-    fn worst(&self, probe: &Probe<'_>, target: &Target, assessment: &mut Assessment) -> Result<(), Untested> {
+    fn worst(
+        &self,
+        probe: &Probe<'_>,
+        target: &Target,
+        assessment: &mut Assessment,
+    ) -> Result<(), Untested> {
         let exact = has_exact_slopes(target);
         let mut least: Option<(Sample, Sample)> = None;
         for side in [Side::Lower, Side::Upper] {
             let found = probe.least_margin(side, exact, f64::NEG_INFINITY)?;
-            let better = |best: &Sample| least.as_ref().is_none_or(|(_, least)| best.value < least.value);
+            let better = |best: &Sample| {
+                least
+                    .as_ref()
+                    .is_none_or(|(_, least)| best.value < least.value)
+            };
             if found.as_ref().is_some_and(|(_, best)| better(best)) {
                 least = found;
             }
         }
-        let Some((centre, worst)) = least else { return Ok(()) };
+        let Some((centre, worst)) = least else {
+            return Ok(());
+        };
         let there = probe.at(&worst.point, false)?;
         assessment.worst = Some(there.value.value.value);
         note_corner(assessment, probe.draws, &centre, &worst);
@@ -147,7 +187,10 @@ impl Assessor<'_> {
         let mut draws = Vec::new();
         for of in crystals {
             if let Some(crystal) = self.at(of, &nominal) {
-                let own = crystal.parameters.iter().filter(|parameter| parameter.kind == ParameterKind::Draw);
+                let own = crystal
+                    .parameters
+                    .iter()
+                    .filter(|parameter| parameter.kind == ParameterKind::Draw);
                 draws.extend(own.map(|parameter| parameter.id));
             }
         }
@@ -159,8 +202,17 @@ impl Assessor<'_> {
 
     fn class(&self, target: &Target, wish: ClassWish) -> Result<Assessment, Untested> {
         let solution = self.solver.solve(self.crystal, self.cancelled)?;
-        let class = solution.class.ok_or_else(|| no_class(self.crystal, &solution))?;
-        let mut assessment = blank(target, if fits(class, wish) { TargetState::Met } else { TargetState::Missed });
+        let class = solution
+            .class
+            .ok_or_else(|| no_class(self.crystal, &solution))?;
+        let mut assessment = blank(
+            target,
+            if fits(class, wish) {
+                TargetState::Met
+            } else {
+                TargetState::Missed
+            },
+        );
         assessment.found = Some(class_word(class).to_string());
         let whole = match solve::filled(self.crystal) {
             Some(Filled::Whole(whole)) => whole,
@@ -173,11 +225,20 @@ impl Assessor<'_> {
         Ok(assessment)
     }
 
-    fn gap_is(&self, target: &Target, of: CrystalRef, band: usize, wish: GapWish) -> Result<Assessment, Untested> {
+    fn gap_is(
+        &self,
+        target: &Target,
+        of: CrystalRef,
+        band: usize,
+        wish: GapWish,
+    ) -> Result<Assessment, Untested> {
         let crystal = self.at(of, &Setting::default()).ok_or_else(no_crystal)?;
         let solution = self.solver.solve(&crystal, self.cancelled)?;
         let gap = solution.gaps.get(band.wrapping_sub(1)).ok_or_else(|| {
-            Untested::Because(format!("it speaks of gap {band}, and {} bands are solved", solution.bands.len()))
+            Untested::Because(format!(
+                "it speaks of gap {band}, and {} bands are solved",
+                solution.bands.len()
+            ))
         })?;
         let fits = matches!(
             (gap.kind, wish),
@@ -185,7 +246,14 @@ impl Assessor<'_> {
                 | (GapKind::Indirect, GapWish::Indirect)
                 | (GapKind::Closed, GapWish::Closed)
         );
-        let mut assessment = blank(target, if fits { TargetState::Met } else { TargetState::Missed });
+        let mut assessment = blank(
+            target,
+            if fits {
+                TargetState::Met
+            } else {
+                TargetState::Missed
+            },
+        );
         assessment.found = Some(gap_word(gap.kind).to_string());
         assessment.value = Some(gap.size);
         assessment.dimension = Dimension::ENERGY;
@@ -196,15 +264,30 @@ impl Assessor<'_> {
     }
 
     /// Puts a target at risk where a gap closes within the tolerances.
-    fn keeps_gap(&self, of: CrystalRef, band: usize, assessment: &mut Assessment) -> Result<(), Untested> {
+    fn keeps_gap(
+        &self,
+        of: CrystalRef,
+        band: usize,
+        assessment: &mut Assessment,
+    ) -> Result<(), Untested> {
         let draws = self.draws_of(vec![self.of, of]);
         if draws.is_empty() {
             return Ok(());
         }
-        let gap = Quantity { of, place: assessment.place, kind: QuantityKind::Gap(band) };
+        let gap = Quantity {
+            of,
+            place: assessment.place,
+            kind: QuantityKind::Gap(band),
+        };
         let gap = TargetFormula::Quantity(gap);
-        let probe = Probe { assessor: self, measures: Measures::Formula(&gap), draws: &draws };
-        let Some((centre, worst)) = probe.least_margin(Side::Lower, true, 0.0)? else { return Ok(()) };
+        let probe = Probe {
+            assessor: self,
+            measures: Measures::Formula(&gap),
+            draws: &draws,
+        };
+        let Some((centre, worst)) = probe.least_margin(Side::Lower, true, 0.0)? else {
+            return Ok(());
+        };
         assessment.worst = Some(worst.value);
         note_corner(assessment, &draws, &centre, &worst);
         if worst.value <= 0.0 {
@@ -215,8 +298,17 @@ impl Assessor<'_> {
 }
 
 /// Writes down where the worst case lies and which tolerance spends most of the margin on the way there.
-fn note_corner(assessment: &mut Assessment, draws: &[ParameterId], centre: &Sample, worst: &Sample) {
-    assessment.corner = draws.iter().copied().zip(worst.point.iter().copied()).collect();
+fn note_corner(
+    assessment: &mut Assessment,
+    draws: &[ParameterId],
+    centre: &Sample,
+    worst: &Sample,
+) {
+    assessment.corner = draws
+        .iter()
+        .copied()
+        .zip(worst.point.iter().copied())
+        .collect();
     // What one tolerance spends: the mean of its slopes at both ends of the way, times its part of the way.
     let spent = |axis: usize| {
         let slope = |sample: &Sample| sample.slopes.get(axis).copied().unwrap_or(0.0);
@@ -224,20 +316,31 @@ fn note_corner(assessment: &mut Assessment, draws: &[ParameterId], centre: &Samp
         -0.5 * (slope(centre) + slope(worst)) * way
     };
     let most = (0..draws.len()).max_by(|a, b| spent(*a).total_cmp(&spent(*b)));
-    assessment.driver = most.filter(|axis| spent(*axis) > 0.0).and_then(|axis| draws.get(axis).copied());
+    assessment.driver = most
+        .filter(|axis| spent(*axis) > 0.0)
+        .and_then(|axis| draws.get(axis).copied());
 }
 
 fn limits(reading: &Reading) -> (Option<Measured>, Option<Measured>) {
-    (reading.lower.as_ref().map(|leaf| leaf.value), reading.upper.as_ref().map(|leaf| leaf.value))
+    (
+        reading.lower.as_ref().map(|leaf| leaf.value),
+        reading.upper.as_ref().map(|leaf| leaf.value),
+    )
 }
 
 /// Whether a target speaks only of quantities with exact derivatives.
 fn has_exact_slopes(target: &Target) -> bool {
     let differenced = |kind: &QuantityKind| {
-        matches!(kind, QuantityKind::MassBottom(_) | QuantityKind::MassTop(_) | QuantityKind::Hopping(..))
+        matches!(
+            kind,
+            QuantityKind::MassBottom(_) | QuantityKind::MassTop(_) | QuantityKind::Hopping(..)
+        )
     };
     match &target.wish {
-        Wish::Compare { expression, .. } => !expression.quantities().iter().any(|quantity| differenced(&quantity.kind)),
+        Wish::Compare { expression, .. } => !expression
+            .quantities()
+            .iter()
+            .any(|quantity| differenced(&quantity.kind)),
         _ => true,
     }
 }
@@ -245,8 +348,18 @@ fn has_exact_slopes(target: &Target) -> bool {
 /// Whether a value is within its limits, outside, or too near to tell.
 fn state(value: Measured, limits: (Option<Measured>, Option<Measured>)) -> TargetState {
     let margins = [
-        limits.0.map(|limit| (value.value - limit.value, value.uncertainty + limit.uncertainty)),
-        limits.1.map(|limit| (limit.value - value.value, value.uncertainty + limit.uncertainty)),
+        limits.0.map(|limit| {
+            (
+                value.value - limit.value,
+                value.uncertainty + limit.uncertainty,
+            )
+        }),
+        limits.1.map(|limit| {
+            (
+                limit.value - value.value,
+                value.uncertainty + limit.uncertainty,
+            )
+        }),
     ];
     let margins = margins.into_iter().flatten();
     let mut state = TargetState::Met;
@@ -293,7 +406,10 @@ fn no_class(crystal: &Crystal, solution: &Solution) -> Untested {
     let reason = match (&crystal.filling, crystal.bosons) {
         (_, true) => "bosons have no class".to_string(),
         (None, _) => "the crystal says no `filling`".to_string(),
-        (Some(_), _) => format!("the filling is not within the {} bands solved", solution.bands.len()),
+        (Some(_), _) => format!(
+            "the filling is not within the {} bands solved",
+            solution.bands.len()
+        ),
     };
     Untested::Because(reason)
 }

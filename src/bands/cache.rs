@@ -62,9 +62,14 @@ mod tests {
         let answer: Answer = Err(Unsolved::BrokenModel);
         for fingerprint in 0..20_000 {
             cache.put(fingerprint, &answer);
-            assert!(cache.get(0).is_some(), "the first was lost after {fingerprint}");
+            assert!(
+                cache.get(0).is_some(),
+                "the first was lost after {fingerprint}"
+            );
         }
-        let kept = (0..20_000).filter(|fingerprint| cache.get(*fingerprint).is_some()).count();
+        let kept = (0..20_000)
+            .filter(|fingerprint| cache.get(*fingerprint).is_some())
+            .count();
         assert!(kept <= MOST, "{kept} answers are kept");
     }
 

@@ -1,12 +1,12 @@
 //! A one-dimensional crystal as the numerics see it, and the way back: energies in joule, derivatives by the chain rule.
 
-use crate::model::{Crystal, ParameterId};
+use crate::model::Crystal;
 use crate::numerics::{Bounded, Budget, Cell, Mass, Mesh, Piece, SolveError};
 
 use super::field::Field;
 use super::layout::{self, Stretch};
 use super::scale::Scale;
-use super::{Feature, Measured, Sensitivity, Unsolved};
+use super::{Measured, Unsolved};
 
 /// What a crystal may cost: sweeps over its cell. A thousand layers at twenty bands need under ten thousand.
 const MOST_SWEEPS: usize = 100_000;
@@ -18,35 +18,49 @@ pub(super) struct Chain<'a> {
     pub field: Field<'a>,
     pub scale: Scale,
     pub cell: Cell,
-    origins: Vec<Origin>,
-    stretches: Vec<Stretch>,
+    pub origins: Vec<Origin>,
+    /// The nodes of all smooth stretches as shares of their stretch.
+    pub nodes: Vec<f64>,
+    pub stretches: Vec<Stretch>,
 }
 
 /// Where a piece of the cell comes from.
 #[derive(Clone, Copy)]
-enum Origin {
+pub(super) enum Origin {
     Delta(usize),
     /// A whole stretch, constant or linear.
     Plain(usize),
-    /// One step of a smooth stretch: its ends as shares of the stretch.
-    Step { stretch: usize, from: f64, to: f64 },
+    /// One step of a smooth stretch: its ends as shares of the stretch, and the first of its nodes.
+    Step {
+        stretch: usize,
+        from: f64,
+        to: f64,
+        node: usize,
+    },
 }
 
 /// A budget of the standard size with this hook.
 pub(super) fn budget<'a>(cancelled: &'a (dyn Fn() -> bool + Sync)) -> Budget<'a> {
-    Budget { max_sweeps: MOST_SWEEPS, cancelled }
+    Budget {
+        max_sweeps: MOST_SWEEPS,
+        cancelled,
+    }
 }
 
 /// Why the numerics gave up, for the user.
 pub(super) fn unsolved(error: SolveError) -> Unsolved {
     match error {
         SolveError::Cancelled => Unsolved::Cancelled,
-        SolveError::BudgetSpent => Unsolved::NotConverged("the work allowed was spent before the bands settled".into()),
-        SolveError::NoBracket => Unsolved::NotConverged("an edge could not be closed in on".into()),
-        SolveError::NotFinite => Unsolved::NotConverged("the potential, a length or a mass is not finite".into()),
-        SolveError::MassOutOfRange => {
-            Unsolved::NotConverged("the energy-dependent mass is not positive at an energy of these bands".into())
+        SolveError::BudgetSpent => {
+            Unsolved::NotConverged("the work allowed was spent before the bands settled".into())
         }
+        SolveError::NoBracket => Unsolved::NotConverged("an edge could not be closed in on".into()),
+        SolveError::NotFinite => {
+            Unsolved::NotConverged("the potential, a length or a mass is not finite".into())
+        }
+        SolveError::MassOutOfRange => Unsolved::NotConverged(
+            "the energy-dependent mass is not positive at an energy of these bands".into(),
+        ),
     }
 }
 
@@ -57,36 +71,70 @@ impl<'a> Chain<'a> {
         let scale = Scale::new(period, crystal.mass.value).ok_or(Unsolved::BrokenModel)?;
         let field = Field::new(crystal, period);
         let stretches = layout::stretches(crystal, period);
-        let mut chain = Self { field, scale, cell: Cell::default(), origins: Vec::new(), stretches: Vec::new() };
+        let mut chain = Self {
+            field,
+            scale,
+            cell: Cell::default(),
+            origins: Vec::new(),
+            nodes: Vec::new(),
+            stretches: Vec::new(),
+        };
         for (index, stretch) in stretches.iter().enumerate() {
             chain.add_stretch(index, stretch, budget)?;
             if chain.cell.pieces.len() > MOST_PIECES {
-                return Err(Unsolved::NotConverged(format!("the cell has more than {MOST_PIECES} pieces")));
+                return Err(Unsolved::NotConverged(format!(
+                    "the cell has more than {MOST_PIECES} pieces"
+                )));
             }
         }
         chain.stretches = stretches;
         Ok(chain)
     }
 
-    fn add_stretch(&mut self, index: usize, stretch: &Stretch, budget: &Budget<'_>) -> Result<(), Unsolved> {
+    fn add_stretch(
+        &mut self,
+        index: usize,
+        stretch: &Stretch,
+        budget: &Budget<'_>,
+    ) -> Result<(), Unsolved> {
         for delta in &stretch.deltas {
-            let strength = self.field.crystal.potential.deltas.get(*delta).map_or(0.0, |delta| delta.strength.value);
+            let strength = self
+                .field
+                .crystal
+                .potential
+                .deltas
+                .get(*delta)
+                .map_or(0.0, |delta| delta.strength.value);
             let strength = strength / (self.scale.energy * self.scale.length);
             self.push(Piece::Delta { strength }, Origin::Delta(*delta));
         }
         let length = self.field.length::<f64>(stretch) / self.scale.length;
-        let mass = self.field.masses::<f64>(stretch).map(|(value, slope)| Mass {
-            value: value / self.scale.mass,
-            slope: slope * self.scale.energy / self.scale.mass,
-        });
+        let mass = self
+            .field
+            .masses::<f64>(stretch)
+            .map(|(value, slope)| Mass {
+                value: value / self.scale.mass,
+                slope: slope * self.scale.energy / self.scale.mass,
+            });
         if self.field.is_smooth(stretch) {
             return self.add_smooth(index, stretch, mass, budget);
         }
-        let potential = self.field.ends::<f64>(stretch).map(|energy| energy / self.scale.energy);
+        let potential = self
+            .field
+            .ends::<f64>(stretch)
+            .map(|energy| energy / self.scale.energy);
         let piece = if potential[0] == potential[1] && mass[0] == mass[1] {
-            Piece::Flat { length, potential: potential[0], mass: mass[0] }
+            Piece::Flat {
+                length,
+                potential: potential[0],
+                mass: mass[0],
+            }
         } else {
-            Piece::Ramp { length, potential, mass }
+            Piece::Ramp {
+                length,
+                potential,
+                mass,
+            }
         };
         self.push(piece, Origin::Plain(index));
         Ok(())
@@ -105,12 +153,26 @@ impl<'a> Chain<'a> {
         let potential = |at: f64| field.potential(stretch, &(from + at * field.period)) / energy;
         let share = length / self.scale.length;
         let mesh = Mesh::build(share, &potential, 1.0, budget).map_err(unsolved)?;
-        let samples: Vec<f64> = mesh.nodes().iter().map(|node| potential(node * share)).collect();
+        let samples: Vec<f64> = mesh
+            .nodes()
+            .iter()
+            .map(|node| potential(node * share))
+            .collect();
         let pieces = mesh.pieces(&samples, mass);
-        let bounds = mesh.boundaries();
-        for (piece, ends) in pieces.into_iter().zip(bounds.windows(2)) {
+        let mut node = self.nodes.len();
+        self.nodes.extend_from_slice(mesh.nodes());
+        for (piece, ends) in pieces.into_iter().zip(mesh.boundaries().windows(2)) {
             if let [from, to] = ends {
-                self.push(piece, Origin::Step { stretch: index, from: *from, to: *to });
+                self.push(
+                    piece,
+                    Origin::Step {
+                        stretch: index,
+                        from: *from,
+                        to: *to,
+                        node,
+                    },
+                );
+                node += Mesh::NODES;
             }
         }
         Ok(())
@@ -123,23 +185,17 @@ impl<'a> Chain<'a> {
 
     /// An energy of the numerics in joule.
     pub fn energy(&self, bounded: Bounded) -> Measured {
-        Measured { value: bounded.value * self.scale.energy, uncertainty: bounded.error * self.scale.energy }
+        Measured {
+            value: bounded.value * self.scale.energy,
+            uncertainty: bounded.error * self.scale.energy,
+        }
     }
 
     /// A mass of the numerics in kg.
     pub fn mass(&self, bounded: Bounded) -> Measured {
-        Measured { value: bounded.value * self.scale.mass, uncertainty: bounded.error * self.scale.mass }
-    }
-}
-
-impl Chain<'_> {
-    pub fn feature_slopes(&self, _f: Feature, _b: &Budget<'_>) -> Result<Vec<(ParameterId, f64)>, Unsolved> {
-        Ok(Vec::new())
-    }
-    pub fn level_slopes(&self, _n: usize, _ka: f64, _b: &Budget<'_>) -> Result<Vec<(ParameterId, f64)>, Unsolved> {
-        Ok(Vec::new())
-    }
-    pub fn sensitivities(&self, _n: usize, _b: &Budget<'_>) -> Result<Vec<Sensitivity>, Unsolved> {
-        Ok(Vec::new())
+        Measured {
+            value: bounded.value * self.scale.mass,
+            uncertainty: bounded.error * self.scale.mass,
+        }
     }
 }

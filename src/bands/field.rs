@@ -18,15 +18,28 @@ pub(super) struct Field<'a> {
 impl<'a> Field<'a> {
     /// Of a crystal with this period.
     pub fn new(crystal: &'a Crystal, period: f64) -> Self {
-        let table = crystal.potential.table.as_ref().map_or_else(Vec::new, |table| table.pieces(period));
-        Self { crystal, period, table }
+        let table = crystal
+            .potential
+            .table
+            .as_ref()
+            .map_or_else(Vec::new, |table| table.pieces(period));
+        Self {
+            crystal,
+            period,
+            table,
+        }
     }
 
     /// The period.
     pub fn period<S: Scalar>(&self) -> S {
         let layers = &self.crystal.potential.layers;
         if layers.is_empty() {
-            return match self.crystal.vectors.first().and_then(|vector| vector.first()) {
+            return match self
+                .crystal
+                .vectors
+                .first()
+                .and_then(|vector| vector.first())
+            {
                 Some(length) => S::lift(length),
                 None => S::number(self.period),
             };
@@ -37,7 +50,9 @@ impl<'a> Field<'a> {
     /// The left face of a layer: the sum of the lengths before it.
     fn face<S: Scalar>(&self, layers: usize) -> S {
         let lengths = self.crystal.potential.layers.iter().take(layers);
-        lengths.fold(S::number(0.0), |sum, layer| sum.plus(&S::lift(&layer.length)))
+        lengths.fold(S::number(0.0), |sum, layer| {
+            sum.plus(&S::lift(&layer.length))
+        })
     }
 
     /// The position of a cut.
@@ -48,13 +63,18 @@ impl<'a> Field<'a> {
             Mark::End => return self.period(),
             Mark::Face(layer) => return self.face(layer + 1),
             Mark::Knot(_) => return S::number(cut.at),
-            Mark::Delta(index) => potential.deltas.get(index).map(|delta| (S::lift(&delta.at), 0)),
+            Mark::Delta(index) => potential
+                .deltas
+                .get(index)
+                .map(|delta| (S::lift(&delta.at), 0)),
             Mark::PieceEnd(index, side, shift) => potential
                 .profile
                 .get(index)
                 .and_then(|piece| piece.range.get(side))
                 .map(|end| (S::lift(end), shift)),
-            Mark::BoxEdge(index, side, shift) => self.box_edge(index, side).map(|edge| (edge, shift)),
+            Mark::BoxEdge(index, side, shift) => {
+                self.box_edge(index, side).map(|edge| (edge, shift))
+            }
         };
         match at {
             Some((at, 0)) => at,
@@ -65,7 +85,9 @@ impl<'a> Field<'a> {
 
     fn box_edge<S: Scalar>(&self, index: usize, side: i64) -> Option<S> {
         let site = self.crystal.potential.sites.get(index)?;
-        let SiteShape::Box(sizes) = &site.shape else { return None };
+        let SiteShape::Box(sizes) = &site.shape else {
+            return None;
+        };
         let half = S::lift(sizes.first()?).scaled(0.5 * side as f64);
         Some(S::lift(site.at.first()?).plus(&half))
     }
@@ -75,7 +97,8 @@ impl<'a> Field<'a> {
         if let Some(layer) = self.whole_layer(stretch) {
             return S::lift(&layer.length);
         }
-        self.position::<S>(&stretch.to).minus(&self.position(&stretch.from))
+        self.position::<S>(&stretch.to)
+            .minus(&self.position(&stretch.from))
     }
 
     fn whole_layer(&self, stretch: &Stretch) -> Option<&crate::model::Layer> {
@@ -91,39 +114,73 @@ impl<'a> Field<'a> {
             Mark::Face(face) => face == index,
             _ => false,
         };
-        if starts && ends { layers.get(index) } else { None }
+        if starts && ends {
+            layers.get(index)
+        } else {
+            None
+        }
     }
 
     /// Whether the potential on a stretch is neither constant nor linear.
     pub fn is_smooth(&self, stretch: &Stretch) -> bool {
         let potential = &self.crystal.potential;
-        let formula = stretch.piece.and_then(|(index, _)| potential.profile.get(index));
+        let formula = stretch
+            .piece
+            .and_then(|(index, _)| potential.profile.get(index));
         formula.is_some_and(|piece| piece.formula.varies())
-            || potential.table.as_ref().is_some_and(|table| !table.straight)
-            || potential.waves.iter().any(|wave| wave.indices.iter().flatten().any(|index| *index != 0))
-            || potential.sites.iter().any(|site| !matches!(site.shape, SiteShape::Box(_)))
+            || potential
+                .table
+                .as_ref()
+                .is_some_and(|table| !table.straight)
+            || potential
+                .waves
+                .iter()
+                .any(|wave| wave.indices.iter().flatten().any(|index| *index != 0))
+            || potential
+                .sites
+                .iter()
+                .any(|site| !matches!(site.shape, SiteShape::Box(_)))
     }
 
     /// Everything but the layer, at a cell coordinate on a stretch.
     fn added<S: Scalar>(&self, stretch: &Stretch, x: &S) -> S {
         let potential = &self.crystal.potential;
         let mut sum = S::number(0.0);
-        if let Some(piece) = stretch.piece.and_then(|(index, _)| potential.profile.get(index)) {
+        if let Some(piece) = stretch
+            .piece
+            .and_then(|(index, _)| potential.profile.get(index))
+        {
             let shift = stretch.piece.map_or(0, |(_, shift)| shift);
-            let inside = if shift == 0 { x.clone() } else { x.plus(&self.period::<S>().scaled(shift as f64)) };
-            sum = sum.plus(&piece.formula.evaluate(&[inside, S::number(0.0), S::number(0.0)]));
+            let inside = if shift == 0 {
+                x.clone()
+            } else {
+                x.plus(&self.period::<S>().scaled(shift as f64))
+            };
+            sum = sum.plus(
+                &piece
+                    .formula
+                    .evaluate(&[inside, S::number(0.0), S::number(0.0)]),
+            );
         }
         if let Some(piece) = stretch.knot.and_then(|knot| self.table.get(knot)) {
             // The last piece reaches past the cell's end to the first sample, one period on.
-            let turns = if x.value() < piece.start - 1e-9 * self.period { 1.0 } else { 0.0 };
+            let turns = if x.value() < piece.start - 1e-9 * self.period {
+                1.0
+            } else {
+                0.0
+            };
             let at = x.value() + turns * self.period;
             sum = sum.plus(&x.chain(piece.at(at), || piece.slope_at(at)));
         }
-        sum.plus(&self.waves_and_sites(x)).plus(&self.boxes(stretch))
+        sum.plus(&self.waves_and_sites(x))
+            .plus(&self.boxes(stretch))
     }
 
     fn boxes<S: Scalar>(&self, stretch: &Stretch) -> S {
-        let sites = stretch.boxes.iter().filter_map(|index| self.crystal.potential.sites.get(*index));
+        let sites = stretch
+            .boxes
+            .iter()
+            .filter_map(|index| self.crystal.potential.sites.get(*index));
         sites.fold(S::number(0.0), |sum, site| sum.plus(&S::lift(&site.energy)))
     }
 
@@ -140,7 +197,11 @@ impl<'a> Field<'a> {
             let angles: Vec<S> = indices.map(|index| turn.scaled(*index as f64)).collect();
             sum = sum.plus(&wave.value_at(&angles));
         }
-        for site in potential.sites.iter().filter(|site| !matches!(site.shape, SiteShape::Box(_))) {
+        for site in potential
+            .sites
+            .iter()
+            .filter(|site| !matches!(site.shape, SiteShape::Box(_)))
+        {
             let Some(at) = site.at.first() else { continue };
             if let Some(shape) = sum_of_images(&site.shape, &x.minus(&S::lift(at)), &period) {
                 sum = sum.plus(&shape.times(&S::lift(&site.energy)));
@@ -152,14 +213,23 @@ impl<'a> Field<'a> {
     /// The share of its layer that lies left of a position on a stretch.
     fn share<S: Scalar>(&self, layer: usize, x: &S) -> S {
         let left: S = self.face(layer);
-        let length = self.crystal.potential.layers.get(layer).map_or(S::number(1.0), |layer| S::lift(&layer.length));
+        let length = self
+            .crystal
+            .potential
+            .layers
+            .get(layer)
+            .map_or(S::number(1.0), |layer| S::lift(&layer.length));
         x.minus(&left).over(&length)
     }
 
     /// The layer's own potential at a position on a stretch.
     fn layered<S: Scalar>(&self, stretch: &Stretch, x: &S) -> S {
-        let layer = stretch.layer.and_then(|index| Some((index, self.crystal.potential.layers.get(index)?)));
-        let Some((index, layer)) = layer else { return S::number(0.0) };
+        let layer = stretch
+            .layer
+            .and_then(|index| Some((index, self.crystal.potential.layers.get(index)?)));
+        let Some((index, layer)) = layer else {
+            return S::number(0.0);
+        };
         let [left, right] = &layer.edge;
         if left == right {
             return S::lift(left);
@@ -179,18 +249,26 @@ impl<'a> Field<'a> {
             let [left, right] = &layer.edge;
             let varies = self.crystal.potential.table.is_some();
             let at = |edge: &Dual, cut: &Cut| {
-                let x = if varies { self.position(cut) } else { S::number(cut.at) };
+                let x = if varies {
+                    self.position(cut)
+                } else {
+                    S::number(cut.at)
+                };
                 S::lift(edge).plus(&self.added(stretch, &x))
             };
             return [at(left, &stretch.from), at(right, &stretch.to)];
         }
-        [self.potential(stretch, &self.position(&stretch.from)), self.potential(stretch, &self.position(&stretch.to))]
+        [
+            self.potential(stretch, &self.position(&stretch.from)),
+            self.potential(stretch, &self.position(&stretch.to)),
+        ]
     }
 
     /// The mass at both ends of a stretch, as (value, slope with energy) in kg and kg/J.
     pub fn masses<S: Scalar>(&self, stretch: &Stretch) -> [(S, S); 2] {
-        let Some((index, layer)) =
-            stretch.layer.and_then(|index| Some((index, self.crystal.potential.layers.get(index)?)))
+        let Some((index, layer)) = stretch
+            .layer
+            .and_then(|index| Some((index, self.crystal.potential.layers.get(index)?)))
         else {
             let mass = (S::lift(&self.crystal.mass), S::number(0.0));
             return [mass.clone(), mass];

@@ -2,7 +2,7 @@
 
 use std::hash::{DefaultHasher, Hash, Hasher};
 
-use crate::model::{Crystal, Dual, Formula, FormfactorValues, MassLaw, SiteShape};
+use crate::model::{Crystal, Dual, FormfactorValues, Formula, MassLaw, SiteShape};
 
 /// Names the bands of a crystal: equal for crystals of equal numbers, wherever they are written.
 pub(super) fn fingerprint(crystal: &Crystal) -> u128 {
@@ -35,7 +35,12 @@ impl Print {
     }
 
     fn crystal(&mut self, crystal: &Crystal) {
-        self.add(&(crystal.dimension, crystal.degeneracy, crystal.bosons, crystal.bands));
+        self.add(&(
+            crystal.dimension,
+            crystal.degeneracy,
+            crystal.bosons,
+            crystal.bands,
+        ));
         self.duals(crystal.vectors.iter().flatten());
         self.duals(crystal.conventional.iter().flatten());
         self.duals(std::iter::once(&crystal.mass).chain(&crystal.filling));
@@ -51,7 +56,11 @@ impl Print {
         }
         if let Some(table) = &potential.table {
             self.add(&table.straight);
-            table.positions.iter().chain(&table.energies).for_each(|value| self.number(*value));
+            table
+                .positions
+                .iter()
+                .chain(&table.energies)
+                .for_each(|value| self.number(*value));
         }
         self.spikes_and_waves(crystal);
         self.atoms(crystal);

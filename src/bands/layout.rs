@@ -53,8 +53,17 @@ pub(super) struct Stretch {
 
 /// The period of a 1D crystal in metre: its layers' sum, else its lattice vector.
 pub(super) fn period(crystal: &Crystal) -> Option<f64> {
-    let layers: f64 = crystal.potential.layers.iter().map(|layer| layer.length.value).sum();
-    let vector = crystal.vectors.first().and_then(|vector| vector.first()).map(|length| length.value);
+    let layers: f64 = crystal
+        .potential
+        .layers
+        .iter()
+        .map(|layer| layer.length.value)
+        .sum();
+    let vector = crystal
+        .vectors
+        .first()
+        .and_then(|vector| vector.first())
+        .map(|length| length.value);
     let period = if layers > 0.0 { Some(layers) } else { vector };
     period.filter(|period| period.is_finite() && *period > 0.0)
 }
@@ -84,23 +93,37 @@ pub(super) fn stretches(crystal: &Crystal, period: f64) -> Vec<Stretch> {
 /// All cuts in order, equal ones once, and the deltas with their positions in the cell.
 fn cuts(crystal: &Crystal, period: f64) -> (Vec<Cut>, Vec<(usize, f64)>) {
     let potential = &crystal.potential;
-    let mut cuts = vec![Cut { at: 0.0, mark: Mark::Start }];
+    let mut cuts = vec![Cut {
+        at: 0.0,
+        mark: Mark::Start,
+    }];
     let mut face = 0.0;
     for (index, layer) in potential.layers.iter().enumerate() {
         face += layer.length.value;
-        cuts.push(Cut { at: face, mark: Mark::Face(index) });
+        cuts.push(Cut {
+            at: face,
+            mark: Mark::Face(index),
+        });
     }
     let mut add = |at: f64, mark: &dyn Fn(i64) -> Mark| {
         let shift = (at / period).floor();
         let inside = at - shift * period;
-        cuts.push(Cut { at: inside, mark: mark(-(shift as i64)) });
+        cuts.push(Cut {
+            at: inside,
+            mark: mark(-(shift as i64)),
+        });
         inside
     };
     let mut deltas = Vec::new();
     for (index, delta) in potential.deltas.iter().enumerate() {
         deltas.push((index, add(delta.at.value, &|_| Mark::Delta(index))));
     }
-    for (index, piece) in potential.profile.iter().enumerate().filter(|(_, piece)| !piece.whole) {
+    for (index, piece) in potential
+        .profile
+        .iter()
+        .enumerate()
+        .filter(|(_, piece)| !piece.whole)
+    {
         for (side, end) in piece.range.iter().enumerate() {
             add(end.value, &|shift| Mark::PieceEnd(index, side, shift));
         }
@@ -114,17 +137,24 @@ fn cuts(crystal: &Crystal, period: f64) -> (Vec<Cut>, Vec<(usize, f64)>) {
         if let (SiteShape::Box(sizes), Some(centre)) = (&site.shape, site.at.first()) {
             let half = sizes.first().map_or(0.0, |size| 0.5 * size.value);
             for side in [-1, 1] {
-                add(centre.value + side as f64 * half, &|shift| Mark::BoxEdge(index, side, shift));
+                add(centre.value + side as f64 * half, &|shift| {
+                    Mark::BoxEdge(index, side, shift)
+                });
             }
         }
     }
-    cuts.push(Cut { at: period, mark: Mark::End });
+    cuts.push(Cut {
+        at: period,
+        mark: Mark::End,
+    });
     (merged(cuts, period), deltas)
 }
 
 /// The cuts in order of position; of equal ones the first kept, the cell's ends before all.
 fn merged(mut cuts: Vec<Cut>, period: f64) -> Vec<Cut> {
-    cuts.retain(|cut| matches!(cut.mark, Mark::Start | Mark::End) || cut.at < period * (1.0 - SAME));
+    cuts.retain(|cut| {
+        matches!(cut.mark, Mark::Start | Mark::End) || cut.at < period * (1.0 - SAME)
+    });
     cuts.sort_by(|a, b| a.at.total_cmp(&b.at));
     cuts.dedup_by(|later, first| {
         let same = later.at - first.at <= SAME * period;
@@ -139,18 +169,39 @@ fn merged(mut cuts: Vec<Cut>, period: f64) -> Vec<Cut> {
 
 fn stretch(crystal: &Crystal, period: f64, from: Cut, to: Cut) -> Stretch {
     let middle = 0.5 * (from.at + to.at);
-    let piece = crystal.potential.profile.iter().enumerate().find_map(|(index, piece)| {
-        let [start, end] = &piece.range;
-        let shift = if piece.whole { 0.0 } else { ((start.value - middle) / period).ceil() };
-        let inside = piece.whole || middle + shift * period <= end.value;
-        inside.then_some((index, shift as i64))
-    });
+    let piece = crystal
+        .potential
+        .profile
+        .iter()
+        .enumerate()
+        .find_map(|(index, piece)| {
+            let [start, end] = &piece.range;
+            let shift = if piece.whole {
+                0.0
+            } else {
+                ((start.value - middle) / period).ceil()
+            };
+            let inside = piece.whole || middle + shift * period <= end.value;
+            inside.then_some((index, shift as i64))
+        });
     let knot = crystal.potential.table.as_ref().map(|table| {
         let after = table.positions.partition_point(|at| *at <= middle);
-        if after == 0 { table.positions.len().saturating_sub(1) } else { after - 1 }
+        if after == 0 {
+            table.positions.len().saturating_sub(1)
+        } else {
+            after - 1
+        }
     });
     let boxes = boxes_over(crystal, period, middle);
-    Stretch { from, to, layer: None, piece, knot, boxes, deltas: Vec::new() }
+    Stretch {
+        from,
+        to,
+        layer: None,
+        piece,
+        knot,
+        boxes,
+        deltas: Vec::new(),
+    }
 }
 
 /// The boxes that cover a point, once for each image that does.
@@ -161,7 +212,11 @@ fn boxes_over(crystal: &Crystal, period: f64, point: f64) -> Vec<usize> {
             let half = sizes.first().map_or(0.0, |size| 0.5 * size.value);
             let first = ((point - half - centre.value) / period).ceil();
             let last = ((point + half - centre.value) / period).floor();
-            let images = if last >= first { (last - first) as usize + 1 } else { 0 };
+            let images = if last >= first {
+                (last - first) as usize + 1
+            } else {
+                0
+            };
             over.extend(std::iter::repeat_n(index, images));
         }
     }

@@ -10,10 +10,12 @@ mod field;
 mod filling;
 mod fingerprint;
 mod layout;
+mod picture;
 mod probe;
 mod quantity;
 mod range;
 mod scale;
+mod slopes;
 mod solve;
 mod types;
 mod worst;
@@ -23,6 +25,7 @@ use std::sync::Arc;
 use crate::model::{Crystal, CrystalRef};
 
 pub use assess::{Rebuild, class_word, gap_word};
+pub use picture::{EdgeWave, Picture, potential_line};
 pub use types::*;
 
 use assess::Assessor;
@@ -43,7 +46,11 @@ impl Solver {
     ///
     /// # Errors
     /// [`Unsolved`] says why there are none.
-    pub fn solve(&self, crystal: &Crystal, cancelled: &Cancelled<'_>) -> Result<Arc<Solution>, Unsolved> {
+    pub fn solve(
+        &self,
+        crystal: &Crystal,
+        cancelled: &Cancelled<'_>,
+    ) -> Result<Arc<Solution>, Unsolved> {
         match crystal.dimension {
             _ if crystal.broken => return Err(Unsolved::BrokenModel),
             1 => {}
@@ -96,8 +103,28 @@ impl Solver {
         rebuild: &Rebuild<'_>,
         cancelled: &Cancelled<'_>,
     ) -> Result<(Vec<Assessment>, Vec<MeasureValue>), Unsolved> {
-        let assessor = Assessor { solver: self, of, crystal, rebuild, cancelled };
+        let assessor = Assessor {
+            solver: self,
+            of,
+            crystal,
+            rebuild,
+            cancelled,
+        };
         let targets = assessor.targets().ok_or(Unsolved::Cancelled)?;
         Ok((targets, assessor.measures()))
+    }
+
+    /// What a picture of a one-dimensional crystal is drawn from, with about `points` points a line.
+    ///
+    /// # Errors
+    /// [`Unsolved`] says why there is none.
+    pub fn picture(
+        &self,
+        crystal: &Crystal,
+        points: usize,
+        cancelled: &Cancelled<'_>,
+    ) -> Result<Picture, Unsolved> {
+        let solution = self.solve(crystal, cancelled)?;
+        picture::picture(crystal, &solution, points, cancelled)
     }
 }

@@ -61,22 +61,33 @@ impl Probe<'_> {
         };
         let evaluation = self.assessor.evaluation(&crystals, with_slopes);
         match self.measures {
-            Measures::Formula(formula) => {
-                Ok(Reading { value: evaluation.formula(formula)?, lower: None, upper: None })
-            }
+            Measures::Formula(formula) => Ok(Reading {
+                value: evaluation.formula(formula)?,
+                lower: None,
+                upper: None,
+            }),
             Measures::Target(index) => {
-                let gone = || Untested::Because("the model has errors within its tolerances".into());
+                let gone =
+                    || Untested::Because("the model has errors within its tolerances".into());
                 let own = crystals(self.assessor.of).ok_or_else(gone)?;
-                let Some(Wish::Compare { expression, limits, .. }) =
-                    own.targets.get(index).map(|target| &target.wish)
+                let Some(Wish::Compare {
+                    expression, limits, ..
+                }) = own.targets.get(index).map(|target| &target.wish)
                 else {
                     return Err(gone());
                 };
                 let limit = |limit: &Option<(TargetFormula, bool)>| {
-                    limit.as_ref().map(|(formula, _)| evaluation.formula(formula)).transpose()
+                    limit
+                        .as_ref()
+                        .map(|(formula, _)| evaluation.formula(formula))
+                        .transpose()
                 };
                 let Limits { lower, upper } = limits;
-                Ok(Reading { value: evaluation.formula(expression)?, lower: limit(lower)?, upper: limit(upper)? })
+                Ok(Reading {
+                    value: evaluation.formula(expression)?,
+                    lower: limit(lower)?,
+                    upper: limit(upper)?,
+                })
             }
         }
     }
@@ -92,9 +103,16 @@ impl Probe<'_> {
     }
 
     /// The margin from one limit, with its derivatives by the tolerances; `None` without such a limit.
-    fn margin(&self, point: &[f64], side: Side, exact: bool) -> Result<Option<(f64, Vec<f64>)>, Untested> {
+    fn margin(
+        &self,
+        point: &[f64],
+        side: Side,
+        exact: bool,
+    ) -> Result<Option<(f64, Vec<f64>)>, Untested> {
         let reading = self.at(point, exact)?;
-        let Some((value, slopes)) = margin_of(&reading, side) else { return Ok(None) };
+        let Some((value, slopes)) = margin_of(&reading, side) else {
+            return Ok(None);
+        };
         if exact {
             return Ok(Some((value, self.by_draw(&slopes))));
         }
@@ -115,15 +133,26 @@ impl Probe<'_> {
 
     fn by_draw(&self, slopes: &[(ParameterId, f64)]) -> Vec<f64> {
         let slope = |draw: &ParameterId| {
-            let found = slopes.binary_search_by_key(draw, |(id, _)| *id).ok().and_then(|index| slopes.get(index));
+            let found = slopes
+                .binary_search_by_key(draw, |(id, _)| *id)
+                .ok()
+                .and_then(|index| slopes.get(index));
             found.map_or(0.0, |(_, slope)| *slope)
         };
         self.draws.iter().map(slope).collect()
     }
 
     /// The least margin over the box, as (at the nominal values, at the worst); `None` without such a limit.
-    pub fn least_margin(&self, side: Side, exact: bool, floor: f64) -> Result<Option<(Sample, Sample)>, Untested> {
-        if self.margin(&vec![0.0; self.draws.len()], side, exact)?.is_none() {
+    pub fn least_margin(
+        &self,
+        side: Side,
+        exact: bool,
+        floor: f64,
+    ) -> Result<Option<(Sample, Sample)>, Untested> {
+        if self
+            .margin(&vec![0.0; self.draws.len()], side, exact)?
+            .is_none()
+        {
             return Ok(None);
         }
         let mut failure = None;
@@ -146,9 +175,18 @@ impl Probe<'_> {
 fn margin_of(reading: &Reading, side: Side) -> Option<(f64, Vec<(ParameterId, f64)>)> {
     let zero = Leaf::default();
     let (limit, sign) = match side {
-        Side::Lower => (reading.lower.as_ref().or(reading.upper.is_none().then_some(&zero))?, 1.0),
+        Side::Lower => (
+            reading
+                .lower
+                .as_ref()
+                .or(reading.upper.is_none().then_some(&zero))?,
+            1.0,
+        ),
         Side::Upper => (reading.upper.as_ref()?, -1.0),
     };
     let value = sign * (reading.value.value.value - limit.value.value);
-    Some((value, sum_slopes(&[(sign, &reading.value.slopes), (-sign, &limit.slopes)])))
+    Some((
+        value,
+        sum_slopes(&[(sign, &reading.value.slopes), (-sign, &limit.slopes)]),
+    ))
 }

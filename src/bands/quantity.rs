@@ -26,7 +26,9 @@ impl From<Unsolved> for Untested {
             Unsolved::Dimension(dimension) => {
                 Self::Because(format!("bands in {dimension} dimensions are not solved"))
             }
-            Unsolved::NotConverged(why) => Self::Because(format!("the bands are not converged: {why}")),
+            Unsolved::NotConverged(why) => {
+                Self::Because(format!("the bands are not converged: {why}"))
+            }
         }
     }
 }
@@ -62,7 +64,10 @@ impl Evaluation<'_> {
         let mut leaves: Vec<Leaf> = Vec::new();
         let mut failure = None;
         let value = formula.evaluate(&mut |quantity| {
-            let leaf = self.quantity(quantity).map_err(|untested| failure = Some(untested)).ok()?;
+            let leaf = self
+                .quantity(quantity)
+                .map_err(|untested| failure = Some(untested))
+                .ok()?;
             let id = ParameterId(FIRST_LEAF + leaves.len() as u64);
             let number = Dual::parameter(leaf.value.value, id);
             leaves.push(leaf);
@@ -76,18 +81,30 @@ impl Evaluation<'_> {
     }
 
     fn quantity(&self, quantity: &Quantity) -> Result<Leaf, Untested> {
-        let crystal = (self.crystals)(quantity.of).ok_or_else(|| because("its crystal cannot be read"))?;
+        let crystal =
+            (self.crystals)(quantity.of).ok_or_else(|| because("its crystal cannot be read"))?;
         let solution = self.solver.solve(&crystal, self.cancelled)?;
-        let mut leaf = Leaf { value: self.value(&crystal, &solution, &quantity.kind)?, slopes: Vec::new() };
+        let mut leaf = Leaf {
+            value: self.value(&crystal, &solution, &quantity.kind)?,
+            slopes: Vec::new(),
+        };
         if self.with_slopes {
             leaf.slopes = self.slopes(&crystal, &solution, &quantity.kind)?;
         }
         Ok(leaf)
     }
 
-    fn value(&self, crystal: &Crystal, solution: &Solution, kind: &QuantityKind) -> Result<Measured, Untested> {
+    fn value(
+        &self,
+        crystal: &Crystal,
+        solution: &Solution,
+        kind: &QuantityKind,
+    ) -> Result<Measured, Untested> {
         let band = |number: &usize| {
-            solution.bands.get(number.wrapping_sub(1)).ok_or_else(|| too_few(*number, solution.bands.len()))
+            solution
+                .bands
+                .get(number.wrapping_sub(1))
+                .ok_or_else(|| too_few(*number, solution.bands.len()))
         };
         match kind {
             QuantityKind::Gap(number) => solution
@@ -124,8 +141,9 @@ impl Evaluation<'_> {
         let chain = Chain::new(crystal, &budget)?;
         let cells = hop.first().map_or(0, |cells| cells.unsigned_abs());
         let cells = usize::try_from(cells).map_err(|_| because("the hop is too far"))?;
-        let _ = (chain, number, cells);
-        Err(because("hopping is not computed yet"))
+        let hopping =
+            numerics::hopping(&chain.cell, number - 1, cells, &budget).map_err(unsolved)?;
+        Ok(chain.energy(hopping))
     }
 
     /// Exact derivatives of a quantity; masses and hoppings have none here and give an empty list.
@@ -142,7 +160,11 @@ impl Evaluation<'_> {
             QuantityKind::Bottom(number) => Feature::Bottom(*number),
             QuantityKind::Top(number) => Feature::Top(*number),
             QuantityKind::Level(number, k) => {
-                return Ok(Chain::new(crystal, &budget)?.level_slopes(*number, turn(k), &budget)?);
+                return Ok(Chain::new(crystal, &budget)?.level_slopes(
+                    *number,
+                    turn(k),
+                    &budget,
+                )?);
             }
             QuantityKind::Fermi => return self.fermi_slopes(crystal, solution),
             QuantityKind::MassBottom(_) | QuantityKind::MassTop(_) | QuantityKind::Hopping(..) => {
@@ -153,7 +175,11 @@ impl Evaluation<'_> {
     }
 
     /// The Fermi level of a part-filled band moves with the level at its k; that of whole bands with the middle of the gap.
-    fn fermi_slopes(&self, crystal: &Crystal, solution: &Solution) -> Result<Vec<(ParameterId, f64)>, Untested> {
+    fn fermi_slopes(
+        &self,
+        crystal: &Crystal,
+        solution: &Solution,
+    ) -> Result<Vec<(ParameterId, f64)>, Untested> {
         let budget = budget(self.cancelled);
         let chain = Chain::new(crystal, &budget)?;
         match solve::filled(crystal) {
@@ -180,12 +206,19 @@ fn turn(k: &[f64]) -> f64 {
 }
 
 fn mass(extremum: &Extremum) -> Result<Measured, Untested> {
-    let mass = extremum.mass.ok_or_else(|| because("there is no mass where two bands touch"))?;
-    Ok(Measured { value: mass.value.abs(), uncertainty: mass.uncertainty })
+    let mass = extremum
+        .mass
+        .ok_or_else(|| because("there is no mass where two bands touch"))?;
+    Ok(Measured {
+        value: mass.value.abs(),
+        uncertainty: mass.uncertainty,
+    })
 }
 
 fn too_few(number: usize, solved: usize) -> Untested {
-    Untested::Because(format!("it speaks of band {number}, and {solved} bands are solved"))
+    Untested::Because(format!(
+        "it speaks of band {number}, and {solved} bands are solved"
+    ))
 }
 
 fn no_fermi(crystal: &Crystal, solution: &Solution) -> Untested {
@@ -194,7 +227,10 @@ fn no_fermi(crystal: &Crystal, solution: &Solution) -> Untested {
     }
     match crystal.filling {
         None => because("the crystal says no `filling`"),
-        Some(_) => Untested::Because(format!("the filling is not within the {} bands solved", solution.bands.len())),
+        Some(_) => Untested::Because(format!(
+            "the filling is not within the {} bands solved",
+            solution.bands.len()
+        )),
     }
 }
 
@@ -204,7 +240,9 @@ fn collect(value: &Dual, leaves: &[Leaf]) -> Leaf {
     let mut parts: Vec<(f64, &[(ParameterId, f64)])> = Vec::new();
     let mut direct = Vec::new();
     for (id, slope) in &value.slopes {
-        let leaf = id.0.checked_sub(FIRST_LEAF).and_then(|index| leaves.get(usize::try_from(index).ok()?));
+        let leaf =
+            id.0.checked_sub(FIRST_LEAF)
+                .and_then(|index| leaves.get(usize::try_from(index).ok()?));
         match leaf {
             Some(leaf) => {
                 uncertainty += slope.abs() * leaf.value.uncertainty;
@@ -219,15 +257,28 @@ fn collect(value: &Dual, leaves: &[Leaf]) -> Leaf {
         && value.slopes.len() == 1
         && leaves.len() == 1
     {
-        return Leaf { value: leaves.first().map_or_else(Measured::default, |leaf| leaf.value), slopes: slopes.to_vec() };
+        return Leaf {
+            value: leaves
+                .first()
+                .map_or_else(Measured::default, |leaf| leaf.value),
+            slopes: slopes.to_vec(),
+        };
     }
     parts.push((1.0, &direct));
     let slopes = sum_slopes(&parts);
-    Leaf { value: Measured { value: value.value, uncertainty }, slopes }
+    Leaf {
+        value: Measured {
+            value: value.value,
+            uncertainty,
+        },
+        slopes,
+    }
 }
 
 /// Σ factor · slopes, sorted by parameter.
-pub(super) fn sum_slopes<T: AsRef<[(ParameterId, f64)]>>(parts: &[(f64, T)]) -> Vec<(ParameterId, f64)> {
+pub(super) fn sum_slopes<T: AsRef<[(ParameterId, f64)]>>(
+    parts: &[(f64, T)],
+) -> Vec<(ParameterId, f64)> {
     let mut sum = rustc_hash::FxHashMap::default();
     for (factor, slopes) in parts {
         for (id, slope) in slopes.as_ref() {

@@ -20,9 +20,16 @@ const GAUSS: [(f64, f64); 4] = [
 ];
 
 /// The range of a crystal's potential; deltas count in the mean alone.
-pub(super) fn potential_range(field: &Field<'_>, budget: &Budget<'_>) -> Result<PotentialRange, Unsolved> {
+pub(super) fn potential_range(
+    field: &Field<'_>,
+    budget: &Budget<'_>,
+) -> Result<PotentialRange, Unsolved> {
     let stretches = layout::stretches(field.crystal, field.period);
-    let mut range = PotentialRange { lowest: f64::INFINITY, mean: 0.0, highest: f64::NEG_INFINITY };
+    let mut range = PotentialRange {
+        lowest: f64::INFINITY,
+        mean: 0.0,
+        highest: f64::NEG_INFINITY,
+    };
     for stretch in &stretches {
         if (budget.cancelled)() {
             return Err(Unsolved::Cancelled);
@@ -76,7 +83,10 @@ fn smooth_mean(field: &Field<'_>, stretch: &Stretch, range: &mut PotentialRange)
     }
     for end in [(0.0, width), (1.0 - width, 1.0)] {
         widen(range, highest_between(end.0, end.1, &value));
-        widen(range, -highest_between(end.0, end.1, &|share| -value(share)));
+        widen(
+            range,
+            -highest_between(end.0, end.1, &|share| -value(share)),
+        );
     }
     mean
 }

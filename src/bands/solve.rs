@@ -31,7 +31,11 @@ pub(super) fn chain_solution(crystal: &Crystal, budget: &Budget<'_>) -> Result<S
         .take(count)
         .map(|gap| Gap {
             size: chain.energy(gap.size),
-            kind: if gap.closed { GapKind::Closed } else { GapKind::Direct },
+            kind: if gap.closed {
+                GapKind::Closed
+            } else {
+                GapKind::Direct
+            },
         })
         .collect();
     let filled = filled(crystal);
@@ -41,7 +45,14 @@ pub(super) fn chain_solution(crystal: &Crystal, budget: &Budget<'_>) -> Result<S
         None => None,
     };
     let potential = super::range::potential_range(&chain.field, budget)?;
-    Ok(Solution { bands, gaps, potential, fermi, class, fine: true })
+    Ok(Solution {
+        bands,
+        gaps,
+        potential,
+        fermi,
+        class,
+        fine: true,
+    })
 }
 
 fn extremum(chain: &Chain<'_>, edge: &BandEdge) -> Extremum {
@@ -82,7 +93,10 @@ fn fermi(
     match filled {
         Filled::None => Ok(None),
         Filled::Whole(whole) => {
-            let top = whole.checked_sub(1).and_then(|index| bands.get(index)).map(|band| band.top.energy);
+            let top = whole
+                .checked_sub(1)
+                .and_then(|index| bands.get(index))
+                .map(|band| band.top.energy);
             Ok(top.zip(gap_above(filled, gaps)).map(|(top, gap)| Measured {
                 value: top.value + 0.5 * gap.size.value,
                 uncertainty: top.uncertainty + 0.5 * gap.size.uncertainty,

@@ -116,7 +116,13 @@ fn piece(
         Format::Sarif => Told::Sarif(sarif::results(&locator, file, &findings)),
         Format::Junit => {
             let fail_on = arguments.fail_on.level();
-            Told::Junit(Some(Box::new(junit::suite(&locator, file, &findings, fail_on, &arguments.only))))
+            Told::Junit(Some(Box::new(junit::suite(
+                &locator,
+                file,
+                &findings,
+                fail_on,
+                &arguments.only,
+            ))))
         }
     };
     Piece {

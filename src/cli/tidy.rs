@@ -87,9 +87,13 @@ fn one(path: &Path, disk: &Disk, check: bool) -> Done {
 fn replace(path: &Path, text: &str) -> io::Result<()> {
     let real = fs::canonicalize(path)?;
     let folder = real.parent().unwrap_or(Path::new("."));
-    let mut fresh = tempfile::Builder::new().prefix(".crenate-").tempfile_in(folder)?;
+    let mut fresh = tempfile::Builder::new()
+        .prefix(".crenate-")
+        .tempfile_in(folder)?;
     fresh.write_all(text.as_bytes())?;
-    fresh.as_file().set_permissions(fs::metadata(&real)?.permissions())?;
+    fresh
+        .as_file()
+        .set_permissions(fs::metadata(&real)?.permissions())?;
     fresh.persist(&real).map_err(|error| error.error)?;
     Ok(())
 }

@@ -31,6 +31,10 @@ pub struct Target {
 
 /// What a target wants.
 #[derive(Clone, Debug)]
+#[allow(
+    clippy::large_enum_variant,
+    reason = "nearly all wishes are comparisons: boxing them would save nothing"
+)]
 pub enum Wish {
     /// The value of an expression between limits.
     Compare {

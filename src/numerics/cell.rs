@@ -6,7 +6,7 @@
 
 use super::double::Double;
 use super::element::{Element, Polynomial};
-use super::mesh::samples_to_polynomial;
+use super::mesh::{remainder, samples_to_polynomial};
 use super::scalar::Scalar;
 use std::cell::Cell as Counter;
 
@@ -282,12 +282,10 @@ impl Ready {
                 self.stretch(*length, samples, *mass)?;
                 let least = samples.iter().copied().fold(f64::INFINITY, f64::min);
                 let greatest = samples.iter().copied().fold(f64::NEG_INFINITY, f64::max);
-                Ok(Element::Polynomial(Polynomial::new(
-                    *length,
-                    samples_to_polynomial(samples),
-                    *mass,
-                    [least, greatest],
-                )))
+                let coefficients = samples_to_polynomial(samples);
+                let mut step = Polynomial::new(*length, coefficients, *mass, [least, greatest]);
+                step.remainder = remainder(samples);
+                Ok(Element::Polynomial(step))
             }
         }
     }

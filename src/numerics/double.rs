@@ -62,16 +62,6 @@ impl Double {
     pub fn round(self) -> f64 {
         self.high + self.low
     }
-
-    /// Square root of a non-negative number, by one Newton step from `f64`.
-    pub fn sqrt(self) -> Self {
-        if self.high <= 0.0 {
-            return Double::ZERO;
-        }
-        let root = self.high.sqrt();
-        let rest = self - Double::new(root) * Double::new(root);
-        Double::new(root) + Double::new(rest.high / (2.0 * root))
-    }
 }
 
 impl Add for Double {

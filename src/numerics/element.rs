@@ -80,6 +80,8 @@ pub(crate) struct Polynomial {
     pub mass: [Mass; 2],
     /// least and greatest potential
     pub range: [f64; 2],
+    /// |δV| of the mesh to expect
+    pub remainder: f64,
 }
 
 impl Polynomial {
@@ -110,6 +112,7 @@ impl Polynomial {
             coefficients,
             mass,
             range,
+            remainder: 0.0,
         }
     }
 
@@ -284,7 +287,7 @@ pub(crate) fn layer<T: Scalar>(length: f64, potential: f64, mass: Mass, energy: 
 }
 
 /// Calls `visit` with every factor of the element's matrix from left to right, its power of two,
-/// and the phase across it (0 in a wall), which is below π for a part of a polynomial.
+/// and its z (0 for a delta and for a part of a polynomial, whose phase is below π).
 pub(crate) fn factors<T: Scalar>(
     element: &Element,
     energy: T,
@@ -309,7 +312,7 @@ pub(crate) fn factors<T: Scalar>(
                 c: depth * f[1],
                 d: f[0],
             };
-            visit(&matrix, exponent, (-z.leading()).max(0.0).sqrt());
+            visit(&matrix, exponent, z.leading());
         }
         Element::Polynomial(p) => {
             let count = p.parts(energy.leading());

@@ -6,24 +6,38 @@ use super::scalar::Scalar;
 use super::search::{Finder, Inside, Target, is_positive};
 use super::solve::find;
 use super::sweep::read;
-use super::uncertainty::level_error;
+use super::uncertainty::{a_priori, level_bound};
 use std::f64::consts::PI;
 
 /// E_n(k) for band `band` at `ka` in [0, π] (taken by symmetry from outside it).
 pub fn level(cell: &Cell, band: usize, ka: f64, budget: &Budget) -> Result<Bounded, SolveError> {
+    let ready = prepare(cell)?;
+    let meter = Meter::new(budget);
+    at_share(&ready, band, share_of(band, ka)?, &meter)
+}
+
+/// The share of a band below the level at ka.
+fn share_of(band: usize, ka: f64) -> Result<f64, SolveError> {
     if !ka.is_finite() {
         return Err(SolveError::NotFinite);
     }
-    let ready = prepare(cell)?;
-    let meter = Meter::new(budget);
     let turns = (ka / PI).abs() % 2.0;
     let share = if turns > 1.0 { 2.0 - turns } else { turns };
-    at_share(
-        &ready,
-        band,
-        if band % 2 == 0 { share } else { 1.0 - share },
-        &meter,
-    )
+    Ok(if band % 2 == 0 { share } else { 1.0 - share })
+}
+
+/// The energy of the level of a band at ka.
+pub(crate) fn level_energy(
+    ready: &Ready,
+    band: usize,
+    ka: f64,
+    meter: &Meter,
+) -> Result<Double, SolveError> {
+    let share = share_of(band, ka)?;
+    if let Some(edge) = edge_at(ready, band, share, meter)? {
+        return Ok(edge);
+    }
+    inner_level(ready, band, share, meter)
 }
 
 /// The energy up to which `states` bands' worth of levels lie (per cell and spin state), such as
@@ -41,7 +55,8 @@ pub fn fermi(cell: &Cell, states: f64, budget: &Budget) -> Result<Bounded, Solve
         let middle = (gap.lower.energy + gap.upper.energy).times(0.5).round();
         return Ok(Bounded {
             value: middle,
-            error: level_error(&ready, middle, raw.exact),
+            error: level_bound(&ready, gap.lower.energy.round())
+                .max(level_bound(&ready, gap.upper.energy.round())),
         });
     }
     at_share(&ready, band as usize, states - band, &meter)
@@ -55,7 +70,7 @@ pub fn integrated_states(cell: &Cell, energy: f64, budget: &Budget) -> Result<Bo
     let ready = prepare(cell)?;
     let meter = Meter::new(budget);
     let reading = read(&ready, energy, &meter)?;
-    let error = level_error(&ready, energy, false);
+    let error = a_priori(&ready, energy);
     let below = read(&ready, energy - error, &meter)?.states;
     let above = read(&ready, energy + error, &meter)?.states;
     let spread = (above - reading.states)
@@ -65,6 +80,18 @@ pub fn integrated_states(cell: &Cell, energy: f64, budget: &Budget) -> Result<Bo
         value: reading.states,
         error: spread + 4.0 * f64::EPSILON * (1.0 + reading.states),
     })
+}
+
+/// D(E) = 2 cos ka at an energy: |D| < 2 in a band, beyond in a gap. Infinite where it leaves the range of `f64`.
+pub fn discriminant(cell: &Cell, energy: f64, budget: &Budget) -> Result<Bounded, SolveError> {
+    if !energy.is_finite() {
+        return Err(SolveError::NotFinite);
+    }
+    let ready = prepare(cell)?;
+    let meter = Meter::new(budget);
+    let value = read(&ready, Double::constant(energy), &meter)?.discriminant();
+    let error = super::uncertainty::discriminant_error(&ready, energy) + f64::EPSILON * value.abs();
+    Ok(Bounded { value, error })
 }
 
 /// `points` pairs (ka, E_n) from ka = 0 to π, evenly spaced; for pictures.
@@ -92,30 +119,47 @@ pub(crate) fn at_share(
     share: f64,
     meter: &Meter,
 ) -> Result<Bounded, SolveError> {
-    if share <= 0.0 || share >= 1.0 {
-        let raw = find(ready, band + 1, meter)?;
-        let edge = if share >= 1.0 {
-            raw.gaps[band].lower
-        } else if band == 0 {
-            raw.bottom
-        } else {
-            raw.gaps[band - 1].upper
-        };
-        let value = edge.energy.round();
-        return Ok(Bounded {
-            value,
-            error: level_error(ready, value, raw.exact),
-        });
-    }
-    let found = match root_at::<f64>(ready, band, share, meter)? {
-        Some(found) => found,
-        None => root_at::<Double>(ready, band, share, meter)?.ok_or(SolveError::NoBracket)?,
+    let energy = match edge_at(ready, band, share, meter)? {
+        Some(edge) => edge,
+        None => inner_level(ready, band, share, meter)?,
     };
-    let value = found.round();
+    meter.spend()?;
     Ok(Bounded {
-        value,
-        error: level_error(ready, value, false),
+        value: energy.round(),
+        error: level_bound(ready, energy.round()),
     })
+}
+
+/// The band's edge, for a share of 0 or 1.
+fn edge_at(
+    ready: &Ready,
+    band: usize,
+    share: f64,
+    meter: &Meter,
+) -> Result<Option<Double>, SolveError> {
+    if share > 0.0 && share < 1.0 {
+        return Ok(None);
+    }
+    let raw = find(ready, band + 1, meter)?;
+    Ok(Some(if share >= 1.0 {
+        raw.gaps[band].lower.energy
+    } else if band == 0 {
+        raw.bottom.energy
+    } else {
+        raw.gaps[band - 1].upper.energy
+    }))
+}
+
+fn inner_level(
+    ready: &Ready,
+    band: usize,
+    share: f64,
+    meter: &Meter,
+) -> Result<Double, SolveError> {
+    match root_at::<f64>(ready, band, share, meter)? {
+        Some(found) => Ok(found),
+        None => root_at::<Double>(ready, band, share, meter)?.ok_or(SolveError::NoBracket),
+    }
 }
 
 /// s D − 2 = −4 sin²(θ/2) with θ the distance of ka from the nearer edge.
@@ -128,9 +172,10 @@ pub(crate) fn level_target<T: Scalar>(band: usize, share: f64) -> Target<T> {
     let sine = (0.5 * angle).sin();
     Target {
         states: band as f64 + share,
-        upper: true,
+        upper: gap == band,
         positive: is_positive(gap),
         depth: T::constant(-4.0 * sine * sine),
+        margin: 1e-3 * share.min(1.0 - share),
     }
 }
 
@@ -141,10 +186,11 @@ fn root_at<T: Scalar>(
     meter: &Meter,
 ) -> Result<Option<Double>, SolveError> {
     let mut finder = Finder::<T>::new(ready, meter);
-    finder.surround(band)?;
-    let start = match finder.inside(band)? {
+    let start = match finder.isolate(band)? {
         Inside::At(reading) => reading.energy,
-        Inside::Unresolved => return Ok(None),
+        Inside::Unresolved(reading) => {
+            return Ok((T::UNIT < f64::UNIT).then(|| reading.energy.to_double()));
+        }
     };
     let (energy, _) = finder.root(level_target(band, share), start)?;
     Ok(Some(energy.to_double()))

@@ -104,6 +104,27 @@ static BASIS: LazyLock<Basis> = LazyLock::new(|| {
     }
 });
 
+/// Nodes and weights of Gauss–Legendre quadrature over [−1, 1], exact for degree 2`count` − 1.
+pub(crate) fn gauss_legendre(count: usize) -> Vec<(f64, f64)> {
+    let n = count as f64;
+    let node = |i: usize| {
+        let mut x = Double::new(-(std::f64::consts::PI * (i as f64 + 0.75) / (n + 0.5)).cos());
+        let mut slope = Double::ZERO;
+        for _ in 0..5 {
+            let (mut before, mut p) = (Double::new(1.0), x);
+            for k in 1..count {
+                let next = (x * p).times((2 * k + 1) as f64) - before.times(k as f64);
+                (before, p) = (p, next / Double::new((k + 1) as f64));
+            }
+            slope = (before - x * p).times(n) / (Double::new(1.0) - x * x);
+            x = x - p / slope;
+        }
+        let weight = Double::new(2.0) / ((Double::new(1.0) - x * x) * slope * slope);
+        (x.round(), weight.round())
+    };
+    (0..count).map(node).collect()
+}
+
 /// Coefficients of tⁱ of the polynomial through the samples, in double-double: the powers' basis is
 /// ill conditioned (about 1e4), and that must not reach the sums.
 pub(crate) fn samples_to_polynomial(samples: &[f64]) -> Vec<Double> {

@@ -2,8 +2,9 @@
 
 use super::cell::{Bounded, Budget, Cell, Meter, Ready, SolveError, prepare};
 use super::double::Double;
+use super::mesh::gauss_legendre;
 use super::scalar::{Scalar, power_of_two};
-use super::search::{Finder, GapPoint, Inside, Target, is_positive};
+use super::search::{Finder, GapPoint, Target, is_positive};
 use super::sweep::{Reading, read};
 
 /// Where in the zone an edge lies.
@@ -58,12 +59,18 @@ pub struct Bands {
     pub sweeps: usize,
 }
 
+/// Widths below this share of the spacing of bands are taken from D′ where edges are in `f64`.
+pub(crate) const NARROW_WIDTH: f64 = 1e-3;
+
 /// An edge as found.
 #[derive(Clone, Copy)]
 pub(crate) struct RawEdge {
     pub energy: Double,
-    /// D′ there, |D′| possibly beyond the range of f64
+    /// D′, possibly beyond the range of `f64`, at `energy` − `offset`
     pub slope: f64,
+    pub offset: f64,
+    /// what the rounding of the arithmetic leaves open of the energy
+    pub noise: f64,
 }
 
 /// A gap as found: its lower and upper edge, or closed.
@@ -83,6 +90,9 @@ pub(crate) struct Raw {
     pub gaps: Vec<RawGap>,
     /// a reading inside each band: energy, D, D′
     pub inside: Vec<(Double, f64, f64)>,
+    /// widths taken from D′ inside a band rather than from its edges
+    pub widths: Vec<Option<f64>>,
+    /// finished in double-double
     pub exact: bool,
 }
 
@@ -113,9 +123,9 @@ fn find_in<T: Scalar>(
     finder.surround(bands)?;
     let mut inside = Vec::with_capacity(bands + 1);
     for band in 0..=bands {
-        match finder.inside(band)? {
-            Inside::At(reading) => inside.push(reading),
-            Inside::Unresolved => return Ok(None),
+        match finder.inside(band)?.accept() {
+            Some(reading) => inside.push(reading),
+            None => return Ok(None),
         }
     }
     let polish = ready.layered;
@@ -130,7 +140,26 @@ fn find_in<T: Scalar>(
     )?;
     let mut gaps = Vec::with_capacity(bands);
     for band in 0..bands {
-        gaps.push(find_gap(&mut finder, &inside, band, polish)?);
+        match find_gap(&mut finder, &inside, band, polish)? {
+            Some(gap) => gaps.push(gap),
+            None => return Ok(None),
+        }
+    }
+    let exact = polish || T::UNIT < f64::UNIT;
+    let mut widths = Vec::with_capacity(bands);
+    for band in 0..bands {
+        let low = if band == 0 {
+            None
+        } else {
+            Some(&gaps[band - 1])
+        };
+        widths.push(narrow_width(
+            &mut finder,
+            &inside[band],
+            low,
+            &gaps[band],
+            exact,
+        )?);
     }
     let inside = inside
         .iter()
@@ -140,8 +169,46 @@ fn find_in<T: Scalar>(
         bottom,
         gaps,
         inside,
-        exact: polish || T::UNIT < f64::UNIT,
+        widths,
+        exact,
     }))
+}
+
+/// w = ∫ dE = ∫ dD/|D′| over D from −2 to 2, by four Gauss–Legendre nodes: for a band so narrow that D′ hardly
+/// changes inside it, while its edges' difference has lost digits. `None` where the difference serves.
+fn narrow_width<T: Scalar>(
+    finder: &mut Finder<T>,
+    inside: &Reading<T>,
+    below: Option<&RawGap>,
+    above: &RawGap,
+    exact: bool,
+) -> Result<Option<f64>, SolveError> {
+    let width = 4.0 / inside.slope().abs();
+    let limit = if exact {
+        1e-22 * inside.energy.leading().abs()
+    } else {
+        NARROW_WIDTH * finder.ready.kinetic_scale()
+    };
+    let size = |gap: &RawGap| (gap.upper.energy - gap.lower.energy).leading();
+    let isolated = size(above) > 30.0 * width && below.is_none_or(|gap| size(gap) > 30.0 * width);
+    if !isolated || width.is_nan() || width > limit {
+        return Ok(None);
+    }
+    let mut sum = 0.0;
+    for (node, weight) in gauss_legendre(4) {
+        let mut reading = *inside;
+        for _ in 0..2 {
+            let trace = reading.trace();
+            let wanted = T::constant(2.0 * node).shifted(-reading.exponent);
+            let step = (wanted - trace.value) / trace.slope;
+            if step.leading().abs() <= finder.resolution(reading.energy) {
+                break;
+            }
+            reading = read(finder.ready, reading.energy + step, finder.meter)?;
+        }
+        sum += 2.0 * weight / reading.slope().abs();
+    }
+    Ok(Some(sum))
 }
 
 /// Both edges of the gap above `band`.
@@ -150,7 +217,7 @@ fn find_gap<T: Scalar>(
     inside: &[Reading<T>],
     band: usize,
     polish: bool,
-) -> Result<RawGap, SolveError> {
+) -> Result<Option<RawGap>, SolveError> {
     let gap = band + 1;
     let (ready, meter) = (finder.ready, finder.meter);
     let lower = Target::edge(gap, false);
@@ -161,18 +228,19 @@ fn find_gap<T: Scalar>(
             let lower = settle(ready, meter, lower, energy, &reading, polish)?;
             let (energy, reading) = finder.root(upper, inside[band + 1].energy)?;
             let upper = settle(ready, meter, upper, energy, &reading, polish)?;
-            Ok(RawGap {
+            Ok(Some(RawGap {
                 lower,
                 upper,
-                noise: 0.0,
+                noise: lower.noise + upper.noise,
                 narrow: false,
-            })
+            }))
         }
+        GapPoint::Noisy(_) => Ok(None),
         GapPoint::Narrow(centre) => {
             if polish {
-                narrow_pair(ready, meter, centre.to_double(), is_positive(gap))
+                narrow_pair(ready, meter, centre.to_double(), is_positive(gap)).map(Some)
             } else {
-                narrow_pair(ready, meter, centre, is_positive(gap))
+                narrow_pair(ready, meter, centre, is_positive(gap)).map(Some)
             }
         }
     }
@@ -188,25 +256,36 @@ fn settle<T: Scalar>(
     polish: bool,
 ) -> Result<RawEdge, SolveError> {
     if !polish || T::UNIT < f64::UNIT {
-        return Ok(RawEdge {
-            energy: energy.to_double(),
-            slope: reading.slope(),
-        });
+        return Ok(raw_edge(&target, energy, reading));
     }
+    let fine = Target {
+        states: target.states,
+        ..Target::<Double>::edge(0, target.upper)
+    };
+    let fine = Target {
+        positive: target.positive,
+        ..fine
+    };
     let start = energy.to_double();
     let reading = read(ready, start, meter)?;
-    let fine = Target {
-        depth: Double::ZERO,
-        states: target.states,
-        upper: target.upper,
-        positive: target.positive,
-    };
     let (residual, slope, _) = fine.residual(&reading);
     let step = -(residual / slope);
     Ok(RawEdge {
-        energy: start + step,
-        slope: reading.slope(),
+        offset: step.leading(),
+        ..raw_edge(&fine, start + step, &reading)
     })
+}
+
+/// An edge from the reading at or next to it; the noise of each factor adds up.
+fn raw_edge<T: Scalar>(target: &Target<T>, energy: T, reading: &Reading<T>) -> RawEdge {
+    let (_, slope, noise) = target.residual(reading);
+    let noise = noise / slope.leading().abs() * reading.weight;
+    RawEdge {
+        energy: energy.to_double(),
+        slope: reading.slope(),
+        offset: 0.0,
+        noise: if noise.is_finite() { noise } else { 0.0 },
+    }
 }
 
 /// Both edges of a gap so narrow that s D − 2 hardly rises above 0 in it, from the place where
@@ -219,63 +298,61 @@ fn narrow_pair<T: Scalar>(
 ) -> Result<RawGap, SolveError> {
     let finder = Finder::<T>::new(ready, meter);
     let mut centre = centre;
-    let mut curvature = 0.0;
     for _ in 0..2 {
-        curvature = finder.curvature(centre)?;
+        let (curvature, exponent) = finder.curvature(centre)?;
         let reading = read(ready, centre, meter)?;
-        let step = -(reading.trace().slope.shifted(reading.exponent) / T::constant(curvature));
-        centre = centre + step;
+        let slope = reading.trace().slope.shifted(reading.exponent - exponent);
+        centre = centre - slope / T::constant(curvature);
     }
+    let (curvature, exponent) = finder.curvature(centre)?;
     let reading = read(ready, centre, meter)?;
     let (excess, noise) = reading.excess(positive);
-    let scale = power_of_two(reading.exponent);
-    let height = excess.leading() * scale;
+    let over_curvature = 2.0 * power_of_two(reading.exponent - exponent) / curvature.abs();
     // the half-gap's noise: rounding of the height, and of the place
-    let half_noise = (2.0 * noise * scale / curvature.abs()).sqrt() + finder.resolution(centre);
-    let half = (2.0 * height.max(0.0) / curvature.abs()).sqrt();
+    let half_noise = (reading.weight * noise * over_curvature).sqrt() + finder.resolution(centre);
+    let half = (excess.leading().max(0.0) * over_curvature).sqrt();
+    let middle = RawEdge {
+        energy: centre.to_double(),
+        slope: 0.0,
+        offset: 0.0,
+        noise: half_noise,
+    };
     if half <= half_noise {
-        let edge = RawEdge {
-            energy: centre.to_double(),
-            slope: 0.0,
-        };
         return Ok(RawGap {
-            lower: edge,
-            upper: edge,
+            lower: middle,
+            upper: middle,
             noise: 2.0 * half_noise,
             narrow: true,
         });
     }
-    let mut edges = [RawEdge {
-        energy: centre.to_double(),
-        slope: 0.0,
-    }; 2];
-    let mut noises = 0.0;
-    for (edge, direction) in edges.iter_mut().zip([-1.0, 1.0]) {
-        let mut energy = centre + T::constant(direction * half);
+    let mut edges = [middle; 2];
+    for (edge, upper) in edges.iter_mut().zip([false, true]) {
+        let mut energy = centre + T::constant(if upper { half } else { -half });
+        let target = Target {
+            positive,
+            ..Target::<T>::edge(0, upper)
+        };
         let mut last = read(ready, energy, meter)?;
         for _ in 0..3 {
-            let target = Target::<T>::edge(usize::from(!positive), direction > 0.0);
-            let (residual, slope, noise) = target.residual(&last);
+            let (residual, slope, _) = target.residual(&last);
             let step = -(residual / slope);
             if !(step.leading().abs() < 0.5 * half) {
                 break;
             }
             energy = energy + step;
-            noises = (noise / slope.leading().abs()) + finder.resolution(energy);
             last = read(ready, energy, meter)?;
             if step.leading().abs() <= finder.resolution(energy) {
                 break;
             }
         }
-        *edge = RawEdge {
-            energy: energy.to_double(),
-            slope: last.slope(),
-        };
+        *edge = raw_edge(&target, energy, &last);
+        edge.noise += finder.resolution(energy);
     }
+    let noise = edges[0].noise + edges[1].noise;
     Ok(RawGap {
         lower: edges[0],
         upper: edges[1],
-        noise: 2.0 * noises,
+        noise,
         narrow: true,
     })
 }

@@ -1,53 +1,264 @@
-//! Bounds on what was found.
-//! (first form: a-priori bounds)
+//! Bounds on what was found, and the masses and widths that need them.
+//!
+//! Each bound adds up
+//! * inputs: every number handed in is known to one unit in the last place, relative 2⁻⁵²; its effect is
+//!   |p ∂/∂p| from the exact gradient;
+//! * rounding of the sweep, for what was not finished in double-double: an entry of a factor M_j is wrong by a few units, which
+//!   moves D by tr(δM_j K_j) ≤ units · Σ |M_j||K_j|, carried to the energy by 1/|D′|; near a closing gap, where D′
+//!   vanishes, through the doublet instead (`pair`);
+//! * the mesh: |δV| of each smooth step times its share of |ψ|²;
+//! * the last rounding.
 
-use super::cell::{Bounded, Ready};
+use super::cell::{Bounded, Mass, Ready};
 use super::double::Double;
-use super::scalar::Scalar;
+use super::element::Element;
+use super::gradient::{Gradient, gradient};
+use super::pair::pair;
+use super::scalar::{Dual, Scalar, power_of_two};
 use super::search::is_positive;
-use super::solve::{Band, BandEdge, Bands, Gap, Raw, RawEdge, Wave};
+use super::sensitivity::{PieceSensitivity, difference, ratio, width_slopes};
+use super::solve::{Band, BandEdge, Bands, Gap, NARROW_WIDTH, Raw, RawEdge, Wave};
 
-/// Bound on the error of a level by inputs known to one unit in the last place, and by rounding.
-pub(crate) fn level_error(ready: &Ready, energy: f64, exact: bool) -> f64 {
+const UNIT: f64 = f64::EPSILON / 2.0;
+
+/// A bound on the error of an energy in `f64`, before any derivative is known.
+pub(crate) fn a_priori(ready: &Ready, energy: f64) -> f64 {
     let kinetic = (energy - ready.floor).abs() + ready.delta_depth;
     let scale =
         2.0 * kinetic + ready.potential_size() + ready.delta_size + (energy - ready.ceiling).abs();
-    let rounding = if exact {
-        0.0
+    f64::EPSILON * (energy.abs() + scale * (3.0 + (ready.elements.len() as f64).sqrt()))
+}
+
+/// Σ |p| |dX/dp| over all numbers, for a relative change of one; and the mesh's part.
+fn spread(ready: &Ready, slopes: &[PieceSensitivity]) -> (f64, f64) {
+    let mut inputs = 0.0;
+    let mut mesh = 0.0;
+    let product = |m: &Mass, s: &Mass| (m.value * s.value).abs() + (m.slope * s.slope).abs();
+    for (element, slope) in ready.elements.iter().zip(slopes) {
+        match element {
+            Element::Delta { strength } => inputs += (strength * slope.strength).abs(),
+            Element::Flat {
+                length,
+                potential,
+                mass,
+            } => {
+                inputs += (length * slope.length).abs() + (potential * slope.potential[0]).abs();
+                inputs += product(mass, &slope.mass[0]);
+            }
+            Element::Polynomial(p) => {
+                let size = p.range[0].abs().max(p.range[1].abs());
+                let all = slope.samples.iter().chain(&slope.potential);
+                inputs +=
+                    (p.length * slope.length).abs() + size * all.map(|s| s.abs()).sum::<f64>();
+                // a mass at either end is at most |μ₀| + |μ₁|
+                let value = p.mass[0].value.abs() + p.mass[1].value.abs();
+                let rate = p.mass[0].slope.abs() + p.mass[1].slope.abs();
+                for end in &slope.mass {
+                    inputs += (value * end.value).abs() + (rate * end.slope).abs();
+                }
+                mesh += p.remainder * slope.samples.iter().sum::<f64>().abs();
+            }
+        }
+    }
+    (inputs, mesh)
+}
+
+/// Bound on a level's error by the gradient in `f64` there.
+pub(crate) fn level_bound(ready: &Ready, energy: f64) -> f64 {
+    let found = gradient(ready, energy);
+    let slopes = ratio(&found, |p| -p / found.energy_slope);
+    let (inputs, mesh) = spread(ready, &slopes);
+    let (near, _) = pair_error(ready, energy, false);
+    let bound = energy.abs() * UNIT
+        + f64::EPSILON * inputs
+        + mesh
+        + units(false) * found.rounding / found.energy_slope.abs();
+    // near a closed gap the doublet's bound is the smaller and the right one
+    if near < bound && near_edge(&found) {
+        near
     } else {
-        2.0 + 2.0 * (ready.elements.len() as f64).sqrt()
+        bound
+    }
+}
+
+/// Bound on D at a given energy by inputs and mesh, for a sweep in double-double.
+pub(crate) fn discriminant_error(ready: &Ready, energy: f64) -> f64 {
+    let found = gradient(ready, energy);
+    let slopes = ratio(&found, |p| p * power_of_two(found.exponent));
+    let (inputs, mesh) = spread(ready, &slopes);
+    f64::EPSILON * inputs + mesh
+}
+
+/// Relative effect of inputs and mesh on the width of a narrow band about `middle`, and of rounding.
+pub(crate) fn width_spread(ready: &Ready, middle: f64) -> (f64, f64) {
+    let found = gradient(ready, Dual::variable(middle));
+    let width = 4.0 / (found.energy_slope.value.abs() * power_of_two(found.exponent));
+    let (inputs, mesh) = spread(ready, &width_slopes(ready, middle));
+    (
+        (f64::EPSILON * inputs + mesh) / width,
+        UNIT * found.rounding_count(),
+    )
+}
+
+/// |D′| so small that the level is one of a doublet.
+fn near_edge(found: &Gradient<f64>) -> bool {
+    let slope = found.energy_slope.abs();
+    let whole: f64 = found
+        .pieces
+        .iter()
+        .map(|p| p.potential[0].abs() + p.potential[1].abs())
+        .sum();
+    slope == 0.0 || found.rounding * UNIT > 1e-10 * slope.max(whole)
+}
+
+/// Bound on the error of either of two levels in a doublet, and the rounding in it.
+fn pair_error(ready: &Ready, energy: f64, exact: bool) -> (f64, f64) {
+    let found = pair(ready, energy);
+    let (mean, mesh) = spread(ready, &found.means);
+    let (rate, split) = spread(ready, &found.rates);
+    let rounding = units(exact) * found.rounding;
+    let inputs = f64::EPSILON * (mean + 0.5 * rate);
+    (
+        energy.abs() * UNIT + inputs + mesh + split + rounding,
+        rounding,
+    )
+}
+
+/// Size of a gap and the bound on it.
+fn gap_bound(ready: &Ready, raw: &Raw, band: usize, edges: (&EdgeBound, &EdgeBound)) -> (f64, f64) {
+    let gap = raw.gaps[band];
+    let (lower, upper) = edges;
+    let size = (gap.upper.energy - gap.lower.energy).round().max(0.0);
+    if gap.narrow {
+        let found = pair(ready, 0.5 * (gap.lower.energy + gap.upper.energy).round());
+        let (rate, mesh) = spread(ready, &found.rates);
+        let rounding = units(raw.exact) * found.rounding + gap.noise;
+        return (size, f64::EPSILON * rate + mesh + rounding + UNIT * size);
+    }
+    let (inputs, mesh) = spread(ready, &difference(&upper.slopes, &lower.slopes));
+    let own = lower.rounding + upper.rounding + gap.noise;
+    (size, f64::EPSILON * inputs + mesh + own + UNIT * size)
+}
+
+/// Is the gap above `band` indistinguishable from zero?
+pub(crate) fn is_closed(ready: &Ready, raw: &Raw, band: usize) -> bool {
+    let gap = raw.gaps[band];
+    let bound = |edge: &RawEdge| edge_bound(ready, edge, band + 1, raw.exact, gap.narrow);
+    let (size, error) = gap_bound(ready, raw, band, (&bound(&gap.lower), &bound(&gap.upper)));
+    size <= error
+}
+
+/// Relative rounding of an entry of a factor: of the `f64` sweep, or of the double-double one whose thick walls
+/// lose a few bits to doubling.
+fn units(exact: bool) -> f64 {
+    if exact {
+        64.0 * Double::UNIT
+    } else {
+        6.0 * UNIT
+    }
+}
+
+/// What is known about an edge besides its energy.
+struct EdgeBound {
+    error: f64,
+    rounding: f64,
+    mass: Bounded,
+    slopes: Vec<PieceSensitivity>,
+}
+
+/// Bounds at an edge next to gap `gap` − 1.
+fn edge_bound(ready: &Ready, raw: &RawEdge, gap: usize, exact: bool, narrow: bool) -> EdgeBound {
+    let energy = raw.energy.round();
+    let found = gradient(ready, Dual::variable(energy));
+    let slope = found.energy_slope;
+    let slopes = ratio(&found, |p: Dual<f64>| -p.value / slope.value);
+    let (inputs, mesh) = spread(ready, &slopes);
+    let found_slope = if raw.slope == 0.0 {
+        slope.value
+    } else {
+        raw.slope * power_of_two(-found.exponent)
     };
-    f64::EPSILON * (energy.abs() + scale * (1.0 + rounding))
+    let mut rounding = units(exact) * found.rounding / found_slope.abs();
+    let mut error = energy.abs() * UNIT + f64::EPSILON * inputs + mesh + rounding;
+    if narrow {
+        let (near, own) = pair_error(ready, energy, exact);
+        if near < error || error.is_nan() {
+            (error, rounding) = (near, own);
+        }
+    }
+    error += raw.noise;
+    // m* = −s D′/a², the derivative of D′ along the edge
+    let scale = power_of_two(found.exponent) / (ready.period * ready.period);
+    let sign = if is_positive(gap) { -1.0 } else { 1.0 };
+    let curvature = slope.slope * scale;
+    let mass = sign * (raw.slope / (ready.period * ready.period) + curvature * raw.offset);
+    let along = ratio(&found, |p: Dual<f64>| {
+        scale * (p.slope - slope.slope * p.value / slope.value)
+    });
+    let (mass_inputs, mass_mesh) = spread(ready, &along);
+    let drift = rounding.min(error) + raw.noise;
+    let own = if exact { 4.0 } else { found.rounding_count() };
+    let mass_error = f64::EPSILON * (mass_inputs + 2.0 * mass.abs())
+        + mass_mesh
+        + curvature.abs() * drift
+        + UNIT * own * mass.abs();
+    EdgeBound {
+        error,
+        rounding,
+        mass: Bounded {
+            value: mass,
+            error: mass_error,
+        },
+        slopes,
+    }
+}
+
+impl Gradient<Dual<f64>> {
+    /// Units of rounding in a sum over all factors.
+    fn rounding_count(&self) -> f64 {
+        8.0 + 6.0 * self.pieces.len() as f64
+    }
 }
 
 /// Puts the bounds on.
 pub(crate) fn finish(ready: &Ready, raw: &Raw, sweeps: usize) -> Bands {
     let count = raw.gaps.len();
+    let bound =
+        |edge: &RawEdge, gap: usize, narrow: bool| edge_bound(ready, edge, gap, raw.exact, narrow);
     let mut bands = Vec::with_capacity(count);
     let mut gaps = Vec::with_capacity(count);
     let mut bottom = raw.bottom;
-    let mut bottom_closed = false;
+    let mut below = bound(&raw.bottom, 0, false);
+    let mut touching = false;
     for band in 0..count {
         let gap = raw.gaps[band];
-        let error = level_error(ready, gap.lower.energy.round(), raw.exact);
-        let size = (gap.upper.energy - gap.lower.energy).round();
-        let gap_error = 2.0 * error + gap.noise;
-        let closed = size <= gap_error;
+        let top = bound(&gap.lower, band + 1, gap.narrow);
+        let next = bound(&gap.upper, band + 1, gap.narrow);
+        let (size, error) = gap_bound(ready, raw, band, (&top, &next));
+        let closed = size <= error;
         gaps.push(Gap {
             size: Bounded {
                 value: if closed { 0.0 } else { size },
-                error: gap_error,
+                error,
             },
             closed,
         });
-        let width = width(ready, raw, band, bottom, gap.lower);
+        let width = width(
+            ready,
+            raw,
+            band,
+            (&bottom, &below),
+            (&gap.lower, &top),
+            (touching, closed),
+        );
         bands.push(Band {
-            bottom: edge(ready, bottom, band, bottom_closed, raw.exact),
-            top: edge(ready, gap.lower, band + 1, closed, raw.exact),
+            bottom: edge(&bottom, &below, band, touching),
+            top: edge(&gap.lower, &top, band + 1, closed),
             width,
         });
         bottom = gap.upper;
-        bottom_closed = closed;
+        below = next;
+        touching = closed;
     }
     Bands {
         bands,
@@ -56,45 +267,52 @@ pub(crate) fn finish(ready: &Ready, raw: &Raw, sweeps: usize) -> Bands {
     }
 }
 
-fn width(ready: &Ready, raw: &Raw, band: usize, bottom: RawEdge, top: RawEdge) -> Bounded {
-    let difference = (top.energy - bottom.energy).round();
-    let energy = bottom.energy.round();
-    let error = level_error(ready, energy, raw.exact);
-    let scale = ready.kinetic_scale().max(energy.abs());
-    let (_, _, slope) = raw.inside[band];
-    let narrow = 4.0 / slope.abs();
-    if narrow < 1e-12 * scale {
-        return Bounded {
-            value: narrow,
-            error: 1e-10 * narrow,
-        };
-    }
-    Bounded {
-        value: difference,
-        error: (2.0 * error).min(error / scale * 1e3 * difference + f64::EPSILON * error),
-    }
-}
-
-fn edge(ready: &Ready, raw: RawEdge, gap: usize, closed: bool, exact: bool) -> BandEdge {
-    let energy = raw.energy.round();
-    let error = level_error(ready, energy, exact);
-    let sign = if is_positive(gap) { -1.0 } else { 1.0 };
-    let mass = sign * raw.slope / (ready.period * ready.period);
+fn edge(raw: &RawEdge, bound: &EdgeBound, gap: usize, closed: bool) -> BandEdge {
     let at = if is_positive(gap) {
         Wave::Centre
     } else {
         Wave::Edge
     };
-    let _ = Double::UNIT;
+    let mass = (!closed && bound.mass.value.is_finite()).then_some(bound.mass);
     BandEdge {
         energy: Bounded {
-            value: energy,
-            error,
+            value: raw.energy.round(),
+            error: bound.error,
         },
         at,
-        mass: (!closed && mass.is_finite()).then_some(Bounded {
-            value: mass,
-            error: 1e-12 * mass.abs(),
-        }),
+        mass,
+    }
+}
+
+/// The width of a band: the difference of its edges while that is accurate, else from D′ inside.
+fn width(
+    ready: &Ready,
+    raw: &Raw,
+    band: usize,
+    bottom: (&RawEdge, &EdgeBound),
+    top: (&RawEdge, &EdgeBound),
+    touching: (bool, bool),
+) -> Bounded {
+    let difference_of_edges = (top.0.energy - bottom.0.energy).round();
+    let (middle, _, _) = raw.inside[band];
+    let isolated = !(touching.0 || touching.1);
+    if let Some(value) = raw.widths[band].filter(|_| isolated) {
+        let (inputs, mesh) = spread(ready, &width_slopes(ready, middle.round()));
+        let own = UNIT * (8.0 + 6.0 * ready.elements.len() as f64) * value;
+        return Bounded {
+            value,
+            error: f64::EPSILON * inputs + mesh + own,
+        };
+    }
+    let value = difference_of_edges;
+    let (inputs, mesh) = if value < NARROW_WIDTH * ready.kinetic_scale() {
+        spread(ready, &width_slopes(ready, middle.round()))
+    } else {
+        spread(ready, &difference(&top.1.slopes, &bottom.1.slopes))
+    };
+    let own = top.0.noise + bottom.0.noise + top.1.rounding + bottom.1.rounding;
+    Bounded {
+        value,
+        error: f64::EPSILON * inputs + mesh + own + 2.0 * UNIT * value,
     }
 }

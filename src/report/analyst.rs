@@ -102,7 +102,9 @@ impl Analyst {
     #[must_use]
     pub fn sensitivities(&self, crystal: &Crystal) -> Vec<Sensitivity> {
         let none = |_| Vec::new();
-        self.solver.sensitivities(crystal, FEATURED_BANDS, &|| false).unwrap_or_else(none)
+        self.solver
+            .sensitivities(crystal, FEATURED_BANDS, &|| false)
+            .unwrap_or_else(none)
     }
 
     /// The band solver, with its cache.
@@ -130,7 +132,11 @@ impl Analyst {
             })
             .collect();
         let sections = self.sections(&tasks, request, now);
-        let depth = sections.iter().map(|section| section.depth).min().unwrap_or(request.depth);
+        let depth = sections
+            .iter()
+            .map(|section| section.depth)
+            .min()
+            .unwrap_or(request.depth);
         let findings = findings(file, &sections, self.used_by_others(world, file), depth);
         Some(FileAnalysis {
             file: id,
@@ -252,7 +258,9 @@ impl Analyst {
                 return None;
             }
             let rebuild = |of: CrystalRef, setting: &Setting| {
-                Some(Arc::new(build_crystal(task.world, of, setting, request.source).crystal))
+                Some(Arc::new(
+                    build_crystal(task.world, of, setting, request.source).crystal,
+                ))
             };
             let of = CrystalRef {
                 file: task.file,
@@ -343,15 +351,26 @@ fn check(task: &Task<'_>, section: &SectionAnalysis, depth: Tier) -> Vec<Finding
 }
 
 /// What is found in a file, waivers applied, in order of place.
-fn findings(file: &WorldFile, sections: &[Arc<SectionAnalysis>], used_by_others: bool, depth: Tier) -> Vec<Finding> {
-    let references: Vec<&[Reference]> = sections.iter().map(|section| section.references.as_slice()).collect();
+fn findings(
+    file: &WorldFile,
+    sections: &[Arc<SectionAnalysis>],
+    used_by_others: bool,
+    depth: Tier,
+) -> Vec<Finding> {
+    let references: Vec<&[Reference]> = sections
+        .iter()
+        .map(|section| section.references.as_slice())
+        .collect();
     let subject = FileSubject {
         file: file.id,
         tree: &file.tree,
         references: &references,
         used_by_others,
     };
-    let mut findings: Vec<Finding> = sections.iter().flat_map(|section| section.findings.iter().cloned()).collect();
+    let mut findings: Vec<Finding> = sections
+        .iter()
+        .flat_map(|section| section.findings.iter().cloned())
+        .collect();
     findings.extend(rules::file_findings(&subject));
     rules::apply_waivers(file.id, &file.tree, findings, depth)
 }

@@ -143,7 +143,7 @@ fn targets<'a>(
     own.map(move |target| {
         let value = match (&target.found, target.value) {
             (Some(found), _) => found.clone(),
-            (None, Some(value)) => trade.tell(value, target.dimension),
+            (None, Some(value)) => trade.tell(value, words::target_dimension(target)),
             (None, None) => String::new(),
         };
         let mut parts = vec![value];

@@ -3,19 +3,35 @@
 use super::words;
 use crate::rules::{self, Rule};
 
-/// All rules with their levels, one a line, in the order of the reference.
+/// Columns that text is wrapped to.
+const WIDTH: usize = 100;
+
+/// All rules with their levels under the names of their groups, in the order of the reference.
 #[must_use]
 pub fn list() -> String {
-    let widest = rules::all()
-        .iter()
-        .map(|rule| rule.name.len())
-        .max()
-        .unwrap_or(0);
-    let line = |rule: &Rule| {
-        let level = words::level(rule.level);
-        format!("{:widest$}  {level:7}  {}\n", rule.name, rule.summary())
-    };
-    rules::all().iter().map(line).collect()
+    let names = rules::all().iter().map(|rule| rule.name.len());
+    let widest = names.max().unwrap_or(0);
+    let mut text = String::new();
+    let mut group = "";
+    for rule in rules::all() {
+        if rule.group != group {
+            let gap = if group.is_empty() { "" } else { "\n" };
+            group = rule.group;
+            text += &format!("{gap}{group}\n");
+        }
+        let head = format!("  {:widest$}  {:7}  ", rule.name, words::level(rule.level));
+        let hang = " ".repeat(head.len());
+        text += &wrapped(&rule.summary(), &head, &hang);
+        text.push('\n');
+    }
+    text
+}
+
+fn wrapped(text: &str, first: &str, others: &str) -> String {
+    let options = textwrap::Options::new(WIDTH)
+        .initial_indent(first)
+        .subsequent_indent(others);
+    textwrap::fill(text, options)
 }
 
 /// One rule explained as plain text; `None` where there is none of that name.
@@ -27,11 +43,11 @@ pub fn text(name: &str) -> Option<String> {
         "{} ({})\n\n{}\n",
         rule.name,
         words::level(rule.level),
-        doc.finds.trim()
+        wrapped(doc.finds.trim(), "", "")
     );
     for (title, body) in [("Why it matters", &doc.matters), ("Fix", &doc.fix)] {
         if !body.trim().is_empty() {
-            text += &format!("\n{title}\n{}\n", indented(body));
+            text += &format!("\n{title}\n{}\n", wrapped(body.trim(), "  ", "  "));
         }
     }
     for (title, sample) in [("Example", &doc.example), ("Instead", &doc.instead)] {

@@ -216,7 +216,9 @@ fn potential(solution: &Solution) -> PotentialRecord {
     // Digits that rounding leaves meaningless are cut; a mean that cancels is nought.
     let told = |joule: f64| match joule.abs() < 1e-13 * size {
         true => 0.0,
-        false => format!("{:.13e}", joule / ELECTRONVOLT).parse().unwrap_or(0.0),
+        false => format!("{:.13e}", joule / ELECTRONVOLT)
+            .parse()
+            .unwrap_or(0.0),
     };
     PotentialRecord {
         lowest: told(range.lowest),
@@ -308,7 +310,7 @@ fn measure(measure: &MeasureValue) -> MeasureRecord {
 }
 
 fn target(locator: &Locator<'_>, crystal: &Crystal, assessment: &Assessment) -> TargetRecord {
-    let (factor, unit) = machine_unit(assessment.dimension);
+    let (factor, unit) = machine_unit(words::target_dimension(assessment));
     let value = assessment.value.map(|value| scaled(value, factor));
     let reach = assessment.value.map_or(0.0, |value| value.uncertainty);
     let worst = assessment.worst.map(|value| {

@@ -307,7 +307,7 @@ pub fn outcome(
     match (&target.found, target.value) {
         (Some(found), _) => parts.push(found.clone()),
         (None, Some(value)) => {
-            parts.push(trade.tell(value, target.dimension));
+            parts.push(trade.tell(value, words::target_dimension(target)));
             parts.extend(margin(target, trade));
         }
         (None, None) => {}
@@ -321,18 +321,21 @@ pub fn outcome(
     parts.join(", ")
 }
 
-/// "72.4 meV to spare" or "7.6 meV short".
+/// "72.4 meV to spare" or "7.6 meV short"; nothing where the margin is not told from nought.
 #[must_use]
 pub fn margin(target: &Assessment, trade: &Trade) -> Option<String> {
     let margin = spare(target)?;
     let size = margin.abs();
     let uncertainty = target.value.map_or(0.0, |value| value.uncertainty);
+    if size <= uncertainty {
+        return None;
+    }
     let told = trade.tell(
         Measured {
             value: size,
             uncertainty,
         },
-        target.dimension,
+        words::target_dimension(target),
     );
     Some(match margin >= 0.0 {
         true => format!("{told} to spare"),
@@ -356,6 +359,11 @@ fn worst(
     trade: &Trade,
 ) -> Option<String> {
     let told = worst_value(target, target.worst?, trade);
+    let told = if target.found.is_some() {
+        format!("a gap of {told}")
+    } else {
+        told
+    };
     Some(match words::driver(locator, crystal, target) {
         Some(driver) => format!("at worst {told} (most by {driver})"),
         None => format!("at worst {told}"),
@@ -370,5 +378,5 @@ pub fn worst_value(target: &Assessment, worst: f64, trade: &Trade) -> String {
         value: worst,
         uncertainty,
     };
-    trade.tell(worst, target.dimension)
+    trade.tell(worst, words::target_dimension(target))
 }

@@ -72,7 +72,8 @@ fn add_line(section: &Section, line: &Line, rows: &mut Vec<Row>) {
         && line.span.start <= section.heading.start
         && section.heading.end <= line.span.end;
     let readable = !section.problems.iter().any(|problem| {
-        line.span.start <= problem.span.start && problem.span.start < line.span.end.max(line.span.start + 1)
+        line.span.start <= problem.span.start
+            && problem.span.start < line.span.end.max(line.span.start + 1)
     });
     for (number, text) in physical.iter().enumerate() {
         let first = number == 0;
@@ -95,7 +96,11 @@ fn add_line(section: &Section, line: &Line, rows: &mut Vec<Row>) {
         };
         let indented = text.starts_with(|character: char| character.is_whitespace());
         rows.push(Row {
-            content: if padded.is_empty() { padded } else { format!("{indent}{padded}") },
+            content: if padded.is_empty() {
+                padded
+            } else {
+                format!("{indent}{padded}")
+            },
             comment: comment.trim_end().to_owned(),
             heading: heading && first,
             loose: margin || !indented,
@@ -171,7 +176,11 @@ fn spaced(rows: Vec<Row>) -> Vec<Row> {
             continue;
         }
         if row.heading {
-            let above = spaced.iter().rev().take_while(|row| row.comment_alone()).count();
+            let above = spaced
+                .iter()
+                .rev()
+                .take_while(|row| row.comment_alone())
+                .count();
             let at = spaced.len() - above;
             let separated = at == 0 || spaced.get(at - 1).is_none_or(Row::blank);
             if !separated {
@@ -251,7 +260,10 @@ mod tests {
     #[test]
     fn a_line_that_cannot_be_read_keeps_its_content() {
         let text = "crystal tern\n    lattice   chain    of   what\n";
-        assert_eq!(tidied(text), "crystal tern\n  lattice   chain    of   what\n");
+        assert_eq!(
+            tidied(text),
+            "crystal tern\n  lattice   chain    of   what\n"
+        );
     }
 
     #[test]

@@ -83,7 +83,10 @@ impl Trade {
             return frequency(size / PLANCK, PLANCK);
         }
         let steps = [(1.0, "eV"), (1e-3, "meV"), (1e-6, "µeV"), (1e-9, "neV")];
-        pick(size, ELECTRONVOLT, &steps, "eV")
+        match size == 0.0 {
+            true => Scale::new(1e-3 * ELECTRONVOLT, "meV"),
+            false => pick(size, ELECTRONVOLT, &steps, "eV"),
+        }
     }
 
     /// The unit for a mass: electron masses, or atomic units for atoms.
@@ -137,6 +140,20 @@ impl Trade {
     #[must_use]
     pub fn tell_energy(&self, value: Measured) -> String {
         self.tell(value, Dimension::ENERGY)
+    }
+
+    /// A number that holds only roughly, such as a slope: three digits.
+    #[must_use]
+    pub fn tell_rough(&self, value: f64, dimension: Dimension) -> String {
+        let scale = self.scale(dimension, value.abs());
+        let rough: f64 = format!("{:.2e}", value / scale.factor)
+            .parse()
+            .unwrap_or(0.0);
+        let number = exact_digits(rough);
+        match scale.name.as_str() {
+            "" => number,
+            name => format!("{number} {name}"),
+        }
     }
 
     /// An exact number (a value as written) with its unit.
@@ -194,18 +211,13 @@ fn frequency(size: f64, unit: f64) -> Scale {
     pick(size * unit, unit, &steps, "Hz")
 }
 
-/// The largest step not above `size`; below the last, the unit `small` names (and an exponent does the rest).
-fn pick(size: f64, unit: f64, steps: &[(f64, &str)], small: &str) -> Scale {
+/// The largest step not above `size`; nought, and what is smaller than the last step, is told in the unit `usual`.
+fn pick(size: f64, unit: f64, steps: &[(f64, &str)], usual: &str) -> Scale {
     // A value that would round up to the next unit belongs to it: 0.99996 eV is 1.000 eV.
     let reach = size.abs() / unit * (1.0 + 5e-5);
     let found = steps.iter().find(|(factor, _)| reach >= *factor);
-    let fallback = steps.iter().find(|(_, name)| *name == small);
-    let (factor, name) = found.or(fallback).copied().unwrap_or((1.0, small));
-    if size == 0.0 {
-        // Nought is told in the unit of the middle of the trade.
-        let (factor, name) = steps.get(1).copied().unwrap_or((factor, name));
-        return Scale::new(factor * unit, name);
-    }
+    let fallback = steps.iter().find(|(_, name)| *name == usual);
+    let (factor, name) = found.or(fallback).copied().unwrap_or((1.0, usual));
     Scale::new(factor * unit, name)
 }
 

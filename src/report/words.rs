@@ -2,7 +2,7 @@
 
 use super::locate::Locator;
 use crate::bands::{Assessment, Class, Feature, GapKind, TargetState, Unsolved};
-use crate::model::{Crystal, Parameter, ParameterId, ParameterKind};
+use crate::model::{Crystal, Dimension, Parameter, ParameterId, ParameterKind};
 use crate::rules::Level;
 
 /// A class of conductor.
@@ -70,6 +70,15 @@ pub fn unsolved(why: &Unsolved) -> String {
         }
         Unsolved::NotConverged(how) => format!("its numbers did not settle: {how}"),
         Unsolved::Cancelled => "the work was stopped".to_owned(),
+    }
+}
+
+/// The dimension of a target's value and worst case: for a class or a kind of gap, that of the gap it stands on.
+#[must_use]
+pub fn target_dimension(target: &Assessment) -> Dimension {
+    match target.found {
+        Some(_) => Dimension::ENERGY,
+        None => target.dimension,
     }
 }
 

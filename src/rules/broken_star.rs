@@ -46,8 +46,17 @@ fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
     let Some(crystal) = subject.crystal.filter(|crystal| crystal.dimension >= 2) else {
         return;
     };
+    if crystal.potential.waves.iter().all(|wave| wave.star) {
+        return;
+    }
     let operations = point_operations(&crystal.primitive_values());
-    let written: Vec<&[i64]> = crystal.potential.waves.iter().flat_map(|wave| &wave.indices).map(Vec::as_slice).collect();
+    let written: Vec<&[i64]> = crystal
+        .potential
+        .waves
+        .iter()
+        .flat_map(|wave| &wave.indices)
+        .map(Vec::as_slice)
+        .collect();
     let mut spoken: Vec<Vec<i64>> = Vec::new();
     for wave in crystal.potential.waves.iter().filter(|wave| !wave.star) {
         let Some(index) = wave.indices.first() else {
@@ -69,11 +78,19 @@ fn finding(
     star: &[Vec<i64>],
     written: &[&[i64]],
 ) -> Option<Finding> {
-    let missing: Vec<&Vec<i64>> = star.iter().filter(|index| !written.iter().any(|other| is_pair(index, other))).collect();
+    let missing: Vec<&Vec<i64>> = star
+        .iter()
+        .filter(|index| !written.iter().any(|other| is_pair(index, other)))
+        .collect();
     if missing.is_empty() {
         return None;
     }
-    let numbers: Vec<_> = crystal.conventional.iter().flatten().chain([&wave.energy]).collect();
+    let numbers: Vec<_> = crystal
+        .conventional
+        .iter()
+        .flatten()
+        .chain([&wave.energy])
+        .collect();
     let place = subject.where_to_speak(wave.place, &numbers)?;
     let index = wave.indices.first()?;
     let message = format!(
@@ -82,14 +99,32 @@ fn finding(
         star.len(),
         words::index(index)
     );
-    let some: Vec<_> = missing.iter().take(3).map(|index| words::index(index)).collect();
+    let some: Vec<_> = missing
+        .iter()
+        .take(3)
+        .map(|index| words::index(&upright(index)))
+        .collect();
     let more = if missing.len() > 3 { " …" } else { "" };
     let alone = missing.len() + 1 == star.len();
     Some(
         Finding::new(&RULE, place, message)
-            .help(format!("the lattice makes it equal to {}{more}; `star` writes them all", some.join(", ")))
+            .help(format!(
+                "the lattice makes it equal to {}{more}; `star` writes them all",
+                some.join(", ")
+            ))
             .fix(if alone { fix(subject, wave) } else { None }),
     )
+}
+
+/// The one of ±G whose first index that is not zero is positive.
+fn upright(index: &[i64]) -> Vec<i64> {
+    let first = index.iter().find(|entry| **entry != 0);
+    let sign = if first.is_some_and(|entry| *entry < 0) {
+        -1
+    } else {
+        1
+    };
+    index.iter().map(|entry| sign * entry).collect()
 }
 
 fn contains(all: &[Vec<i64>], index: &[i64]) -> bool {
@@ -104,7 +139,13 @@ fn is_pair(one: &[i64], other: &[i64]) -> bool {
 
 fn fix(subject: &Subject<'_>, wave: &Wave) -> Option<Fix> {
     let statement = subject.statement_at(wave.place)?;
-    let StatementKind::Wave { phase: None, star: None, kind, .. } = &statement.kind else {
+    let StatementKind::Wave {
+        phase: None,
+        star: None,
+        kind,
+        ..
+    } = &statement.kind
+    else {
         return None;
     };
     if *kind == WaveKind::Fourier {
@@ -123,7 +164,10 @@ mod tests {
     #[test]
     fn what_is_missing_of_a_star_is_counted_and_can_be_added() {
         let text = "crystal a\n  lattice hexagonal 5 nm\n  cosine (1, 0) = 1 meV\n";
-        assert_eq!(messages(&RULE, text), ["2 of the 3 equivalents of (1, 0) are not written"]);
+        assert_eq!(
+            messages(&RULE, text),
+            ["2 of the 3 equivalents of (1, 0) are not written"]
+        );
         let mended = fixed(&RULE, text);
         assert!(mended.contains("cosine star (1, 0)"), "{mended}");
         silent(&RULE, &mended);
@@ -131,11 +175,17 @@ mod tests {
 
     #[test]
     fn a_star_written_out_is_whole() {
-        silent(&RULE, "crystal a\n  lattice hexagonal 5 nm\n  cosine (1, 0) = 1 meV\n  cosine (0, 1) = 1 meV\n  cosine (1, -1) = 1 meV\n");
+        silent(
+            &RULE,
+            "crystal a\n  lattice hexagonal 5 nm\n  cosine (1, 0) = 1 meV\n  cosine (0, 1) = 1 meV\n  cosine (1, -1) = 1 meV\n",
+        );
     }
 
     #[test]
     fn a_lattice_without_symmetry_has_no_stars_to_break() {
-        silent(&RULE, "crystal a\n  lattice oblique 5 nm by 4 nm angle 80 deg\n  cosine (1, 0) = 1 meV\n");
+        silent(
+            &RULE,
+            "crystal a\n  lattice oblique 5 nm by 4 nm angle 80 deg\n  cosine (1, 0) = 1 meV\n",
+        );
     }
 }

@@ -59,7 +59,10 @@ fn message(circle: &[String]) -> String {
     let quoted: Vec<_> = circle.iter().map(|name| format!("`{name}`")).collect();
     match quoted.as_slice() {
         [first, _] => format!("{first} is defined through itself"),
-        [first, rest @ ..] => format!("{first} leads back to itself: {first} → {}", rest.join(" → ")),
+        [first, rest @ ..] => format!(
+            "{first} leads back to itself: {first} → {}",
+            rest.join(" → ")
+        ),
         [] => "these names are defined through each other".to_owned(),
     }
 }
@@ -72,7 +75,10 @@ mod tests {
     #[test]
     fn the_circle_is_spelled_out() {
         let circle = ["a", "b", "a"].map(str::to_owned);
-        assert_eq!(message(&circle), "`a` leads back to itself: `a` → `b` → `a`");
+        assert_eq!(
+            message(&circle),
+            "`a` leads back to itself: `a` → `b` → `a`"
+        );
         let own = ["a", "a"].map(str::to_owned);
         assert_eq!(message(&own), "`a` is defined through itself");
     }

@@ -53,7 +53,10 @@ fn message(circle: &[String]) -> String {
     match circle {
         [] | [_] => "this file uses itself".to_owned(),
         [first, last] if first == last => "this file uses itself".to_owned(),
-        _ => format!("this file uses itself by way of others: {}", circle.join(" → ")),
+        _ => format!(
+            "this file uses itself by way of others: {}",
+            circle.join(" → ")
+        ),
     }
 }
 
@@ -76,10 +79,7 @@ mod tests {
 
     #[test]
     fn two_files_that_use_a_third_are_no_circle() {
-        let others = [
-            ("b.cren", "use \"c.cren\"\n"),
-            ("c.cren", "let w = 3 nm\n"),
-        ];
+        let others = [("b.cren", "use \"c.cren\"\n"), ("c.cren", "let w = 3 nm\n")];
         silent_with(&RULE, "use \"b.cren\"\nuse \"c.cren\"\n", &others);
     }
 }

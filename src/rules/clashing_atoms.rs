@@ -46,7 +46,10 @@ fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
     for trouble in subject.troubles {
         if let TroubleKind::ClashingAtoms { distance } = &trouble.kind {
             let message = match *distance > 0.0 {
-                true => format!("this atom is only {} from another", words::length(*distance)),
+                true => format!(
+                    "this atom is only {} from another",
+                    words::length(*distance)
+                ),
                 false => "this atom stands where another stands already".to_owned(),
             };
             findings.push(
@@ -64,12 +67,16 @@ mod tests {
 
     #[test]
     fn an_atom_and_the_image_of_another_clash() {
-        let text = "crystal a\n  lattice fcc 0.5 nm\n  atom A at (0,0,0)\n  atom A at (0.5,0.5,0)\n";
+        let text =
+            "crystal a\n  lattice fcc 0.5 nm\n  atom A at (0,0,0)\n  atom A at (0.5,0.5,0)\n";
         assert_eq!(messages(&RULE, text).len(), 1);
     }
 
     #[test]
     fn the_centre_of_a_simple_cube_is_free() {
-        silent(&RULE, "crystal a\n  lattice cubic 0.5 nm\n  atom A at (0,0,0)\n  atom A at (0.5,0.5,0.5)\n");
+        silent(
+            &RULE,
+            "crystal a\n  lattice cubic 0.5 nm\n  atom A at (0,0,0)\n  atom A at (0.5,0.5,0.5)\n",
+        );
     }
 }

@@ -29,8 +29,10 @@
 //! None.
 
 use super::formula::{same, value};
-use super::{Finding, Level, Rule, Subject, Tier, words};
-use crate::model::{ClassWish, Dimension, GapWish, Limits, QuantityKind, Target, TargetFormula, Wish};
+use super::{Finding, Level, Rule, Subject, Tier};
+use crate::model::{
+    ClassWish, Dimension, GapWish, Limits, QuantityKind, Target, TargetFormula, Wish,
+};
 
 /// The rule.
 pub const RULE: Rule = Rule {
@@ -52,8 +54,6 @@ fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
         let other = earlier.into_iter().find(|other| clash(other, target));
         if let Some(other) = other {
             findings.push(finding(subject, target, other));
-        } else if is_empty(&target.wish) {
-            findings.push(nothing_fits(subject, target));
         }
     }
 }
@@ -65,24 +65,6 @@ fn finding(subject: &Subject<'_>, target: &Target, other: &Target) -> Finding {
         false => subject.heading(),
     };
     Finding::new(&RULE, place, message).related(other.place, "the other requirement")
-}
-
-fn nothing_fits(subject: &Subject<'_>, target: &Target) -> Finding {
-    let place = match subject.holds(target.place) {
-        true => target.place,
-        false => subject.heading(),
-    };
-    let message = match &target.wish {
-        Wish::Compare { limits, dimension, .. } => match interval(limits) {
-            Some(Interval { lower, upper, .. }) => {
-                let [lower, upper] = words::apart([lower, upper], *dimension, None);
-                format!("nothing lies between {lower} and {upper}, so `{}` cannot hold", target.text)
-            }
-            None => format!("`{}` cannot hold", target.text),
-        },
-        _ => format!("`{}` cannot hold", target.text),
-    };
-    Finding::new(&RULE, place, message)
 }
 
 fn clash(one: &Target, other: &Target) -> bool {
@@ -106,10 +88,22 @@ fn clash(one: &Target, other: &Target) -> bool {
                 ..
             },
         ) => same(expression, other_expression) && apart(limits, other_limits),
-        (Wish::Compare { expression, limits, dimension }, gap @ Wish::GapIs { .. })
-        | (gap @ Wish::GapIs { .. }, Wish::Compare { expression, limits, dimension }) => {
-            *dimension == Dimension::ENERGY && closure_clashes(expression, limits, gap)
-        }
+        (
+            Wish::Compare {
+                expression,
+                limits,
+                dimension,
+            },
+            gap @ Wish::GapIs { .. },
+        )
+        | (
+            gap @ Wish::GapIs { .. },
+            Wish::Compare {
+                expression,
+                limits,
+                dimension,
+            },
+        ) => *dimension == Dimension::ENERGY && closure_clashes(expression, limits, gap),
         _ => false,
     }
 }
@@ -122,7 +116,8 @@ fn classes_clash(one: ClassWish, other: ClassWish) -> bool {
 
 /// A gap that is to be closed cannot be above zero, one that is to be open cannot be at most zero.
 fn closure_clashes(expression: &TargetFormula, limits: &Limits, gap: &Wish) -> bool {
-    let (TargetFormula::Quantity(quantity), Wish::GapIs { of, band, kind }) = (expression, gap) else {
+    let (TargetFormula::Quantity(quantity), Wish::GapIs { of, band, kind }) = (expression, gap)
+    else {
         return false;
     };
     if quantity.of != *of || quantity.kind != QuantityKind::Gap(*band) {
@@ -192,14 +187,9 @@ fn interval(limits: &Limits) -> Option<Interval> {
 
 fn apart(one: &Limits, other: &Limits) -> bool {
     match (interval(one), interval(other)) {
-        (Some(one), Some(other)) => !one.is_empty() && !other.is_empty() && one.meet(&other).is_empty(),
-        _ => false,
-    }
-}
-
-fn is_empty(wish: &Wish) -> bool {
-    match wish {
-        Wish::Compare { limits, .. } => interval(limits).is_some_and(|interval| interval.is_empty()),
+        (Some(one), Some(other)) => {
+            !one.is_empty() && !other.is_empty() && one.meet(&other).is_empty()
+        }
         _ => false,
     }
 }
@@ -216,7 +206,10 @@ mod tests {
     #[test]
     fn limits_that_exclude_each_other_clash() {
         let text = crystal("  require gap 1 >= 3 eV\n  require gap 1 < 3 eV\n");
-        assert_eq!(messages(&RULE, &text), ["`gap 1 >= 3 eV` and `gap 1 < 3 eV` cannot both hold"]);
+        assert_eq!(
+            messages(&RULE, &text),
+            ["`gap 1 >= 3 eV` and `gap 1 < 3 eV` cannot both hold"]
+        );
     }
 
     #[test]
@@ -229,13 +222,17 @@ mod tests {
 
     #[test]
     fn limits_that_touch_can_both_hold() {
-        silent(&RULE, &crystal("  require gap 1 >= 3 eV\n  require gap 1 <= 3 eV\n"));
-        silent(&RULE, &crystal("  require gap 1 >= 3 eV\n  require gap 2 <= 2 eV\n"));
-        silent(&RULE, &crystal("  filling 2\n  require semiconductor\n  require insulator\n"));
-    }
-
-    #[test]
-    fn an_interval_with_nothing_in_it_is_found() {
-        assert_eq!(messages(&RULE, &crystal("  require gap 1 between 3 eV and 2 eV\n")).len(), 1);
+        silent(
+            &RULE,
+            &crystal("  require gap 1 >= 3 eV\n  require gap 1 <= 3 eV\n"),
+        );
+        silent(
+            &RULE,
+            &crystal("  require gap 1 >= 3 eV\n  require gap 2 <= 2 eV\n"),
+        );
+        silent(
+            &RULE,
+            &crystal("  filling 2\n  require semiconductor\n  require insulator\n"),
+        );
     }
 }

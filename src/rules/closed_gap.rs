@@ -27,9 +27,10 @@
 //! None. If closure is the aim, say so: `require gap 2 closed`.
 
 use super::named_gaps::{NamedGap, named_gaps};
+use super::words::Trade;
 use super::{Finding, Level, Rule, Subject, Tier, words};
 use crate::bands::GapKind;
-use crate::model::Crystal;
+use crate::model::{Crystal, Dimension};
 
 /// The rule.
 pub const RULE: Rule = Rule {
@@ -55,7 +56,6 @@ fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
 
 fn finding(crystal: &Crystal, named: &NamedGap) -> Finding {
     let bound = named.gap.size.value.abs() + named.gap.size.uncertainty;
-    let unit = words::unit_for(bound, crate::model::Dimension::ENERGY, words::recoil_of(crystal));
     let band = named.band;
     let message = match named.fermi {
         true => format!("gap {band}, which holds the Fermi level, is closed"),
@@ -63,7 +63,7 @@ fn finding(crystal: &Crystal, named: &NamedGap) -> Finding {
     };
     Finding::new(&RULE, named.place, message).help(format!(
         "it is below {}; if that is the aim, write `require gap {band} closed`",
-        words::in_unit(bound, unit, 1)
+        words::bound(bound, Dimension::ENERGY, Trade::of(crystal))
     ))
 }
 
@@ -75,19 +75,43 @@ mod tests {
 
     #[test]
     fn a_closed_gap_that_a_target_names_is_found() {
-        let found = solved(&RULE, "  require gap 2 >= 5 meV\n", 2, GapKind::Closed, 0.0, 1e-15);
+        let found = solved(
+            &RULE,
+            "  require gap 2 >= 5 meV\n",
+            2,
+            GapKind::Closed,
+            0.0,
+            1e-15,
+        );
         assert_eq!(found, ["gap 2 is closed"]);
     }
 
     #[test]
     fn closure_that_is_wanted_and_gaps_that_nobody_names_are_silent() {
-        for target in ["  require gap 2 closed\n", "  require gap 2 <= 1 meV\n", "  require gap 1 >= 5 meV\n"] {
-            assert!(solved(&RULE, target, 2, GapKind::Closed, 0.0, 1e-15).is_empty(), "{target}");
+        for target in [
+            "  require gap 2 closed\n",
+            "  require gap 2 <= 1 meV\n",
+            "  require gap 1 >= 5 meV\n",
+        ] {
+            assert!(
+                solved(&RULE, target, 2, GapKind::Closed, 0.0, 1e-15).is_empty(),
+                "{target}"
+            );
         }
     }
 
     #[test]
     fn a_small_gap_is_not_closed() {
-        assert!(solved(&RULE, "  require gap 2 >= 0 meV\n", 2, GapKind::Direct, 1e-9, 1e-15).is_empty());
+        assert!(
+            solved(
+                &RULE,
+                "  require gap 2 >= 0 meV\n",
+                2,
+                GapKind::Direct,
+                1e-9,
+                1e-15
+            )
+            .is_empty()
+        );
     }
 }

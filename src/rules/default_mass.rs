@@ -79,7 +79,10 @@ mod tests {
     #[test]
     fn layers_without_any_mass_are_found() {
         let text = "crystal a\n  layer 5 nm at 0\n  layer 3 nm at 9 meV\n";
-        assert_eq!(messages(&RULE, text), ["no mass is stated for these layers, so 1 me is used"]);
+        assert_eq!(
+            messages(&RULE, text),
+            ["no mass is stated for these layers, so 1 me is used"]
+        );
         assert!(fixed(&RULE, text).starts_with("crystal a\n  mass 1 me\n  layer"));
         silent(&RULE, &fixed(&RULE, text));
     }
@@ -87,12 +90,21 @@ mod tests {
     #[test]
     fn a_recoil_without_a_mass_is_found() {
         let text = "crystal a\n  lattice chain 400 nm\n  recoil 800 nm\n  depth 1 = 9 Er\n";
-        assert_eq!(messages(&RULE, text), ["no mass is stated for the recoil, so 1 me is used"]);
+        assert_eq!(
+            messages(&RULE, text),
+            ["no mass is stated for the recoil, so 1 me is used"]
+        );
     }
 
     #[test]
     fn a_free_electron_in_a_cosine_is_usual_and_layers_may_say_their_own_mass() {
-        silent(&RULE, "crystal a\n  lattice chain 0.4 nm\n  cosine 1 = 1 eV\n");
-        silent(&RULE, "crystal a\n  layer 5 nm at 0 mass 0.07 me\n  layer 3 nm at 9 meV mass 0.09 me\n");
+        silent(
+            &RULE,
+            "crystal a\n  lattice chain 0.4 nm\n  cosine 1 = 1 eV\n",
+        );
+        silent(
+            &RULE,
+            "crystal a\n  layer 5 nm at 0 mass 0.07 me\n  layer 3 nm at 9 meV mass 0.09 me\n",
+        );
     }
 }

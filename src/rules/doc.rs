@@ -192,7 +192,9 @@ fn fences(text: &str) -> Vec<(String, String)> {
 }
 
 fn also_found(text: &str) -> Vec<String> {
-    let lines = text.lines().filter_map(|line| line.strip_prefix("Also found:"));
+    let lines = text
+        .lines()
+        .filter_map(|line| line.strip_prefix("Also found:"));
     let parts = lines.flat_map(|line| line.split('`').skip(1).step_by(2));
     parts.map(str::to_owned).collect()
 }

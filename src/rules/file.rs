@@ -28,11 +28,12 @@ impl FileSubject<'_> {
         }
     }
 
-    /// Whether a name that is defined at `definition` is used.
+    /// Whether a name that is defined at `definition` is used, or may be meant where a name of that sort is unknown.
     #[must_use]
-    pub fn uses(&self, definition: Place, sort: NameSort) -> bool {
-        let mut all = self.references.iter().copied().flatten();
-        all.any(|reference| reference.sort == sort && reference.definition == Some(definition))
+    pub fn may_use(&self, definition: Place, sort: NameSort) -> bool {
+        let all = self.references.iter().copied().flatten();
+        let mut of_sort = all.filter(|reference| reference.sort == sort);
+        of_sort.any(|reference| reference.definition.is_none_or(|place| place == definition))
     }
 
     /// Whether a value of that name is used anywhere in the file.
@@ -86,10 +87,14 @@ pub fn apply_waivers(
         }
     }
     let idle = waivers.iter().filter(|waiver| !waiver.used);
-    let idle: Vec<_> = idle.filter_map(|waiver| idle_finding(waiver, &errors, depth)).collect();
+    let idle: Vec<_> = idle
+        .filter_map(|waiver| idle_finding(waiver, &errors, depth))
+        .collect();
     kept.extend(idle.into_iter().filter(|finding| {
         let own = Some(finding.place.section);
-        !waivers.iter().any(|waiver| waiver.rule == "idle-waiver" && waiver.section.is_none_or(|entry| Some(entry.id) == own))
+        !waivers.iter().any(|waiver| {
+            waiver.rule == "idle-waiver" && waiver.section.is_none_or(|entry| Some(entry.id) == own)
+        })
     }));
     in_order(tree, kept)
 }
@@ -107,11 +112,16 @@ fn waivers(file: FileId, tree: &Tree) -> Vec<Waiver<'_>> {
             let StatementKind::Waive { rule, reason } = &statement.kind else {
                 continue;
             };
-            if reason.as_ref().is_none_or(|reason| reason.text.trim().is_empty()) {
+            if reason
+                .as_ref()
+                .is_none_or(|reason| reason.text.trim().is_empty())
+            {
                 continue;
             }
             let mut lines = entry.section.lines.iter();
-            let line = lines.find(|line| line.span.start <= statement.span.start && statement.span.end <= line.span.end);
+            let line = lines.find(|line| {
+                line.span.start <= statement.span.start && statement.span.end <= line.span.end
+            });
             all.push(Waiver {
                 rule: &rule.text,
                 section: (index > 0).then_some(entry),
@@ -130,7 +140,9 @@ fn silenced(finding: &Finding, waivers: &mut [Waiver<'_>]) -> bool {
     }
     let mut silenced = false;
     for waiver in waivers {
-        let serves = waiver.section.is_none_or(|entry| entry.id == finding.place.section);
+        let serves = waiver
+            .section
+            .is_none_or(|entry| entry.id == finding.place.section);
         if serves && waiver.rule == finding.rule {
             waiver.used = true;
             silenced = true;
@@ -148,29 +160,46 @@ fn can_be_waived(finding: &Finding) -> bool {
 fn idle_finding(waiver: &Waiver<'_>, errors: &[Place], depth: Tier) -> Option<Finding> {
     let rule: &Rule = find(waiver.rule)?;
     if !rule.waivable {
-        return Some(idle_waiver::finding(rule.name, false, waiver.place, waiver.line));
+        return Some(idle_waiver::finding(
+            rule.name,
+            false,
+            waiver.place,
+            waiver.line,
+        ));
     }
     // What an error hides cannot be known, so a waiver may yet be needed.
     let serves = |place: &Place| waiver.section.is_none_or(|entry| entry.id == place.section);
     if rule.tier > depth || errors.iter().any(serves) {
         return None;
     }
-    Some(idle_waiver::finding(rule.name, true, waiver.place, waiver.line))
+    Some(idle_waiver::finding(
+        rule.name,
+        true,
+        waiver.place,
+        waiver.line,
+    ))
 }
 
 /// By place, and each finding once.
 fn in_order(tree: &Tree, mut findings: Vec<Finding>) -> Vec<Finding> {
     let order = |finding: &Finding| {
-        let position = tree.entries.iter().position(|entry| entry.id == finding.place.section);
+        let position = tree
+            .entries
+            .iter()
+            .position(|entry| entry.id == finding.place.section);
         (position.unwrap_or(usize::MAX), finding.place.span)
     };
     findings.sort_by_cached_key(order);
     let mut kept: Vec<Finding> = Vec::new();
     for finding in findings {
         let twin = |other: &Finding| {
-            (other.rule, other.place, &other.message) == (finding.rule, finding.place, &finding.message)
+            (other.rule, other.place, &other.message)
+                == (finding.rule, finding.place, &finding.message)
         };
-        let same_place = kept.iter().rev().take_while(|other| other.place == finding.place);
+        let same_place = kept
+            .iter()
+            .rev()
+            .take_while(|other| other.place == finding.place);
         let known = same_place.into_iter().any(twin);
         if !known {
             kept.push(finding);

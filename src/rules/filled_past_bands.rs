@@ -55,13 +55,16 @@ fn finding(subject: &Subject<'_>) -> Option<Finding> {
         return None;
     }
     let mut fillings = subject.statements(|kind| matches!(kind, StatementKind::Filling(_)));
-    let place = fillings.next().map_or_else(|| subject.heading(), |found| subject.place(found.span));
+    let place = fillings
+        .next()
+        .map_or_else(|| subject.heading(), |found| subject.place(found.span));
     let message = format!(
         "{} particles fill {needed} bands, and only {solved} are solved",
         words::number(filling, 6)
     );
-    let finding = Finding::new(&RULE, place, message)
-        .help(format!("ask for at least {needed} bands, or leave `bands` out"));
+    let finding = Finding::new(&RULE, place, message).help(format!(
+        "ask for at least {needed} bands, or leave `bands` out"
+    ));
     Some(finding.fix(fix(subject, needed)))
 }
 
@@ -80,12 +83,17 @@ mod tests {
     use super::RULE;
 
     fn text(bands: &str, filling: &str) -> String {
-        format!("crystal a\n  mass 1 me\n  lattice chain 0.4 nm\n  cosine 1 = 1 eV\n  bands {bands}\n  filling {filling}\n")
+        format!(
+            "crystal a\n  mass 1 me\n  lattice chain 0.4 nm\n  cosine 1 = 1 eV\n  bands {bands}\n  filling {filling}\n"
+        )
     }
 
     #[test]
     fn the_bands_are_raised() {
-        assert_eq!(messages(&RULE, &text("2", "5")), ["5 particles fill 3 bands, and only 2 are solved"]);
+        assert_eq!(
+            messages(&RULE, &text("2", "5")),
+            ["5 particles fill 3 bands, and only 2 are solved"]
+        );
         assert_eq!(fixed(&RULE, &text("2", "5")), text("3", "5"));
     }
 

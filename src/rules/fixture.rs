@@ -5,12 +5,13 @@ use std::sync::Arc;
 
 use super::{FileSubject, Finding, Level, Rule, Subject, Tier, apply_waivers, file_findings};
 use crate::bands::{
-    Assessment, Band, Extremum, Gap, GapKind, Measured, PotentialRange, Solution, TargetState, Unsolved,
+    Assessment, Band, Extremum, Gap, GapKind, Measured, PotentialRange, Solution, TargetState,
+    Unsolved,
 };
 use crate::model::constants::ELECTRONVOLT;
 use crate::model::{
-    Crystal, CrystalRef, Dimension, FileId, FileSource, Place, ReadFailure, Reference, Setting, Trouble,
-    World, build_crystal, build_material, build_preamble, normalise,
+    Crystal, CrystalRef, Dimension, FileId, FileSource, Place, ReadFailure, Reference, Setting,
+    Trouble, World, build_crystal, build_material, build_preamble, normalise,
 };
 use crate::syntax::{Entry, SectionKind, Tree, read};
 
@@ -23,7 +24,9 @@ struct Memory(Vec<(PathBuf, String)>);
 impl Memory {
     fn text(&self, path: &Path) -> Result<&str, ReadFailure> {
         let found = self.0.iter().find(|(known, _)| known == path);
-        found.map(|(_, text)| text.as_str()).ok_or(ReadFailure::NotFound)
+        found
+            .map(|(_, text)| text.as_str())
+            .ok_or(ReadFailure::NotFound)
     }
 }
 
@@ -61,12 +64,20 @@ impl Fixture {
     fn new(text: &str, others: &[(&str, &str)]) -> Self {
         let mut files = vec![(normalise(Path::new(MAIN)), text.to_owned())];
         let path = |name: &str| normalise(&Path::new("/").join(name));
-        files.extend(others.iter().map(|(name, text)| (path(name), (*text).to_owned())));
+        files.extend(
+            others
+                .iter()
+                .map(|(name, text)| (path(name), (*text).to_owned())),
+        );
         let source = Memory(files);
         let world = World::gather(&source, &[PathBuf::from(MAIN)]);
         let file = FileId::of(&normalise(Path::new(MAIN)));
         let tree = Arc::new(read(text));
-        let models = tree.entries.iter().map(|entry| model(&world, file, entry, &source)).collect();
+        let models = tree
+            .entries
+            .iter()
+            .map(|entry| model(&world, file, entry, &source))
+            .collect();
         Self {
             world,
             file,
@@ -100,12 +111,20 @@ impl Fixture {
         for model in &self.models {
             (rule.check)(&self.subject(model), &mut findings);
         }
-        findings.extend(self.of_file().into_iter().filter(|finding| finding.rule == rule.name));
+        findings.extend(
+            self.of_file()
+                .into_iter()
+                .filter(|finding| finding.rule == rule.name),
+        );
         findings
     }
 
     fn of_file(&self) -> Vec<Finding> {
-        let references: Vec<&[Reference]> = self.models.iter().map(|model| model.references.as_slice()).collect();
+        let references: Vec<&[Reference]> = self
+            .models
+            .iter()
+            .map(|model| model.references.as_slice())
+            .collect();
         file_findings(&FileSubject {
             file: self.file,
             tree: &self.tree,
@@ -144,7 +163,10 @@ fn model(world: &World, file: FileId, entry: &Entry, source: &dyn FileSource) ->
 }
 
 fn words(findings: Vec<Finding>) -> Vec<String> {
-    findings.into_iter().map(|finding| finding.message).collect()
+    findings
+        .into_iter()
+        .map(|finding| finding.message)
+        .collect()
 }
 
 /// What a rule says on a text.
@@ -184,7 +206,11 @@ pub fn fixed(rule: &Rule, text: &str) -> String {
         .edits
         .iter()
         .map(|edit| {
-            let entry = fixture.tree.entries.iter().find(|entry| entry.id == edit.place.section);
+            let entry = fixture
+                .tree
+                .entries
+                .iter()
+                .find(|entry| entry.id == edit.place.section);
             let start = entry.expect("the edit's section").start;
             let span = edit.place.span.shifted(start);
             (span.start as usize, span.end as usize, edit.text.as_str())
@@ -203,10 +229,15 @@ pub fn after_waivers(text: &str) -> Vec<(&'static str, String)> {
     let fixture = Fixture::new(text, &[]);
     let mut findings = fixture.of_file();
     for model in &fixture.models {
-        findings.extend(super::section_findings(&fixture.subject(model), Tier::Model));
+        findings.extend(super::section_findings(
+            &fixture.subject(model),
+            Tier::Model,
+        ));
     }
     let kept = apply_waivers(fixture.file, &fixture.tree, findings, Tier::Model);
-    kept.into_iter().map(|finding| (finding.rule, finding.message)).collect()
+    kept.into_iter()
+        .map(|finding| (finding.rule, finding.message))
+        .collect()
 }
 
 /// An energy that is known to 1e-15 eV.
@@ -265,7 +296,9 @@ pub fn solved(
     let text = format!("crystal a\n  mass 1 me\n  lattice chain 1 nm\n{statements}");
     let fixture = Fixture::new(&text, &[]);
     let mut solution = solution(0.0);
-    let gap = band.checked_sub(1).and_then(|index| solution.gaps.get_mut(index));
+    let gap = band
+        .checked_sub(1)
+        .and_then(|index| solution.gaps.get_mut(index));
     *gap.expect("a gap of the solution") = Gap {
         size: Measured {
             value: size * ELECTRONVOLT,
@@ -289,7 +322,11 @@ pub fn unsolved(rule: &Rule, why: Unsolved) -> Vec<String> {
     with_bands(rule, &fixture, Err(why))
 }
 
-fn with_bands(rule: &Rule, fixture: &Fixture, bands: Result<Arc<Solution>, Unsolved>) -> Vec<String> {
+fn with_bands(
+    rule: &Rule,
+    fixture: &Fixture,
+    bands: Result<Arc<Solution>, Unsolved>,
+) -> Vec<String> {
     let subject = Subject {
         bands: Some(&bands),
         ..fixture.subject(fixture.crystal())

@@ -53,7 +53,11 @@ mod tests {
     #[test]
     fn impossible_angles_and_dependent_vectors_are_found() {
         let flat = "triclinic 1 nm by 1 nm by 1 nm angles 20 deg, 20 deg, 90 deg";
-        for lattice in [flat, "vectors (1 nm, 1 nm) (2 nm, 2 nm)", "oblique 1 nm by 1 nm angle 180 deg"] {
+        for lattice in [
+            flat,
+            "vectors (1 nm, 1 nm) (2 nm, 2 nm)",
+            "oblique 1 nm by 1 nm angle 180 deg",
+        ] {
             let text = format!("crystal a\n  lattice {lattice}\n");
             assert_eq!(messages(&RULE, &text).len(), 1, "{lattice}");
         }
@@ -61,6 +65,9 @@ mod tests {
 
     #[test]
     fn a_slim_cell_is_a_cell() {
-        silent(&RULE, "crystal a\n  lattice oblique 1 nm by 1 nm angle 5 deg\n");
+        silent(
+            &RULE,
+            "crystal a\n  lattice oblique 1 nm by 1 nm angle 5 deg\n",
+        );
     }
 }

@@ -54,6 +54,8 @@ pub fn quantities<'f>(formula: &'f TargetFormula, found: &mut Vec<&'f Quantity>)
             quantities(left, found);
             quantities(right, found);
         }
-        TargetFormula::Call(_, arguments) => arguments.iter().for_each(|part| quantities(part, found)),
+        TargetFormula::Call(_, arguments) => {
+            arguments.iter().for_each(|part| quantities(part, found))
+        }
     }
 }

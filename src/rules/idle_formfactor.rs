@@ -57,20 +57,33 @@ fn finding(subject: &Subject<'_>, crystal: &Crystal, formfactor: &Formfactor) ->
         return None;
     };
     let shells = shells(crystal, q.value)?;
-    if shells.iter().any(|shell| (shell - q.value).abs() <= MATCHED) {
+    if shells
+        .iter()
+        .any(|shell| (shell - q.value).abs() <= MATCHED)
+    {
         return None;
     }
     let vectors = crystal.conventional.iter().flatten();
     let numbers: Vec<_> = vectors.chain(std::iter::once(q)).collect();
     let place = subject.where_to_speak(formfactor.place, &numbers)?;
     let shown = words::number(q.value, 7);
-    let message = format!("no reciprocal vector of this lattice has |G|² = {shown}, so this value is never used");
+    let message = format!(
+        "no reciprocal vector of this lattice has |G|² = {shown}, so this value is never used"
+    );
     Some(Finding::new(&RULE, place, message).help_if(nearest(&shells, q.value)))
 }
 
 fn nearest(shells: &[f64], q: f64) -> Option<String> {
-    let below = shells.iter().copied().filter(|shell| *shell < q).fold(f64::NEG_INFINITY, f64::max);
-    let above = shells.iter().copied().filter(|shell| *shell > q).fold(f64::INFINITY, f64::min);
+    let below = shells
+        .iter()
+        .copied()
+        .filter(|shell| *shell < q)
+        .fold(f64::NEG_INFINITY, f64::max);
+    let above = shells
+        .iter()
+        .copied()
+        .filter(|shell| *shell > q)
+        .fold(f64::INFINITY, f64::min);
     let near: Vec<_> = [below, above]
         .into_iter()
         .filter(|shell| shell.is_finite() && *shell > 0.0)

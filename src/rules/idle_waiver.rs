@@ -65,14 +65,22 @@ mod tests {
     #[test]
     fn a_waiver_that_silences_something_is_not_idle() {
         let text = "crystal a\n  waive seam-step because \"r\"\n  lattice chain 8 nm\n  profile = 1 meV * x/period\n";
-        assert!(after_waivers(text).iter().all(|(rule, _)| *rule != "seam-step" && *rule != "idle-waiver"));
+        assert!(
+            after_waivers(text)
+                .iter()
+                .all(|(rule, _)| *rule != "seam-step" && *rule != "idle-waiver")
+        );
     }
 
     #[test]
     fn a_waiver_in_the_preamble_serves_the_whole_file() {
         let crystal = "crystal a\n  lattice chain 8 nm\n  profile = 1 meV * x/period\n";
         let text = format!("waive seam-step because \"r\"\n{crystal}");
-        assert!(after_waivers(&text).is_empty(), "{:?}", after_waivers(&text));
+        assert!(
+            after_waivers(&text).is_empty(),
+            "{:?}",
+            after_waivers(&text)
+        );
     }
 
     #[test]

@@ -58,9 +58,8 @@ fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
 fn finding(subject: &Subject<'_>, crystal: &Crystal, joint: &Joint<'_>) -> Option<Finding> {
     let [left, right] = joint.numbers();
     let place = subject.where_to_speak(joint.right.formula_place, &[&left, &right])?;
-    let slope = |joule_per_metre: f64| {
-        format!("{} per nm", words::energy_of(crystal, joule_per_metre * 1e-9))
-    };
+    let slope =
+        |joule_per_metre: f64| format!("{} per nm", words::energy(crystal, joule_per_metre * 1e-9));
     let message = format!(
         "the potential has a corner at {}: its slope goes from {} to {}",
         words::length(joint.right.range[0].value),
@@ -82,14 +81,17 @@ mod tests {
     #[test]
     fn a_corner_between_pieces_is_noted() {
         let text = "crystal a\n  lattice chain 8 nm\n  profile 0 to 4 nm = 5 meV*x/(1 nm)\n  profile 4 nm to 8 nm = 5 meV*(8 - x/(1 nm))\n";
-        let message = "the potential has a corner at 4 nm: its slope goes from 5 meV per nm to -5 meV per nm";
+        let message =
+            "the potential has a corner at 4 nm: its slope goes from 5 meV per nm to -5 meV per nm";
         assert_eq!(messages(&RULE, text), [message]);
     }
 
     #[test]
     fn pieces_of_one_smooth_curve_are_silent() {
         let wave = "9 meV * cos(2*pi*x/period)";
-        let text = format!("crystal a\n  lattice chain 8 nm\n  profile 0 to 3 nm = {wave}\n  profile 3 nm to 8 nm = {wave}\n");
+        let text = format!(
+            "crystal a\n  lattice chain 8 nm\n  profile 0 to 3 nm = {wave}\n  profile 3 nm to 8 nm = {wave}\n"
+        );
         silent(&RULE, &text);
     }
 }

@@ -29,6 +29,7 @@
 //! A piece that is off by the same amount at both of its ends is shifted by a constant.
 
 use super::stretch::{Joint, Swing, joints, swing};
+use super::words::Trade;
 use super::{Finding, Fix, Level, Replacement, Rule, Subject, Tier, words};
 use crate::model::{Crystal, Dimension, ProfilePiece};
 
@@ -54,7 +55,9 @@ fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
         return;
     };
     let joints = joints(crystal);
-    let steps = joints.iter().filter(|joint| !joint.seam && joint.steps(&swing));
+    let steps = joints
+        .iter()
+        .filter(|joint| !joint.seam && joint.steps(&swing));
     findings.extend(steps.filter_map(|joint| finding(subject, crystal, &swing, joint, &joints)));
 }
 
@@ -68,12 +71,14 @@ fn finding(
     let [left, right] = joint.numbers();
     let place = subject.where_to_speak(joint.right.formula_place, &[&left, &right])?;
     let at = words::length(joint.right.range[0].value);
-    let size = words::energy_of(crystal, joint.step().abs());
+    let size = words::energy(crystal, joint.step().abs());
     let message = format!("the potential jumps by {size} at {at}");
-    let recoil = words::recoil_of(crystal);
-    let [before, after] = words::apart([left.value, right.value], Dimension::ENERGY, recoil);
+    let trade = Trade::of(crystal);
+    let [before, after] = words::apart([left.value, right.value], Dimension::ENERGY, trade);
     let finding = Finding::new(&RULE, place, message)
-        .help(format!("it is {before} to the left and {after} to the right"))
+        .help(format!(
+            "it is {before} to the left and {after} to the right"
+        ))
         .related(joint.left.formula_place, "the piece to the left");
     if joint.step().abs() > MEANT * swing.height {
         return Some(finding.at_level(Level::Note));
@@ -101,7 +106,7 @@ fn shift(subject: &Subject<'_>, crystal: &Crystal, piece: &ProfilePiece, by: f64
     if !subject.holds(piece.formula_place) {
         return None;
     }
-    let unit = words::unit_for(by, Dimension::ENERGY, words::recoil_of(crystal))?;
+    let unit = words::unit_for(by, Dimension::ENERGY, Trade::of(crystal))?;
     let amount = words::number(by.abs() / unit.size, 12);
     let sign = if by < 0.0 { '-' } else { '+' };
     let name = unit.name.replace('µ', "u");
@@ -122,7 +127,10 @@ mod tests {
     #[test]
     fn a_piece_that_is_off_by_a_constant_is_shifted() {
         let text = format!("{PIECES} + 0.5 meV\n");
-        assert_eq!(messages(&RULE, &text), ["the potential jumps by 0.5 meV at 4 nm"]);
+        assert_eq!(
+            messages(&RULE, &text),
+            ["the potential jumps by 0.5 meV at 4 nm"]
+        );
         let mended = fixed(&RULE, &text);
         assert!(mended.contains("+ 0.5 meV - 0.5 meV"), "{mended}");
         silent(&RULE, &mended);
@@ -131,7 +139,10 @@ mod tests {
     #[test]
     fn a_large_jump_is_likely_meant() {
         assert_eq!(levels(&RULE, &format!("{PIECES} + 5 meV\n")), [Level::Note]);
-        assert_eq!(levels(&RULE, &format!("{PIECES} + 0.5 meV\n")), [Level::Warning]);
+        assert_eq!(
+            levels(&RULE, &format!("{PIECES} + 0.5 meV\n")),
+            [Level::Warning]
+        );
     }
 
     #[test]

@@ -82,12 +82,18 @@ mod tests {
         let text = "crystal a\n  lattice chain 8 nm\n  fourier 1 = 3 meV phase 0.5 # first\n  title \"t\"\n";
         assert_eq!(messages(&RULE, text).len(), 1);
         let mended = fixed(&RULE, text);
-        assert!(mended.contains("# first\n  fourier -1 = 3 meV phase -0.5"), "{mended}");
+        assert!(
+            mended.contains("# first\n  fourier -1 = 3 meV phase -0.5"),
+            "{mended}"
+        );
         silent(&RULE, &mended);
     }
 
     #[test]
     fn a_pair_is_real() {
-        silent(&RULE, "crystal a\n  lattice chain 8 nm\n  fourier 1 = 3 meV\n  fourier -1 = 3 meV\n");
+        silent(
+            &RULE,
+            "crystal a\n  lattice chain 8 nm\n  fourier 1 = 3 meV\n  fourier -1 = 3 meV\n",
+        );
     }
 }

@@ -10,7 +10,7 @@
 //! material basin
 //!   mass 0.067 me
 //!   edge 0 meV
-//!   filling 2
+//!   filling 1
 //!   ^^^^^^^
 //!
 //! crystal tern
@@ -25,7 +25,7 @@
 //!
 //! crystal tern
 //!   layer 8.0 nm of basin
-//!   filling 2
+//!   filling 1
 //! ```
 //!
 //! # Fix
@@ -59,7 +59,10 @@ fn misplaced(subject: &Subject<'_>, problem: &Problem) -> Option<Finding> {
     };
     let message = format!("`{word}` does not belong {}", in_words(*found_in));
     let homes = statement(word).map_or(&[][..], |entry| entry.sections);
-    let homes: Vec<_> = homes.iter().map(|kind| in_words(*kind).to_owned()).collect();
+    let homes: Vec<_> = homes
+        .iter()
+        .map(|kind| in_words(*kind).to_owned())
+        .collect();
     let help = (!homes.is_empty()).then(|| format!("it may stand {}", words::listed(&homes)));
     Some(Finding::new(&RULE, subject.place(problem.span), message).help_if(help))
 }
@@ -87,13 +90,19 @@ mod tests {
 
     #[test]
     fn the_sections_that_would_take_it_are_named() {
-        let found = messages(&RULE, "material a\n  mass 1 me\n  edge 0 meV\n  filling 2\n");
+        let found = messages(
+            &RULE,
+            "material a\n  mass 1 me\n  edge 0 meV\n  filling 2\n",
+        );
         assert_eq!(found, ["`filling` does not belong in a `material`"]);
     }
 
     #[test]
     fn a_layer_on_a_square_lattice_does_not_fit() {
-        let found = messages(&RULE, "crystal a\n  lattice square 8 nm\n  layer 8 nm at 0 meV\n");
+        let found = messages(
+            &RULE,
+            "crystal a\n  lattice square 8 nm\n  layer 8 nm at 0 meV\n",
+        );
         assert_eq!(found.len(), 1, "{found:?}");
     }
 

@@ -48,10 +48,9 @@ fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
     for trouble in subject.troubles {
         if let TroubleKind::MissingFile { path, why } = &trouble.kind {
             let message = format!("`{path}` cannot be read: {why}");
-            findings.push(
-                Finding::of_trouble(&RULE, trouble, message)
-                    .help("a path is relative to the file that names it, and stays inside the workspace"),
-            );
+            findings.push(Finding::of_trouble(&RULE, trouble, message).help(
+                "a path is relative to the file that names it, and stays inside the workspace",
+            ));
         }
     }
 }
@@ -65,7 +64,11 @@ mod tests {
     fn a_file_that_is_not_there_is_found() {
         let found = messages(&RULE, "use \"none.cren\"\n");
         assert_eq!(found.len(), 1, "{found:?}");
-        assert!(found.iter().all(|text| text.starts_with("`none.cren` cannot be read")));
+        assert!(
+            found
+                .iter()
+                .all(|text| text.starts_with("`none.cren` cannot be read"))
+        );
     }
 
     #[test]

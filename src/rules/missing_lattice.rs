@@ -46,7 +46,10 @@ fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
         place: subject.heading(),
         ..Finding::of_trouble(&RULE, trouble, "nothing says what repeats in this crystal")
     };
-    findings.push(finding.help("write `lattice chain 8 nm` or another lattice, or build the cell of `layer`s"));
+    findings.push(
+        finding
+            .help("write `lattice chain 8 nm` or another lattice, or build the cell of `layer`s"),
+    );
 }
 
 #[cfg(test)]

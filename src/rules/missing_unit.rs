@@ -11,7 +11,6 @@
 //!                 ^^^
 //!   cosine 1 = 20 meV
 //! ```
-//! Also found: `missing-lattice`.
 //!
 //! # Instead
 //! ```cren
@@ -50,7 +49,8 @@ fn finding(subject: &Subject<'_>, trouble: &Trouble) -> Option<Finding> {
     let (what, example) = words::dimension_words(*wanted).unwrap_or(("a quantity with a unit", ""));
     let message = format!("`{number}` has no unit; {what} is wanted here");
     let unit = usual_unit(subject, *wanted).unwrap_or(example);
-    let help = (!unit.is_empty()).then(|| format!("write the unit behind it, such as `{number} {unit}`"));
+    let help =
+        (!unit.is_empty()).then(|| format!("write the unit behind it, such as `{number} {unit}`"));
     Some(
         Finding::of_trouble(&RULE, trouble, message)
             .help_if(help)
@@ -89,12 +89,18 @@ mod tests {
     #[test]
     fn the_unit_written_elsewhere_is_offered() {
         let text = "crystal a\n  lattice chain 8\n  site gaussian 3 meV sigma 2 angstrom at 0\n";
-        assert_eq!(messages(&RULE, text), ["`8` has no unit; a length is wanted here"]);
+        assert_eq!(
+            messages(&RULE, text),
+            ["`8` has no unit; a length is wanted here"]
+        );
         assert!(fixed(&RULE, text).contains("lattice chain 8 angstrom\n"));
     }
 
     #[test]
     fn a_zero_needs_no_unit() {
-        silent(&RULE, "crystal a\n  mass 1 me\n  layer 4 nm at 0\n  layer 4 nm at 5 meV\n");
+        silent(
+            &RULE,
+            "crystal a\n  mass 1 me\n  layer 4 nm at 0\n  layer 4 nm at 5 meV\n",
+        );
     }
 }

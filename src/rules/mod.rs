@@ -63,8 +63,8 @@ mod unknown_statement;
 mod unknown_unit;
 mod unreadable_line;
 mod unused_name;
-mod wrong_unit;
 pub mod words;
+mod wrong_unit;
 
 #[cfg(test)]
 mod fixture;

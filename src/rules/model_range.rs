@@ -35,6 +35,7 @@
 //! None: state the gap of the material with `nonparabolic`.
 
 use super::formula::quantities;
+use super::words::Trade;
 use super::{Finding, Level, Rule, Subject, Tier, words};
 use crate::bands::Solution;
 use crate::model::constants::{ELECTRON_MASS, ELECTRONVOLT as EV};
@@ -84,13 +85,19 @@ fn finding(subject: &Subject<'_>) -> Option<Finding> {
     let share = words::number(100.0 * above / gap, 2);
     let message = format!(
         "band {band} lies {} above the edge of its well, {share} % of the material's gap of {}{}",
-        words::energy_of(crystal, above),
+        words::energy(crystal, above),
         if stated { "" } else { "about " },
-        words::in_unit(gap, words::unit_for(gap, crate::model::Dimension::ENERGY, None), 2)
+        words::in_unit(
+            gap,
+            words::unit_for(gap, crate::model::Dimension::ENERGY, Trade::default()),
+            2
+        )
     );
     let help = match stated {
         true => "beyond its gap, a mass that grows linearly is no longer fair",
-        false => "above a fifth of it the mass is no longer the one at the edge; state the gap with `nonparabolic`",
+        false => {
+            "above a fifth of it the mass is no longer the one at the edge; state the gap with `nonparabolic`"
+        }
     };
     Some(Finding::new(&RULE, place, message).help(help))
 }
@@ -108,7 +115,9 @@ fn gap_of_mass(mass: f64) -> Option<f64> {
 }
 
 fn band_bottom(solution: &Solution, band: usize) -> Option<f64> {
-    let band = band.checked_sub(1).and_then(|index| solution.bands.get(index))?;
+    let band = band
+        .checked_sub(1)
+        .and_then(|index| solution.bands.get(index))?;
     Some(band.bottom.energy.value)
 }
 
@@ -126,14 +135,21 @@ fn highest_named_band(subject: &Subject<'_>, crystal: &Crystal) -> Option<(usize
         };
         let mut all = Vec::new();
         quantities(expression, &mut all);
-        let bands = all.into_iter().filter(|quantity| quantity.of == own).filter_map(|quantity| band_of(&quantity.kind));
+        let bands = all
+            .into_iter()
+            .filter(|quantity| quantity.of == own)
+            .filter_map(|quantity| band_of(&quantity.kind));
         let band = bands.max();
         if band > highest.map(|(band, _)| band) {
             highest = band.map(|band| (band, target.place));
         }
     }
     let (band, place) = highest?;
-    let place = if subject.holds(place) { place } else { subject.heading() };
+    let place = if subject.holds(place) {
+        place
+    } else {
+        subject.heading()
+    };
     Some((band, place))
 }
 
@@ -155,7 +171,7 @@ fn band_of(kind: &QuantityKind) -> Option<usize> {
 #[cfg(test)]
 mod tests {
     use super::super::fixture::solved_layers;
-    use super::{EV, ELECTRON_MASS, RULE, gap_of_mass};
+    use super::{ELECTRON_MASS, EV, RULE, gap_of_mass};
 
     /// Gaps and masses of GaAs (1.52 eV, 0.067) and InAs (0.42 eV, 0.023): Vurgaftman, Meyer and Ram-Mohan,
     /// J. Appl. Phys. 89, 5815 (2001).
@@ -169,7 +185,10 @@ mod tests {
 
     #[test]
     fn a_high_band_of_a_light_mass_is_noted() {
-        assert_eq!(solved_layers(&RULE, "0.023 me", "  require width 1 >= 1 meV\n", 0.2).len(), 1);
+        assert_eq!(
+            solved_layers(&RULE, "0.023 me", "  require width 1 >= 1 meV\n", 0.2).len(),
+            1
+        );
     }
 
     #[test]

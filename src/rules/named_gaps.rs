@@ -1,11 +1,14 @@
 //! The gaps that matter to a crystal's designer: those that a target names, and the one that holds the Fermi level.
 
 use crate::bands::{Class, Gap, Solution};
-use crate::model::{ClassWish, Crystal, CrystalRef, GapWish, Limits, Place, QuantityKind, Target, TargetFormula, Wish};
+use crate::model::{
+    ClassWish, Crystal, CrystalRef, GapWish, Limits, Place, QuantityKind, Target, TargetFormula,
+    Wish,
+};
 use crate::syntax::StatementKind;
 
-use super::formula::{quantities, value};
 use super::Subject;
+use super::formula::{quantities, value};
 
 /// A gap that matters.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -32,7 +35,14 @@ pub fn named_gaps(subject: &Subject<'_>, crystal: &Crystal, solution: &Solution)
     let mut found: Vec<NamedGap> = Vec::new();
     for target in &crystal.targets {
         for band in gaps_of(target, own) {
-            add(subject, crystal, solution, &mut found, band, Some(target.place));
+            add(
+                subject,
+                crystal,
+                solution,
+                &mut found,
+                band,
+                Some(target.place),
+            );
         }
     }
     if let Some(band) = fermi_gap(crystal, solution) {
@@ -50,7 +60,9 @@ fn add(
     band: usize,
     target: Option<Place>,
 ) {
-    let gap = band.checked_sub(1).and_then(|index| solution.gaps.get(index));
+    let gap = band
+        .checked_sub(1)
+        .and_then(|index| solution.gaps.get(index));
     let Some(gap) = gap.filter(|_| found.iter().all(|named| named.band != band)) else {
         return;
     };
@@ -68,7 +80,9 @@ fn add(
 
 fn filling_place(subject: &Subject<'_>) -> Option<Place> {
     let mut fillings = subject.statements(|kind| matches!(kind, StatementKind::Filling(_)));
-    fillings.next().map(|statement| subject.place(statement.span))
+    fillings
+        .next()
+        .map(|statement| subject.place(statement.span))
 }
 
 /// The gaps of the crystal itself that a target names.
@@ -100,7 +114,11 @@ pub fn fermi_gap(crystal: &Crystal, solution: &Solution) -> Option<usize> {
     if bands < 1.0 || bands > 1e6 {
         return None;
     }
-    #[expect(clippy::cast_possible_truncation, clippy::cast_sign_loss, reason = "between 1 and 1e6")]
+    #[expect(
+        clippy::cast_possible_truncation,
+        clippy::cast_sign_loss,
+        reason = "between 1 and 1e6"
+    )]
     Some(bands as usize)
 }
 
@@ -121,8 +139,14 @@ fn closure_wanted(crystal: &Crystal, band: usize, holds_fermi: bool) -> bool {
 }
 
 fn allows_zero(limits: &Limits) -> bool {
-    let lower = limits.lower.as_ref().map(|(formula, _)| value(formula).unwrap_or(f64::NAN));
-    let upper = limits.upper.as_ref().map(|(formula, _)| value(formula).unwrap_or(f64::NAN));
+    let lower = limits
+        .lower
+        .as_ref()
+        .map(|(formula, _)| value(formula).unwrap_or(f64::NAN));
+    let upper = limits
+        .upper
+        .as_ref()
+        .map(|(formula, _)| value(formula).unwrap_or(f64::NAN));
     // A gap that may be anything above zero is not wanted closed.
     upper.is_some_and(|upper| upper >= 0.0) && lower.is_none_or(|lower| lower <= 0.0)
 }

@@ -1,6 +1,6 @@
 //! # What it finds
 //! A crystal whose bands could not be worked out: the numbers did not settle within the budget, or this version does
-//! not solve its dimension.
+//! not solve its dimension (a note).
 //!
 //! # Why it matters
 //! Nothing is known of its bands; saying nothing would look like all is well.
@@ -43,9 +43,13 @@ fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
             finding(format!("the bands did not settle: {reason}"))
                 .help("ask for fewer `bands`, or smooth the potential"),
         ),
-        Unsolved::Dimension(dimension) => findings.push(finding(format!(
-            "bands in {dimension} dimensions are not solved by this version; the model itself was checked"
-        ))),
+        Unsolved::Dimension(dimension) => findings.push(
+            finding(format!(
+                "bands in {dimension} dimensions are not solved by this version"
+            ))
+            .at_level(Level::Note)
+            .help("the model itself was read and checked"),
+        ),
         Unsolved::BrokenModel | Unsolved::Cancelled => {}
     }
 }
@@ -58,8 +62,14 @@ mod tests {
 
     #[test]
     fn a_solver_that_gives_up_is_heard() {
-        let found = unsolved(&RULE, Unsolved::NotConverged("4096 plane waves were not enough".into()));
-        assert_eq!(found, ["the bands did not settle: 4096 plane waves were not enough"]);
+        let found = unsolved(
+            &RULE,
+            Unsolved::NotConverged("4096 plane waves were not enough".into()),
+        );
+        assert_eq!(
+            found,
+            ["the bands did not settle: 4096 plane waves were not enough"]
+        );
     }
 
     #[test]

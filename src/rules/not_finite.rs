@@ -13,7 +13,6 @@
 //!                 ^^^^^^^^^^^^^^
 //!   cosine 1 = 20 meV
 //! ```
-//! Also found: `missing-lattice`.
 //!
 //! # Instead
 //! ```cren
@@ -57,7 +56,12 @@ mod tests {
 
     #[test]
     fn division_by_zero_roots_and_overflow_are_found() {
-        for value in ["3 nm / 0", "1 nm * sqrt(-2)", "1 nm * exp(1e4)", "1 nm * log(0)"] {
+        for value in [
+            "3 nm / 0",
+            "1 nm * sqrt(-2)",
+            "1 nm * exp(1e4)",
+            "1 nm * log(0)",
+        ] {
             let text = format!("crystal a\n  lattice chain {value}\n");
             assert_eq!(messages(&RULE, &text).len(), 1, "{value}");
         }

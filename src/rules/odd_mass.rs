@@ -56,13 +56,18 @@ fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
 /// Masses of no known carrier that no other unit would explain.
 fn implausible(subject: &Subject<'_>) -> Vec<Finding> {
     let stated = super::stated::quantities(subject);
-    let masses = stated.iter().filter(|stated| stated.kind == Kind::Mass && stated.value > 0.0);
+    let masses = stated
+        .iter()
+        .filter(|stated| stated.kind == Kind::Mass && stated.value > 0.0);
     let odd = masses.filter(|stated| {
         !plausible::is_plausible(Kind::Mass, stated.value, &Setting::default())
             && super::unit_slip::likely_unit(stated, &Setting::default()).is_none()
     });
     odd.map(|stated| {
-        let message = format!("{} is the mass of no usual carrier", words::mass(stated.value));
+        let message = format!(
+            "{} is the mass of no usual carrier",
+            words::mass(stated.value)
+        );
         Finding::new(&RULE, stated.place, message)
             .help("electrons have up to about 20 me, atoms about 1 u to 300 u")
     })
@@ -92,7 +97,14 @@ mod tests {
 
     #[test]
     fn electrons_atoms_and_polaritons_are_carriers() {
-        for mass in ["0.0135 me", "1 me", "5e-5 me", "1.00784 u", "86.909 u", "132.905 u"] {
+        for mass in [
+            "0.0135 me",
+            "1 me",
+            "5e-5 me",
+            "1.00784 u",
+            "86.909 u",
+            "132.905 u",
+        ] {
             silent(&RULE, &crystal(mass));
         }
     }

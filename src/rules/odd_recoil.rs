@@ -65,7 +65,10 @@ fn finding(subject: &Subject<'_>) -> Option<Finding> {
     );
     Some(
         Finding::new(&RULE, place, message)
-            .help(format!("a retro-reflected beam would have {}", words::length(twice)))
+            .help(format!(
+                "a retro-reflected beam would have {}",
+                words::length(twice)
+            ))
             .fix(fix(subject, place, twice)),
     )
 }
@@ -78,7 +81,10 @@ fn fix(subject: &Subject<'_>, place: crate::model::Place, twice: f64) -> Option<
     let unit = literal.unit_text(&subject.entry.section.text);
     let text = format!("{} {unit}", words::number(twice / literal.unit_size, 9));
     let title = format!("write `{text}`");
-    Some(Fix::guess(title, Replacement::new(subject.place(literal.span), text)))
+    Some(Fix::guess(
+        title,
+        Replacement::new(subject.place(literal.span), text),
+    ))
 }
 
 #[cfg(test)]
@@ -87,7 +93,9 @@ mod tests {
     use super::RULE;
 
     fn text(recoil: &str) -> String {
-        format!("crystal a\n  mass 87 u\n  lattice chain 426 nm\n  recoil {recoil}\n  depth 1 = 10 Er\n")
+        format!(
+            "crystal a\n  mass 87 u\n  lattice chain 426 nm\n  recoil {recoil}\n  depth 1 = 10 Er\n"
+        )
     }
 
     #[test]

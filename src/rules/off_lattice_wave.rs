@@ -28,6 +28,8 @@
 
 use std::f64::consts::TAU;
 
+use super::stretch::ROUNDING;
+use super::words::Trade;
 use super::{Finding, Level, Rule, Subject, Tier, words};
 use crate::model::{Crystal, Dual, Formula, ParameterId, ProfilePiece, Trouble, TroubleKind};
 use crate::syntax::{Expression, ExpressionKind, Operator, StatementKind};
@@ -52,17 +54,48 @@ fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
     let Some(crystal) = subject.crystal else {
         return;
     };
-    let pieces = crystal.potential.profile.iter();
-    for piece in pieces.filter(|piece| piece.whole) {
+    // A wave in one piece of several need not repeat.
+    let [piece] = crystal.potential.profile.as_slice() else {
+        return;
+    };
+    if !repeats(crystal, piece) {
         findings.extend(off_lattice(subject, crystal, piece));
     }
+}
+
+/// Places at which a formula is compared with itself one cell on; no fractions of any cell.
+const PLACES: [f64; 7] = [0.0431, 0.1717, 0.2903, 0.4519, 0.6173, 0.7351, 0.9239];
+
+/// Whether a formula repeats with every vector of the lattice, whatever its waves do one by one.
+fn repeats(crystal: &Crystal, piece: &ProfilePiece) -> bool {
+    let start = piece.range[0].value;
+    PLACES.iter().all(|part| {
+        let mut here = [start, 0.0, 0.0];
+        for vector in &crystal.vectors {
+            for (entry, along) in here.iter_mut().zip(vector) {
+                *entry += part * along.value;
+            }
+        }
+        let value = piece.formula.at(&here);
+        crystal.vectors.iter().all(|vector| {
+            let mut there = here;
+            for (entry, along) in there.iter_mut().zip(vector) {
+                *entry += along.value;
+            }
+            let other = piece.formula.at(&there);
+            (value - other).abs() <= ROUNDING * value.abs().max(other.abs())
+        })
+    })
 }
 
 fn forbidden(trouble: &Trouble) -> Option<Finding> {
     let TroubleKind::ForbiddenWave { index, condition } = &trouble.kind else {
         return None;
     };
-    let message = format!("{} is no reciprocal vector of this lattice", words::index(index));
+    let message = format!(
+        "{} is no reciprocal vector of this lattice",
+        words::index(index)
+    );
     Some(
         Finding::of_trouble(&RULE, trouble, message)
             .at_level(Level::Error)
@@ -112,26 +145,39 @@ fn finding(
         Some(span) if place == piece.formula_place => subject.place(span),
         _ => place,
     };
-    let cell = vector.iter().map(|along| along.value.powi(2)).sum::<f64>().sqrt();
+    let cell = vector
+        .iter()
+        .map(|along| along.value.powi(2))
+        .sum::<f64>()
+        .sqrt();
     let name = match wave.call {
         Formula::Call("sin", _) => "sine",
         _ => "cosine",
     };
-    let name = if wave.power > 1.0 { format!("squared {name}") } else { name.to_owned() };
+    let name = if wave.power > 1.0 {
+        format!("squared {name}")
+    } else {
+        name.to_owned()
+    };
     let fitting = cell / periods.abs().round().max(1.0);
     let [own, whole, fits] = words::apart(
         [cell / periods.abs(), cell, fitting],
         crate::model::Dimension::LENGTH,
-        None,
+        Trade::default(),
     );
-    let message = format!("this {name} repeats every {own}, which does not divide the cell of {whole}");
-    Some(Finding::new(&RULE, place, message).help(format!("the nearest period that does is {fits}")))
+    let message =
+        format!("this {name} repeats every {own}, which does not divide the cell of {whole}");
+    Some(
+        Finding::new(&RULE, place, message).help(format!("the nearest period that does is {fits}")),
+    )
 }
 
 /// How many of its periods lie along a lattice vector.
 fn periods_along(wave: &Wave<'_>, vector: &[Dual]) -> f64 {
     let phases = wave.vector.iter().zip(vector);
-    let phase: f64 = phases.map(|(per_metre, along)| per_metre.value * along.value).sum();
+    let phase: f64 = phases
+        .map(|(per_metre, along)| per_metre.value * along.value)
+        .sum();
     wave.power * phase / TAU
 }
 
@@ -156,7 +202,9 @@ fn gather<'f>(formula: &'f Formula, power: f64, waves: &mut Vec<Option<Wave<'f>>
         Formula::Call("sin" | "cos", arguments) if formula.varies() => {
             waves.push(wave(formula, arguments, power));
         }
-        Formula::Call("abs", arguments) => arguments.iter().for_each(|part| gather(part, 2.0, waves)),
+        Formula::Call("abs", arguments) => {
+            arguments.iter().for_each(|part| gather(part, 2.0, waves))
+        }
         Formula::Call(_, arguments) => arguments.iter().for_each(|part| gather(part, 1.0, waves)),
     }
 }
@@ -213,7 +261,10 @@ fn calls(expression: &Expression, spans: &mut Vec<Span>) {
             calls(left, spans);
             calls(right, spans);
         }
-        ExpressionKind::Call { function, arguments } => {
+        ExpressionKind::Call {
+            function,
+            arguments,
+        } => {
             let wave = matches!(function.text.as_str(), "sin" | "cos");
             if wave && arguments.iter().any(has_position) {
                 spans.push(expression.span);
@@ -255,12 +306,16 @@ mod tests {
     fn a_square_has_half_the_period() {
         silent(&RULE, &chain("sin(pi*x/period)^2"));
         silent(&RULE, &chain("sin(pi*x/period)*sin(pi*x/period)"));
+        silent(&RULE, &chain("sech(3*sin(pi*x/period))"));
         assert_eq!(messages(&RULE, &chain("sin(pi*x/period)^3")).len(), 1);
     }
 
     #[test]
     fn harmonics_fit_and_shifts_do_not_matter() {
-        silent(&RULE, &chain("(cos(2*pi*(x - 1 nm)/(4 nm)) + sin(2*pi*x/(8 nm)))"));
+        silent(
+            &RULE,
+            &chain("(cos(2*pi*(x - 1 nm)/(4 nm)) + sin(2*pi*x/(8 nm)))"),
+        );
     }
 
     #[test]

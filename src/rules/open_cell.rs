@@ -40,6 +40,7 @@
 //! # Fix
 //! The period is set to the sum of the layers, or the last layer takes up the rest.
 
+use super::words::Trade;
 use super::{Finding, Fix, Level, Replacement, Rule, Subject, Tier, words};
 use crate::model::{Dimension, Trouble, TroubleKind};
 use crate::syntax::{ExpressionKind, LayerPart, StatementKind, Value};
@@ -71,9 +72,14 @@ fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
 }
 
 fn open(subject: &Subject<'_>, trouble: &Trouble, sum: f64, period: f64, parts: &str) -> Finding {
-    let [shown_sum, shown_period] = words::apart([sum, period], Dimension::LENGTH, None);
+    let [shown_sum, shown_period] =
+        words::apart([sum, period], Dimension::LENGTH, Trade::default());
     let rest = words::length((period - sum).abs());
-    let much = if sum < period { "short of" } else { "more than" };
+    let much = if sum < period {
+        "short of"
+    } else {
+        "more than"
+    };
     let message =
         format!("the {parts} add up to {shown_sum}, {rest} {much} the period of {shown_period}");
     let finding = Finding::of_trouble(&RULE, trouble, message);
@@ -81,7 +87,9 @@ fn open(subject: &Subject<'_>, trouble: &Trouble, sum: f64, period: f64, parts: 
         return finding.help("the pieces must cover one period, once");
     }
     finding
-        .help("change a layer or the lattice; without `lattice`, the period is the sum of the layers")
+        .help(
+            "change a layer or the lattice; without `lattice`, the period is the sum of the layers",
+        )
         .fix(longer_lattice(subject, sum))
         .fix(last_layer(subject, period - sum))
 }
@@ -89,10 +97,12 @@ fn open(subject: &Subject<'_>, trouble: &Trouble, sum: f64, period: f64, parts: 
 /// Sets the lattice's length to the sum of the layers.
 fn longer_lattice(subject: &Subject<'_>, sum: f64) -> Option<Fix> {
     let statements = &subject.entry.section.statements;
-    let length = statements.iter().find_map(|statement| match &statement.kind {
-        StatementKind::Lattice(form) => form.lengths.first(),
-        _ => None,
-    })?;
+    let length = statements
+        .iter()
+        .find_map(|statement| match &statement.kind {
+            StatementKind::Lattice(form) => form.lengths.first(),
+            _ => None,
+        })?;
     let text = written_like(subject, length, sum)?;
     let place = subject.place(length.expression.span);
     Some(Fix::guess(
@@ -104,11 +114,14 @@ fn longer_lattice(subject: &Subject<'_>, sum: f64) -> Option<Fix> {
 /// Gives the rest of the cell to the last layer.
 fn last_layer(subject: &Subject<'_>, rest: f64) -> Option<Fix> {
     let statements = &subject.entry.section.statements;
-    let last = statements.iter().rev().find_map(|statement| match &statement.kind {
-        StatementKind::Layer(part) => Some(Some(part)),
-        StatementKind::Stack { .. } => Some(None),
-        _ => None,
-    })??;
+    let last = statements
+        .iter()
+        .rev()
+        .find_map(|statement| match &statement.kind {
+            StatementKind::Layer(part) => Some(Some(part)),
+            StatementKind::Stack { .. } => Some(None),
+            _ => None,
+        })??;
     let now = thickness(subject, last)?;
     let wanted = now + rest;
     if wanted <= 0.0 {
@@ -126,7 +139,11 @@ fn last_layer(subject: &Subject<'_>, rest: f64) -> Option<Fix> {
 fn thickness(subject: &Subject<'_>, part: &LayerPart) -> Option<f64> {
     let layers = &subject.crystal?.potential.layers;
     let place = subject.place(part.span);
-    let length = layers.iter().find(|layer| layer.place == place)?.length.value;
+    let length = layers
+        .iter()
+        .find(|layer| layer.place == place)?
+        .length
+        .value;
     let written = super::literal::of_value(&part.length)?;
     let same = (written.size() - length).abs() <= 1e-9 * length.abs();
     same.then_some(length)

@@ -55,7 +55,8 @@ fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
 
 fn fix(subject: &Subject<'_>, trouble: &Trouble, inside: String) -> Option<Fix> {
     let position = position(&subject.statement_at(trouble.place)?.kind)?;
-    let bare = |entry| super::literal::of_value(entry).is_some_and(|literal| literal.unit.is_none());
+    let bare =
+        |entry| super::literal::of_value(entry).is_some_and(|literal| literal.unit.is_none());
     if !position.entries.iter().all(bare) {
         return None;
     }
@@ -80,13 +81,17 @@ mod tests {
 
     #[test]
     fn fractions_are_written_inside() {
-        let text = "crystal a\n  lattice square 4 nm\n  site gaussian 3 meV sigma 1 nm at (1.25, -0.5)\n";
+        let text =
+            "crystal a\n  lattice square 4 nm\n  site gaussian 3 meV sigma 1 nm at (1.25, -0.5)\n";
         assert_eq!(messages(&RULE, text).len(), 1);
         assert!(fixed(&RULE, text).ends_with("at (0.25, 0.5)\n"));
     }
 
     #[test]
     fn the_origin_is_inside() {
-        silent(&RULE, "crystal a\n  lattice chain 4 nm\n  delta 1 eV*nm at 0\n  delta 1 eV*nm at 0.5\n");
+        silent(
+            &RULE,
+            "crystal a\n  lattice chain 4 nm\n  delta 1 eV*nm at 0\n  delta 1 eV*nm at 0.5\n",
+        );
     }
 }

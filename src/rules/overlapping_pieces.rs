@@ -60,7 +60,10 @@ mod tests {
     #[test]
     fn the_overlap_is_measured() {
         let text = "crystal a\n  lattice chain 8 nm\n  profile 0 to 5.5 nm = 0 meV\n  profile 5.4 nm to 8 nm = 3 meV\n";
-        assert_eq!(messages(&RULE, text), ["this piece overlaps another by 0.1 nm"]);
+        assert_eq!(
+            messages(&RULE, text),
+            ["this piece overlaps another by 0.1 nm"]
+        );
     }
 
     #[test]

@@ -24,7 +24,7 @@ pub fn reference_page() -> String {
     for rule in all() {
         if rule.group != group {
             group = rule.group;
-            let _ = write!(page, "\n# {}\n", capitalised(group));
+            let _ = write!(page, "\n## {}\n", capitalised(group));
         }
         entry(&mut page, rule);
     }
@@ -34,17 +34,33 @@ pub fn reference_page() -> String {
 fn contents(page: &mut String) {
     page.push_str("\n| rule | level | group |\n| --- | --- | --- |\n");
     for rule in all() {
-        let _ = writeln!(page, "| [`{0}`](#{0}) | {1} | {2} |", rule.name, rule.level.word(), rule.group);
+        let _ = writeln!(
+            page,
+            "| [`{0}`](#{0}) | {1} | {2} |",
+            rule.name,
+            rule.level.word(),
+            rule.group
+        );
     }
 }
 
 fn entry(page: &mut String, rule: &Rule) {
     let doc = rule.doc();
-    let _ = write!(page, "\n## {}\n\n", rule.name);
-    let _ = write!(page, "*{}*\n\n{}\n\n{}\n", facts(rule), doc.finds, doc.matters);
+    let _ = write!(page, "\n### {}\n\n", rule.name);
+    let _ = write!(
+        page,
+        "*{}*\n\n{}\n\n{}\n",
+        facts(rule),
+        doc.finds,
+        doc.matters
+    );
     sample(page, "Example", &doc.example);
     if !doc.also_found.is_empty() {
-        let names: Vec<_> = doc.also_found.iter().map(|name| format!("[`{name}`](#{name})")).collect();
+        let names: Vec<_> = doc
+            .also_found
+            .iter()
+            .map(|name| format!("[`{name}`](#{name})"))
+            .collect();
         let _ = write!(page, "\nAlso found here: {}.\n", names.join(", "));
     }
     sample(page, "Instead", &doc.instead);
@@ -80,5 +96,7 @@ fn sample(page: &mut String, title: &str, sample: &Sample) {
 
 fn capitalised(word: &str) -> String {
     let mut letters = word.chars();
-    letters.next().map_or_else(String::new, |first| first.to_uppercase().chain(letters).collect())
+    letters.next().map_or_else(String::new, |first| {
+        first.to_uppercase().chain(letters).collect()
+    })
 }

@@ -54,7 +54,11 @@ fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
     for layer in &crystal.potential.layers {
         let finding = finding(subject, layer);
         // The repeats of a stack are written once.
-        let new = |finding: &Finding| findings.iter().all(|other| other.place != finding.place || other.rule != RULE.name);
+        let new = |finding: &Finding| {
+            findings
+                .iter()
+                .all(|other| other.place != finding.place || other.rule != RULE.name)
+        };
         findings.extend(finding.filter(new).into_iter().collect::<Vec<_>>());
     }
 }
@@ -62,7 +66,11 @@ fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
 fn finding(subject: &Subject<'_>, layer: &Layer) -> Option<Finding> {
     let monolayer = layer.monolayer.as_ref()?;
     let count = layer.length.value / monolayer.value;
-    let close = if layer.in_monolayers { CLOSE_IN_ML } else { CLOSE };
+    let close = if layer.in_monolayers {
+        CLOSE_IN_ML
+    } else {
+        CLOSE
+    };
     let too_thin = count < 1.0 - super::thin_layer::ROUNDING;
     if !count.is_finite() || too_thin || (count - count.round()).abs() <= close {
         return None;
@@ -123,14 +131,19 @@ mod tests {
     use crate::rules::Level;
 
     fn text(length: &str) -> String {
-        format!("crystal a\n  mass 1 me\n  monolayer 0.283 nm\n  layer 10 ML at 0\n  layer {length} at 9 meV\n")
+        format!(
+            "crystal a\n  mass 1 me\n  monolayer 0.283 nm\n  layer 10 ML at 0\n  layer {length} at 9 meV\n"
+        )
     }
 
     #[test]
     fn a_broken_number_of_monolayers_is_found_and_rounded() {
         assert_eq!(levels(&RULE, &text("4.5 ML")), [Level::Warning]);
         assert_eq!(levels(&RULE, &text("2.6 nm")), [Level::Note]);
-        assert_eq!(fixed(&RULE, &text("2.6 nm ± 0.1 nm")), text("9 ML ± 0.1 nm"));
+        assert_eq!(
+            fixed(&RULE, &text("2.6 nm ± 0.1 nm")),
+            text("9 ML ± 0.1 nm")
+        );
     }
 
     #[test]

@@ -42,6 +42,8 @@ pub struct Setting {
     pub atoms: bool,
     /// Whether a recoil is stated.
     pub recoil: bool,
+    /// Whether the layers are the steps of a staircase, which may be as thin as they like.
+    pub staircase: bool,
 }
 
 impl Default for Setting {
@@ -51,6 +53,7 @@ impl Default for Setting {
             period: None,
             atoms: false,
             recoil: false,
+            staircase: false,
         }
     }
 }
@@ -68,6 +71,8 @@ const HEAVIEST_POLARITON: f64 = 1e-3 * ELECTRON_MASS;
 const LIGHTEST: f64 = 1e-6 * ELECTRON_MASS;
 const LIGHTEST_ATOM: f64 = 0.5 * ATOMIC_MASS;
 const HEAVIEST_MOLECULE: f64 = 1e4 * ATOMIC_MASS;
+/// Layers are no thinner than this.
+pub const THINNEST: f64 = 0.09e-9;
 /// Lattices of light have at least this spacing.
 const OPTICAL: f64 = 80e-9;
 /// An electron's potential rarely exceeds this, or so many times the kinetic scale of its cell.
@@ -97,11 +102,18 @@ impl Setting {
     }
 
     /// h²/(8·m·a²): the kinetic energy at the edge of the zone.
-    fn kinetic(&self) -> Option<f64> {
+    #[must_use]
+    pub fn kinetic(&self) -> Option<f64> {
         let period = self.period?;
         let momentum = PLANCK / period;
         let energy = momentum * (momentum / (8.0 * self.mass));
         (energy.is_finite() && energy > 0.0).then_some(energy)
+    }
+
+    /// Whether electrons of a solid move.
+    #[must_use]
+    pub fn moves_electrons(&self) -> bool {
+        self.carrier() == Carrier::Electron
     }
 
     fn is_optical(&self) -> bool {
@@ -119,11 +131,14 @@ pub fn allowed(kind: Kind, setting: &Setting) -> Option<Range> {
         Kind::Rate => Some((0.2, 5.0)),
         Kind::Monolayer => Some((0.09e-9, 2.0e-9)),
         Kind::NonparabolicGap => Some((5e-3 * EV, 20.0 * EV)),
-        Kind::Thickness => match carrier {
-            Carrier::Electron => Some((0.09e-9, 1.001e-6)),
-            Carrier::Light | Carrier::Atom => Some((0.09e-9, 1e-3)),
-            Carrier::Neither => None,
-        },
+        Kind::Thickness => {
+            let thinnest = if setting.staircase { 0.0 } else { THINNEST };
+            match carrier {
+                Carrier::Electron => Some((thinnest, 1.001e-6)),
+                Carrier::Light | Carrier::Atom => Some((thinnest, 1e-3)),
+                Carrier::Neither => None,
+            }
+        }
         Kind::LatticeLength => match carrier {
             Carrier::Electron if setting.atoms => Some((0.1e-9, 3e-9)),
             Carrier::Electron => Some((0.09e-9, 20e-6)),
@@ -142,7 +157,9 @@ pub fn allowed(kind: Kind, setting: &Setting) -> Option<Range> {
         Kind::Energy => {
             let highest = highest_energy(setting)?;
             let lowest = match carrier {
-                Carrier::Electron => setting.kinetic().map_or(0.0, |kinetic| LOWEST_ELECTRON_RATIO * kinetic),
+                Carrier::Electron => setting
+                    .kinetic()
+                    .map_or(0.0, |kinetic| LOWEST_ELECTRON_RATIO * kinetic),
                 _ => 0.0,
             };
             Some((lowest, highest))
@@ -177,7 +194,11 @@ pub fn is_plausible(kind: Kind, value: f64, setting: &Setting) -> bool {
 }
 
 fn plausible_mass(mass: f64, setting: &Setting) -> bool {
-    let heaviest = if setting.is_optical() { HEAVIEST_IN_LIGHT } else { HEAVIEST_ELECTRON };
+    let heaviest = if setting.is_optical() {
+        HEAVIEST_IN_LIGHT
+    } else {
+        HEAVIEST_ELECTRON
+    };
     (LIGHTEST..=heaviest).contains(&mass) || (LIGHTEST_ATOM..=HEAVIEST_MOLECULE).contains(&mass)
 }
 
@@ -204,8 +225,12 @@ pub fn is_typical(kind: Kind, value: f64, setting: &Setting) -> bool {
             _ if setting.atoms => within(0.2e-9, 1.5e-9),
             _ => within(0.2e-9, 300e-9),
         },
-        Kind::Recoil => setting.period.is_some_and(|period| within(0.9 * period, 4.0 * period)),
-        Kind::SiteSize => setting.period.is_some_and(|period| within(0.02 * period, period)),
+        Kind::Recoil => setting
+            .period
+            .is_some_and(|period| within(0.9 * period, 4.0 * period)),
+        Kind::SiteSize => setting
+            .period
+            .is_some_and(|period| within(0.02 * period, period)),
         Kind::Temperature => match setting.carrier() {
             Carrier::Atom => within(1e-9, 1e-3),
             _ => within(1e-3, 1000.0),
@@ -293,8 +318,18 @@ mod tests {
     #[test]
     fn masses_between_electrons_and_atoms_are_nobodys() {
         let plain = Setting::default();
-        for (mass, plausible) in [(0.0135, true), (2.0, true), (122.0, false), (1837.0, true), (2.4e5, true)] {
-            assert_eq!(is_plausible(Kind::Mass, mass * ELECTRON_MASS, &plain), plausible, "{mass}");
+        for (mass, plausible) in [
+            (0.0135, true),
+            (2.0, true),
+            (122.0, false),
+            (1837.0, true),
+            (2.4e5, true),
+        ] {
+            assert_eq!(
+                is_plausible(Kind::Mass, mass * ELECTRON_MASS, &plain),
+                plausible,
+                "{mass}"
+            );
         }
     }
 }

@@ -25,7 +25,7 @@
 //! None: soften the formula there, as the example does, or cut it off with `max` or `min`.
 
 use super::{Finding, Level, Rule, Subject, Tier, words};
-use crate::model::TroubleKind;
+use crate::model::{Crystal, TroubleKind};
 
 /// The rule.
 pub const RULE: Rule = Rule {
@@ -41,13 +41,26 @@ pub const RULE: Rule = Rule {
 fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
     for trouble in subject.troubles {
         if let TroubleKind::Pole { at } = &trouble.kind {
-            let message = format!("this profile has no finite value near {}", words::length(*at));
+            let message = format!(
+                "this profile has no finite value near {}",
+                place_of(subject, *at)
+            );
             findings.push(
                 Finding::of_trouble(&RULE, trouble, message)
                     .help("soften it there, or cut it off with `max` or `min`"),
             );
         }
     }
+}
+
+/// A pole is located to rounding: what is next to nothing of the cell is nothing.
+fn place_of(subject: &Subject<'_>, at: f64) -> String {
+    let period = subject
+        .crystal
+        .and_then(Crystal::period)
+        .map_or(0.0, |period| period.value);
+    let next_to_nothing = at.abs() < 1e-6 * period;
+    words::length(if next_to_nothing { 0.0 } else { at })
 }
 
 #[cfg(test)]
@@ -57,7 +70,10 @@ mod tests {
 
     #[test]
     fn a_pole_between_the_grid_points_is_found() {
-        for formula in ["1 meV / sin(pi*(x - 2.4567 nm)/period)", "1 meV * log(x / (8 nm) - 0.5)"] {
+        for formula in [
+            "1 meV / sin(pi*(x - 2.4567 nm)/period)",
+            "1 meV * log(x / (8 nm) - 0.5)",
+        ] {
             let text = format!("crystal a\n  lattice chain 8 nm\n  profile = {formula}\n");
             assert_eq!(messages(&RULE, &text).len(), 1, "{formula}");
         }
@@ -65,6 +81,9 @@ mod tests {
 
     #[test]
     fn a_steep_profile_is_no_pole() {
-        silent(&RULE, "crystal a\n  lattice chain 8 nm\n  profile = 1 meV / (1e-4 + sin(pi*x/period)^2)\n");
+        silent(
+            &RULE,
+            "crystal a\n  lattice chain 8 nm\n  profile = 1 meV / (1e-4 + sin(pi*x/period)^2)\n",
+        );
     }
 }

@@ -42,7 +42,10 @@ fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
         let StatementKind::Waive { rule, reason } = &statement.kind else {
             continue;
         };
-        if reason.as_ref().is_some_and(|reason| !reason.text.trim().is_empty()) {
+        if reason
+            .as_ref()
+            .is_some_and(|reason| !reason.text.trim().is_empty())
+        {
             continue;
         }
         let message = format!("this waiver of `{}` gives no reason", rule.text);
@@ -60,7 +63,10 @@ mod tests {
     fn a_missing_and_an_empty_reason_are_found() {
         let message = "this waiver of `seam-step` gives no reason";
         assert_eq!(messages(&RULE, "waive seam-step\n"), [message]);
-        assert_eq!(messages(&RULE, "waive seam-step because \" \"\n"), [message]);
+        assert_eq!(
+            messages(&RULE, "waive seam-step because \" \"\n"),
+            [message]
+        );
     }
 
     #[test]

@@ -9,8 +9,18 @@ const MOST: i64 = 40;
 /// sorted. Nothing where the lattice has no cell, or `q` is past all use.
 #[must_use]
 pub fn shells(crystal: &Crystal, q: f64) -> Option<Vec<f64>> {
-    let vectors: Vec<[f64; 3]> = crystal.vectors.iter().map(|vector| padded(vector.iter().map(|along| along.value))).collect();
-    let first = padded(crystal.conventional.first()?.iter().map(|along| along.value));
+    let vectors: Vec<[f64; 3]> = crystal
+        .vectors
+        .iter()
+        .map(|vector| padded(vector.iter().map(|along| along.value)))
+        .collect();
+    let first = padded(
+        crystal
+            .conventional
+            .first()?
+            .iter()
+            .map(|along| along.value),
+    );
     let scale = dot(first, first);
     let [b1, b2, b3] = reciprocal(&vectors)?;
     let reach = reach(&vectors, q, scale)?;
@@ -62,7 +72,11 @@ fn reciprocal(vectors: &[[f64; 3]]) -> Option<[[f64; 3]; 3]> {
         return None;
     }
     let over = |v: [f64; 3]| v.map(|entry| entry / volume);
-    let third = if vectors.len() == 2 { [0.0; 3] } else { over(cross(a, b)) };
+    let third = if vectors.len() == 2 {
+        [0.0; 3]
+    } else {
+        over(cross(a, b))
+    };
     Some([over(cross(b, c)), over(cross(c, a)), third])
 }
 

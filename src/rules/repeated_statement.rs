@@ -56,7 +56,8 @@ fn finding(subject: &Subject<'_>, trouble: &Trouble) -> Option<Finding> {
             )
         }
         TroubleKind::TwoDescriptions { first, second } => {
-            let message = format!("the whole cell is described twice: by {first}, and here by {second}");
+            let message =
+                format!("the whole cell is described twice: by {first}, and here by {second}");
             Some(
                 Finding::of_trouble(&RULE, trouble, message)
                     .help("keep one kind of description; cosines, sites and deltas add to it"),
@@ -83,7 +84,10 @@ mod tests {
     fn the_later_line_is_taken_out() {
         let text = "crystal a\n  lattice chain 8 nm\n  mass 1 me\n  mass 2 me # why\n";
         assert_eq!(messages(&RULE, text), ["`mass` stands here a second time"]);
-        assert_eq!(fixed(&RULE, text), "crystal a\n  lattice chain 8 nm\n  mass 1 me\n");
+        assert_eq!(
+            fixed(&RULE, text),
+            "crystal a\n  lattice chain 8 nm\n  mass 1 me\n"
+        );
     }
 
     #[test]
@@ -94,6 +98,9 @@ mod tests {
 
     #[test]
     fn layers_may_stand_many_times() {
-        silent(&RULE, "crystal a\n  mass 1 me\n  layer 4 nm at 0 meV\n  layer 4 nm at 9 meV\n");
+        silent(
+            &RULE,
+            "crystal a\n  mass 1 me\n  layer 4 nm at 0 meV\n  layer 4 nm at 9 meV\n",
+        );
     }
 }

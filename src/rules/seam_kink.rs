@@ -54,15 +54,17 @@ fn finding(subject: &Subject<'_>) -> Option<Finding> {
     }
     let [before, after] = seam.numbers();
     let place = subject.where_to_speak(seam.left.formula_place, &[&before, &after])?;
-    let slope = |joule_per_metre: f64| {
-        format!("{} per nm", words::energy_of(crystal, joule_per_metre * 1e-9))
-    };
+    let slope =
+        |joule_per_metre: f64| format!("{} per nm", words::energy(crystal, joule_per_metre * 1e-9));
     let message = format!(
         "the potential has a corner between one cell and the next: its slope goes from {} to {}",
         slope(seam.before.1),
         slope(seam.after.1)
     );
-    Some(Finding::new(&RULE, place, message).help("fine if the corner is meant; otherwise check the period"))
+    Some(
+        Finding::new(&RULE, place, message)
+            .help("fine if the corner is meant; otherwise check the period"),
+    )
 }
 
 #[cfg(test)]
@@ -72,14 +74,21 @@ mod tests {
 
     #[test]
     fn the_slopes_on_both_sides_are_said() {
-        let text = "crystal a\n  lattice chain 8 nm\n  profile -4 nm to 4 nm = 3 meV * (x/(1 nm))^2\n";
+        let text =
+            "crystal a\n  lattice chain 8 nm\n  profile -4 nm to 4 nm = 3 meV * (x/(1 nm))^2\n";
         let message = "the potential has a corner between one cell and the next: its slope goes from 24 meV per nm to -24 meV per nm";
         assert_eq!(messages(&RULE, text), [message]);
     }
 
     #[test]
     fn a_smooth_seam_is_silent_and_a_step_is_another_rules_matter() {
-        silent(&RULE, "crystal a\n  lattice chain 8 nm\n  profile = 3 meV * cos(2*pi*x/period)\n");
-        silent(&RULE, "crystal a\n  lattice chain 8 nm\n  profile = 3 meV * (x/(1 nm))^2\n");
+        silent(
+            &RULE,
+            "crystal a\n  lattice chain 8 nm\n  profile = 3 meV * cos(2*pi*x/period)\n",
+        );
+        silent(
+            &RULE,
+            "crystal a\n  lattice chain 8 nm\n  profile = 3 meV * (x/(1 nm))^2\n",
+        );
     }
 }

@@ -27,6 +27,7 @@
 //! None for a single formula. Of several pieces, one that is off by the same amount at both of its ends is shifted.
 
 use super::stretch::{joints, swing};
+use super::words::Trade;
 use super::{Finding, Level, Rule, Subject, Tier, join_step, words};
 use crate::model::{Crystal, Dimension, Dual, ProfilePiece};
 
@@ -74,11 +75,20 @@ fn along_a_chain(subject: &Subject<'_>, crystal: &Crystal) -> Option<Finding> {
 fn of_table(subject: &Subject<'_>, crystal: &Crystal) -> Option<Finding> {
     let table = crystal.potential.table.as_ref()?;
     let (first, last) = (*table.energies.first()?, table.closing?);
-    let largest = table.energies.iter().fold(first.abs(), |most, energy| most.max(energy.abs()));
+    let largest = table
+        .energies
+        .iter()
+        .fold(first.abs(), |most, energy| most.max(energy.abs()));
     if (first - last).abs() <= SAMPLE_ROUNDING * largest || !subject.holds(table.place) {
         return None;
     }
-    Some(step_finding(crystal, table.place, first - last, last, first))
+    Some(step_finding(
+        crystal,
+        table.place,
+        first - last,
+        last,
+        first,
+    ))
 }
 
 fn step_finding(
@@ -88,9 +98,9 @@ fn step_finding(
     before: f64,
     after: f64,
 ) -> Finding {
-    let recoil = words::recoil_of(crystal);
-    let [before, after] = words::apart([before, after], Dimension::ENERGY, recoil);
-    let size = words::energy_of(crystal, step.abs());
+    let trade = Trade::of(crystal);
+    let [before, after] = words::apart([before, after], Dimension::ENERGY, trade);
+    let size = words::energy(crystal, step.abs());
     let message = format!("the potential jumps by {size} from one cell to the next");
     Finding::new(&RULE, place, message).help(format!(
         "it ends the cell at {after_end} and begins it at {begin}; check the period",
@@ -187,8 +197,14 @@ mod tests {
 
     #[test]
     fn rounding_at_the_seam_is_no_jump() {
-        silent(&RULE, "crystal a\n  lattice chain 8 nm\n  profile = 3 meV * cos(2*pi*x/period)^2\n");
-        silent(&RULE, "crystal a\n  lattice chain 8 nm\n  profile -4 nm to 4 nm = 3 meV * (x/(1 nm))^2\n");
+        silent(
+            &RULE,
+            "crystal a\n  lattice chain 8 nm\n  profile = 3 meV * cos(2*pi*x/period)^2\n",
+        );
+        silent(
+            &RULE,
+            "crystal a\n  lattice chain 8 nm\n  profile -4 nm to 4 nm = 3 meV * (x/(1 nm))^2\n",
+        );
     }
 
     #[test]
@@ -203,6 +219,9 @@ mod tests {
 
     #[test]
     fn layers_may_jump() {
-        silent(&RULE, "crystal a\n  mass 1 me\n  layer 4 nm at 0\n  layer 4 nm at 0 to 9 meV\n");
+        silent(
+            &RULE,
+            "crystal a\n  mass 1 me\n  layer 4 nm at 0\n  layer 4 nm at 0 to 9 meV\n",
+        );
     }
 }

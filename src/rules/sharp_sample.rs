@@ -79,8 +79,13 @@ fn finding(subject: &Subject<'_>) -> Option<Finding> {
         return None;
     }
     if table.positions.len() < FEWEST {
-        let message = format!("{} samples are too few to show a shape", table.positions.len());
-        return Some(Finding::new(&RULE, table.place, message).help("give more samples of the cell"));
+        let message = format!(
+            "{} samples are too few to show a shape",
+            table.positions.len()
+        );
+        return Some(
+            Finding::new(&RULE, table.place, message).help("give more samples of the cell"),
+        );
     }
     if table.straight {
         return None;
@@ -88,7 +93,7 @@ fn finding(subject: &Subject<'_>) -> Option<Finding> {
     let beyond = overshoot(crystal, table)?;
     let message = format!(
         "the curve through these samples swings {} beyond them near {}",
-        words::energy_of(crystal, beyond.by),
+        words::energy(crystal, beyond.by),
         words::length(beyond.at)
     );
     Some(
@@ -107,7 +112,11 @@ struct Beyond {
 fn overshoot(crystal: &Crystal, table: &Table) -> Option<Beyond> {
     let period = crystal.period()?.value;
     let lowest = table.energies.iter().copied().fold(f64::INFINITY, f64::min);
-    let highest = table.energies.iter().copied().fold(f64::NEG_INFINITY, f64::max);
+    let highest = table
+        .energies
+        .iter()
+        .copied()
+        .fold(f64::NEG_INFINITY, f64::max);
     let mut most = Beyond { by: 0.0, at: 0.0 };
     for (at, value) in curve(&table.pieces(period)) {
         let by = (value - highest).max(lowest - value);

@@ -11,7 +11,6 @@
 //!                   ^
 //!   cosine 1 = 20 meV
 //! ```
-//! Also found: `missing-lattice`.
 //!
 //! # Instead
 //! ```cren
@@ -45,9 +44,12 @@ fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
         let place = subject.place(problem.span);
         let message = format!("{} is not used in this format", shown(*character));
         let help = instead.as_ref().map(|text| format!("write `{text}`"));
-        let fix = instead
-            .as_ref()
-            .map(|text| Fix::safe(format!("write `{text}`"), Replacement::new(place, text.clone())));
+        let fix = instead.as_ref().map(|text| {
+            Fix::safe(
+                format!("write `{text}`"),
+                Replacement::new(place, text.clone()),
+            )
+        });
         findings.push(Finding::new(&RULE, place, message).help_if(help).fix(fix));
     }
 }

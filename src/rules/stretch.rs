@@ -123,17 +123,36 @@ pub fn joints(crystal: &Crystal) -> Vec<Joint<'_>> {
     let (Some(first), Some(last)) = (pieces.first(), pieces.last()) else {
         return Vec::new();
     };
-    if crystal.dimension != 1 {
+    if crystal.dimension != 1 || !tiles(crystal) {
         return Vec::new();
     }
     let inner = pieces.iter().zip(pieces.iter().skip(1));
-    let mut joints: Vec<_> = inner.map(|(left, right)| joint(left, right, false)).collect();
+    let mut joints: Vec<_> = inner
+        .map(|(left, right)| joint(left, right, false))
+        .collect();
     joints.push(joint(last, first, true));
     joints.retain(|joint| {
         let numbers = [joint.before, joint.after];
-        numbers.iter().all(|(value, slope)| value.is_finite() && slope.is_finite())
+        numbers
+            .iter()
+            .all(|(value, slope)| value.is_finite() && slope.is_finite())
     });
     joints
+}
+
+/// Whether the pieces cover one period; where they do not, that is another rule's matter.
+fn tiles(crystal: &Crystal) -> bool {
+    let pieces = &crystal.potential.profile;
+    let Some(period) = crystal.period().map(|period| period.value) else {
+        return false;
+    };
+    let near = |one: f64, other: f64| (one - other).abs() <= ROUNDING * period.abs();
+    let mut pairs = pieces.iter().zip(pieces.iter().skip(1));
+    let follow = pairs.all(|(left, right)| near(left.range[1].value, right.range[0].value));
+    let ends = pieces.first().zip(pieces.last());
+    follow
+        && ends
+            .is_some_and(|(first, last)| near(last.range[1].value - first.range[0].value, period))
 }
 
 fn joint<'a>(left: &'a ProfilePiece, right: &'a ProfilePiece, seam: bool) -> Joint<'a> {

@@ -59,7 +59,11 @@ mod tests {
     #[test]
     fn units_functions_and_clause_words_are_taken() {
         for name in ["meV", "sqrt", "within", "hbar", "period"] {
-            assert_eq!(messages(&RULE, &format!("let {name} = 3 nm\n")).len(), 1, "{name}");
+            assert_eq!(
+                messages(&RULE, &format!("let {name} = 3 nm\n")).len(),
+                1,
+                "{name}"
+            );
         }
     }
 

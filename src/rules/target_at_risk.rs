@@ -40,8 +40,9 @@
 //! # Fix
 //! None. The message names the tolerance that spends most of the margin.
 
-use super::target_missed::{at_target, halves};
 use super::subject::parameter;
+use super::target_missed::{at_target, halves};
+use super::words::Trade;
 use super::{Finding, Level, Rule, Subject, Tier, words};
 use crate::bands::{Assessment, TargetState};
 use crate::model::{Crystal, Parameter, ParameterKind};
@@ -61,7 +62,10 @@ pub const RULE: Rule = Rule {
 const NAMED: usize = 3;
 
 fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
-    let at_risk = subject.targets.iter().filter(|target| target.state == TargetState::AtRisk);
+    let at_risk = subject
+        .targets
+        .iter()
+        .filter(|target| target.state == TargetState::AtRisk);
     findings.extend(at_risk.map(|target| finding(subject, target)));
 }
 
@@ -80,22 +84,32 @@ fn finding(subject: &Subject<'_>, target: &Assessment) -> Finding {
 
 fn message(subject: &Subject<'_>, target: &Assessment) -> String {
     let (what, _) = halves(&target.text);
-    let recoil = subject.crystal.and_then(words::recoil_of);
+    let trade = Trade::here(subject);
     let Some(worst) = target.worst else {
-        return format!("`{}` holds, but not everywhere within the tolerances", target.text);
+        return format!(
+            "`{}` holds, but not everywhere within the tolerances",
+            target.text
+        );
     };
     if let Some(found) = &target.found {
-        let worst = words::quantity(worst, target.dimension, recoil);
-        return format!("`{what}` holds ({found}), but the gap closes within the tolerances ({worst} at worst)");
+        let worst = words::quantity(worst, target.dimension, trade);
+        return format!(
+            "`{what}` holds ({found}), but the gap closes within the tolerances ({worst} at worst)"
+        );
     }
     let Some((limit, side)) = nearest_limit(target, worst) else {
-        return format!("`{}` holds, but not everywhere within the tolerances", target.text);
+        return format!(
+            "`{}` holds, but not everywhere within the tolerances",
+            target.text
+        );
     };
     let nominal = target.value.map_or(f64::NAN, |value| value.value);
-    let shown = words::apart([nominal, worst, limit], target.dimension, recoil);
-    let off = words::quantity((worst - limit).abs(), target.dimension, recoil);
+    let shown = words::apart([nominal, worst, limit], target.dimension, trade);
+    let off = words::quantity((worst - limit).abs(), target.dimension, trade);
     let [nominal, worst, limit] = shown;
-    format!("`{what}` is {nominal}, but within the tolerances it comes to {worst}, {off} {side} the limit of {limit}")
+    format!(
+        "`{what}` is {nominal}, but within the tolerances it comes to {worst}, {off} {side} the limit of {limit}"
+    )
 }
 
 /// The limit that the worst value breaks; where the limits move too, the one it is nearest to.
@@ -126,12 +140,17 @@ fn help(crystal: &Crystal, target: &Assessment, driver: Option<&Parameter>) -> O
 
 /// The worst case in words, where few tolerances take part.
 fn corner(crystal: &Crystal, target: &Assessment) -> Option<String> {
-    let draws: Vec<_> = target.corner.iter().filter(|(_, draw)| *draw != 0.0).collect();
+    let draws: Vec<_> = target
+        .corner
+        .iter()
+        .filter(|(_, draw)| *draw != 0.0)
+        .collect();
     if draws.is_empty() || draws.len() > NAMED {
         return None;
     }
     let named = draws.iter().map(|(id, draw)| {
-        let parameter = parameter(crystal, *id).filter(|found| found.kind == ParameterKind::Draw)?;
+        let parameter =
+            parameter(crystal, *id).filter(|found| found.kind == ParameterKind::Draw)?;
         Some(format!("`{}` {}", parameter.text, end(*draw)))
     });
     Some(words::listed(&named.collect::<Option<Vec<_>>>()?))

@@ -40,6 +40,8 @@
 //! # Fix
 //! None: either the crystal or the wish has to change. While the design is under way, this error alone may be waived.
 
+use super::subject::parameter;
+use super::words::Trade;
 use super::{Finding, Level, Rule, Subject, Tier, words};
 use crate::bands::{Assessment, TargetState};
 use crate::model::Place;
@@ -56,10 +58,21 @@ pub const RULE: Rule = Rule {
 };
 
 fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
-    let missed = subject.targets.iter().filter(|target| target.state == TargetState::Missed);
+    let missed = subject
+        .targets
+        .iter()
+        .filter(|target| target.state == TargetState::Missed);
     for target in missed {
         let finding = at_target(&RULE, subject, target, message(subject, target));
-        findings.push(finding.help_if(help(target)));
+        let finding = finding.help_if(help(subject, target));
+        let driver = subject
+            .crystal
+            .zip(target.driver)
+            .and_then(|(crystal, id)| parameter(crystal, id));
+        findings.push(match driver {
+            Some(driver) => finding.related(driver.place, "the tolerance that matters most here"),
+            None => finding,
+        });
     }
 }
 
@@ -77,27 +90,43 @@ fn message(subject: &Subject<'_>, target: &Assessment) -> String {
     let Some((limit, side)) = broken_limit(target, value.value) else {
         return format!("`{}` does not hold", target.text);
     };
-    let recoil = subject.crystal.and_then(words::recoil_of);
-    let [shown, shown_limit] = words::apart([value.value, limit], target.dimension, recoil);
-    let off = words::quantity((value.value - limit).abs(), target.dimension, recoil);
+    let trade = Trade::here(subject);
+    let [shown, shown_limit] = words::apart([value.value, limit], target.dimension, trade);
+    let off = words::quantity((value.value - limit).abs(), target.dimension, trade);
     format!("`{what}` is {shown}, {off} {side} the limit of {shown_limit}")
 }
 
-fn help(target: &Assessment) -> Option<String> {
-    target.reason.clone()
+/// The worst case, where there are tolerances.
+fn help(subject: &Subject<'_>, target: &Assessment) -> Option<String> {
+    let Some(worst) = target.worst else {
+        return target.reason.clone();
+    };
+    let worst = words::quantity(worst, target.dimension, Trade::here(subject));
+    Some(format!(
+        "at the worst values of the tolerances it comes to {worst}"
+    ))
 }
 
 /// The limit that a value breaks, and on which side of it the value lies.
 fn broken_limit(target: &Assessment, value: f64) -> Option<(f64, &'static str)> {
     let (lower, upper) = target.limits;
-    let below = lower.filter(|limit| value < *limit).map(|limit| (limit, "below"));
-    below.or_else(|| upper.filter(|limit| value > *limit).map(|limit| (limit, "above")))
+    let below = lower
+        .filter(|limit| value < *limit)
+        .map(|limit| (limit, "below"));
+    below.or_else(|| {
+        upper
+            .filter(|limit| value > *limit)
+            .map(|limit| (limit, "above"))
+    })
 }
 
 /// What is required, and the relation behind it.
 pub fn halves(text: &str) -> (&str, &str) {
     let relations = [" >=", " <=", " ≥", " ≤", " >", " <", " =", " between "];
-    let first = relations.iter().filter_map(|relation| text.find(relation)).min();
+    let first = relations
+        .iter()
+        .filter_map(|relation| text.find(relation))
+        .min();
     match first.and_then(|at| text.split_at_checked(at)) {
         Some((what, relation)) => (what.trim(), relation.trim()),
         None => (text.trim(), ""),
@@ -132,7 +161,10 @@ mod tests {
             target.value = Some(electronvolts(0.0542));
             target.limits = (Some(electronvolts(0.06).value), None);
         });
-        assert_eq!(found, ["`gap 1` is 54.2 meV, 5.8 meV below the limit of 60 meV"]);
+        assert_eq!(
+            found,
+            ["`gap 1` is 54.2 meV, 5.8 meV below the limit of 60 meV"]
+        );
     }
 
     #[test]

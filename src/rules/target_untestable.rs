@@ -46,7 +46,10 @@ pub const RULE: Rule = Rule {
 fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
     for target in subject.targets {
         if target.state == TargetState::Untestable {
-            let reason = target.reason.as_deref().unwrap_or("there are no bands to hold it against");
+            let reason = target
+                .reason
+                .as_deref()
+                .unwrap_or("there are no bands to hold it against");
             let message = format!("`{}` cannot be tested: {reason}", target.text);
             findings.push(at_target(&RULE, subject, target, message));
         }
@@ -66,7 +69,10 @@ mod tests {
             target.state = TargetState::Untestable;
             target.reason = Some("the crystal says no `filling`".to_owned());
         });
-        assert_eq!(found, ["`insulator` cannot be tested: the crystal says no `filling`"]);
+        assert_eq!(
+            found,
+            ["`insulator` cannot be tested: the crystal says no `filling`"]
+        );
     }
 
     #[test]

@@ -11,7 +11,7 @@
 //!   monolayer 0.283 nm
 //!   layer 2.83 nm at 0 meV
 //!   layer 0.2 nm at 235 meV
-//!   ^^^^^^^^^^^^^^^^^^^^^^^
+//!         ^^^^^^^^^^^^^^^^^
 //! ```
 //!
 //! # Instead
@@ -50,7 +50,11 @@ fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
     };
     for layer in &crystal.potential.layers {
         let finding = finding(subject, layer);
-        let new = |finding: &Finding| findings.iter().all(|other| other.place != finding.place || other.rule != RULE.name);
+        let new = |finding: &Finding| {
+            findings
+                .iter()
+                .all(|other| other.place != finding.place || other.rule != RULE.name)
+        };
         findings.extend(finding.filter(new).into_iter().collect::<Vec<_>>());
     }
 }
@@ -69,7 +73,7 @@ fn finding(subject: &Subject<'_>, layer: &Layer) -> Option<Finding> {
     );
     Some(
         Finding::new(&RULE, place, message)
-            .help("no layer is thinner than one monolayer")
+            .help("material comes in whole monolayers, so this is the least there is")
             .fix(whole_monolayers(subject, layer)),
     )
 }
@@ -80,7 +84,9 @@ mod tests {
     use super::RULE;
 
     fn text(thin: &str) -> String {
-        format!("crystal a\n  mass 1 me\n  monolayer 0.283 nm\n  layer 2.83 nm at 0\n  layer {thin} at 9 meV\n")
+        format!(
+            "crystal a\n  mass 1 me\n  monolayer 0.283 nm\n  layer 2.83 nm at 0\n  layer {thin} at 9 meV\n"
+        )
     }
 
     #[test]

@@ -31,7 +31,9 @@ use std::f64::consts::{PI, TAU};
 use super::plausible::{self, Kind, Setting};
 use super::stated::{self, Stated};
 use super::subject::parameter;
+use super::words::Trade;
 use super::{Finding, Fix, Level, Replacement, Rule, Subject, Tier, literal, words};
+use crate::model::constants::ELECTRONVOLT;
 use crate::model::{Crystal, Parameter, ParameterKind, Place, Wave, unit};
 use crate::syntax::{StatementKind, Value};
 
@@ -50,6 +52,8 @@ fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
     findings.extend(sizes(subject));
     findings.extend(lattice_angles(subject));
     if let Some(crystal) = subject.crystal {
+        findings.extend(weak_layers(subject, crystal));
+        findings.extend(table(subject, crystal));
         let waves = crystal.potential.waves.iter();
         findings.extend(waves.filter_map(|wave| phase(subject, crystal, wave)));
     }
@@ -58,7 +62,9 @@ fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
 /// Sizes that another unit would explain. With an odd mass or cell, nothing else can be judged by it.
 fn sizes(subject: &Subject<'_>) -> Vec<Finding> {
     let stated = stated::quantities(subject);
-    let setting = subject.crystal.map_or_else(|| of_material(&stated), stated::setting);
+    let setting = subject
+        .crystal
+        .map_or_else(|| of_material(&stated), stated::setting);
     for first in [Kind::Mass, Kind::LatticeLength] {
         let slips = slips(&stated, &setting, |kind| kind == first);
         if !slips.is_empty() {
@@ -93,10 +99,19 @@ fn slip(stated: &Stated, setting: &Setting) -> Option<Finding> {
         Some((lowest, highest)) => {
             let dimension = number.dimension;
             let side = match stated.value.abs() > highest {
-                true => format!("at most about {}", words::quantity(highest, dimension, None)),
-                false => format!("at least about {}", words::quantity(lowest, dimension, None)),
+                true => format!(
+                    "at most about {}",
+                    words::quantity(highest, dimension, Trade::default())
+                ),
+                false => format!(
+                    "at least about {}",
+                    words::quantity(lowest, dimension, Trade::default())
+                ),
             };
-            format!("`{}` is an unlikely size for {what}, usually {side}", number.text)
+            format!(
+                "`{}` is an unlikely size for {what}, usually {side}",
+                number.text
+            )
         }
         None => format!("`{}` is an unlikely size for {what}", number.text),
     };
@@ -117,7 +132,10 @@ fn slip(stated: &Stated, setting: &Setting) -> Option<Finding> {
 #[must_use]
 pub fn likely_unit(stated: &Stated, setting: &Setting) -> Option<&'static str> {
     let number = stated.number.as_ref()?;
-    let (written, size) = number.unit.as_ref().map_or(("", 1.0), |(name, size)| (name.as_str(), *size));
+    let (written, size) = number
+        .unit
+        .as_ref()
+        .map_or(("", 1.0), |(name, size)| (name.as_str(), *size));
     if matches!(written, "Er" | "ML") {
         return None;
     }
@@ -140,28 +158,128 @@ fn rewritten(number: &Parameter, unit: &str) -> Option<String> {
     Some(format!("{digits} {unit}"))
 }
 
+/// Layers of materials whose edges differ by less than this are hardly layers.
+const WEAK: f64 = 1e-3 * ELECTRONVOLT;
+/// Nor are those whose edges differ by less than this part of the kinetic scale of the cell.
+const WEAK_RATIO: f64 = 1e-2;
+
+/// Materials whose edges hardly differ, where a thousandfold edge would be usual: meV for eV.
+fn weak_layers(subject: &Subject<'_>, crystal: &Crystal) -> Option<Finding> {
+    let edges = || {
+        let layers = crystal
+            .potential
+            .layers
+            .iter()
+            .filter(|layer| layer.materials.is_some());
+        layers.flat_map(|layer| layer.edge.iter().map(move |edge| (layer, edge)))
+    };
+    let lowest = edges()
+        .map(|(_, edge)| edge.value)
+        .fold(f64::INFINITY, f64::min);
+    let highest = edges()
+        .map(|(_, edge)| edge.value)
+        .fold(f64::NEG_INFINITY, f64::max);
+    let setting = stated::setting(crystal);
+    let contrast = highest - lowest;
+    let weak = contrast > 0.0 && contrast < WEAK && contrast < WEAK_RATIO * setting.kinetic()?;
+    if !weak || !setting.moves_electrons() {
+        return None;
+    }
+    let (layer, edge) =
+        edges().max_by(|(_, one), (_, other)| one.value.abs().total_cmp(&other.value.abs()))?;
+    let number = stated::number_behind(crystal, edge)?;
+    let (written, size) = number.unit.as_ref()?;
+    let stronger = ["meV", "eV"].into_iter().find(|name| {
+        let unit = unit::find(name).map_or(0.0, |unit| unit.size);
+        *name != written.as_str() && (0.01..=5.0).contains(&(contrast * unit / size / ELECTRONVOLT))
+    })?;
+    let instead = rewritten(number, stronger)?;
+    let place = subject.where_to_speak(layer.place, &[edge])?;
+    let message = format!(
+        "the edges of these layers differ by only {}",
+        words::energy(crystal, contrast)
+    );
+    let edit = Replacement::new(number.place, instead.clone());
+    Some(
+        Finding::new(&RULE, place, message)
+            .help(format!("is `{instead}` meant for the edge?"))
+            .related(number.place, "the edge is stated here")
+            .fix(Fix::guess(format!("write `{instead}`"), edit)),
+    )
+}
+
+/// Samples in another unit of energy than the table says.
+fn table(subject: &Subject<'_>, crystal: &Crystal) -> Option<Finding> {
+    let table = crystal.potential.table.as_ref()?;
+    let largest = table
+        .energies
+        .iter()
+        .fold(0.0_f64, |most, energy| most.max(energy.abs()));
+    let setting = stated::setting(crystal);
+    if plausible::is_plausible(Kind::Energy, largest, &setting) {
+        return None;
+    }
+    let StatementKind::Table { energy_unit, .. } = &subject.statement_at(table.place)?.kind else {
+        return None;
+    };
+    let written = energy_unit.span.of(&subject.entry.section.text);
+    let size = unit::find(written)?.size;
+    let mut units = plausible::usual_units(Kind::Energy, &setting).iter();
+    let instead = units.find(|name| {
+        let unit = unit::find(name).map_or(0.0, |unit| unit.size);
+        plausible::is_typical(Kind::Energy, largest * unit / size, &setting)
+    })?;
+    let place = subject.place(energy_unit.span);
+    let shown = words::energy(crystal, largest);
+    let message =
+        format!("in `{written}`, these samples reach {shown}, an unlikely potential in this cell");
+    let fix = Fix::guess(
+        format!("write `{instead}`"),
+        Replacement::new(place, *instead),
+    );
+    Some(
+        Finding::new(&RULE, place, message)
+            .help(format!("are they in `{instead}`?"))
+            .fix(fix),
+    )
+}
+
 /// Bare angles of the lattice that no cell has in radians.
 fn lattice_angles(subject: &Subject<'_>) -> Vec<Finding> {
     let statements = &subject.entry.section.statements;
-    let angles = statements.iter().flat_map(|statement| match &statement.kind {
-        StatementKind::Lattice(form) => form.angles.as_slice(),
-        _ => &[],
-    });
-    angles.filter_map(|angle| bare_angle(subject, angle)).collect()
+    let angles = statements
+        .iter()
+        .flat_map(|statement| match &statement.kind {
+            StatementKind::Lattice(form) => form.angles.as_slice(),
+            _ => &[],
+        });
+    angles
+        .filter_map(|angle| bare_angle(subject, angle))
+        .collect()
 }
 
 fn bare_angle(subject: &Subject<'_>, angle: &Value) -> Option<Finding> {
     let number = literal::of_value(angle).filter(|number| number.unit.is_none())?;
     let above = number.number.abs() > PI;
-    above.then(|| degrees(subject.place(number.span), number.span.of(&subject.entry.section.text), "a lattice angle above π"))
+    above.then(|| {
+        degrees(
+            subject.place(number.span),
+            number.span.of(&subject.entry.section.text),
+            "a lattice angle above π",
+        )
+    })
 }
 
 fn degrees(place: Place, text: &str, what: &str) -> Finding {
     let instead = format!("{text} deg");
     let edit = Replacement::new(place, instead.clone());
-    Finding::new(&RULE, place, format!("a bare `{text}` is in radians, and {what} is unlikely"))
-        .help(format!("is `{instead}` meant?"))
-        .fix(Fix::guess(format!("write `{instead}`"), edit))
+    Finding::new(
+        &RULE,
+        place,
+        format!("a bare `{text}` is in radians, and {what} is unlikely"),
+    )
+    .help(format!("is `{instead}` meant?"))
+    .fix(Fix::guess(format!("write `{instead}`"), edit))
 }
 
 /// A bare phase of more than one turn.
@@ -170,10 +288,17 @@ fn phase(subject: &Subject<'_>, crystal: &Crystal, wave: &Wave) -> Option<Findin
     if turns <= 1.0 {
         return None;
     }
-    let sources: Vec<&Parameter> =
-        wave.phase.slopes.iter().filter_map(|(id, _)| parameter(crystal, *id)).collect();
+    let sources: Vec<&Parameter> = wave
+        .phase
+        .slopes
+        .iter()
+        .filter_map(|(id, _)| parameter(crystal, *id))
+        .collect();
     let statement = subject.statement_at(wave.place)?;
-    let StatementKind::Wave { phase: Some(value), .. } = &statement.kind else {
+    let StatementKind::Wave {
+        phase: Some(value), ..
+    } = &statement.kind
+    else {
         return None;
     };
     let written = value.span.of(&subject.entry.section.text);
@@ -197,7 +322,7 @@ fn phase(subject: &Subject<'_>, crystal: &Crystal, wave: &Wave) -> Option<Findin
 
 #[cfg(test)]
 mod tests {
-    use super::super::fixture::{fixed, messages, silent};
+    use super::super::fixture::{fixed, messages, messages_with, silent};
     use super::RULE;
 
     fn electron(statement: &str, instead: &str) {
@@ -250,15 +375,60 @@ mod tests {
     fn bare_angles_that_are_degrees_are_found_and_mended() {
         let phase = "crystal a\n  lattice chain 5 nm\n  cosine 1 = 1 meV phase 90 deg\n";
         check_slip(phase, "phase 90\n", "phase 90 deg\n");
-        let angle = "crystal a\n  lattice oblique 5 nm by 4 nm angle 80 deg\n  cosine (1, 0) = 1 meV\n";
+        let angle =
+            "crystal a\n  lattice oblique 5 nm by 4 nm angle 80 deg\n  cosine (1, 0) = 1 meV\n";
         check_slip(angle, "angle 80\n", "angle 80 deg\n");
     }
 
     #[test]
     fn angles_that_name_their_unit_or_pi_are_silent() {
         for phase in ["phase 7*pi/2", "phase 400 deg", "phase 6.2", "phase 9 rad"] {
-            silent(&RULE, &format!("crystal a\n  lattice chain 5 nm\n  cosine 1 = 1 meV {phase}\n"));
+            silent(
+                &RULE,
+                &format!("crystal a\n  lattice chain 5 nm\n  cosine 1 = 1 meV {phase}\n"),
+            );
         }
+    }
+
+    #[test]
+    fn edges_that_hardly_differ_are_found_and_mended() {
+        let material =
+            |name: &str, edge: &str| format!("material {name}\n  mass 0.067 me\n  edge {edge}\n");
+        let layers = "crystal a\n  layer 5 nm of m\n  layer 3 nm of n\n";
+        let sound = format!(
+            "{}{}{layers}",
+            material("m", "0 eV"),
+            material("n", "0.235 eV")
+        );
+        check_slip(&sound, "0.235 meV", "0.235 eV");
+        // Far apart, the same edges hold an electron well.
+        let wide = "crystal a\n  layer 500 nm of m\n  layer 300 nm of n\n";
+        silent(
+            &RULE,
+            &format!(
+                "{}{}{wide}",
+                material("m", "0 eV"),
+                material("n", "0.235 meV")
+            ),
+        );
+    }
+
+    #[test]
+    fn samples_in_another_unit_are_found() {
+        let text = "crystal a\n  mass 0.067 me\n  lattice chain 8 nm\n  table \"t.csv\" in nm, eV by line\n";
+        let file = [("t.csv", "0,0\n2,0\n3,235\n5,235\n6,0\n")];
+        assert_eq!(messages_with(&RULE, text, &file).len(), 1);
+        assert!(messages_with(&RULE, &text.replace("eV by", "meV by"), &file).is_empty());
+    }
+
+    #[test]
+    fn the_steps_of_a_staircase_may_be_thin() {
+        let step = |edge: u32| format!("  layer 0.01 nm at {edge} meV\n");
+        let steps: String = (0..40).map(step).collect();
+        silent(
+            &RULE,
+            &format!("crystal a\n  mass 0.067 me\n  layer 5 nm at 0\n{steps}"),
+        );
     }
 
     #[test]

@@ -99,9 +99,13 @@ fn finding(place: Place, name: &str, wanted: &str, nearest: Option<&str>) -> Fin
         Fix::guess(title, Replacement::new(place, close))
     });
     let help = nearest.map(|close| format!("did you mean `{close}`?"));
-    Finding::new(&RULE, place, format!("there is no {wanted} called `{name}`"))
-        .help_if(help)
-        .fix(fix)
+    Finding::new(
+        &RULE,
+        place,
+        format!("there is no {wanted} called `{name}`"),
+    )
+    .help_if(help)
+    .fix(fix)
 }
 
 #[cfg(test)]
@@ -112,19 +116,28 @@ mod tests {
     #[test]
     fn the_closest_material_is_offered() {
         let text = "material basin\n  mass 1 me\n  edge 0 meV\ncrystal a\n  layer 8 nm of bassin\n";
-        assert_eq!(messages(&RULE, text), ["there is no material called `bassin`"]);
+        assert_eq!(
+            messages(&RULE, text),
+            ["there is no material called `bassin`"]
+        );
         assert!(fixed(&RULE, text).ends_with("layer 8 nm of basin\n"));
     }
 
     #[test]
     fn a_waiver_of_no_rule_is_found() {
         let text = "waive seem-step because \"it is so\"\n";
-        assert_eq!(messages(&RULE, text), ["there is no rule called `seem-step`"]);
+        assert_eq!(
+            messages(&RULE, text),
+            ["there is no rule called `seem-step`"]
+        );
         assert_eq!(fixed(&RULE, text), "waive seam-step because \"it is so\"\n");
     }
 
     #[test]
     fn order_does_not_matter() {
-        silent(&RULE, "let a = b\nlet b = 3 nm\ncrystal c\n  lattice chain a\n");
+        silent(
+            &RULE,
+            "let a = b\nlet b = 3 nm\ncrystal c\n  lattice chain a\n",
+        );
     }
 }

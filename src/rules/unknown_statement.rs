@@ -11,7 +11,6 @@
 //!   ^^^^^^
 //!   cosine 1 = 20 meV
 //! ```
-//! Also found: `missing-lattice`.
 //!
 //! # Instead
 //! ```cren

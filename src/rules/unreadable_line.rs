@@ -15,7 +15,6 @@
 //!   layer 8.0 nm off basin
 //!                ^^^
 //! ```
-//! Also found: `missing-lattice`.
 //!
 //! # Instead
 //! ```cren
@@ -31,6 +30,7 @@
 //! A `\` with nothing behind it is taken away. For the rest, the message says what would have been readable.
 
 use super::{Finding, Fix, Level, Replacement, Rule, Subject, Tier};
+use crate::syntax::words::{lattice, statement};
 use crate::syntax::{Problem, ProblemKind};
 
 /// The rule.
@@ -46,7 +46,11 @@ pub const RULE: Rule = Rule {
 
 fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
     let problems = &subject.entry.section.problems;
-    findings.extend(problems.iter().filter_map(|problem| finding(subject, problem)));
+    findings.extend(
+        problems
+            .iter()
+            .filter_map(|problem| finding(subject, problem)),
+    );
 }
 
 fn finding(subject: &Subject<'_>, problem: &Problem) -> Option<Finding> {
@@ -54,7 +58,8 @@ fn finding(subject: &Subject<'_>, problem: &Problem) -> Option<Finding> {
     let of = |message: String| Finding::new(&RULE, place, message);
     match &problem.kind {
         ProblemKind::Unreadable { expected, found } => {
-            Some(of(format!("expected {expected}, found {found}")))
+            let finding = of(format!("expected {expected}, found {found}"));
+            Some(finding.help_if(form(subject, problem)))
         }
         ProblemKind::DanglingContinuation => Some(
             of("`\\` continues this line, but the text ends here".to_owned())
@@ -69,6 +74,23 @@ fn finding(subject: &Subject<'_>, problem: &Problem) -> Option<Finding> {
     }
 }
 
+/// How the statement on the line is written.
+fn form(subject: &Subject<'_>, problem: &Problem) -> Option<String> {
+    let line = subject.line_at(problem.span.start)?;
+    let content = line.content.of(&subject.entry.section.text);
+    let mut words = content.split([' ', '\t']).filter(|word| !word.is_empty());
+    let first = words.next()?;
+    let kind = words
+        .next()
+        .filter(|_| first == "lattice")
+        .and_then(lattice);
+    let form = match kind {
+        Some(kind) => format!("lattice {}", kind.form),
+        None => statement(first)?.form.to_owned(),
+    };
+    Some(format!("it is written `{form}`"))
+}
+
 #[cfg(test)]
 mod tests {
     use super::super::fixture::{messages, silent};
@@ -76,14 +98,24 @@ mod tests {
 
     #[test]
     fn says_what_was_expected_and_what_is_there() {
-        let found = messages(&RULE, "crystal a\n  lattice chain 5 nm\n  layer 5 nm off b\n");
+        let found = messages(
+            &RULE,
+            "crystal a\n  lattice chain 5 nm\n  layer 5 nm off b\n",
+        );
         assert_eq!(found.len(), 1, "{found:?}");
-        assert!(found.iter().all(|text| text.starts_with("expected ") && text.contains("`off`")));
+        assert!(
+            found
+                .iter()
+                .all(|text| text.starts_with("expected ") && text.contains("`off`"))
+        );
     }
 
     #[test]
     fn a_continued_line_is_readable() {
         silent(&RULE, "crystal a\n  lattice chain \\\n    5 nm\n");
-        assert_eq!(messages(&RULE, "crystal a\n  lattice chain 5 nm \\").len(), 1);
+        assert_eq!(
+            messages(&RULE, "crystal a\n  lattice chain 5 nm \\").len(),
+            1
+        );
     }
 }

@@ -27,6 +27,7 @@
 //! An unused `let` is taken out.
 
 use super::{FileSubject, Finding, Fix, Level, Replacement, Rule, Subject, Tier};
+use crate::model::words::holder_of;
 use crate::model::{NameSort, Place};
 use crate::syntax::{Entry, SectionKind, StatementKind, Word};
 use crate::text::Span;
@@ -47,8 +48,13 @@ fn check(_: &Subject<'_>, _: &mut Vec<Finding>) {}
 
 /// Finds the names of a file that nothing uses.
 pub fn file_check(file: &FileSubject<'_>, findings: &mut Vec<Finding>) {
-    let mut sections = file.tree.entries.iter().map(|entry| entry.section.kind);
-    if file.used_by_others || !sections.any(|kind| kind == SectionKind::Crystal) {
+    let mut sections = file.tree.entries.iter().map(|entry| &entry.section);
+    let has_crystals = sections
+        .clone()
+        .any(|section| section.kind == SectionKind::Crystal);
+    // A line that does not read may be the one that uses a name.
+    let unreadable = sections.any(|section| !section.problems.is_empty());
+    if file.used_by_others || !has_crystals || unreadable {
         return;
     }
     for entry in &file.tree.entries {
@@ -63,10 +69,13 @@ fn material(file: &FileSubject<'_>, entry: &Entry) -> Option<Finding> {
     }
     let name = entry.section.name.as_ref()?;
     let place = file.place(entry, name.span);
-    if file.uses(place, NameSort::Material) {
+    if file.may_use(place, NameSort::Material) {
         return None;
     }
-    Some(unused(place, format!("nothing uses the material `{}`", name.text)))
+    Some(unused(
+        place,
+        format!("nothing uses the material `{}`", name.text),
+    ))
 }
 
 fn names<'a>(file: &'a FileSubject<'_>, entry: &'a Entry) -> impl Iterator<Item = Finding> + 'a {
@@ -76,7 +85,10 @@ fn names<'a>(file: &'a FileSubject<'_>, entry: &'a Entry) -> impl Iterator<Item 
             return None;
         };
         let place = file.place(entry, name.span);
-        if file.uses(place, NameSort::Value) || may_be_inherited(file, entry, name) {
+        if holder_of(&name.text).is_some() {
+            return None;
+        }
+        if file.may_use(place, NameSort::Value) || may_be_inherited(file, entry, name) {
             return None;
         }
         let fix = take_out(file, entry, statement.span);
@@ -98,7 +110,8 @@ fn unused(place: Place, message: String) -> Finding {
 
 fn take_out(file: &FileSubject<'_>, entry: &Entry, statement: Span) -> Option<Fix> {
     let mut lines = entry.section.lines.iter();
-    let line = lines.find(|line| line.span.start <= statement.start && statement.end <= line.span.end)?;
+    let line =
+        lines.find(|line| line.span.start <= statement.start && statement.end <= line.span.end)?;
     let edit = Replacement::new(file.place(entry, line.span), "");
     Some(Fix::guess("take this line out", edit))
 }
@@ -110,19 +123,36 @@ mod tests {
 
     #[test]
     fn a_let_and_a_material_that_nothing_uses_are_found() {
-        let text = "let a = 3 nm\nmaterial m\n  mass 1 me\n  edge 0 eV\ncrystal c\n  lattice chain 5 nm\n";
+        let text =
+            "let a = 3 nm\nmaterial m\n  mass 1 me\n  edge 0 eV\ncrystal c\n  lattice chain 5 nm\n";
         let found = messages(&RULE, text);
         assert_eq!(found, ["nothing uses `a`", "nothing uses the material `m`"]);
     }
 
     #[test]
+    fn where_a_name_is_misspelt_none_is_called_unused() {
+        silent(
+            &RULE,
+            "material wall\n  mass 1 me\n  edge 0 eV\ncrystal c\n  layer 5 nm of wal\n",
+        );
+        silent(
+            &RULE,
+            "material wall\n  mass 1 me\n  edge 0 eV\ncrystal c\n  layer 5 nm off wall\n",
+        );
+    }
+
+    #[test]
     fn a_file_of_materials_alone_is_a_shelf() {
-        silent(&RULE, "let a = 3 nm\nmaterial m\n  mass 1 me\n  edge 0 eV\n");
+        silent(
+            &RULE,
+            "let a = 3 nm\nmaterial m\n  mass 1 me\n  edge 0 eV\n",
+        );
     }
 
     #[test]
     fn a_let_that_replaces_an_inherited_one_is_used() {
-        let text = "crystal c\n  let a = 3 nm\n  lattice chain a\ncrystal d like c\n  let a = 4 nm\n";
+        let text =
+            "crystal c\n  let a = 3 nm\n  lattice chain a\ncrystal d like c\n  let a = 4 nm\n";
         silent(&RULE, text);
     }
 }

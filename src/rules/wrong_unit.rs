@@ -59,13 +59,19 @@ mod tests {
 
     #[test]
     fn a_length_is_no_energy() {
-        let found = messages(&RULE, "crystal a\n  lattice chain 8 nm\n  cosine 1 = 3 nm\n");
+        let found = messages(
+            &RULE,
+            "crystal a\n  lattice chain 8 nm\n  cosine 1 = 3 nm\n",
+        );
         assert_eq!(found, ["this is a length, where an energy is wanted"]);
     }
 
     #[test]
     fn an_energy_may_be_made_of_other_quantities() {
         let energy = "hbar^2 * (1 nm)^-2 / (1 me)";
-        silent(&RULE, &format!("crystal a\n  lattice chain 8 nm\n  cosine 1 = {energy}\n"));
+        silent(
+            &RULE,
+            &format!("crystal a\n  lattice chain 8 nm\n  cosine 1 = {energy}\n"),
+        );
     }
 }

@@ -15,7 +15,11 @@ struct Memory(Arc<Tree>);
 
 impl FileSource for Memory {
     fn tree(&self, path: &Path) -> Result<Arc<Tree>, ReadFailure> {
-        if path == Path::new("model.cren") { Ok(Arc::clone(&self.0)) } else { Err(ReadFailure::NotFound) }
+        if path == Path::new("model.cren") {
+            Ok(Arc::clone(&self.0))
+        } else {
+            Err(ReadFailure::NotFound)
+        }
     }
     fn bytes(&self, _: &Path) -> Result<Arc<[u8]>, ReadFailure> {
         Err(ReadFailure::NotFound)
@@ -36,11 +40,19 @@ impl Bench {
     pub fn new(text: &str) -> Self {
         let source = Memory(Arc::new(read(text)));
         let world = World::gather(&source, &[PathBuf::from("model.cren")]);
-        Self { world, source, solver: Solver::default() }
+        Self {
+            world,
+            source,
+            solver: Solver::default(),
+        }
     }
 
     pub fn crystal_ref(&self, index: usize) -> CrystalRef {
-        let file = self.world.file_at(Path::new("model.cren")).expect("the file").id;
+        let file = self
+            .world
+            .file_at(Path::new("model.cren"))
+            .expect("the file")
+            .id;
         let section = self.world.crystals(file)[index].0;
         CrystalRef { file, section }
     }
@@ -52,7 +64,9 @@ impl Bench {
     pub fn solve_at(&self, index: usize, setting: &Setting) -> Arc<Solution> {
         let built = self.build(index, setting);
         assert!(!built.crystal.broken, "{:#?}", built.troubles);
-        self.solver.solve(&built.crystal, &|| false).expect("solved bands")
+        self.solver
+            .solve(&built.crystal, &|| false)
+            .expect("solved bands")
     }
 
     pub fn solve(&self, index: usize) -> Arc<Solution> {
@@ -66,8 +80,12 @@ impl Bench {
             let built = build_crystal(&self.world, of, setting, &self.source);
             (!built.crystal.broken).then(|| Arc::new(built.crystal))
         };
-        let assessed: Result<_, Unsolved> =
-            self.solver.assess(self.crystal_ref(index), &Arc::new(built.crystal), &rebuild, &|| false);
+        let assessed: Result<_, Unsolved> = self.solver.assess(
+            self.crystal_ref(index),
+            &Arc::new(built.crystal),
+            &rebuild,
+            &|| false,
+        );
         assessed.expect("assessed targets")
     }
 }

@@ -5,7 +5,7 @@ use std::rc::Rc;
 use rustc_hash::FxHashMap;
 
 use super::scales::Scales;
-use super::takeover::{Statements, Taken, chain_of, check_chain};
+use super::takeover::{Statements, Taken, chain_of, check_chain, mark_taken_over};
 use super::{Built, BuiltMaterial, Key, SectionRef, World, check_lets, checks};
 use crate::model::evaluate::{Context, Evaluator};
 use crate::model::{Crystal, CrystalRef, FileSource, Setting, Trouble};
@@ -45,19 +45,12 @@ pub fn build_crystal(
     check_chain(&mut evaluator, &chain, &end);
     checks::heading(&mut evaluator, home);
     let statements = Statements::gather(&mut evaluator, &chain);
-    let mut build = CrystalBuild {
-        evaluator,
-        source,
-        chain: &chain,
-        statements,
-        crystal: Crystal::default(),
-        layers_complete: true,
-        materials: FxHashMap::default(),
-    };
+    let mut build = CrystalBuild::new(evaluator, source, &chain, statements);
     build.run();
     let mut built = build.finish();
     if chain.len() > 1 {
         drop_known(world, &chain, setting, source, &mut built.troubles);
+        mark_taken_over(home, &mut built.troubles);
     }
     built
 }
@@ -84,6 +77,37 @@ fn drop_known(
 }
 
 impl<'c, 'w> CrystalBuild<'c, 'w> {
+    fn new(
+        evaluator: Evaluator<'w>,
+        source: &'c dyn FileSource,
+        chain: &'c [SectionRef<'w>],
+        statements: Statements<'w>,
+    ) -> Self {
+        Self {
+            evaluator,
+            source,
+            chain,
+            statements,
+            crystal: Crystal::default(),
+            layers_complete: true,
+            materials: FxHashMap::default(),
+        }
+    }
+
+    /// The primitive vectors at the middle of all tolerances: the symmetry of a lattice is that of its nominal values.
+    pub(super) fn undrawn_vectors(&self) -> Vec<Vec<f64>> {
+        let setting = Setting {
+            draws: FxHashMap::default(),
+            overrides: self.evaluator.setting.overrides.clone(),
+        };
+        let mut evaluator = Evaluator::new(self.evaluator.world, &setting, self.evaluator.home);
+        let statements = Statements::gather(&mut evaluator, self.chain);
+        let mut build = CrystalBuild::new(evaluator, self.source, self.chain, statements);
+        build.scales();
+        build.lattice();
+        build.crystal.primitive_values()
+    }
+
     fn run(&mut self) {
         let home = self.evaluator.home;
         self.crystal.place = home.name_place();

@@ -177,13 +177,12 @@ impl<'w> CrystalBuild<'_, 'w> {
             self.evaluator
                 .positive(&part.length, Dimension::LENGTH, "a thickness", &inner);
         let (left, right) = (left?, right?);
-        let edges = [
-            self.edge_of(&left, from, context),
-            self.edge_of(&right, to.unwrap_or(from), context),
-        ];
-        let [Some(left_edge), Some(right_edge)] = edges else {
-            return None;
+        let left_edge = self.edge_of(&left, from, context);
+        let right_edge = match to {
+            Some(to) => self.edge_of(&right, to, context),
+            None => left_edge.clone(),
         };
+        let (left_edge, right_edge) = (left_edge?, right_edge?);
         let masses = [
             self.mass_law(&left, &left_edge),
             self.mass_law(&right, &right_edge),
@@ -224,7 +223,9 @@ impl<'w> CrystalBuild<'_, 'w> {
             return Some(Rc::clone(known));
         }
         let mut built = build_material(world, found.file, found.id, self.evaluator.setting);
-        self.evaluator.broken |= built.broken;
+        let file = world.file(found.file);
+        let ambiguous = file.is_some_and(|file| file.repeats(SectionKind::Material, &word.text));
+        self.evaluator.broken |= built.broken || ambiguous;
         self.evaluator.parameters.append(&mut built.parameters);
         let built = Rc::new(built);
         self.materials.insert(found.key(), Rc::clone(&built));
@@ -242,9 +243,13 @@ impl<'w> CrystalBuild<'_, 'w> {
         }
         // A broken edge is the material's own affair.
         if !material.broken {
-            let trouble = Trouble::new(lacks(&material.name, "edge"), context.place(word.span));
-            self.evaluator
-                .report(trouble.beside(material.place, "the material"));
+            let kind = lacks(&material.name, "edge");
+            // Once is enough, however many layers there are of it.
+            if !self.evaluator.troubles.iter().any(|one| one.kind == kind) {
+                let trouble = Trouble::new(kind, context.place(word.span));
+                self.evaluator
+                    .report(trouble.beside(material.place, "the material"));
+            }
         }
         None
     }
@@ -262,15 +267,17 @@ impl<'w> CrystalBuild<'_, 'w> {
     }
 
     fn mass_origin(&self, left: &BuiltMaterial, right: &BuiltMaterial) -> String {
-        let one = |material: &BuiltMaterial| match material.mass {
-            Some(_) => format!("of material {}", material.name),
-            None => self.own_mass_origin(),
-        };
-        let (from, to) = (one(left), one(right));
-        if from == to {
-            return from;
+        match (&left.mass, &right.mass) {
+            (Some(_), _) if left.key == right.key => format!("of material {}", left.name),
+            (Some(_), Some(_)) => format!("of materials {} to {}", left.name, right.name),
+            (Some(_), None) => format!("of material {} to {}", left.name, self.own_mass_origin()),
+            (None, Some(_)) => format!(
+                "{} to that of material {}",
+                self.own_mass_origin(),
+                right.name
+            ),
+            (None, None) => self.own_mass_origin(),
         }
-        format!("{from} to {to}")
     }
 
     /// The period: what the layers add up to, else the lattice's.
@@ -300,15 +307,22 @@ impl<'w> CrystalBuild<'_, 'w> {
         let Some(lattice) = self.statements.single("lattice") else {
             return;
         };
+        let Some(last) = self.statements.layers.last() else {
+            return;
+        };
         let kind = TroubleKind::OpenCell {
             sum,
             period,
             parts: "layers",
         };
-        let mut trouble = Trouble::new(kind, lattice.home.place(lattice.statement.span));
-        if let Some(last) = self.statements.layers.last() {
-            trouble = trouble.beside(last.home.place(last.statement.span), "the last layer");
-        }
+        let lattice_place = lattice.home.place(lattice.statement.span);
+        let last_place = last.home.place(last.statement.span);
+        // Of the two, the one that this crystal itself says.
+        let trouble = if lattice.home.key() == self.evaluator.home.key() {
+            Trouble::new(kind, lattice_place).beside(last_place, "the last layer")
+        } else {
+            Trouble::new(kind, last_place).beside(lattice_place, "the lattice")
+        };
         self.evaluator.report(trouble);
     }
 

@@ -33,23 +33,42 @@ pub(super) fn find_pole(formula: &Formula, region: &[[f64; 2]; 3]) -> Option<f64
         return None;
     }
     let mut waiting = vec![*region];
-    let mut usual = 0.0_f64;
     for _ in 0..BUDGET {
         let cell = waiting.pop()?;
         if bounds(formula, &cell).is_finite() {
-            usual = usual.max(formula.at(&middle(&cell)).abs());
             continue;
         }
         match halves(&cell, region) {
             Some([left, right]) => waiting.extend([right, left]),
             None => {
-                if blows_up(formula, &cell, usual) {
+                if blows_up(formula, &cell, usual_size(formula, region)) {
                     return Some(middle(&cell)[0]);
                 }
             }
         }
     }
     None
+}
+
+/// The median magnitude at places scattered evenly (multiples of irrational shares) over the region.
+fn usual_size(formula: &Formula, region: &[[f64; 2]; 3]) -> f64 {
+    const SHARES: [f64; 3] = [
+        0.618_033_988_749_895,
+        0.754_877_666_246_693,
+        0.569_840_290_998_053,
+    ];
+    let mut sizes: Vec<f64> = (1..64)
+        .map(|count| {
+            let mut place = [0.0; 3];
+            for ((at, share), [low, high]) in place.iter_mut().zip(SHARES).zip(region) {
+                *at = low + (high - low) * (f64::from(count) * share).fract();
+            }
+            formula.at(&place).abs()
+        })
+        .filter(|size| size.is_finite())
+        .collect();
+    sizes.sort_by(f64::total_cmp);
+    sizes.get(sizes.len() / 2).copied().unwrap_or(0.0)
 }
 
 fn middle(cell: &[[f64; 2]; 3]) -> [f64; 3] {
@@ -185,6 +204,17 @@ fn power(base: Range, exponent: Range) -> Range {
     UNBOUNDED
 }
 
+/// A sine or cosine whose first crest stands at `crest`.
+fn wave(u: Range, crest: f64, function: fn(f64) -> f64) -> Range {
+    use std::f64::consts::{PI, TAU};
+    let passes = |at: f64| ((u.low - at) / TAU).ceil() * TAU + at <= u.high;
+    let ends = Range::of(function(u.low), function(u.high));
+    Range {
+        low: if passes(crest + PI) { -1.0 } else { ends.low },
+        high: if passes(crest) { 1.0 } else { ends.high },
+    }
+}
+
 fn call(name: &str, ranges: &[Range]) -> Range {
     let Some(u) = ranges.first().copied() else {
         return UNBOUNDED;
@@ -202,7 +232,8 @@ fn call(name: &str, ranges: &[Range]) -> Range {
             .iter()
             .skip(1)
             .fold(u, |a, b| Range::of(a.low.max(b.low), a.high.max(b.high))),
-        "sin" | "cos" => Range::of(-1.0, 1.0),
+        "sin" => wave(u, std::f64::consts::FRAC_PI_2, f64::sin),
+        "cos" => wave(u, 0.0, f64::cos),
         "tan" => {
             let branch = |x: f64| (x / std::f64::consts::PI + 0.5).floor();
             if branch(u.low) == branch(u.high) {

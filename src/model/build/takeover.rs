@@ -106,6 +106,16 @@ pub(crate) fn check_chain<'w>(
         .any(|section| !section.section.problems.is_empty());
 }
 
+/// Mistakes in statements of another section that only the taking over makes: says who takes them over.
+pub(crate) fn mark_taken_over(home: SectionRef<'_>, troubles: &mut [Trouble]) {
+    for trouble in troubles {
+        if (trouble.place.file, trouble.place.section) != home.key() {
+            let what = format!("as `{}` takes it over", home.name());
+            trouble.related.push((home.name_place(), what));
+        }
+    }
+}
+
 /// The statements of a crystal or material, its own and those taken over, sorted by what they do.
 #[derive(Debug, Default)]
 pub(crate) struct Statements<'w> {

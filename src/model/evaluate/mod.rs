@@ -20,6 +20,7 @@ use super::{
 use crate::syntax::{Expression, SectionId, Word};
 use crate::text::Span;
 
+pub(crate) use expression::is_bare;
 pub(crate) use quantity::MOST_BANDS;
 pub(crate) use term::Term;
 pub(crate) use value::is_relative;
@@ -191,7 +192,7 @@ impl<'w> Evaluator<'w> {
         self.fail(TroubleKind::BadValue { what: what.into() }, place)
     }
 
-    /// Notes the use of a name, where it is written in the section that is built.
+    /// Notes the use of a name, where it is written in the section that is built, or means something defined there.
     pub(crate) fn refer(
         &mut self,
         place: Place,
@@ -199,7 +200,8 @@ impl<'w> Evaluator<'w> {
         sort: NameSort,
         definition: Option<Place>,
     ) {
-        if (place.file, place.section) == self.home.key() && self.setting.is_nominal() {
+        let here = |place: Place| (place.file, place.section) == self.home.key();
+        if self.setting.is_nominal() && (here(place) || definition.is_some_and(here)) {
             self.references.push(Reference {
                 place,
                 name: name.to_owned(),

@@ -5,10 +5,11 @@ use crate::model::constants::{CONSTANTS, constant};
 use crate::model::dual::ParameterSort;
 use crate::model::unit::UNITS;
 use crate::model::words::nearest;
-use crate::model::world::LetRef;
+use crate::model::world::{LetRef, lets_of};
 use crate::model::{
     Dimension, Dual, NameSort, Parameter, ParameterId, ParameterKind, Trouble, TroubleKind,
 };
+use crate::syntax::SectionKind;
 use crate::text::Span;
 
 impl<'w> Evaluator<'w> {
@@ -40,14 +41,9 @@ impl<'w> Evaluator<'w> {
             let value = Term::Constant(Dual::constant(constant.value));
             return Some(Typed::new(value, constant.dimension));
         }
-        match (name, context.period) {
-            ("period", Some(period)) => {
-                return Some(Typed::new(
-                    Term::Constant(period.clone()),
-                    Dimension::LENGTH,
-                ));
-            }
-            _ => {}
+        if let Some(period) = context.period.filter(|_| name == "period") {
+            let value = Term::Constant(period.clone());
+            return Some(Typed::new(value, Dimension::LENGTH));
         }
         match self.find_unit(name, context) {
             Some(Some((size, dimension))) => Some(Typed::new(Term::Constant(size), dimension)),
@@ -164,6 +160,8 @@ impl<'w> Evaluator<'w> {
         } else {
             Context::preamble(found.home)
         };
+        // Which of two is meant is not known.
+        self.broken |= self.is_repeated(found);
         let typed = self.value(found.value, None, &context)?;
         let Some(value) = typed.term.value() else {
             return self.bad(found.value_place(), "a `let` names a value, not a formula");
@@ -184,6 +182,18 @@ impl<'w> Evaluator<'w> {
             unit: None,
         });
         Some((value.with_slope(id, 1.0), typed.dimension))
+    }
+
+    fn is_repeated(&self, found: LetRef<'w>) -> bool {
+        let home = found.home;
+        if home.section.kind == SectionKind::Preamble {
+            let file = self.world.file(home.file);
+            return file.is_some_and(|file| file.repeats(SectionKind::Preamble, &found.name.text));
+        }
+        lets_of(home)
+            .filter(|one| one.name.text == found.name.text)
+            .count()
+            > 1
     }
 
     fn circle<T>(&mut self, start: usize, found: LetRef<'w>) -> Option<T> {

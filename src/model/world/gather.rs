@@ -3,7 +3,9 @@
 use std::path::{Path, PathBuf};
 use std::sync::{Arc, OnceLock};
 
-use rustc_hash::FxHashMap;
+use std::collections::hash_map::Entry as Slot;
+
+use rustc_hash::{FxHashMap, FxHashSet};
 
 use super::path::{beside, normalise};
 use super::{FileSource, ReadFailure, TableFile, World, WorldFile};
@@ -92,10 +94,8 @@ impl World {
         for statement in crystals.flat_map(|entry| &entry.section.statements) {
             if let StatementKind::Table { file, .. } = &statement.kind {
                 let target = beside(path, &file.text);
-                if !self.tables.contains_key(&target) {
-                    let table = open_table(source, &target);
-                    self.tables.insert(target, table);
-                }
+                let opened = |path: &PathBuf| open_table(source, path);
+                self.tables.entry(target).or_insert_with_key(opened);
             }
         }
     }
@@ -228,6 +228,7 @@ fn index_file(path: &Path, tree: Arc<Tree>) -> WorldFile {
         materials: FxHashMap::default(),
         crystals: FxHashMap::default(),
         lets: FxHashMap::default(),
+        repeated: FxHashSet::default(),
         scope_hash: 0,
         tree: Arc::clone(&tree),
     };
@@ -240,11 +241,17 @@ fn index_file(path: &Path, tree: Arc<Tree>) -> WorldFile {
 
 fn index_names(file: &mut WorldFile, index: usize, entry: &Entry) {
     let section: &Section = &entry.section;
-    let names = match section.kind {
+    let kind = section.kind;
+    let names = match kind {
         SectionKind::Preamble => {
             for (position, statement) in section.statements.iter().enumerate() {
                 if let StatementKind::Let { name, .. } = &statement.kind {
-                    file.lets.entry(name.text.clone()).or_insert(position);
+                    index_name(
+                        &mut file.lets,
+                        &mut file.repeated,
+                        (kind, &name.text),
+                        position,
+                    );
                 }
             }
             return;
@@ -253,6 +260,22 @@ fn index_names(file: &mut WorldFile, index: usize, entry: &Entry) {
         SectionKind::Crystal => &mut file.crystals,
     };
     if let Some(name) = &section.name {
-        names.entry(name.text.clone()).or_insert(index);
+        index_name(names, &mut file.repeated, (kind, &name.text), index);
+    }
+}
+
+fn index_name(
+    names: &mut FxHashMap<String, usize>,
+    repeated: &mut FxHashSet<(SectionKind, String)>,
+    (kind, name): (SectionKind, &str),
+    index: usize,
+) {
+    match names.entry(name.to_owned()) {
+        Slot::Vacant(slot) => {
+            slot.insert(index);
+        }
+        Slot::Occupied(_) => {
+            repeated.insert((kind, name.to_owned()));
+        }
     }
 }

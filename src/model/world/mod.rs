@@ -14,7 +14,7 @@ mod source;
 use std::path::{Path, PathBuf};
 use std::sync::Arc;
 
-use rustc_hash::FxHashMap;
+use rustc_hash::{FxHashMap, FxHashSet};
 
 use super::{CrystalRef, FileId, Place, Trouble};
 use crate::syntax::{Entry, Section, SectionId, SectionKind, Tree};
@@ -53,6 +53,8 @@ pub struct WorldFile {
     materials: FxHashMap<String, usize>,
     crystals: FxHashMap<String, usize>,
     lets: FxHashMap<String, usize>,
+    /// Names that this file gives more than once, by the kind of section that gives them.
+    repeated: FxHashSet<(SectionKind, String)>,
     scope_hash: u64,
 }
 
@@ -67,6 +69,11 @@ impl WorldFile {
     #[must_use]
     pub fn preamble(&self) -> Option<&Entry> {
         self.tree.entries.first()
+    }
+
+    /// Whether it gives a name more than once: a `let` of the preamble, a material or a crystal.
+    pub(crate) fn repeats(&self, kind: SectionKind, name: &str) -> bool {
+        !self.repeated.is_empty() && self.repeated.contains(&(kind, name.to_owned()))
     }
 
     /// Its sections of one kind, in order.

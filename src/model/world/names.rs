@@ -2,6 +2,7 @@
 //! `like`, then the file's, then that of the files it uses.
 
 use super::{SectionRef, World, WorldFile};
+use crate::model::words::holder_of;
 use crate::model::{CrystalRef, FileId, Place};
 use crate::syntax::{Entry, SectionKind, Statement, StatementKind, Value, Word};
 
@@ -57,8 +58,13 @@ pub(crate) fn lets_of(home: SectionRef<'_>) -> impl Iterator<Item = LetRef<'_>> 
 }
 
 impl World {
-    /// The `let` that a name means.
+    /// The `let` that a name means; one that may not have its name means nothing.
     pub(crate) fn find_let<'w>(&'w self, scope: Scope<'_, 'w>, name: &str) -> Option<LetRef<'w>> {
+        self.find_any_let(scope, name)
+            .filter(|_| holder_of(name).is_none())
+    }
+
+    fn find_any_let<'w>(&'w self, scope: Scope<'_, 'w>, name: &str) -> Option<LetRef<'w>> {
         let nearer = scope
             .chain
             .iter()

@@ -12,8 +12,10 @@ use crate::report::units::{self, BOLTZMANN, ELECTRONVOLT, LIGHT, PLANCK, Trade, 
 use crate::report::{drawing, words};
 use crate::syntax::Statement;
 
-/// Bands and gaps told of.
-const LOWEST: usize = 3;
+/// Gaps told of.
+const GAPS: usize = 3;
+/// Bands told of.
+const BANDS: usize = 2;
 /// Samples of the potential for the drawing.
 const SAMPLES: usize = 88;
 /// Light between these energies (in eV) is told by its wavelength.
@@ -51,6 +53,9 @@ fn told(view: &View<'_>, section: &SectionAnalysis) -> Option<Card> {
     if crystal.title != crystal.name && !crystal.title.is_empty() {
         card.say(crystal.title.clone());
     }
+    if let Some(description) = description(view, crystal.place) {
+        card.say(description);
+    }
     let mut about = vec![show_text::cell(crystal, &trade)];
     if let Some(recoil) = &crystal.recoil {
         let plain = Trade {
@@ -71,6 +76,18 @@ fn told(view: &View<'_>, section: &SectionAnalysis) -> Option<Card> {
     Some(card)
 }
 
+/// The comment above a crystal's heading.
+fn description(view: &View<'_>, heading: Place) -> Option<String> {
+    let tree = view.analysis.tree(heading.file)?;
+    let index = tree
+        .entries
+        .iter()
+        .position(|entry| entry.id == heading.section)?;
+    let text = tree.description(index);
+    let words: Vec<&str> = text.split_whitespace().collect();
+    (!words.is_empty()).then(|| words.join(" "))
+}
+
 fn numbers(
     view: &View<'_>,
     section: &SectionAnalysis,
@@ -80,11 +97,11 @@ fn numbers(
 ) {
     let trade = Trade::of(crystal);
     let temperature = crystal.temperature.as_ref().map(|dual| dual.value);
-    for (index, gap) in solution.gaps.iter().take(LOWEST).enumerate() {
+    for (index, gap) in solution.gaps.iter().take(GAPS).enumerate() {
         let told = gap_told(gap, &trade, temperature);
         card.row([format!("gap {}", index + 1), told]);
     }
-    for (index, band) in solution.bands.iter().take(LOWEST).enumerate() {
+    for (index, band) in solution.bands.iter().take(BANDS).enumerate() {
         let scale = show_text::edge_scale(solution, &trade);
         let bottom = units::tell_in(band.bottom.energy, &scale);
         let top = units::tell_in(band.top.energy, &scale);
@@ -127,7 +144,7 @@ fn gap_told(gap: &Gap, trade: &Trade, temperature: Option<f64>) -> String {
     if let (true, Some(thermal)) = (open, thermal) {
         parts.push(format!(
             "{} kT",
-            units::digits(gap.size.value / thermal, 1e-3)
+            units::digits(gap.size.value / thermal, gap.size.uncertainty / thermal)
         ));
     }
     parts.join(", ")
@@ -323,7 +340,7 @@ pub fn temperature(view: &View<'_>) -> Option<Card> {
         ),
     ]);
     if let Some(solution) = view.solution().filter(|_| thermal > 0.0) {
-        for (index, gap) in solution.gaps.iter().take(LOWEST).enumerate() {
+        for (index, gap) in solution.gaps.iter().take(GAPS).enumerate() {
             let ratio = units::digits(gap.size.value / thermal, gap.size.uncertainty / thermal);
             card.row([format!("gap {}", index + 1), format!("{ratio} kT")]);
         }

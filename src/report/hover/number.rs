@@ -88,11 +88,9 @@ fn describe(view: &View<'_>, parameter: &Parameter, card: &mut Card) {
     let mut values = vec![told];
     values.extend(in_other_units(parameter.value, parameter.dimension, &trade));
     values.dedup();
+    values.extend(in_monolayers(view, parameter).map(|count| format!("{count} ML")));
     if values.len() > 1 || parameter.text != values.concat() {
         card.row(["value".to_owned(), values.join(" = ")]);
-    }
-    if let Some(count) = in_monolayers(view, parameter) {
-        card.row([String::new(), format!("{count} ML")]);
     }
     if let Some(half) = tolerance(view, parameter) {
         let told = trade.tell_exact(half.value, half.dimension);
@@ -238,7 +236,7 @@ fn moved(
     }
     let spread = draw.and_then(|draw| self::slope(sensitivity, draw.id));
     if let Some(spread) = spread.filter(|spread| *spread != 0.0) {
-        let told = trade.tell_exact(three(spread.abs()), Dimension::ENERGY);
+        let told = trade.tell_rough(spread.abs(), Dimension::ENERGY);
         parts.push(format!("±{told} over its tolerance"));
     }
     Some(parts.join(", "))
@@ -270,16 +268,11 @@ fn own_unit(parameter: &Parameter, trade: &Trade) -> Scale {
     }
 }
 
-/// A change of energy with its sign, to three digits.
+/// A change of energy with its sign.
 fn change(value: f64, trade: &Trade) -> String {
-    let told = trade.tell_exact(three(value), Dimension::ENERGY);
+    let told = trade.tell_rough(value, Dimension::ENERGY);
     match value > 0.0 {
         true => format!("+{told}"),
         false => told,
     }
-}
-
-/// Three significant digits: a slope holds near today's value only.
-fn three(value: f64) -> f64 {
-    format!("{value:.2e}").parse().unwrap_or(value)
 }

@@ -28,7 +28,10 @@ pub fn required(view: &View<'_>, statement: &Statement) -> Option<Card> {
         card.row(["is".to_owned(), found.clone()]);
     }
     if let Some(value) = target.value {
-        card.row(["value".to_owned(), trade.tell(value, target.dimension)]);
+        card.row([
+            "value".to_owned(),
+            trade.tell(value, words::target_dimension(target)),
+        ]);
     }
     if let Some(margin) = show_text::margin(target, &trade) {
         card.row(["margin".to_owned(), margin]);

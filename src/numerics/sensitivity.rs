@@ -1,0 +1,225 @@
+//! Exact derivatives of band quantities by every number of every piece.
+//!
+//! At an edge or level dE/dp = −(∂D/∂p)/(∂D/∂E). Where the gap at an edge is narrow both are small, and they are
+//! taken in double-double at the edge in double-double. A narrow band's width is w = 4/|D′| at its middle, and
+//!   dw/dp = −w (∂D′/∂p + D″ dE/dp)/D′,
+//! from the gradient over duals (the difference of two edges would cancel). At a closed gap the two bands'
+//! edges are one doublet: both move with its mean, dE*/dp = −(∂D′/∂p)/D″ where D′ = 0, and the gap opens at the
+//! rate |dgap/dp| = 2 √(b² − q_E q_p)/|q_E| whichever way p moves; q, b are the quadratic form N₁₁² + N₁₂N₂₁ and
+//! its polar form on N = M⁻¹ ∂M (first-order degenerate perturbation theory, see `pair`). That rate is reported, ≥ 0.
+
+use super::cell::{Budget, Cell, Mass, Meter, Ready, SolveError, prepare};
+use super::gradient::{Gradient, PieceSlope, gradient};
+use super::pair::pair;
+use super::scalar::{Dual, Scalar};
+use super::solve::{NARROW_WIDTH, Raw, RawEdge, find};
+use super::uncertainty::is_closed;
+
+/// What to differentiate. Bands from 0.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub enum Quantity {
+    /// The bottom of a band.
+    Bottom(usize),
+    /// The top of a band.
+    Top(usize),
+    /// The gap above a band.
+    Gap(usize),
+    /// The width of a band.
+    Width(usize),
+    /// The level of a band at ka in [0, π].
+    Level(usize, f64),
+}
+
+/// Derivatives of one quantity by the numbers of one [`Piece`](super::Piece); numbers the piece
+/// does not have stay 0.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct PieceSensitivity {
+    /// By the length, samples kept.
+    pub length: f64,
+    /// By the potential at the left and right end (a `Flat` piece: all in the first).
+    pub potential: [f64; 2],
+    /// By the mass's value and slope at the left and right end (a `Flat` piece: all in the first).
+    pub mass: [Mass; 2],
+    /// By a delta's strength.
+    pub strength: f64,
+    /// By each sample.
+    pub samples: Vec<f64>,
+}
+
+impl Default for Mass {
+    fn default() -> Self {
+        Mass {
+            value: 0.0,
+            slope: 0.0,
+        }
+    }
+}
+
+/// A gap below this share of the spacing of bands is differentiated in double-double.
+const NARROW_GAP: f64 = 1e-4;
+
+/// Derivatives of each quantity by the numbers of each piece: `result[quantity][piece]`.
+/// Costs less than three calls of [`solve`](super::solve) on top of the one it makes.
+pub fn sensitivities(
+    cell: &Cell,
+    quantities: &[Quantity],
+    budget: &Budget,
+) -> Result<Vec<Vec<PieceSensitivity>>, SolveError> {
+    let ready = prepare(cell)?;
+    let meter = Meter::new(budget);
+    let band = |q: &Quantity| match *q {
+        Quantity::Bottom(n) => n,
+        Quantity::Top(n) | Quantity::Gap(n) | Quantity::Width(n) => n + 1,
+        Quantity::Level(..) => 0,
+    };
+    let bands = quantities.iter().map(band).max().unwrap_or(0);
+    let raw = find(&ready, bands, &meter)?;
+    quantities
+        .iter()
+        .map(|q| differentiate(&ready, &raw, *q, &meter))
+        .collect()
+}
+
+fn differentiate(
+    ready: &Ready,
+    raw: &Raw,
+    quantity: Quantity,
+    meter: &Meter,
+) -> Result<Vec<PieceSensitivity>, SolveError> {
+    match quantity {
+        Quantity::Bottom(0) => edge_slopes(ready, raw.bottom, false, meter),
+        Quantity::Bottom(n) => gap_edge(ready, raw, n - 1, true, meter),
+        Quantity::Top(n) => gap_edge(ready, raw, n, false, meter),
+        Quantity::Gap(n) => {
+            if is_closed(ready, raw, n) {
+                meter.spend()?;
+                return Ok(pair(ready, raw.gaps[n].lower.energy.round()).rates);
+            }
+            let upper = gap_edge(ready, raw, n, true, meter)?;
+            let lower = gap_edge(ready, raw, n, false, meter)?;
+            Ok(difference(&upper, &lower))
+        }
+        Quantity::Width(n) => {
+            let (middle, _, slope) = raw.inside[n];
+            if 4.0 / slope.abs() < NARROW_WIDTH * ready.kinetic_scale() {
+                meter.spend()?;
+                return Ok(width_slopes(ready, middle.round()));
+            }
+            let top = gap_edge(ready, raw, n, false, meter)?;
+            let bottom = if n == 0 {
+                edge_slopes(ready, raw.bottom, false, meter)?
+            } else {
+                gap_edge(ready, raw, n - 1, true, meter)?
+            };
+            Ok(difference(&top, &bottom))
+        }
+        Quantity::Level(band, ka) => {
+            let energy = super::level::level_energy(ready, band, ka, meter)?;
+            edge_slopes(
+                ready,
+                RawEdge {
+                    energy,
+                    slope: 1.0,
+                    offset: 0.0,
+                    noise: 0.0,
+                },
+                false,
+                meter,
+            )
+        }
+    }
+}
+
+/// An edge of gap `gap`, its upper or lower one.
+fn gap_edge(
+    ready: &Ready,
+    raw: &Raw,
+    gap: usize,
+    upper: bool,
+    meter: &Meter,
+) -> Result<Vec<PieceSensitivity>, SolveError> {
+    let found = &raw.gaps[gap];
+    let size = (found.upper.energy - found.lower.energy).leading();
+    if is_closed(ready, raw, gap) {
+        meter.spend()?;
+        return Ok(pair(ready, found.lower.energy.round()).means);
+    }
+    let edge = if upper { found.upper } else { found.lower };
+    edge_slopes(
+        ready,
+        edge,
+        size < NARROW_GAP * ready.kinetic_scale(),
+        meter,
+    )
+}
+
+/// −∂D/∂p / ∂D/∂E at an edge.
+fn edge_slopes(
+    ready: &Ready,
+    edge: RawEdge,
+    narrow: bool,
+    meter: &Meter,
+) -> Result<Vec<PieceSensitivity>, SolveError> {
+    meter.spend()?;
+    if narrow {
+        let found = gradient(ready, edge.energy);
+        return Ok(ratio(&found, |p| -(p / found.energy_slope).leading()));
+    }
+    let energy = edge.energy.round();
+    let found = gradient(ready, energy);
+    Ok(ratio(&found, |p| -p / found.energy_slope))
+}
+
+/// The width of a narrow band about `middle`.
+pub(crate) fn width_slopes(ready: &Ready, middle: f64) -> Vec<PieceSensitivity> {
+    let found = gradient(ready, Dual::variable(middle));
+    let slope = found.energy_slope;
+    let width = 4.0 / (slope.value.abs() * super::scalar::power_of_two(found.exponent));
+    ratio(&found, |p: Dual<f64>| {
+        let shift = -p.value / slope.value;
+        -width * (p.slope + slope.slope * shift) / slope.value
+    })
+}
+
+/// Applies `quotient` to every derivative of D; the mass's slope enters as E times its value.
+pub(crate) fn ratio<T: Scalar>(
+    found: &Gradient<T>,
+    quotient: impl Fn(T) -> f64,
+) -> Vec<PieceSensitivity> {
+    let mass = |m: T| Mass {
+        value: quotient(m),
+        slope: quotient(m * found.energy),
+    };
+    let piece = |p: &PieceSlope<T>| PieceSensitivity {
+        length: quotient(p.length),
+        potential: p.potential.map(&quotient),
+        mass: p.mass.map(mass),
+        strength: quotient(p.strength),
+        samples: p.samples.iter().map(|s| quotient(*s)).collect(),
+    };
+    found.pieces.iter().map(piece).collect()
+}
+
+/// Entry by entry.
+pub(crate) fn difference(a: &[PieceSensitivity], b: &[PieceSensitivity]) -> Vec<PieceSensitivity> {
+    let mass = |x: Mass, y: Mass| Mass {
+        value: x.value - y.value,
+        slope: x.slope - y.slope,
+    };
+    let piece = |(x, y): (&PieceSensitivity, &PieceSensitivity)| PieceSensitivity {
+        length: x.length - y.length,
+        potential: [
+            x.potential[0] - y.potential[0],
+            x.potential[1] - y.potential[1],
+        ],
+        mass: [mass(x.mass[0], y.mass[0]), mass(x.mass[1], y.mass[1])],
+        strength: x.strength - y.strength,
+        samples: x
+            .samples
+            .iter()
+            .zip(&y.samples)
+            .map(|(p, q)| p - q)
+            .collect(),
+    };
+    a.iter().zip(b).map(piece).collect()
+}
