@@ -58,6 +58,14 @@ async fn of_document(client: &mut Client, method: &str) -> Value {
     reply["result"].clone()
 }
 
+/// Edits as the changes that carry them out: from the last on, as each counts in the text before all of them.
+fn changes(edits: &Value) -> Value {
+    let edits = edits.as_array().unwrap().iter().rev();
+    edits
+        .map(|edit| json!({"range": edit["range"], "text": edit["newText"]}))
+        .collect()
+}
+
 fn everywhere() -> Value {
     json!({"start": {"line": 0, "character": 0}, "end": {"line": 99, "character": 0}})
 }
@@ -144,7 +152,7 @@ async fn a_fix_carries_its_diagnostic_and_mends_it() {
         ),
         (&json!(A), &json!(1))
     );
-    client.change(A, 2, change["edits"].clone()).await;
+    client.change(A, 2, changes(&change["edits"])).await;
     assert!(!rules(&client.findings(A, 2).await).contains(&"unknown-name".to_owned()));
 }
 
@@ -322,10 +330,7 @@ async fn formatting_gives_edits_of_the_lines_that_change() {
     let mut client = opened(TEXT).await;
     let edits = of_document(&mut client, "textDocument/formatting").await;
     assert!(!edits.as_array().unwrap().is_empty());
-    // Applied from the last on, as each counts in the text before.
-    let mut backwards = edits.as_array().unwrap().clone();
-    backwards.reverse();
-    client.change(A, 2, json!(backwards)).await;
+    client.change(A, 2, changes(&edits)).await;
     let again = of_document(&mut client, "textDocument/formatting").await;
     assert_eq!(again, json!([]));
 }

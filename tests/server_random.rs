@@ -146,7 +146,7 @@ async fn session() -> Client {
 #[tokio::test(flavor = "multi_thread")]
 async fn after_any_edits_all_is_as_if_freshly_opened() {
     let mut dice = Dice(20_260_101);
-    for round in 0..12 {
+    for round in 0..80 {
         let mut edited = session().await;
         edited.open(A, 1, START).await;
         let mut model = Model(START.encode_utf16().collect());
