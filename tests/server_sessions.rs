@@ -198,7 +198,10 @@ async fn files_see_unsaved_buffers_that_they_use_and_the_disk_behind_them() {
             json!([replace(line, character, character + 4, "fence")]),
         )
         .await;
-    assert_eq!(rules(&client.findings(&user, 1).await), ["unknown-name", "target-untestable"]);
+    assert_eq!(
+        rules(&client.findings(&user, 1).await),
+        ["unknown-name", "target-untestable"]
+    );
 
     // Closed without saving, the disk counts again.
     client.close(&parts).await;
@@ -215,7 +218,10 @@ async fn files_see_unsaved_buffers_that_they_use_and_the_disk_behind_them() {
             json!({"changes": [{"uri": parts, "type": 2}]}),
         )
         .await;
-    assert_eq!(rules(&client.findings(&user, 1).await), ["unknown-name", "target-untestable"]);
+    assert_eq!(
+        rules(&client.findings(&user, 1).await),
+        ["unknown-name", "target-untestable"]
+    );
 }
 
 #[tokio::test]
