@@ -27,7 +27,7 @@ crystal tern
   require gap 1 >= 20 meV
 ";
 
-const A: &str = "file:///work/a.cren";
+const A: &str = "file:///models/a.cren";
 
 async fn opened(text: &str) -> Client {
     let settings = Settings {

@@ -8,7 +8,7 @@ use crenate::server::Settings;
 use serde_json::{Value, json};
 use server_support::{Client, LONG, able};
 
-const A: &str = "file:///work/a.cren";
+const A: &str = "file:///models/a.cren";
 const PIECES: [&str; 22] = [
     "\n",
     "\r",

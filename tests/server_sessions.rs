@@ -25,7 +25,7 @@ crystal tern_8
   require gap 1 >= 60 meV
 ";
 
-const A: &str = "file:///work/a.cren";
+const A: &str = "file:///models/a.cren";
 
 #[tokio::test]
 async fn findings_follow_the_edits_and_vanish_with_the_document() {
