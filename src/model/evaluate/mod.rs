@@ -165,7 +165,7 @@ impl<'w> Evaluator<'w> {
             home,
             troubles: Vec::new(),
             references: Vec::new(),
-            parameters: Vec::new(),
+            parameters: Vec::with_capacity(32),
             broken: !home.section.problems.is_empty(),
             units: LocalUnits::default(),
             measures: Vec::new(),
@@ -222,7 +222,7 @@ impl<'w> Evaluator<'w> {
     /// The parameters found, each once, sorted by identity.
     pub(crate) fn sorted_parameters(&mut self) -> Vec<Parameter> {
         let mut parameters = std::mem::take(&mut self.parameters);
-        parameters.sort_by_key(|parameter| parameter.id);
+        parameters.sort_unstable_by_key(|parameter| parameter.id);
         parameters.dedup_by_key(|parameter| parameter.id);
         parameters
     }

@@ -140,13 +140,13 @@ impl<'w> Evaluator<'w> {
         lattice: &LatticeSummary,
         context: &Context<'_, 'w>,
     ) -> Option<Vec<f64>> {
-        let known = lattice.kind.map(zone_points).unwrap_or_default();
         if let Some(point) = lattice.kind.and_then(|kind| zone_point(kind, &word.text)) {
             return Some(point);
         }
         if lattice.kind.is_none() && matches!(word.text.as_str(), "centre" | "Γ" | "gamma") {
             return Some(vec![0.0; lattice.dimension]);
         }
+        let known = lattice.kind.map(zone_points).unwrap_or_default();
         let kind = TroubleKind::UnknownName {
             name: word.text.clone(),
             wanted: "zone point",
