@@ -395,3 +395,37 @@ async fn edits_out_of_range_are_clamped() {
     client.change(A, 3, json!([backwards])).await;
     assert!(!rules(&client.findings(A, 3).await).contains(&"unknown-statement".to_owned()));
 }
+
+#[tokio::test]
+async fn a_name_that_another_file_uses_is_not_idle() {
+    let folder = tempfile::tempdir().unwrap();
+    let root = folder.path().canonicalize().unwrap();
+    let text = format!("let spare = 3 nm\n{TERN}");
+    let (shared, user) = (uri(&root.join("shared.cren")), uri(&root.join("user.cren")));
+    std::fs::write(root.join("shared.cren"), &text).unwrap();
+    let mut client = Client::with(able(), &[&root], Settings::default()).await;
+    client.open(&shared, 1, &text).await;
+    assert_eq!(rules(&client.findings(&shared, 1).await), ["unused-name"]);
+    // An unsaved buffer uses it, and no longer does; then a file on the disk does.
+    client.open(&user, 1, "use \"shared.cren\"\n").await;
+    assert_eq!(
+        rules(&client.findings(&shared, 1).await),
+        Vec::<String>::new()
+    );
+    client
+        .change(&user, 2, json!([replace(0, 0, 0, "# ")]))
+        .await;
+    assert_eq!(rules(&client.findings(&shared, 1).await), ["unused-name"]);
+    client.close(&user).await;
+    std::fs::write(root.join("user.cren"), "use \"shared.cren\"\n").unwrap();
+    client
+        .notify(
+            "workspace/didChangeWatchedFiles",
+            json!({"changes": [{"uri": user, "type": 1}]}),
+        )
+        .await;
+    assert_eq!(
+        rules(&client.findings(&shared, 1).await),
+        Vec::<String>::new()
+    );
+}
