@@ -1,1 +1,3 @@
 //! Pure numerics: dimensionless, `f64`, no dependency on the rest of the crate.
+
+pub mod planewaves;
