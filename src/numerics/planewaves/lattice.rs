@@ -109,6 +109,24 @@ pub(super) fn cross(a: [f64; 3], b: [f64; 3]) -> [f64; 3] {
     ]
 }
 
+/// Orthonormal vectors in the span of independent ones (Gram–Schmidt, twice for rounding).
+fn orthonormal(vectors: &[[f64; 3]]) -> [[f64; 3]; 3] {
+    let mut axes = [[0.0; 3]; 3];
+    for (i, vector) in vectors.iter().enumerate() {
+        let mut left = *vector;
+        for _ in 0..2 {
+            for axis in &axes[..i] {
+                let overlap = dot(left, *axis);
+                left = std::array::from_fn(|x| left[x] - overlap * axis[x]);
+            }
+            let length = dot(left, left).sqrt();
+            left = left.map(|x| x / length);
+        }
+        axes[i] = left;
+    }
+    axes
+}
+
 /// A lattice with its reciprocal at hand.
 #[derive(Clone, Copy, Debug)]
 pub(super) struct Frame {
@@ -119,6 +137,8 @@ pub(super) struct Frame {
     pub reciprocal: [[f64; 3]; 3],
     /// Volume of the cell.
     pub volume: f64,
+    /// Orthonormal Cartesian axes of the span of the lattice; zero rows beyond the dimension.
+    pub axes: [[f64; 3]; 3],
 }
 
 impl Frame {
@@ -133,6 +153,7 @@ impl Frame {
             direct,
             reciprocal: lattice.reciprocal(),
             volume: lattice.volume(),
+            axes: orthonormal(&direct[..lattice.dimension]),
         })
     }
 
@@ -140,6 +161,25 @@ impl Frame {
     pub fn wave(&self, k: [f64; 3]) -> [f64; 3] {
         let b = &self.reciprocal;
         std::array::from_fn(|x| k[0] * b[0][x] + k[1] * b[1][x] + k[2] * b[2][x])
+    }
+
+    /// The components of a Cartesian vector on the axes.
+    pub fn on_axes(&self, vector: [f64; 3]) -> [f64; 3] {
+        self.axes.map(|axis| dot(axis, vector))
+    }
+
+    /// Fractions of the bᵢ of a wave vector given on the axes.
+    pub fn from_axes(&self, parts: [f64; 3]) -> [f64; 3] {
+        let wave = std::array::from_fn(|x| (0..3).map(|i| parts[i] * self.axes[i][x]).sum());
+        self.fractions(wave)
+    }
+
+    /// The largest |bᵢ|², a natural unit of energy.
+    pub fn unit(&self) -> f64 {
+        self.reciprocal
+            .iter()
+            .map(|b| dot(*b, *b))
+            .fold(0.0, f64::max)
     }
 
     /// Fractions of the bᵢ of a Cartesian wave vector: k·aᵢ/2π.

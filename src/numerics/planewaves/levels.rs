@@ -120,17 +120,4 @@ impl Levels {
             .map(|i| self.vectors[(i, level)])
             .collect()
     }
-
-    /// dE/dk of one level, Cartesian: 2 Σ |c_G|² (k+G) (Hellmann–Feynman). Meaningless within a degenerate set.
-    pub(super) fn velocity(&self, frame: &super::lattice::Frame, level: usize) -> [f64; 3] {
-        let mut sum = [0.0; 3];
-        for (i, n) in self.waves.iter().enumerate() {
-            let weight = 2.0 * self.vectors[(i, level)].norm_sqr();
-            let wave = frame.wave(add(self.k, real(*n)));
-            for x in 0..3 {
-                sum[x] += weight * wave[x];
-            }
-        }
-        sum
-    }
 }

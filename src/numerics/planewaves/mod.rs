@@ -25,16 +25,22 @@
 
 mod basis;
 mod eigen;
+mod extrema;
 mod lattice;
 mod levels;
+mod mesh;
 mod potential;
+mod settle;
 pub mod shapes;
+mod slopes;
 mod symmetry;
+mod zone;
 
 pub use basis::Waves;
 pub use lattice::Lattice;
 pub use levels::Levels;
 pub use potential::{Budget, Decay, Potential};
+pub use zone::{Accuracy, Band, Extremum, Gap, GapKind, Zone, solve};
 
 /// Why there is no answer.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]

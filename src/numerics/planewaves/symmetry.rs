@@ -261,6 +261,46 @@ fn cramer(rows: &[[i32; 3]], axes: &[usize], det: f64, right: &[f64]) -> [f64; 3
     t
 }
 
+impl Symmetry {
+    /// The operations that keep k up to a reciprocal vector.
+    pub fn little_group(&self, k: [f64; 3]) -> Vec<Rotation> {
+        let keeps = |m: &&Rotation| {
+            let image = rotate_real(m, k);
+            (0..3).all(|i| {
+                let d = image[i] - k[i];
+                (d - d.round()).abs() < 1e-9
+            })
+        };
+        self.operations.iter().filter(keeps).copied().collect()
+    }
+
+    /// The representative of all k that the crystal holds equal: in the first zone, without negative entries where
+    /// there is one, then the largest by its entries in turn.
+    pub fn canonical(&self, frame: &Frame, k: [f64; 3]) -> [f64; 3] {
+        let mut best: Option<[f64; 3]> = None;
+        for m in &self.operations {
+            for image in frame.nearest(rotate_real(m, k)) {
+                if best.is_none_or(|other| precedes(image, other)) {
+                    best = Some(image);
+                }
+            }
+        }
+        // No negative zero.
+        best.unwrap_or(k)
+            .map(|x| if x.abs() < 1e-12 { 0.0 } else { x })
+    }
+}
+
+fn precedes(a: [f64; 3], b: [f64; 3]) -> bool {
+    let positive = |k: [f64; 3]| k.iter().all(|x| *x > -1e-7);
+    if positive(a) != positive(b) {
+        return positive(a);
+    }
+    (0..3)
+        .find(|i| (a[*i] - b[*i]).abs() > 1e-7)
+        .is_some_and(|i| a[i] > b[i])
+}
+
 #[cfg(test)]
 mod tests {
     use super::*;
