@@ -6,7 +6,9 @@
     clippy::print_stdout
 )]
 
-use crenate::numerics::planewaves::{Budget, Decay, Lattice, Potential, Waves};
+use crenate::numerics::planewaves::{
+    Accuracy, Budget, Decay, GapKind, Lattice, Potential, Waves, solve,
+};
 use nalgebra::Complex;
 use serde_json::Value;
 use std::f64::consts::PI;
@@ -130,4 +132,145 @@ fn form_factor_models_agree_with_lapack_at_equal_cut_off() {
     }
     println!("worst of all levels: {:.1e} (2π/a)², {}", worst.0, worst.1);
     assert!(worst.0 < 1e-10);
+}
+
+/// Every level at every point, at tolerances from loose to tight, against the largest reference cut-off.
+#[test]
+fn stated_errors_hold_at_every_tolerance() {
+    let rows = reference(include_str!("reference/epm_levels.json"));
+    let mut used: Vec<(f64, String)> = Vec::new();
+    for (name, row) in rows.as_object().unwrap() {
+        let form = numbers(&row["form"]);
+        let components = zincblende(&form, row["a"].as_f64().unwrap());
+        let waves = Waves::new(
+            &fcc(),
+            Potential {
+                components: &components,
+                decay: RADIUS,
+            },
+        )
+        .unwrap();
+        for tolerance in [1.0, 1e-2, 3e-3, 1e-3, 3e-4, 1e-4, 1e-5] {
+            for (label, levels) in row["cuts"]["80"].as_object().unwrap() {
+                let found = waves
+                    .settled_at(point(label), 8, tolerance, &endless())
+                    .unwrap();
+                for (j, (found, wanted)) in
+                    found.energies.iter().zip(numbers(&levels[1])).enumerate()
+                {
+                    // The reference itself is settled to better than this.
+                    let error = (found.value - wanted).abs() - 5e-7;
+                    used.push((
+                        error / found.error,
+                        format!(
+                            "{name} {label} level {j} to {tolerance:e}: {found:?} for {wanted}"
+                        ),
+                    ));
+                }
+            }
+        }
+    }
+    used.sort_by(|a, b| b.0.total_cmp(&a.0));
+    println!(
+        "share of the stated error used, of {}: median {:.2}",
+        used.len(),
+        used[used.len() / 2].0
+    );
+    for (share, what) in &used[..12] {
+        println!("  {share:.2} {what}");
+    }
+    assert!(used[0].0 <= 1.0);
+}
+
+const RYDBERG: f64 = 13.605693122990;
+
+/// Edges over the zone, coarse and settled, against the levels at Γ with the largest reference cut-off.
+#[test]
+fn form_factor_models_settle_inside_their_stated_errors() {
+    let rows = reference(include_str!("reference/epm_levels.json"));
+    for (name, row) in rows.as_object().unwrap() {
+        let a = row["a"].as_f64().unwrap();
+        let electronvolt = unit(a) * RYDBERG;
+        let form = numbers(&row["form"]);
+        let components = zincblende(&form, a);
+        let potential = Potential {
+            components: &components,
+            decay: RADIUS,
+        };
+        let centre = numbers(&row["cuts"]["80"]["G"][1]);
+        for accuracy in [Accuracy::Coarse, Accuracy::Settled(1e-5)] {
+            let budget = endless();
+            let started = std::time::Instant::now();
+            let zone = solve(&fcc(), potential, 4, accuracy, &budget).unwrap();
+            let seconds = started.elapsed().as_secs_f64();
+            let (bottom, top, gap) = (zone.bands[0].bottom, zone.bands[3].top, zone.gaps[3]);
+            println!(
+                "{name:5}{accuracy:?} gap {:.3}±{:.0e} eV {:?}, direct {:.3} eV at {:?}; {} waves, {} solves, {seconds:.2} s",
+                gap.size.value * electronvolt,
+                gap.size.error * electronvolt,
+                gap.kind,
+                gap.direct.value * electronvolt,
+                gap.direct_k,
+                zone.basis,
+                zone.spent
+            );
+            // The reference itself is settled to about 1e-6 of the unit.
+            for (found, wanted, what) in [
+                (bottom.energy, centre[0], "bottom 1"),
+                (top.energy, centre[3], "top 4"),
+            ] {
+                let error = (found.value - wanted).abs();
+                assert!(
+                    error <= found.error + 1e-6,
+                    "{name} {accuracy:?} {what}: {found:?} for {wanted}"
+                );
+            }
+            assert_eq!(top.k, [0.0; 3], "{name}");
+            assert!(top.mass.is_none() && bottom.mass.is_some());
+            assert!(gap.kind == GapKind::Direct || gap.kind == GapKind::Indirect || name == "Sn");
+        }
+    }
+}
+
+/// At L and X the lowest two levels of aluminium split by about 2|V|; levels by `tests/reference/al_generate.py`, form
+/// factors of Ashcroft, Phil. Mag. 8, 2055 (1963).
+#[test]
+fn aluminium_splits_by_twice_its_components() {
+    let rows = reference(include_str!("reference/al_levels.json"));
+    let u = unit(4.05);
+    let components = move |n: [i32; 3]| {
+        let value = match cubic(n).iter().map(|x| x * x).sum::<i32>() {
+            3 => 0.0179,
+            4 => 0.0562,
+            _ => 0.0,
+        };
+        Complex::new(value / u, 0.0)
+    };
+    let waves = Waves::new(
+        &fcc(),
+        Potential {
+            components: &components,
+            decay: Decay::Finite { radius: 2.0 },
+        },
+    )
+    .unwrap();
+    for (cut, points) in rows.as_object().unwrap() {
+        for (label, levels) in points.as_object().unwrap() {
+            let found = waves
+                .levels_at(point(label), 8, cut.parse().unwrap(), &endless())
+                .unwrap();
+            for (found, wanted) in found.energies.iter().zip(numbers(levels)) {
+                assert!(
+                    (found - wanted).abs() < 1e-12,
+                    "{label} {cut}: {found} for {wanted}"
+                );
+            }
+            let gap = (found.energies[1] - found.energies[0]) * u;
+            match label.as_str() {
+                "L" => assert!((gap - 2.0 * 0.0179).abs() < 0.01, "{gap}"),
+                "X" => assert!((gap - 2.0 * 0.0562).abs() < 0.01, "{gap}"),
+                _ => {}
+            }
+        }
+    }
 }

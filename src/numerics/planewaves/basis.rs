@@ -18,6 +18,8 @@ pub struct Waves<'a> {
     pub(super) mean: f64,
     /// (Σ |V(G)|²)^½ over the components looked at, G ≠ 0: the size of the potential.
     pub(super) swing: f64,
+    /// The components other than V(0), where they end and are few.
+    pub(super) few: Option<Vec<([i32; 3], Complex<f64>)>>,
     table: Mutex<Option<Arc<Table>>>,
 }
 
@@ -33,12 +35,17 @@ pub(super) struct Table {
 }
 
 impl Table {
-    /// V(n) in the shifted gauge; zero outside the box.
-    pub fn get(&self, n: [i32; 3]) -> Complex<f64> {
-        if (0..3).any(|i| n[i].abs() > self.half[i]) {
-            return Complex::new(0.0, 0.0);
+    /// V(n − m) for rows n and columns m, all differences inside the box.
+    pub fn rectangle<T: Scalar>(&self, rows: &[[i32; 3]], columns: &[[i32; 3]]) -> Mat<T> {
+        let places: Vec<isize> = rows.iter().map(|n| self.offset(*n)).collect();
+        let mut matrix = Mat::<T>::zeros(rows.len(), columns.len());
+        for (j, column) in columns.iter().enumerate() {
+            let base = self.centre - self.offset(*column);
+            for (i, place) in places.iter().enumerate() {
+                matrix[(i, j)] = T::from_complex(self.values[(base + place) as usize]);
+            }
         }
-        self.values[(self.centre + self.offset(n)) as usize]
+        matrix
     }
 
     fn offset(&self, n: [i32; 3]) -> isize {
@@ -65,12 +72,24 @@ impl<'a> Waves<'a> {
             .sum::<f64>()
             .sqrt();
         let symmetry = find_symmetry(&frame, &sample);
+        let some: Vec<_> = sample
+            .iter()
+            .copied()
+            .filter(|(n, v)| *n != [0; 3] && v.norm() > 0.0)
+            .collect();
+        let whole = match potential.decay {
+            Decay::Finite { radius } => {
+                radius * radius <= 16.0 * frame.cut_for(few(frame.dimension))
+            }
+            Decay::Bounded(_) => false,
+        };
         Ok(Self {
             mean: (potential.components)([0; 3]).re,
             frame,
             potential,
             symmetry,
             swing,
+            few: (whole && some.len() <= 150).then_some(some),
             table: Mutex::new(None),
         })
     }
@@ -147,21 +166,10 @@ impl<'a> Waves<'a> {
         reach: f64,
     ) -> Result<Mat<T>, Error> {
         let table = self.table(reach, extent(basis))?;
-        let n = basis.len();
-        let places: Vec<isize> = basis.iter().map(|wave| table.offset(*wave)).collect();
-        let mut matrix = Mat::<T>::zeros(n, n);
-        for column in 0..n {
-            let base = table.centre - places[column];
-            let target = matrix.col_mut(column).try_as_col_major_mut();
-            let Some(target) = target else {
-                return Err(Error::NotFinite);
-            };
-            let slice = target.as_slice_mut();
-            for (row, place) in places.iter().enumerate() {
-                slice[row] = T::from_complex(table.values[(base + place) as usize]);
-            }
-            let kinetic = self.frame.square(add(k, real(basis[column])));
-            slice[column] = T::from_complex(Complex::new(kinetic + self.mean, 0.0));
+        let mut matrix = table.rectangle::<T>(basis, basis);
+        for (i, n) in basis.iter().enumerate() {
+            let kinetic = self.frame.square(add(k, real(*n)));
+            matrix[(i, i)] = T::from_complex(Complex::new(kinetic + self.mean, 0.0));
         }
         Ok(matrix)
     }
@@ -184,10 +192,15 @@ fn finite(value: Complex<f64>) -> Result<Complex<f64>, Error> {
     }
 }
 
+/// How many components symmetry is judged by.
+fn few(dimension: usize) -> f64 {
+    [60.0, 400.0, 1200.0][dimension - 1]
+}
+
 /// The components that symmetry is judged by: all within the radius of a finite potential, else the shortest few
 /// hundred. By rising |G|.
 fn sample(frame: &Frame, potential: &Potential) -> Result<Vec<([i32; 3], Complex<f64>)>, Error> {
-    let few = [60.0, 400.0, 1200.0][frame.dimension - 1];
+    let few = few(frame.dimension);
     let cut = match potential.decay {
         Decay::Finite { radius } => {
             if !radius.is_finite() {

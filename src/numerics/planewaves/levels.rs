@@ -2,7 +2,7 @@
 
 use super::basis::Waves;
 use super::eigen::{Scalar, lowest};
-use super::lattice::{add, real};
+use super::iterate::lowest_of_large;
 use super::{Budget, Error};
 use faer::Mat;
 use nalgebra::Complex;
@@ -19,6 +19,11 @@ pub struct Levels {
     /// Coefficients c_G of each level, as columns; no columns where only energies were asked for.
     pub(super) vectors: Mat<Complex<f64>>,
 }
+
+/// Matrices larger than this are solved by iteration.
+const LARGE: usize = 400;
+/// Residuals of the iteration, in the natural unit: squared, they are below rounding.
+pub(super) const RESIDUAL: f64 = 2e-9;
 
 /// A set of plane waves: those with |k+G|² ≤ cut at the k it was made for.
 #[derive(Clone, Debug)]
@@ -96,7 +101,15 @@ impl Waves<'_> {
             });
         }
         let matrix = self.matrix::<T>(&waves, k, basis.reach)?;
-        let pairs = lowest(matrix, bands, vectors)?;
+        let iterated = if waves.len() > LARGE {
+            lowest_of_large(&matrix, bands, RESIDUAL * self.frame.unit())?
+        } else {
+            None
+        };
+        let pairs = match iterated {
+            Some(pairs) => pairs,
+            None => lowest(matrix, bands, vectors)?,
+        };
         let gauge: Vec<Complex<f64>> = waves.iter().map(|n| self.gauge(*n)).collect();
         let vectors = Mat::from_fn(waves.len(), pairs.vectors.ncols(), |i, j| {
             pairs.vectors[(i, j)].to_complex() * gauge[i]

@@ -88,7 +88,8 @@ impl Waves<'_> {
         mesh
     }
 
-    /// The lowest levels at every irreducible point, each at its own basis.
+    /// The lowest levels at every irreducible point, each at its own basis; less what the cut leaves out, where that
+    /// is cheap to know.
     pub(super) fn energies_on(
         &self,
         mesh: &Mesh,
@@ -96,12 +97,21 @@ impl Waves<'_> {
         cut: f64,
         budget: &Budget,
     ) -> Result<Vec<Vec<f64>>, Error> {
+        let known = self.few.is_some();
         mesh.points
             .par_iter()
             .map(|k| {
-                Ok(self
-                    .solve_on(&self.basis(*k, cut), *k, bands, false, budget)?
-                    .energies)
+                let levels = self.solve_on(&self.basis(*k, cut), *k, bands, known, budget)?;
+                if !known {
+                    return Ok(levels.energies);
+                }
+                let mut energies: Vec<f64> = self
+                    .predict(&levels, cut)?
+                    .iter()
+                    .map(|p| p.value)
+                    .collect();
+                energies.sort_by(f64::total_cmp);
+                Ok(energies)
             })
             .collect()
     }

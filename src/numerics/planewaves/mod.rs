@@ -26,6 +26,7 @@
 mod basis;
 mod eigen;
 mod extrema;
+mod iterate;
 mod lattice;
 mod levels;
 mod mesh;
@@ -40,6 +41,7 @@ pub use basis::Waves;
 pub use lattice::Lattice;
 pub use levels::Levels;
 pub use potential::{Budget, Decay, Potential};
+pub use settle::SettledLevels;
 pub use zone::{Accuracy, Band, Extremum, Gap, GapKind, Zone, solve};
 
 /// Why there is no answer.

@@ -2,11 +2,14 @@
 
 use super::basis::Waves;
 use super::extrema::{Kind, Search, Seat, Spot, Target, descent, distance, starts};
+use super::levels::Basis;
 use super::mesh::Mesh;
 use super::settle::Prediction;
 use super::slopes::{Tensor, principal};
 use super::{Budget, Error, Estimate, Lattice, Levels, Potential};
 use rayon::prelude::*;
+use rustc_hash::FxHashMap;
+use std::sync::{Arc, Mutex, OnceLock, PoisonError};
 
 /// How far to go.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -105,8 +108,6 @@ struct Found {
     target: Target,
     /// The target's function (energy, its negative, separation).
     value: Estimate,
-    energies: Vec<f64>,
-    rounding: f64,
     tensor: Option<(Tensor, f64)>,
     basis: usize,
 }
@@ -121,6 +122,52 @@ struct Plan {
     cut: f64,
     /// Settle to this.
     tolerance: Option<f64>,
+    solved: Solved,
+}
+
+/// A point solved at one cut.
+struct Point {
+    basis: Basis,
+    levels: Levels,
+    predictions: Vec<Prediction>,
+}
+
+type Key = ([i64; 3], u64);
+type Slot = Arc<OnceLock<Result<Arc<Point>, Error>>>;
+
+/// Points solved so far: many extrema share one.
+#[derive(Default)]
+struct Solved(Mutex<FxHashMap<Key, Slot>>);
+
+impl Solved {
+    fn at(
+        &self,
+        waves: &Waves,
+        k: [f64; 3],
+        cut: f64,
+        count: usize,
+        budget: &Budget,
+    ) -> Result<Arc<Point>, Error> {
+        let key = (k.map(|x| (x * 1e11).round() as i64), cut.to_bits());
+        let slot = Arc::clone(
+            self.0
+                .lock()
+                .unwrap_or_else(PoisonError::into_inner)
+                .entry(key)
+                .or_default(),
+        );
+        slot.get_or_init(|| {
+            let basis = waves.basis(k, cut);
+            let levels = waves.solve_on(&basis, k, count, true, budget)?;
+            let predictions = waves.predict(&levels, cut)?;
+            Ok(Arc::new(Point {
+                basis,
+                levels,
+                predictions,
+            }))
+        })
+        .clone()
+    }
 }
 
 /// Second derivatives are taken on bases up to this size.
@@ -164,18 +211,15 @@ impl Waves<'_> {
             cut
         };
         let many = self.operations() >= 8;
-        let most = match (d, tolerance.is_some()) {
-            (1, _) => 48,
-            (2, true) => 24,
-            (2, false) => 12,
-            (_, true) => 12,
-            (_, false) => {
-                if many {
-                    12
-                } else {
-                    6
-                }
-            }
+        // Bands that need a large basis are narrow ones, which a coarse mesh resolves.
+        let size = self.frame.expected(cut);
+        let most = match d {
+            1 => 48,
+            2 if tolerance.is_none() || size > 200.0 => 12,
+            2 => 24,
+            _ if size > 300.0 => 4,
+            _ if size > 170.0 || (tolerance.is_none() && !many) => 8,
+            _ => 12,
         };
         Ok(Plan {
             bands,
@@ -183,6 +227,7 @@ impl Waves<'_> {
             mesh: self.mesh(most),
             cut,
             tolerance,
+            solved: Solved::default(),
         })
     }
 
@@ -195,24 +240,36 @@ impl Waves<'_> {
         by_count.max(free + 2.0 * self.swing)
     }
 
-    /// The cut at which the zone is searched: what is left out is small beside the bands' structure, or the basis is
-    /// no longer small.
+    /// The cut at which the zone is searched: what is left out is small beside the narrowest band, or the basis is no
+    /// longer small.
     fn search_cut(&self, bands: usize, first: f64, budget: &Budget) -> Result<f64, Error> {
+        let d = self.frame.dimension;
+        let probes =
+            [[0.0; 3], [0.5, 0.0, 0.0], [0.5; 3], [0.25, 0.125, 0.375]].map(|k| self.inside(k));
+        // Predictions are better than the levels themselves by about ten; they are used where they are cheap.
+        let fair = if self.few.is_some() { 0.1 } else { 0.02 };
+        let largest = [120.0_f64, 300.0, 420.0][d - 1]
+            .max(2.5 * bands as f64)
+            .min(budget.max_basis as f64 / 1.3);
         let mut cut = first;
-        let wanted = 1e-3 * self.frame.unit();
-        for _ in 0..12 {
-            let k = self.inside([0.5, 0.25, 0.125]);
-            let levels = self.solve_on(&self.basis(k, cut), k, bands + 1, true, budget)?;
-            let worst = self
-                .predict(&levels, cut)?
-                .iter()
-                .map(|p| p.left_out)
-                .fold(0.0, f64::max);
-            let larger = self.frame.cut_for(1.5 * self.frame.expected(cut));
-            let largest = 160.0_f64
-                .max(2.5 * bands as f64)
-                .min(budget.max_basis as f64 / 1.3);
-            if worst <= wanted || self.frame.expected(larger) > largest {
+        for _ in 0..16 {
+            let mut levels: Vec<Vec<Prediction>> = Vec::new();
+            for k in probes {
+                let solved = self.solve_on(&self.basis(k, cut), k, bands + 1, true, budget)?;
+                levels.push(self.predict(&solved, cut)?);
+            }
+            let good = (0..=bands).all(|band| {
+                let at = |f: &dyn Fn(&Prediction) -> f64| -> Vec<f64> {
+                    levels.iter().filter_map(|l| l.get(band)).map(f).collect()
+                };
+                let (values, left_out) = (at(&|p| p.value), at(&|p| p.left_out));
+                let high = values.iter().copied().fold(f64::NEG_INFINITY, f64::max);
+                let low = values.iter().copied().fold(f64::INFINITY, f64::min);
+                let worst = left_out.iter().copied().fold(0.0, f64::max);
+                worst <= (fair * (high - low)).min(1e-3 * self.frame.unit())
+            });
+            let larger = self.frame.cut_for(1.4 * self.frame.expected(cut));
+            if good || self.frame.expected(larger) > largest {
                 break;
             }
             cut = larger;
@@ -309,16 +366,21 @@ impl Waves<'_> {
         budget: &Budget,
     ) -> Result<Found, Error> {
         let mut spot = spot;
-        let mut lower: Option<Vec<Prediction>> = None;
+        spot.k = self.symmetry.canonical(&self.frame, self.tidy(spot.k));
+        let mut lower: Option<Arc<Point>> = None;
         let mut count = self.frame.expected(plan.cut);
         let mut cut = plan.cut;
         let mut tensors: Vec<Tensor> = Vec::new();
         loop {
-            let basis = self.basis(spot.k, cut);
-            let levels = self.solve_on(&basis, spot.k, plan.count, true, budget)?;
-            let predictions = self.predict(&levels, cut)?;
-            let polished = self.polish(target, &mut spot, &basis, &levels, &mut tensors, budget)?;
-            let mut value = self.judge(target, &levels, &predictions, lower.as_deref());
+            let point = plan.solved.at(self, spot.k, cut, plan.count, budget)?;
+            let (levels, predictions) = (&point.levels, &point.predictions);
+            let polished = self.polish(target, &mut spot, &point, &mut tensors, budget)?;
+            let mut value = self.judge(
+                target,
+                levels,
+                predictions,
+                lower.as_ref().map(|l| l.predictions.as_slice()),
+            );
             value.value -= polished;
             value.error += 0.5 * polished;
             if let Seat::Creased(rise) = spot.seat {
@@ -335,21 +397,18 @@ impl Waves<'_> {
             if !room
                 || (enough && masses)
                 || (plan.tolerance.is_none() && lower.is_some())
-                || lower_is_rounding(&predictions, plan, masses)
+                || lower_is_rounding(predictions, plan, masses)
             {
-                let rounding = predictions.first().map_or(0.0, |p| p.rounding);
                 let tensor = self.mass_of(&tensors, &levels, target, &value);
                 return Ok(Found {
                     spot,
                     target,
                     value,
-                    rounding,
                     tensor,
                     basis: levels.waves.len(),
-                    energies: levels.energies,
                 });
             }
-            lower = Some(predictions);
+            lower = Some(Arc::clone(&point));
             (cut, count) = (next, self.frame.expected(next));
         }
     }
@@ -359,12 +418,12 @@ impl Waves<'_> {
         &self,
         target: Target,
         spot: &mut Spot,
-        basis: &super::levels::Basis,
-        levels: &Levels,
+        point: &Point,
         tensors: &mut Vec<Tensor>,
         budget: &Budget,
     ) -> Result<f64, Error> {
         let unit = self.frame.unit();
+        let levels = &point.levels;
         if !target.simple(&levels.energies, 1e-5 * unit)
             || target.kind == Kind::Separation && spot.seat != Seat::Smooth
         {
@@ -374,7 +433,7 @@ impl Waves<'_> {
             let search = Search {
                 waves: self,
                 target,
-                basis: basis.clone(),
+                basis: point.basis.clone(),
                 count: levels.energies.len(),
                 spacing: [0.0; 3],
                 budget,
