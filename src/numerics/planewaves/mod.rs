@@ -26,22 +26,30 @@
 mod basis;
 mod eigen;
 mod extrema;
+mod hopping;
 mod iterate;
 mod lattice;
 mod levels;
 mod mesh;
+mod path;
 mod potential;
+mod response;
+mod samples;
 mod settle;
 pub mod shapes;
 mod slopes;
+mod states;
 mod symmetry;
 mod zone;
 
 pub use basis::Waves;
 pub use lattice::Lattice;
 pub use levels::Levels;
+pub use path::{PathPoint, path};
 pub use potential::{Budget, Decay, Potential};
+pub use samples::Samples;
 pub use settle::SettledLevels;
+pub use states::{Fermi, States};
 pub use zone::{Accuracy, Band, Extremum, Gap, GapKind, Zone, solve};
 
 /// Why there is no answer.

@@ -35,6 +35,14 @@ pub(super) struct Prediction {
 }
 
 impl Prediction {
+    /// The estimate without another cut to judge by: half of δ, or more where the cut is low.
+    pub fn unjudged(&self) -> Estimate {
+        Estimate {
+            value: self.value,
+            error: self.share.max(0.5) * self.left_out + self.rounding,
+        }
+    }
+
     /// The estimate, judged by the prediction at a lower cut; by δ itself where there is none.
     pub fn judged_by(&self, lower: Option<&Prediction>) -> Estimate {
         let share = match lower {
