@@ -325,6 +325,87 @@ fn gaussian_wells_settle_inside_their_stated_errors() {
     }
 }
 
+/// Lattices without symmetry: no point of a fine grid lies outside the edges found, and the edges are levels.
+#[test]
+fn no_point_of_a_fine_grid_beats_the_edges() {
+    let lattice = Lattice::new(&[[1.0, 0.0, 0.0], [0.37, 0.92, 0.0]]).unwrap();
+    for (first, second, place) in [
+        (-25.0, -14.0, [0.31, 0.17]),
+        (-60.0, 35.0, [0.45, 0.3]),
+        (-8.0, -8.0, [0.2, 0.6]),
+    ] {
+        let b = lattice.reciprocal();
+        let components = |n: [i32; 3]| {
+            let g: [f64; 3] =
+                std::array::from_fn(|x| (0..3).map(|i| f64::from(n[i]) * b[i][x]).sum());
+            let size = g.iter().map(|x| x * x).sum::<f64>().sqrt();
+            let volume = lattice.volume();
+            shapes::at(g, [place[0], place[1], 0.0])
+                * first
+                * shapes::gaussian(size, 0.14, 2, volume)
+                + Complex::new(second * shapes::gaussian(size, 0.19, 2, volume), 0.0)
+        };
+        let bound = |g: f64| (-0.5 * (0.14 * g).powi(2)).exp();
+        let potential = Potential {
+            components: &components,
+            decay: Decay::Bounded(&bound),
+        };
+        let waves = Waves::new(&lattice, potential).unwrap();
+        assert_eq!(waves.operations(), 2);
+        let zone = waves.zone(4, Accuracy::Settled(1e-6), &endless()).unwrap();
+        assert!(zone.settled);
+        let mut grid = Vec::new();
+        for i in 0..40 {
+            for j in 0..=20 {
+                let k = [
+                    f64::from(i) / 40.0 + 0.003,
+                    f64::from(j) / 40.0 + 0.002,
+                    0.0,
+                ];
+                grid.push(waves.levels_at(k, 5, 900.0, &endless()).unwrap().energies);
+            }
+        }
+        for band in 0..4 {
+            let best =
+                |f: &dyn Fn(&[f64]) -> f64| grid.iter().map(|e| f(e)).fold(f64::INFINITY, f64::min);
+            let (low, high, apart) = (
+                best(&|e| e[band]),
+                -best(&|e| -e[band]),
+                best(&|e| e[band + 1] - e[band]),
+            );
+            let (found, gap) = (zone.bands[band], zone.gaps[band]);
+            // The grid's levels are high by what their cut leaves out, below 1e-6.
+            assert!(
+                found.bottom.energy.value <= low + 1e-6,
+                "bottom {band}: {found:?} {low}"
+            );
+            assert!(
+                found.top.energy.value >= high - 2e-6,
+                "top {band}: {found:?} {high}"
+            );
+            assert!(
+                gap.direct.value <= apart + 2e-6,
+                "direct {band}: {gap:?} {apart}"
+            );
+            // Nor is the answer far beyond the grid: levels rise by at most 2|k+G| of about 20 over half a step of 0.08.
+            assert!(
+                found.bottom.energy.value > low - 0.8 && found.top.energy.value < high + 0.8,
+                "{band}: {low} {high} {found:?}"
+            );
+            for extremum in [found.bottom, found.top] {
+                let there = waves
+                    .settled_at(extremum.k, 5, 1e-7, &endless())
+                    .unwrap()
+                    .energies[band];
+                assert!(
+                    (there.value - extremum.energy.value).abs()
+                        <= extremum.energy.error + there.error + 1e-9
+                );
+            }
+        }
+    }
+}
+
 fn summary(zone: &Zone) -> String {
     zone.bands
         .iter()

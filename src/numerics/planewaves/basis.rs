@@ -78,9 +78,7 @@ impl<'a> Waves<'a> {
             .filter(|(n, v)| *n != [0; 3] && v.norm() > 0.0)
             .collect();
         let whole = match potential.decay {
-            Decay::Finite { radius } => {
-                radius * radius <= 16.0 * frame.cut_for(few(frame.dimension))
-            }
+            Decay::Finite { radius } => radius * radius <= frame.cut_for(few(frame.dimension)),
             Decay::Bounded(_) => false,
         };
         Ok(Self {
@@ -118,10 +116,18 @@ impl<'a> Waves<'a> {
         if let Some(table) = slot.as_ref().filter(|table| table.covers(reach, half)) {
             return Ok(Arc::clone(table));
         }
+        // A margin, for the bases of other k differ a little.
+        let half: [i32; 3] = std::array::from_fn(|i| {
+            if i < self.frame.dimension {
+                half[i] + 2
+            } else {
+                0
+            }
+        });
         let old = slot
             .as_ref()
             .map_or(([0; 3], 0.0), |table| (table.half, table.reach));
-        let half = std::array::from_fn(|i| half[i].max(old.0[i]));
+        let half: [i32; 3] = std::array::from_fn(|i: usize| half[i].max(old.0[i]));
         let table = Arc::new(self.fill(reach.max(old.1), half)?);
         *slot = Some(Arc::clone(&table));
         Ok(table)
@@ -206,7 +212,8 @@ fn sample(frame: &Frame, potential: &Potential) -> Result<Vec<([i32; 3], Complex
             if !radius.is_finite() {
                 return Err(Error::NotFinite);
             }
-            (radius * radius).min(16.0 * frame.cut_for(few))
+            let far = [16.0, 16.0, 4.0][frame.dimension - 1] * frame.cut_for(few);
+            (radius.max(0.0).powi(2)).min(far)
         }
         Decay::Bounded(_) => frame.cut_for(few),
     };

@@ -8,7 +8,8 @@
 //! E(k) is then analytic and periodic.
 
 use super::basis::Waves;
-use super::states::fourier;
+use super::lattice::{dot, real};
+use super::mesh::Mesh;
 use super::{Budget, Error, Estimate};
 
 impl Waves<'_> {
@@ -17,7 +18,13 @@ impl Waves<'_> {
     /// # Errors
     /// `Touching` where the band touches the one above or below at a mesh point; `NotFinite`; `BudgetSpent` where not
     /// even two meshes fit; `Cancelled`.
-    pub fn hopping(&self, band: usize, cells: &[[i32; 3]], tolerance: f64, budget: &Budget) -> Result<Vec<Estimate>, Error> {
+    pub fn hopping(
+        &self,
+        band: usize,
+        cells: &[[i32; 3]],
+        tolerance: f64,
+        budget: &Budget,
+    ) -> Result<Vec<Estimate>, Error> {
         if !(tolerance > 0.0 && tolerance.is_finite()) {
             return Err(Error::NotFinite);
         }
@@ -32,18 +39,28 @@ impl Waves<'_> {
         let mut best: Option<Vec<Estimate>> = None;
         for size in sizes {
             let mesh = self.mesh_of(std::array::from_fn(|i| if i < d { *size } else { 1 }));
-            let (energies, error) = match self.settled_on(&mesh, band + 2, cut, budget) {
+            let (energies, errors) = match self.settled_on(&mesh, band + 2, cut, budget) {
                 Err(Error::BudgetSpent) if best.is_some() => break,
                 other => other?,
             };
+            let error = errors.get(band).copied().unwrap_or(f64::INFINITY);
             self.check_apart(&energies, band, error)?;
-            let own: Vec<f64> = energies.iter().map(|e| e.get(band).copied().unwrap_or(f64::NAN)).collect();
-            let values: Vec<f64> = cells.iter().map(|cell| fourier(&mesh, &own, *cell)).collect();
+            let own: Vec<f64> = energies
+                .iter()
+                .map(|e| e.get(band).copied().unwrap_or(f64::NAN))
+                .collect();
+            let values: Vec<f64> = cells
+                .iter()
+                .map(|cell| fourier(&mesh, &own, *cell))
+                .collect();
             if let Some(last) = &last {
                 let found: Vec<Estimate> = values
                     .iter()
                     .zip(last)
-                    .map(|(fine, coarse)| Estimate { value: *fine, error: (fine - coarse).abs() + error })
+                    .map(|(fine, coarse)| Estimate {
+                        value: *fine,
+                        error: (fine - coarse).abs() + error,
+                    })
                     .collect();
                 let settled = found.iter().all(|e| e.error <= tolerance);
                 best = Some(found);
@@ -57,14 +74,20 @@ impl Waves<'_> {
     }
 
     fn cut_for_hopping(&self, band: usize, tolerance: f64, budget: &Budget) -> Result<f64, Error> {
-        let largest = (budget.max_basis as f64 / 1.3).min(600.0).max(2.5 * (band + 2) as f64);
-        let mut cut = self.first_cut(band + 2);
+        let largest = (budget.max_basis as f64 / 1.3)
+            .min(600.0)
+            .max(2.5 * (band + 2) as f64);
+        let mut cut = self.first_cut(band + 2, f64::INFINITY, budget)?;
         loop {
             let k = self.inside([0.5, 0.25, 0.125]);
             let solved = self.solve_on(&self.basis(k, cut), k, band + 1, true, budget)?;
-            let worst = self.predict(&solved, cut)?.iter().map(|p| p.unjudged().error).fold(0.0, f64::max);
+            let worst = self
+                .predict(&solved, cut)?
+                .iter()
+                .map(|p| p.unjudged().error)
+                .fold(0.0, f64::max);
             let larger = self.frame.cut_for(1.5 * self.frame.expected(cut));
-            if worst <= 0.3 * tolerance || self.frame.expected(larger) > largest {
+            if worst <= 0.1 * tolerance || self.frame.expected(larger) > largest {
                 return Ok(cut);
             }
             cut = larger;
@@ -84,4 +107,15 @@ impl Waves<'_> {
         }
         Ok(())
     }
+}
+
+/// −∫ E(k) cos(2πk·R) over the zone by the mesh, R in cells.
+fn fourier(mesh: &Mesh, energies: &[f64], cell: [i32; 3]) -> f64 {
+    let sum: f64 = (0..mesh.of.len())
+        .map(|place| {
+            let turn = 2.0 * std::f64::consts::PI * dot(mesh.point(place), real(cell));
+            energies[mesh.of[place]] * turn.cos()
+        })
+        .sum();
+    -sum / mesh.of.len() as f64
 }

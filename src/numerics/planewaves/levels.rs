@@ -20,6 +20,8 @@ pub struct Levels {
     pub(super) vectors: Mat<Complex<f64>>,
 }
 
+/// Wave vectors farther out lose the digits of their place in the zone.
+pub(super) const FARTHEST: f64 = 1e6;
 /// Matrices larger than this are solved by iteration.
 const LARGE: usize = 400;
 /// Residuals of the iteration, in the natural unit: squared, they are below rounding.
@@ -52,7 +54,7 @@ impl Waves<'_> {
         cut: f64,
         budget: &Budget,
     ) -> Result<Levels, Error> {
-        if !(k.iter().all(|x| x.is_finite()) && cut.is_finite()) {
+        if !(k.iter().all(|x| x.abs() <= FARTHEST) && cut.is_finite()) {
             return Err(Error::NotFinite);
         }
         let k = self.inside(k);

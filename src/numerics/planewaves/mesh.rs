@@ -88,27 +88,39 @@ impl Waves<'_> {
         mesh
     }
 
-    /// The lowest levels at every irreducible point less what the cut leaves out, and the largest error of any.
+    /// The lowest levels at every irreducible point less what the cut leaves out, and for each band the largest error.
     pub(super) fn settled_on(
         &self,
         mesh: &Mesh,
         bands: usize,
         cut: f64,
         budget: &Budget,
-    ) -> Result<(Vec<Vec<f64>>, f64), Error> {
-        let solved: Vec<(Vec<f64>, f64)> = mesh
+    ) -> Result<(Vec<Vec<f64>>, Vec<f64>), Error> {
+        let solved: Vec<(Vec<f64>, Vec<f64>)> = mesh
             .points
             .par_iter()
             .map(|k| {
                 let levels = self.solve_on(&self.basis(*k, cut), *k, bands, true, budget)?;
-                let known: Vec<_> = self.predict(&levels, cut)?.iter().map(|p| p.unjudged()).collect();
+                let known: Vec<_> = self
+                    .predict(&levels, cut)?
+                    .iter()
+                    .map(|p| p.unjudged())
+                    .collect();
                 let mut energies: Vec<f64> = known.iter().map(|e| e.value).collect();
                 energies.sort_by(f64::total_cmp);
-                Ok((energies, known.iter().map(|e| e.error).fold(0.0, f64::max)))
+                Ok((energies, known.iter().map(|e| e.error).collect()))
             })
             .collect::<Result<_, Error>>()?;
-        let worst = solved.iter().map(|(_, error)| *error).fold(0.0, f64::max);
-        Ok((solved.into_iter().map(|(energies, _)| energies).collect(), worst))
+        let mut worst = vec![0.0_f64; bands];
+        for (_, errors) in &solved {
+            for (worst, error) in worst.iter_mut().zip(errors) {
+                *worst = worst.max(*error);
+            }
+        }
+        Ok((
+            solved.into_iter().map(|(energies, _)| energies).collect(),
+            worst,
+        ))
     }
 
     /// The lowest levels at every irreducible point, each at its own basis; less what the cut leaves out, where that

@@ -24,8 +24,10 @@
 #![allow(clippy::indexing_slicing)]
 
 mod basis;
+mod edges;
 mod eigen;
 mod extrema;
+mod fermi;
 mod hopping;
 mod iterate;
 mod lattice;
@@ -40,16 +42,18 @@ pub mod shapes;
 mod slopes;
 mod states;
 mod symmetry;
+mod tridiagonal;
 mod zone;
 
 pub use basis::Waves;
+pub use fermi::Fermi;
 pub use lattice::Lattice;
 pub use levels::Levels;
 pub use path::{PathPoint, path};
 pub use potential::{Budget, Decay, Potential};
 pub use samples::Samples;
 pub use settle::SettledLevels;
-pub use states::{Fermi, States};
+pub use states::States;
 pub use zone::{Accuracy, Band, Extremum, Gap, GapKind, Zone, solve};
 
 /// Why there is no answer.

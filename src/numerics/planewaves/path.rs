@@ -1,6 +1,7 @@
 //! Bands along a path, for pictures.
 
 use super::basis::Waves;
+use super::levels::FARTHEST;
 use super::{Budget, Error, Lattice, Potential};
 use rayon::prelude::*;
 
@@ -29,18 +30,26 @@ pub fn path(
     budget: &Budget,
 ) -> Result<Vec<PathPoint>, Error> {
     let waves = Waves::new(lattice, potential)?;
-    if points.iter().flatten().any(|x| !x.is_finite()) || per_segment == 0 || bands == 0 {
+    if points.iter().flatten().any(|x| !(x.abs() <= FARTHEST)) || per_segment == 0 || bands == 0 {
         return Err(Error::NotFinite);
     }
     let stops = waves.stops(points, per_segment);
-    let cut = waves.first_cut(bands);
+    let cut = waves.first_cut(bands, 200.0, budget)?;
     stops
         .par_iter()
         .map(|(k, distance)| {
             let levels = waves.solve_on(&waves.basis(*k, cut), *k, bands, true, budget)?;
-            let mut energies: Vec<f64> = waves.predict(&levels, cut)?.iter().map(|p| p.value).collect();
+            let mut energies: Vec<f64> = waves
+                .predict(&levels, cut)?
+                .iter()
+                .map(|p| p.value)
+                .collect();
             energies.sort_by(f64::total_cmp);
-            Ok(PathPoint { k: *k, distance: *distance, energies })
+            Ok(PathPoint {
+                k: *k,
+                distance: *distance,
+                energies,
+            })
         })
         .collect()
 }
@@ -51,7 +60,10 @@ impl Waves<'_> {
         let mut distance = 0.0;
         for (index, end) in points.iter().enumerate() {
             let end = self.inside(*end);
-            let Some(start) = index.checked_sub(1).map(|before| self.inside(points[before])) else {
+            let Some(start) = index
+                .checked_sub(1)
+                .map(|before| self.inside(points[before]))
+            else {
                 stops.push((end, 0.0));
                 continue;
             };
@@ -59,7 +71,10 @@ impl Waves<'_> {
             let length = self.frame.square(way).sqrt();
             for step in 1..=per_segment {
                 let share = step as f64 / per_segment as f64;
-                stops.push((std::array::from_fn(|i| start[i] + share * way[i]), distance + share * length));
+                stops.push((
+                    std::array::from_fn(|i| start[i] + share * way[i]),
+                    distance + share * length,
+                ));
             }
             distance += length;
         }

@@ -33,7 +33,12 @@ impl Levels {
 
     /// S_G averaged over a set of levels, for each G. Empty sets give zero.
     pub fn responses(&self, set: Range<usize>, waves: &[[i32; 3]]) -> Vec<Complex<f64>> {
-        let places: FxHashMap<[i32; 3], usize> = self.waves.iter().enumerate().map(|(i, n)| (*n, i)).collect();
+        let places: FxHashMap<[i32; 3], usize> = self
+            .waves
+            .iter()
+            .enumerate()
+            .map(|(i, n)| (*n, i))
+            .collect();
         let set = set.start..set.end.min(self.vectors.ncols());
         let share = 1.0 / (set.len().max(1) as f64);
         waves
@@ -41,7 +46,9 @@ impl Levels {
             .map(|g| {
                 let mut sum = Complex::new(0.0, 0.0);
                 for (i, n) in self.waves.iter().enumerate() {
-                    let Some(moved) = places.get(&[n[0] + g[0], n[1] + g[1], n[2] + g[2]]) else { continue };
+                    let Some(moved) = places.get(&[n[0] + g[0], n[1] + g[1], n[2] + g[2]]) else {
+                        continue;
+                    };
                     for level in set.clone() {
                         sum += self.vectors[(*moved, level)].conj() * self.vectors[(i, level)];
                     }
@@ -60,7 +67,11 @@ impl Waves<'_> {
         let mut tensor = [[0.0; 3]; 3];
         for (i, n) in levels.waves.iter().enumerate() {
             let q = self.frame.wave(add(levels.k, real(*n)));
-            let weight: f64 = set.clone().map(|level| levels.vectors[(i, level)].norm_sqr()).sum::<f64>() * share;
+            let weight: f64 = set
+                .clone()
+                .map(|level| levels.vectors[(i, level)].norm_sqr())
+                .sum::<f64>()
+                * share;
             for x in 0..3 {
                 for y in 0..3 {
                     tensor[x][y] -= 2.0 * weight * q[x] * q[y];

@@ -28,7 +28,12 @@ impl Samples {
     ///
     /// # Errors
     /// `NotFinite` for a value that is not finite, a dimension other than 1, 2, 3 or a tolerance that is not positive.
-    pub fn new(dimension: usize, value: &(dyn Fn([f64; 3]) -> f64 + Sync), tolerance: f64, points: usize) -> Result<Self, Error> {
+    pub fn new(
+        dimension: usize,
+        value: &(dyn Fn([f64; 3]) -> f64 + Sync),
+        tolerance: f64,
+        points: usize,
+    ) -> Result<Self, Error> {
         if !(1..=3).contains(&dimension) || tolerance.is_nan() || tolerance <= 0.0 {
             return Err(Error::NotFinite);
         }
@@ -40,7 +45,13 @@ impl Samples {
             let folded = difference(dimension, size, &coarse, &double);
             size *= 2;
             if folded <= tolerance || (2 * size).pow(dimension as u32) > points {
-                return Ok(Self { dimension, size, values: double, folded, settled: folded <= tolerance });
+                return Ok(Self {
+                    dimension,
+                    size,
+                    values: double,
+                    folded,
+                    settled: folded <= tolerance,
+                });
             }
             coarse = double;
         }
@@ -49,7 +60,13 @@ impl Samples {
     /// V(n); zero for indices that the grid does not resolve.
     pub fn component(&self, n: [i32; 3]) -> Complex<f64> {
         let half = self.size as i32 / 2;
-        if (0..3).any(|i| if i < self.dimension { n[i].abs() >= half } else { n[i] != 0 }) {
+        if (0..3).any(|i| {
+            if i < self.dimension {
+                n[i].abs() >= half
+            } else {
+                n[i] != 0
+            }
+        }) {
             return Complex::new(0.0, 0.0);
         }
         self.values[place(self.dimension, self.size, n)]
@@ -62,16 +79,26 @@ impl Samples {
 }
 
 fn place(dimension: usize, size: usize, n: [i32; 3]) -> usize {
-    (0..dimension).fold(0, |sum, i| sum * size + n[i].rem_euclid(size as i32) as usize)
+    (0..dimension).fold(0, |sum, i| {
+        sum * size + n[i].rem_euclid(size as i32) as usize
+    })
 }
 
-fn transform(dimension: usize, size: usize, value: &(dyn Fn([f64; 3]) -> f64 + Sync)) -> Result<Vec<Complex<f64>>, Error> {
+fn transform(
+    dimension: usize,
+    size: usize,
+    value: &(dyn Fn([f64; 3]) -> f64 + Sync),
+) -> Result<Vec<Complex<f64>>, Error> {
     let total = size.pow(dimension as u32);
     let scale = 1.0 / total as f64;
     let mut values = Vec::with_capacity(total);
     for index in 0..total {
         let at = std::array::from_fn(|i| {
-            if i < dimension { (index / size.pow((dimension - 1 - i) as u32) % size) as f64 / size as f64 } else { 0.0 }
+            if i < dimension {
+                (index / size.pow((dimension - 1 - i) as u32) % size) as f64 / size as f64
+            } else {
+                0.0
+            }
         });
         let sample = value(at);
         if !sample.is_finite() {
@@ -84,13 +111,20 @@ fn transform(dimension: usize, size: usize, value: &(dyn Fn([f64; 3]) -> f64 + S
     for _ in 0..dimension {
         fft.process(&mut values);
         let rows = total / size;
-        values = (0..total).map(|index| values[index % rows * size + index / rows]).collect();
+        values = (0..total)
+            .map(|index| values[index % rows * size + index / rows])
+            .collect();
     }
     Ok(values)
 }
 
 /// The largest difference of the components that both grids have.
-fn difference(dimension: usize, size: usize, coarse: &[Complex<f64>], double: &[Complex<f64>]) -> f64 {
+fn difference(
+    dimension: usize,
+    size: usize,
+    coarse: &[Complex<f64>],
+    double: &[Complex<f64>],
+) -> f64 {
     let half = size as i32 / 2;
     let mut worst: f64 = 0.0;
     for index in 0..coarse.len() {
@@ -121,10 +155,17 @@ mod tests {
     /// Waves along every axis come back where they belong.
     #[test]
     fn single_waves_keep_their_places() {
-        let wave = |r: [f64; 3]| (2.0 * PI * (r[0] - 2.0 * r[1] + 3.0 * r[2])).cos() + 0.5 * (2.0 * PI * r[1]).sin();
+        let wave = |r: [f64; 3]| {
+            (2.0 * PI * (r[0] - 2.0 * r[1] + 3.0 * r[2])).cos() + 0.5 * (2.0 * PI * r[1]).sin()
+        };
         let samples = Samples::new(3, &wave, 1e-13, 1 << 20).expect("samples");
         assert!(samples.settled);
-        let close = |n: [i32; 3], re: f64, im: f64| assert!((samples.component(n) - Complex::new(re, im)).norm() < 1e-14, "{n:?}");
+        let close = |n: [i32; 3], re: f64, im: f64| {
+            assert!(
+                (samples.component(n) - Complex::new(re, im)).norm() < 1e-14,
+                "{n:?}"
+            )
+        };
         close([1, -2, 3], 0.5, 0.0);
         close([-1, 2, -3], 0.5, 0.0);
         close([0, 1, 0], 0.0, -0.25);
@@ -139,7 +180,9 @@ mod tests {
         let wells = |r: [f64; 3]| {
             (-3..=3)
                 .flat_map(|i| (-3..=3).map(move |j| (f64::from(i), f64::from(j))))
-                .map(|(x, y)| (-((r[0] - x).powi(2) + (r[1] - y).powi(2)) / (2.0 * sigma * sigma)).exp())
+                .map(|(x, y)| {
+                    (-((r[0] - x).powi(2) + (r[1] - y).powi(2)) / (2.0 * sigma * sigma)).exp()
+                })
                 .sum()
         };
         let samples = Samples::new(2, &wells, 1e-13, 1 << 20).expect("samples");
@@ -151,6 +194,9 @@ mod tests {
         let step = |r: [f64; 3]| if r[0] < 0.37 { 1.0 } else { 0.0 };
         let rough = Samples::new(1, &step, 1e-9, 1024).expect("samples");
         assert!(!rough.settled && rough.folded > 1e-6);
-        assert_eq!(Samples::new(1, &|_| f64::NAN, 1e-9, 64).err(), Some(Error::NotFinite));
+        assert_eq!(
+            Samples::new(1, &|_| f64::NAN, 1e-9, 64).err(),
+            Some(Error::NotFinite)
+        );
     }
 }

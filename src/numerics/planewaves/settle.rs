@@ -6,7 +6,7 @@
 //! δ = Σ_{|k+G|² > C} |r_G|² / (|k+G|² + V(0) − E),   r_G = Σ_G' V(G−G') c_G'
 //! ```
 //!
-//! when the waves outside come in. Where V ends at a radius R the sum is finite. Else it is taken up to |k+G|² = αC, and
+//! when the waves outside come in. Where V ends at a near radius R the sum is finite. Else it is taken up to |k+G|² = αC, and
 //! its outermost shell is continued with the weight bound(g)²·g^{d−1}/g², g = |G|. The settled level is E − δ. The error
 //! stated is δ times the share by which such a prediction failed between the last two cuts (three times
 //! that, and never less than a quarter, nor than twice the potential over the energy at the cut), plus rounding. On the
@@ -15,7 +15,7 @@
 use super::basis::{Waves, extent};
 use super::eigen::Scalar;
 use super::lattice::{add, real};
-use super::levels::Basis;
+use super::levels::{Basis, FARTHEST};
 use super::{Budget, Decay, Error, Estimate, Levels};
 use faer::Mat;
 use nalgebra::Complex;
@@ -83,13 +83,13 @@ impl Waves<'_> {
         tolerance: f64,
         budget: &Budget,
     ) -> Result<SettledLevels, Error> {
-        if !(k.iter().all(|x| x.is_finite()) && tolerance > 0.0 && tolerance.is_finite())
+        if !(k.iter().all(|x| x.abs() <= FARTHEST) && tolerance > 0.0 && tolerance.is_finite())
             || bands == 0
         {
             return Err(Error::NotFinite);
         }
         let k = self.inside(k);
-        let mut cut = self.first_cut(bands);
+        let mut cut = self.first_cut(bands, f64::INFINITY, budget)?;
         let mut lower: Option<Vec<Prediction>> = None;
         loop {
             let levels = self.solve_on(&self.basis(k, cut), k, bands, true, budget)?;
@@ -141,9 +141,14 @@ impl Waves<'_> {
 
     /// δ of each level.
     fn left_out(&self, levels: &Levels, cut: f64) -> Result<Vec<f64>, Error> {
-        let shells = match self.potential.decay {
-            Decay::Finite { radius } => (cut.sqrt() + radius).powi(2),
-            Decay::Bounded(_) => cut * [16.0, 6.0, 3.5][self.frame.dimension - 1],
+        let far = cut * [16.0, 6.0, 3.5][self.frame.dimension - 1];
+        let (shells, ends) = match self.potential.decay {
+            Decay::Finite { radius } => {
+                let whole = (cut.sqrt() + radius).powi(2);
+                let ends = self.few.is_some() || whole <= 2.0 * far;
+                (if ends { whole } else { far }, ends)
+            }
+            Decay::Bounded(_) => (far, false),
         };
         let inside = levels.waves.len();
         let all = Basis {
@@ -168,11 +173,14 @@ impl Waves<'_> {
                 }
             }
         }
-        if let Decay::Bounded(bound) = self.potential.decay {
-            let share = tail(bound, self.frame.dimension, shells);
-            for (sum, shell) in sums.iter_mut().zip(shell) {
-                *sum += share * shell;
-            }
+        let beyond = match self.potential.decay {
+            _ if ends => 0.0,
+            Decay::Bounded(bound) => tail(bound, self.frame.dimension, shells),
+            // Components of unknown fall: as much again as in the last octave.
+            Decay::Finite { .. } => 1.0,
+        };
+        for (sum, shell) in sums.iter_mut().zip(shell) {
+            *sum += beyond * shell;
         }
         if sums.iter().all(|x| x.is_finite()) {
             Ok(sums)
