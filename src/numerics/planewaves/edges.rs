@@ -352,6 +352,11 @@ impl Waves<'_> {
         if spot.seat != Seat::Smooth || step.saddle || step.gain < 1e-15 * unit {
             return Ok(0.0);
         }
+        if step.gain > 1e-4 * unit {
+            // Too far for the curvature here to be trusted.
+            spot.seat = Seat::Creased(step.gain.min(unit));
+            return Ok(0.0);
+        }
         let moved = self.frame.from_axes(step.parts);
         spot.k = std::array::from_fn(|i| spot.k[i] + moved[i]);
         Ok(step.gain)
@@ -386,6 +391,13 @@ impl Waves<'_> {
             return Estimate {
                 value: 0.0,
                 error: 4.0 * rounding,
+            };
+        }
+        // Levels do not pass through one another.
+        if target.kind == Kind::Separation && sum.value < 0.0 {
+            sum = Estimate {
+                value: 0.0,
+                error: sum.error.max(-sum.value),
             };
         }
         sum

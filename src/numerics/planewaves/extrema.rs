@@ -164,7 +164,7 @@ impl Search<'_, '_> {
         self.creep(k)
     }
 
-    /// Newton's search; the inner error is where it met a crossing.
+    /// Newton's search; the inner error is where it met a crossing, or did not settle.
     fn newton(&self, start: Levels) -> Result<Result<Spot, [f64; 3]>, Error> {
         let frame = &self.waves.frame;
         let unit = self.unit();
@@ -209,19 +209,16 @@ impl Search<'_, '_> {
                 }
             }
             let Some(next) = better else {
-                return Ok(Ok(spot));
+                // No way down although the slope promises one: a crossing is near.
+                let flat = step.gain <= 1e-9 * unit;
+                return Ok(if flat { Ok(spot) } else { Err(spot.k) });
             };
             if !self.target.simple(&next.energies, APART * unit) {
                 return Ok(Err(next.k));
             }
             levels = next;
         }
-        let value = self.target.value(&levels.energies);
-        Ok(Ok(Spot {
-            k: levels.k,
-            value,
-            seat: Seat::Smooth,
-        }))
+        Ok(Err(levels.k))
     }
 
     /// The search by shrinking patterns.
