@@ -34,6 +34,8 @@ mod sweep;
 mod uncertainty;
 mod wave;
 
+pub mod planewaves;
+
 pub use cell::{Bounded, Budget, Cell, Mass, Piece, SolveError};
 pub use hopping::hopping;
 pub use level::{discriminant, dispersion, fermi, integrated_states, level};

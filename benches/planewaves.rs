@@ -1,0 +1,142 @@
+//! Plane-wave solves: 8 bands at 100 wave vectors of about 150 waves (see `eigh_ratio.py` for the same matrices by
+//! LAPACK), and whole zones.
+#![allow(
+    missing_docs,
+    clippy::unwrap_used,
+    clippy::print_stdout,
+    clippy::indexing_slicing
+)]
+
+use crenate::numerics::planewaves::{
+    Accuracy, Budget, Decay, Lattice, Potential, Waves, shapes, solve,
+};
+use criterion::Criterion;
+use nalgebra::Complex;
+use rayon::prelude::*;
+use std::f64::consts::PI;
+use std::hint::black_box;
+
+fn fcc() -> Lattice {
+    Lattice::new(&[[0.0, PI, PI], [PI, 0.0, PI], [PI, PI, 0.0]]).unwrap()
+}
+
+/// The model of two atoms with these form factors in Ry at 3, 8, 11 and 3, 4, 11, lattice constant in ångström.
+fn zincblende(form: [f64; 6], a: f64) -> impl Fn([i32; 3]) -> Complex<f64> + Sync {
+    let unit = (2.0 * PI / (a / 0.529177210544)).powi(2);
+    move |n| {
+        let g = [-n[0] + n[1] + n[2], n[0] - n[1] + n[2], n[0] + n[1] - n[2]];
+        let (s, v) = match g.iter().map(|x| x * x).sum::<i32>() {
+            3 => (form[0], form[3]),
+            4 => (0.0, form[4]),
+            8 => (form[1], 0.0),
+            11 => (form[2], form[5]),
+            _ => (0.0, 0.0),
+        };
+        let turn = PI / 4.0 * f64::from(g.iter().sum::<i32>());
+        Complex::new(s * turn.cos(), -v * turn.sin()) / unit
+    }
+}
+
+const SILICON: ([f64; 6], f64) = ([-0.21, 0.04, 0.08, 0.0, 0.0, 0.0], 5.43);
+const GALLIUM_ARSENIDE: ([f64; 6], f64) = ([-0.23, 0.01, 0.06, 0.07, 0.05, 0.01], 5.64);
+
+/// A hundred wave vectors spread over the zone; the same formula is in `eigh_ratio.py`.
+fn hundred() -> Vec<[f64; 3]> {
+    (0..100)
+        .map(|i| {
+            [0.618033988, 0.754877666, 0.569840291]
+                .map(|x: f64| (x * f64::from(i + 1)).fract() - 0.5)
+        })
+        .collect()
+}
+
+fn zone(
+    bench: &mut Criterion,
+    name: &str,
+    lattice: &Lattice,
+    potential: Potential,
+    accuracy: Accuracy,
+) {
+    bench.bench_function(name, |b| {
+        b.iter(|| {
+            let budget = Budget::new(&|| false, 3000, 1_000_000);
+            black_box(solve(lattice, potential, 4, accuracy, &budget).unwrap())
+        })
+    });
+}
+
+fn main() {
+    let mut bench = Criterion::default().sample_size(10).configure_from_args();
+    for (name, (form, a)) in [("real", SILICON), ("complex", GALLIUM_ARSENIDE)] {
+        let components = zincblende(form, a);
+        let potential = Potential {
+            components: &components,
+            decay: Decay::Finite {
+                radius: 3.3166247903554,
+            },
+        };
+        let waves = Waves::new(&fcc(), potential).unwrap();
+        let points = hundred();
+        let run = || {
+            let budget = Budget::new(&|| false, 3000, 1_000_000);
+            points
+                .par_iter()
+                .map(|k| waves.levels_at(*k, 8, 27.3, &budget).unwrap().energies[7])
+                .sum::<f64>()
+        };
+        let budget = Budget::new(&|| false, 3000, 1_000_000);
+        let sizes: usize = points
+            .iter()
+            .map(|k| waves.levels_at(*k, 8, 27.3, &budget).unwrap().waves.len())
+            .sum();
+        println!(
+            "{name}: {} waves on average, sum of eighth levels {}",
+            sizes as f64 / 100.0,
+            run()
+        );
+        bench.bench_function(&format!("8 bands at 100 k, {name}"), |b| {
+            b.iter(|| black_box(run()))
+        });
+        zone(
+            &mut bench,
+            &format!("zone 3D coarse, {name}"),
+            &fcc(),
+            potential,
+            Accuracy::Coarse,
+        );
+        zone(
+            &mut bench,
+            &format!("zone 3D settled to 1e-5, {name}"),
+            &fcc(),
+            potential,
+            Accuracy::Settled(1e-5),
+        );
+    }
+    let square = Lattice::new(&[[1.0, 0.0, 0.0], [0.0, 1.0, 0.0]]).unwrap();
+    let wells = |n: [i32; 3]| {
+        let g = 2.0 * PI * f64::from(n[0] * n[0] + n[1] * n[1]).sqrt();
+        Complex::new(-60.0 * shapes::gaussian(g, 0.15, 2, 1.0), 0.0)
+            * Complex::cis(-0.7 * f64::from(n[0] + 2 * n[1]))
+            - 20.0 * shapes::gaussian(g, 0.1, 2, 1.0)
+    };
+    let bound = |g: f64| (-0.5 * (0.1 * g).powi(2)).exp();
+    let potential = Potential {
+        components: &wells,
+        decay: Decay::Bounded(&bound),
+    };
+    zone(
+        &mut bench,
+        "zone 2D coarse, two wells",
+        &square,
+        potential,
+        Accuracy::Coarse,
+    );
+    zone(
+        &mut bench,
+        "zone 2D settled to 1e-6, two wells",
+        &square,
+        potential,
+        Accuracy::Settled(1e-6),
+    );
+    bench.final_summary();
+}

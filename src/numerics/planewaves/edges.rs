@@ -1,0 +1,457 @@
+//! Search and settling of single extrema: cut-offs, meshes, and the levels that extrema share.
+//!
+//! An extremum is searched for at one cut on the whole mesh; then the cut is raised at that extremum alone. A smooth one
+//! moves with the cut: its remaining fall, ½ g·|H|⁻¹·g with the slope g and curvature H, is taken off, and half of it
+//! counts as error. One on a crease carries the rise of its last pattern as error.
+
+use super::basis::Waves;
+use super::extrema::{Kind, Search, Seat, Spot, Target, descent, distance, starts};
+use super::levels::Basis;
+use super::mesh::Mesh;
+use super::settle::Prediction;
+use super::slopes::Tensor;
+use super::{Budget, Error, Estimate, Levels};
+use rustc_hash::FxHashMap;
+use std::sync::{Arc, Mutex, OnceLock, PoisonError};
+
+/// An extremum with its levels at the last cut.
+pub(super) struct Found {
+    pub spot: Spot,
+    pub target: Target,
+    /// The target's function (energy, its negative, separation).
+    pub value: Estimate,
+    pub tensor: Option<(Tensor, f64)>,
+    pub basis: usize,
+}
+
+/// The cut-offs to go through.
+pub(super) struct Plan {
+    pub bands: usize,
+    /// Levels to solve for.
+    pub count: usize,
+    pub mesh: Mesh,
+    /// The cut of the search.
+    pub cut: f64,
+    /// Settle to this.
+    pub tolerance: Option<f64>,
+    solved: Solved,
+}
+
+/// A point solved at one cut.
+struct Point {
+    pub basis: Basis,
+    pub levels: Levels,
+    pub predictions: Vec<Prediction>,
+}
+
+type Key = ([i64; 3], u64);
+type Slot = Arc<OnceLock<Result<Arc<Point>, Error>>>;
+
+/// Points solved so far: many extrema share one.
+#[derive(Default)]
+struct Solved(Mutex<FxHashMap<Key, Slot>>);
+
+impl Solved {
+    fn at(
+        &self,
+        waves: &Waves,
+        k: [f64; 3],
+        cut: f64,
+        count: usize,
+        budget: &Budget,
+    ) -> Result<Arc<Point>, Error> {
+        let key = (k.map(|x| (x * 1e11).round() as i64), cut.to_bits());
+        let slot = Arc::clone(
+            self.0
+                .lock()
+                .unwrap_or_else(PoisonError::into_inner)
+                .entry(key)
+                .or_default(),
+        );
+        slot.get_or_init(|| {
+            let basis = waves.basis(k, cut);
+            let levels = waves.solve_on(&basis, k, count, true, budget)?;
+            let predictions = waves.predict(&levels, cut)?;
+            Ok(Arc::new(Point {
+                basis,
+                levels,
+                predictions,
+            }))
+        })
+        .clone()
+    }
+}
+
+/// Second derivatives are taken on bases up to this size.
+const LARGEST_FOR_MASSES: usize = 450;
+
+impl Waves<'_> {
+    /// The first cut and mesh.
+    pub(super) fn plan(
+        &self,
+        bands: usize,
+        tolerance: Option<f64>,
+        budget: &Budget,
+    ) -> Result<Plan, Error> {
+        let d = self.frame.dimension;
+        let quick = [80.0, 130.0, 180.0][d - 1];
+        let cut = if tolerance.is_some() {
+            let first = self.first_cut(bands, f64::INFINITY, budget)?;
+            self.search_cut(bands, first, budget)?
+        } else {
+            self.first_cut(bands, quick, budget)?
+        };
+        let many = self.operations() >= 8;
+        // Bands that need a large basis are narrow ones, which a coarse mesh resolves.
+        let size = self.frame.expected(cut);
+        let most = match d {
+            1 => 48,
+            2 if tolerance.is_none() || size > 200.0 => 12,
+            2 => 24,
+            _ if size > 300.0 => 4,
+            _ if size > 170.0 || (tolerance.is_none() && !many) => 8,
+            _ => 12,
+        };
+        Ok(Plan {
+            bands,
+            count: bands + 3,
+            mesh: self.mesh(most),
+            cut,
+            tolerance,
+            solved: Solved::default(),
+        })
+    }
+
+    /// A cut with room above the wanted bands: enough waves, and kinetic energies above the potential's size; less of
+    /// the latter where it would take more than `most` waves.
+    pub(super) fn first_cut(&self, bands: usize, most: f64, budget: &Budget) -> Result<f64, Error> {
+        let d = self.frame.dimension;
+        let waves = 2.0 * (bands + 3) as f64 + [8.0, 16.0, 30.0][d - 1];
+        let largest = budget.max_basis as f64 / 1.3;
+        if waves > largest {
+            return Err(Error::BudgetSpent);
+        }
+        let free = self.frame.cut_for((bands + 3) as f64);
+        let wanted = self.frame.expected(free + 2.0 * self.swing).max(waves);
+        Ok(self
+            .frame
+            .cut_for(wanted.min(most.max(1.5 * waves)).min(largest)))
+    }
+
+    /// The cut at which the zone is searched: what is left out is small beside the narrowest band, or the basis is no
+    /// longer small.
+    fn search_cut(&self, bands: usize, first: f64, budget: &Budget) -> Result<f64, Error> {
+        let d = self.frame.dimension;
+        let probes =
+            [[0.0; 3], [0.5, 0.0, 0.0], [0.5; 3], [0.25, 0.125, 0.375]].map(|k| self.inside(k));
+        // Predictions are better than the levels themselves by about ten; they are used where they are cheap.
+        let fair = if self.few.is_some() { 0.1 } else { 0.02 };
+        let largest = [120.0_f64, 300.0, 420.0][d - 1]
+            .max(2.5 * bands as f64)
+            .min(budget.max_basis as f64 / 1.3);
+        let mut cut = first;
+        for _ in 0..16 {
+            let mut levels: Vec<Vec<Prediction>> = Vec::new();
+            for k in probes {
+                let solved = self.solve_on(&self.basis(k, cut), k, bands + 1, true, budget)?;
+                levels.push(self.predict(&solved, cut)?);
+            }
+            let good = (0..=bands).all(|band| {
+                let at = |f: &dyn Fn(&Prediction) -> f64| -> Vec<f64> {
+                    levels.iter().filter_map(|l| l.get(band)).map(f).collect()
+                };
+                let (values, left_out) = (at(&|p| p.value), at(&|p| p.left_out));
+                let high = values.iter().copied().fold(f64::NEG_INFINITY, f64::max);
+                let low = values.iter().copied().fold(f64::INFINITY, f64::min);
+                let worst = left_out.iter().copied().fold(0.0, f64::max);
+                worst <= (fair * (high - low)).min(1e-3 * self.frame.unit())
+            });
+            let larger = self.frame.cut_for(1.4 * self.frame.expected(cut));
+            if good || self.frame.expected(larger) > largest {
+                break;
+            }
+            cut = larger;
+        }
+        Ok(cut)
+    }
+
+    /// Searches for one extremum and settles it.
+    pub(super) fn extremum(
+        &self,
+        target: Target,
+        plan: &Plan,
+        energies: &[Vec<f64>],
+        budget: &Budget,
+    ) -> Result<Found, Error> {
+        let unit = self.frame.unit();
+        let spots = self.spots(target, plan, energies, budget)?;
+        let mut best: Option<Found> = None;
+        for spot in spots {
+            // One that is worse by more than both their errors at this cut need not be settled.
+            let found = self.settle(target, spot, plan, budget)?;
+            let better = best
+                .as_ref()
+                .is_none_or(|other| found.value.value < other.value.value - 1e-12 * unit);
+            if better {
+                best = Some(found);
+            }
+        }
+        best.ok_or(Error::NotFinite)
+    }
+
+    /// The extrema found at the search cut that may be the least, best first.
+    fn spots(
+        &self,
+        target: Target,
+        plan: &Plan,
+        energies: &[Vec<f64>],
+        budget: &Budget,
+    ) -> Result<Vec<Spot>, Error> {
+        let unit = self.frame.unit();
+        let spacing = std::array::from_fn(|i| {
+            if i < self.frame.dimension {
+                1.0 / plan.mesh.size[i] as f64
+            } else {
+                0.0
+            }
+        });
+        let mut spots: Vec<Spot> = Vec::new();
+        let most = if plan.tolerance.is_some() { 6 } else { 3 };
+        for (point, _, floor) in starts(&plan.mesh, energies, target, 1e-11 * unit)
+            .into_iter()
+            .take(most)
+        {
+            let best = spots
+                .iter()
+                .map(|spot| spot.value)
+                .fold(f64::INFINITY, f64::min);
+            if floor > best + 1e-3 * unit {
+                continue;
+            }
+            let start = plan.mesh.points[point];
+            let search = Search {
+                waves: self,
+                target,
+                basis: self.basis(start, plan.cut),
+                count: plan.count,
+                spacing,
+                budget,
+            };
+            let spot = search.run(start)?;
+            // Plateaus and symmetric copies lead to one another's value.
+            if !spots
+                .iter()
+                .any(|other| (other.value - spot.value).abs() < 1e-11 * unit)
+            {
+                spots.push(spot);
+            }
+        }
+        spots.sort_by(|a, b| a.value.total_cmp(&b.value));
+        let best = spots.first().map_or(0.0, |spot| spot.value);
+        // What the search cut leaves out may reorder extrema this close.
+        let margin = if plan.tolerance.is_some() { 4e-3 } else { 1e-3 } * unit;
+        spots.retain(|spot| spot.value <= best + margin);
+        spots.truncate(3);
+        Ok(spots)
+    }
+
+    /// Raises the cut at one extremum until its value is known to the tolerance.
+    fn settle(
+        &self,
+        target: Target,
+        spot: Spot,
+        plan: &Plan,
+        budget: &Budget,
+    ) -> Result<Found, Error> {
+        let mut spot = spot;
+        spot.k = self.symmetry.canonical(&self.frame, self.tidy(spot.k));
+        let mut lower: Option<Arc<Point>> = None;
+        let mut count = self.frame.expected(plan.cut);
+        let mut cut = plan.cut;
+        let mut tensors: Vec<Tensor> = Vec::new();
+        loop {
+            let point = plan.solved.at(self, spot.k, cut, plan.count, budget)?;
+            let (levels, predictions) = (&point.levels, &point.predictions);
+            let polished = self.polish(target, &mut spot, &point, &mut tensors, budget)?;
+            let mut value = self.judge(
+                target,
+                levels,
+                predictions,
+                lower.as_ref().map(|l| l.predictions.as_slice()),
+            );
+            value.value -= polished;
+            value.error += 0.5 * polished;
+            if let Seat::Creased(rise) = spot.seat {
+                value.error += rise + predictions.first().map_or(0.0, |p| p.left_out);
+            }
+            let next = self.frame.cut_for(1.6 * count);
+            let room = self.frame.expected(next) * 1.25 + 20.0 <= budget.max_basis as f64;
+            let enough = plan
+                .tolerance
+                .is_none_or(|tolerance| value.error <= tolerance);
+            // A first cut without one below it is judged by δ alone; masses need two cuts.
+            let masses =
+                target.kind == Kind::Separation || tensors.len() >= 2 || tensors.is_empty();
+            if !room
+                || (enough && masses)
+                || (plan.tolerance.is_none() && lower.is_some())
+                || lower_is_rounding(predictions, plan, masses)
+            {
+                let tensor = self.mass_of(&tensors, &levels, target, &value);
+                return Ok(Found {
+                    spot,
+                    target,
+                    value,
+                    tensor,
+                    basis: levels.waves.len(),
+                });
+            }
+            lower = Some(Arc::clone(&point));
+            (cut, count) = (next, self.frame.expected(next));
+        }
+    }
+
+    /// Moves a smooth extremum to where this basis has it; returns how much lower it lies than what was solved.
+    fn polish(
+        &self,
+        target: Target,
+        spot: &mut Spot,
+        point: &Point,
+        tensors: &mut Vec<Tensor>,
+        budget: &Budget,
+    ) -> Result<f64, Error> {
+        let unit = self.frame.unit();
+        let levels = &point.levels;
+        if !target.simple(&levels.energies, 1e-5 * unit)
+            || target.kind == Kind::Separation && spot.seat != Seat::Smooth
+        {
+            return Ok(0.0);
+        }
+        if levels.waves.len() <= LARGEST_FOR_MASSES || tensors.is_empty() {
+            let search = Search {
+                waves: self,
+                target,
+                basis: point.basis.clone(),
+                count: levels.energies.len(),
+                spacing: [0.0; 3],
+                budget,
+            };
+            tensors.push(search.slopes(levels)?.1);
+        }
+        let Some(curvature) = tensors.last() else {
+            return Ok(0.0);
+        };
+        let mut slope = [0.0; 3];
+        for (level, sign) in target.levels() {
+            let velocity = self.velocity(levels, level);
+            for x in 0..3 {
+                slope[x] += sign * velocity[x];
+            }
+        }
+        let step = descent(&slope, curvature, self.frame.dimension, 0.02 * unit.sqrt());
+        if spot.seat != Seat::Smooth || step.saddle || step.gain < 1e-15 * unit {
+            return Ok(0.0);
+        }
+        if step.gain > 1e-4 * unit {
+            // Too far for the curvature here to be trusted.
+            spot.seat = Seat::Creased(step.gain.min(unit));
+            return Ok(0.0);
+        }
+        let moved = self.frame.from_axes(step.parts);
+        spot.k = std::array::from_fn(|i| spot.k[i] + moved[i]);
+        Ok(step.gain)
+    }
+
+    /// The target's function with its error.
+    fn judge(
+        &self,
+        target: Target,
+        levels: &Levels,
+        predictions: &[Prediction],
+        lower: Option<&[Prediction]>,
+    ) -> Estimate {
+        let at = |level: usize| {
+            predictions
+                .get(level)
+                .map(|p| p.judged_by(lower.and_then(|l| l.get(level))))
+        };
+        let raw = target.value(&levels.energies);
+        let mut sum = Estimate::default();
+        for (level, sign) in target.levels() {
+            let estimate = at(level).unwrap_or(Estimate {
+                value: f64::NAN,
+                error: f64::INFINITY,
+            });
+            sum.value += sign * estimate.value;
+            sum.error += estimate.error;
+        }
+        let rounding = predictions.first().map_or(0.0, |p| p.rounding);
+        // Levels that symmetry holds together on this basis are held together by it on every basis.
+        if target.kind == Kind::Separation && raw <= 4.0 * rounding {
+            return Estimate {
+                value: 0.0,
+                error: 4.0 * rounding,
+            };
+        }
+        // Levels do not pass through one another.
+        if target.kind == Kind::Separation && sum.value < 0.0 {
+            sum = Estimate {
+                value: 0.0,
+                error: sum.error.max(-sum.value),
+            };
+        }
+        sum
+    }
+
+    /// The curvature of a simple level and the error of its entries.
+    fn mass_of(
+        &self,
+        tensors: &[Tensor],
+        levels: &Levels,
+        target: Target,
+        value: &Estimate,
+    ) -> Option<(Tensor, f64)> {
+        let last = tensors.last()?;
+        let apart = distance(&levels.energies, target.band);
+        if target.kind == Kind::Separation
+            || apart < 1e-5 * self.frame.unit()
+            || apart < 10.0 * value.error
+        {
+            return None;
+        }
+        let entries = |f: &dyn Fn(usize, usize) -> f64| {
+            (0..3)
+                .flat_map(|x| (0..3).map(move |y| (x, y)))
+                .map(|(x, y)| f(x, y).abs())
+                .fold(0.0, f64::max)
+        };
+        let change = match tensors.len() {
+            0 | 1 => entries(&|x, y| last[x][y]) * 0.1,
+            n => entries(&|x, y| last[x][y] - tensors[n - 2][x][y]),
+        };
+        // The k·p sum is inverse in the distances between levels, which are known to their errors.
+        let coupled = entries(&|x, y| last[x][y] - if x == y { 2.0 } else { 0.0 });
+        let error = 2.0 * change
+            + 4.0 * coupled * (value.error + f64::EPSILON * self.frame.unit() * 10.0) / apart;
+        Some((*last, error))
+    }
+
+    /// Rounds a wave vector that is a simple fraction but for rounding.
+    pub(super) fn tidy(&self, k: [f64; 3]) -> [f64; 3] {
+        let near = k.map(|x| (x * 24.0).round() / 24.0);
+        if (0..3).all(|i| (near[i] - k[i]).abs() < 1e-7) {
+            near
+        } else {
+            k
+        }
+    }
+}
+
+fn lower_is_rounding(predictions: &[Prediction], plan: &Plan, masses: bool) -> bool {
+    masses
+        && plan.tolerance.is_some()
+        && predictions
+            .iter()
+            .take(plan.bands + 1)
+            .all(|p| p.left_out <= 0.1 * p.rounding)
+}

@@ -1,0 +1,390 @@
+//! Extrema of bands over the whole zone.
+//!
+//! Every point of a mesh that is no higher than its neighbours starts a search (`f` below is the energy, its negative
+//! for a top, or the separation of two bands). Where the levels involved are simple the search is Newton's, with the
+//! exact slopes of `slopes.rs`: steps along the principal axes by |curvature|, so that saddles are left. At crossings
+//! `f` has creases, and a pattern of shrinking steps in many directions is used instead. A symmetric point that is
+//! lower than every direction from it at several scales is taken as it is.
+//!
+//! Failure mode: an extremum whose basin lies wholly between mesh points is not seen.
+
+use super::basis::Waves;
+use super::levels::Basis;
+use super::mesh::Mesh;
+use super::slopes::{Tensor, principal};
+use super::symmetry::rotate_real;
+use super::{Budget, Error, Levels};
+
+/// What is looked for.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub(super) enum Kind {
+    /// The lowest energy of the band.
+    Bottom,
+    /// The highest.
+    Top,
+    /// The least distance to the next band.
+    Separation,
+}
+
+/// An extremum looked for; `band` counts from zero.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub(super) struct Target {
+    pub kind: Kind,
+    pub band: usize,
+}
+
+/// How an extremum was found.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub(super) enum Seat {
+    /// At a point from which every direction leads up.
+    Pinned,
+    /// Where the slope vanishes.
+    Smooth,
+    /// On a crease, to within this much of `f`.
+    Creased(f64),
+}
+
+/// An extremum found.
+#[derive(Clone, Copy, Debug)]
+pub(super) struct Spot {
+    pub k: [f64; 3],
+    /// The function, to be made least.
+    pub value: f64,
+    pub seat: Seat,
+}
+
+impl Target {
+    /// The function to be made least.
+    pub fn value(&self, energies: &[f64]) -> f64 {
+        let at = |band: usize| energies.get(band).copied().unwrap_or(f64::NAN);
+        match self.kind {
+            Kind::Bottom => at(self.band),
+            Kind::Top => -at(self.band),
+            Kind::Separation => at(self.band + 1) - at(self.band),
+        }
+    }
+
+    /// The levels involved, with their signs.
+    pub fn levels(&self) -> Vec<(usize, f64)> {
+        match self.kind {
+            Kind::Bottom => vec![(self.band, 1.0)],
+            Kind::Top => vec![(self.band, -1.0)],
+            Kind::Separation => vec![(self.band + 1, 1.0), (self.band, -1.0)],
+        }
+    }
+
+    /// Whether the levels involved stand apart from all others.
+    pub fn simple(&self, energies: &[f64], apart: f64) -> bool {
+        self.levels()
+            .iter()
+            .all(|(level, _)| distance(energies, *level) > apart)
+    }
+}
+
+/// The distance from a level to the nearest other one.
+pub(super) fn distance(energies: &[f64], level: usize) -> f64 {
+    let to = |other: usize| {
+        energies
+            .get(other)
+            .map_or(f64::INFINITY, |e| (e - energies[level]).abs())
+    };
+    to(level + 1).min(if level > 0 {
+        to(level - 1)
+    } else {
+        f64::INFINITY
+    })
+}
+
+/// Levels closer than this share of the natural unit are searched as crossings.
+const APART: f64 = 1e-5;
+/// Differences below this share of the natural unit are rounding.
+const ROUNDING: f64 = 1e-13;
+
+/// A search on one basis.
+pub(super) struct Search<'w, 'a> {
+    pub waves: &'w Waves<'a>,
+    pub target: Target,
+    pub basis: Basis,
+    /// Levels to solve for.
+    pub count: usize,
+    /// A step of the mesh along each reciprocal vector.
+    pub spacing: [f64; 3],
+    pub budget: &'w Budget<'a>,
+}
+
+impl Search<'_, '_> {
+    fn unit(&self) -> f64 {
+        self.waves.frame.unit()
+    }
+
+    fn solve(&self, k: [f64; 3], vectors: bool) -> Result<Levels, Error> {
+        self.waves
+            .solve_on(&self.basis, k, self.count, vectors, self.budget)
+    }
+
+    /// The slope and curvature of the function at a solved point.
+    pub fn slopes(&self, levels: &Levels) -> Result<([f64; 3], Tensor), Error> {
+        let mut slope = [0.0; 3];
+        let mut curvature = [[0.0; 3]; 3];
+        for (level, sign) in self.target.levels() {
+            let velocity = self.waves.velocity(levels, level);
+            let tensor = self
+                .waves
+                .curvature(&self.basis, levels, level, self.budget)?;
+            for x in 0..3 {
+                slope[x] += sign * velocity[x];
+                for y in 0..3 {
+                    curvature[x][y] += sign * tensor[x][y];
+                }
+            }
+        }
+        Ok((slope, curvature))
+    }
+
+    /// The extremum that a start leads to.
+    pub fn run(&self, start: [f64; 3]) -> Result<Spot, Error> {
+        let mut k = start;
+        // A crossing may lie on the way, so the two searches may take turns, a few times.
+        for _ in 0..4 {
+            let levels = self.solve(k, true)?;
+            if self.target.simple(&levels.energies, APART * self.unit()) {
+                match self.newton(levels)? {
+                    Ok(spot) => return Ok(spot),
+                    Err(crossing) => k = crossing,
+                }
+            }
+            let spot = self.creep(k)?;
+            let ends = self.solve(spot.k, false)?;
+            let simple = self.target.simple(&ends.energies, APART * self.unit());
+            if spot.seat == Seat::Pinned || !simple {
+                return Ok(spot);
+            }
+            k = spot.k;
+        }
+        self.creep(k)
+    }
+
+    /// Newton's search; the inner error is where it met a crossing, or did not settle.
+    fn newton(&self, start: Levels) -> Result<Result<Spot, [f64; 3]>, Error> {
+        let frame = &self.waves.frame;
+        let unit = self.unit();
+        let limit = (0..3)
+            .map(|i| {
+                self.spacing[i]
+                    * super::lattice::dot(frame.reciprocal[i], frame.reciprocal[i]).sqrt()
+            })
+            .fold(0.0, f64::max);
+        let mut levels = start;
+        for _ in 0..24 {
+            let value = self.target.value(&levels.energies);
+            let spot = Spot {
+                k: levels.k,
+                value,
+                seat: Seat::Smooth,
+            };
+            let (slope, curvature) = self.slopes(&levels)?;
+            let step = descent(&slope, &curvature, frame.dimension, limit);
+            if step.gain <= ROUNDING * unit && !step.saddle {
+                return Ok(Ok(spot));
+            }
+            let mut better = None;
+            for halving in 0..8 {
+                let share = 0.5f64.powi(halving);
+                let moved = frame.from_axes(step.parts.map(|x| x * share));
+                let tries = if step.saddle {
+                    vec![1.0, -1.0]
+                } else {
+                    vec![1.0]
+                };
+                for sign in tries {
+                    let k = std::array::from_fn(|i| levels.k[i] + sign * moved[i]);
+                    let tried = self.solve(k, true)?;
+                    if self.target.value(&tried.energies) < value - 0.01 * ROUNDING * unit {
+                        better = Some(tried);
+                        break;
+                    }
+                }
+                if better.is_some() {
+                    break;
+                }
+            }
+            let Some(next) = better else {
+                // No way down although the slope promises one: a crossing is near.
+                let flat = step.gain <= 1e-9 * unit;
+                return Ok(if flat { Ok(spot) } else { Err(spot.k) });
+            };
+            if !self.target.simple(&next.energies, APART * unit) {
+                return Ok(Err(next.k));
+            }
+            levels = next;
+        }
+        Ok(Err(levels.k))
+    }
+
+    /// The search by shrinking patterns.
+    fn creep(&self, start: [f64; 3]) -> Result<Spot, Error> {
+        let floor = 0.1 * ROUNDING * self.unit();
+        let mut k = start;
+        let mut value = self.target.value(&self.solve(k, false)?.energies);
+        let mut directions = self.directions(start, true);
+        let (mut step, mut moved, mut failures, mut rise) = (0.5, false, 0, f64::INFINITY);
+        let mut turn = 0;
+        while step > 1e-9 {
+            let mut best = (value - floor, None);
+            rise = f64::INFINITY;
+            for direction in &directions {
+                let next = std::array::from_fn(|i| k[i] + step * direction[i]);
+                let found = self.target.value(&self.solve(next, false)?.energies);
+                rise = rise.min((found - value).abs());
+                if found < best.0 {
+                    best = (found, Some(next));
+                }
+            }
+            if let (found, Some(next)) = best {
+                (value, k, failures) = (found, next, 0);
+                moved = true;
+                directions = self.directions(k, false);
+            } else {
+                failures += 1;
+                step *= if moved { 0.5 } else { 0.25 };
+                // Up in every direction at four scales, 1/2 to 1/128 of a mesh step.
+                if !moved && failures == 4 {
+                    return Ok(Spot {
+                        k,
+                        value,
+                        seat: Seat::Pinned,
+                    });
+                }
+                if moved {
+                    turn += 1;
+                    directions = self.directions(k, false);
+                    directions.extend(self.turned(turn));
+                }
+            }
+        }
+        Ok(Spot {
+            k,
+            value,
+            seat: Seat::Creased(rise.min(self.unit())),
+        })
+    }
+
+    /// Steps to all neighbours in the mesh; from a symmetric point, one of each set that symmetry makes equal.
+    fn directions(&self, k: [f64; 3], reduce: bool) -> Vec<[f64; 3]> {
+        let d = self.waves.frame.dimension;
+        let group = if reduce {
+            self.waves.symmetry.little_group(k)
+        } else {
+            Vec::new()
+        };
+        let mut all: Vec<[f64; 3]> = Vec::new();
+        for place in 0..27_usize {
+            let offset = [place / 9, place / 3 % 3, place % 3].map(|x| x as f64 - 1.0);
+            if offset == [0.0; 3] || offset[d..].iter().any(|x| *x != 0.0) {
+                continue;
+            }
+            let step: [f64; 3] = std::array::from_fn(|i| offset[i] * self.spacing[i]);
+            let seen = group.iter().any(|m| {
+                let image = rotate_real(m, step);
+                all.iter()
+                    .any(|other| (0..3).all(|i| (other[i] - image[i]).abs() < 1e-9))
+            });
+            if !seen {
+                all.push(step);
+            }
+        }
+        all
+    }
+
+    /// Directions that no axis favours, new ones each turn (golden-ratio sequence).
+    fn turned(&self, turn: usize) -> Vec<[f64; 3]> {
+        let d = self.waves.frame.dimension;
+        (0..2 * d)
+            .flat_map(|j| {
+                let seed = (turn * 2 * d + j) as f64;
+                let way: [f64; 3] = std::array::from_fn(|i| {
+                    if i < d {
+                        (2.0 * std::f64::consts::PI
+                            * (seed * [0.618_033_988_7, 0.754_877_666_2, 0.569_840_291][i]).fract())
+                        .cos()
+                    } else {
+                        0.0
+                    }
+                });
+                let step: [f64; 3] = std::array::from_fn(|i| way[i] * self.spacing[i]);
+                [step, step.map(|x| -x)]
+            })
+            .collect()
+    }
+}
+
+/// A Newton step on the axes and the fall that it foresees.
+pub(super) struct Step {
+    pub parts: [f64; 3],
+    pub gain: f64,
+    /// Whether the slope vanishes while a curvature is negative.
+    pub saddle: bool,
+}
+
+/// −g/|λ| along the principal axes, no longer than `limit`; along the most negative curvature at a saddle.
+pub(super) fn descent(slope: &[f64; 3], curvature: &Tensor, dimension: usize, limit: f64) -> Step {
+    let axes = principal(curvature, dimension);
+    let mut parts = [0.0; 3];
+    let mut gain = 0.0;
+    let mut lowest = (0.0, [0.0; 3]);
+    for (bend, axis) in &axes {
+        let along = super::lattice::dot(*slope, *axis);
+        // Flatter than a thousandth of the free curvature, the step is set by the limit rather than by Newton.
+        let size = bend.abs().max(2e-3);
+        gain += 0.5 * along * along / size;
+        for x in 0..3 {
+            parts[x] -= along / size * axis[x];
+        }
+        if *bend < lowest.0 {
+            lowest = (*bend, *axis);
+        }
+    }
+    let saddle = lowest.0 < -1e-4 && gain < 1e-10;
+    if saddle {
+        return Step {
+            parts: lowest.1.map(|x| 0.5 * limit * x),
+            gain,
+            saddle,
+        };
+    }
+    let length = super::lattice::dot(parts, parts).sqrt();
+    if length > limit {
+        parts = parts.map(|x| x * limit / length);
+    }
+    Step {
+        parts,
+        gain,
+        saddle,
+    }
+}
+
+/// Starts for one target: the mesh points that no neighbour beats, best first, and for each the least that could lie
+/// near it, judged by the steepest step to a neighbour.
+pub(super) fn starts(
+    mesh: &Mesh,
+    energies: &[Vec<f64>],
+    target: Target,
+    rounding: f64,
+) -> Vec<(usize, f64, f64)> {
+    let value = |point: usize| target.value(&energies[point]);
+    let mut found: Vec<(usize, f64, f64)> = (0..mesh.points.len())
+        .filter_map(|point| {
+            let here = value(point);
+            let mut steepest: f64 = 0.0;
+            for other in mesh.neighbours(point) {
+                if value(other) < here - rounding {
+                    return None;
+                }
+                steepest = steepest.max(value(other) - here);
+            }
+            Some((point, here, here - steepest))
+        })
+        .collect();
+    found.sort_by(|a, b| a.1.total_cmp(&b.1));
+    found
+}

@@ -1,0 +1,143 @@
+//! The Fermi level: meshes refined until it settles.
+//!
+//! What linear simplices leave is of second order in the mesh, so that meshes of M and M′ > M points along an edge give
+//! E′ + (E′ − E)/((M′/M)² − 1). The whole of that last term is the stated error, with what the cut-off left uncertain.
+
+use super::basis::Waves;
+use super::states::States;
+use super::{Budget, Error, Estimate};
+
+/// A Fermi level.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Fermi {
+    /// The level up to which states are filled; at a gap, its lower edge.
+    pub level: Estimate,
+    /// States per cell and unit of energy there, one state a level; its error is an estimate, not a bound, near
+    /// singularities.
+    pub density: Estimate,
+    /// The sum of the filled levels' energies per cell.
+    pub energy: Estimate,
+    /// Whether the level is known as well as was asked for.
+    pub settled: bool,
+}
+
+impl Waves<'_> {
+    /// The Fermi level at which `levels` levels per cell are filled (particles over the states a level holds; it need
+    /// not be whole). For whole bands with a gap above, this is the gap's lower edge.
+    ///
+    /// # Errors
+    /// `NotFinite` where `levels` is not positive; `BudgetSpent` where not even two meshes fit; `Cancelled`.
+    pub fn fermi(&self, levels: f64, tolerance: f64, budget: &Budget) -> Result<Fermi, Error> {
+        if !(levels > 0.0 && levels < 1e4 && tolerance > 0.0 && tolerance.is_finite()) {
+            return Err(Error::NotFinite);
+        }
+        let cut = self.cut_for_states(levels, tolerance, budget)?;
+        let sizes: &[usize] = match self.frame.dimension {
+            1 => &[24, 48, 96, 192, 384, 768],
+            2 => &[12, 24, 48, 96, 192],
+            _ => &[6, 12, 24, 32, 48],
+        };
+        let mut last: Option<(f64, Fermi, States)> = None;
+        let mut best: Option<Fermi> = None;
+        for size in sizes {
+            let states = match self.enough_states(levels, *size, cut, budget) {
+                Err(Error::BudgetSpent) if best.is_some() => break,
+                other => other?,
+            };
+            let raw = states.fill(levels);
+            if let Some((coarser, lower, _)) = &last {
+                let factor = 1.0 / ((*size as f64 / coarser).powi(2) - 1.0);
+                let further = |fine: f64, coarse: f64, cut_off: f64| {
+                    let change = (fine - coarse) * factor;
+                    Estimate {
+                        value: fine + change,
+                        error: change.abs() + cut_off + 1e-13 * self.frame.unit(),
+                    }
+                };
+                let level = further(
+                    raw.level.value,
+                    lower.level.value,
+                    states.error_below(levels),
+                );
+                // Blöchl's correction has taken the second order off the energy already.
+                // Two meshes may agree by chance, so a quarter of that correction counts too.
+                let change =
+                    (raw.energy.value - lower.energy.value).abs() + 0.25 * raw.energy.error;
+                let energy = Estimate {
+                    value: raw.energy.value,
+                    error: change + states.error_below(levels) * levels.max(1.0),
+                };
+                let density = Estimate {
+                    value: raw.density.value,
+                    error: raw.density.error + (raw.density.value - lower.density.value).abs(),
+                };
+                let settled = level.error <= tolerance;
+                best = Some(Fermi {
+                    level,
+                    density,
+                    energy,
+                    settled,
+                });
+                if settled {
+                    break;
+                }
+            }
+            last = Some((*size as f64, raw, states));
+        }
+        best.ok_or(Error::BudgetSpent)
+    }
+
+    /// A cut at which the levels up to the filling are known to half the tolerance, or the largest that is affordable.
+    fn cut_for_states(&self, levels: f64, tolerance: f64, budget: &Budget) -> Result<f64, Error> {
+        let bands = levels.ceil() as usize + 2;
+        let probes =
+            [[0.0; 3], [0.5, 0.0, 0.0], [0.5; 3], [0.25, 0.125, 0.375]].map(|k| self.inside(k));
+        let largest = (budget.max_basis as f64 / 1.3)
+            .min([200.0_f64, 500.0, 400.0][self.frame.dimension - 1].max(2.5 * bands as f64));
+        let mut cut = self.first_cut(bands, f64::INFINITY, budget)?;
+        loop {
+            let mut worst: f64 = 0.0;
+            for k in probes {
+                let solved = self.solve_on(&self.basis(k, cut), k, bands, true, budget)?;
+                worst = self
+                    .predict(&solved, cut)?
+                    .iter()
+                    .map(|p| p.unjudged().error)
+                    .fold(worst, f64::max);
+            }
+            let larger = self.frame.cut_for(1.4 * self.frame.expected(cut));
+            if worst <= 0.5 * tolerance || self.frame.expected(larger) > largest {
+                return Ok(cut);
+            }
+            cut = larger;
+        }
+    }
+
+    /// States with so many bands that the filling ends below the top of the last.
+    fn enough_states(
+        &self,
+        levels: f64,
+        size: usize,
+        cut: f64,
+        budget: &Budget,
+    ) -> Result<States, Error> {
+        let mut bands = levels.ceil() as usize + 1;
+        for _ in 0..6 {
+            let states = self.states(bands, size, cut, budget)?;
+            let level = states.fill(levels).level.value;
+            // The first band left out may begin below the last one's top, not below its own bottom.
+            let deepest = states
+                .simplices
+                .iter()
+                .skip(bands - 1)
+                .step_by(bands)
+                .map(|(corner, _)| corner[0])
+                .fold(f64::INFINITY, f64::min);
+            if level <= deepest {
+                return Ok(states);
+            }
+            bands += 2;
+        }
+        Err(Error::BudgetSpent)
+    }
+}
