@@ -221,7 +221,7 @@ fn worst_cases_are_no_better_than_a_grid() {
             .collect();
         let (targets, _) = bench.assess(0);
         for (index, target) in targets.iter().enumerate() {
-            let n: i32 = if draws.len() == 3 { 9 } else { 21 };
+            let n: i32 = if draws.len() == 3 { 5 } else { 11 };
             let mut least = f64::INFINITY;
             for point in 0..n.pow(draws.len() as u32) {
                 let mut setting = Setting::default();

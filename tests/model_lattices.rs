@@ -294,7 +294,8 @@ fn impossible_lattices_are_flat() {
             "{lattice}: {kind:?}"
         );
     }
-    // Near misses.
+    // Near misses; a bare angle is radians, however large.
+    crystal("oblique 2 nm by 3 nm angle 90");
     crystal("oblique 2 nm by 3 nm angle 1 deg");
     crystal("rhombohedral 2 nm angle 119 deg");
     crystal("triclinic 2 nm by 3 nm by 4 nm angles 30 deg, 41 deg, 70 deg");

@@ -168,6 +168,25 @@ fn a_mistake_is_said_where_it_is_written_and_only_once() {
     // One that only the taking over makes is said there.
     let text = "crystal a\n  let w = 4 nm\n  layer w at 0\ncrystal b like a\n  let w = 4 meV\n";
     assert_eq!(only_trouble(text).1, "w");
+    let built = Desk::new(text).crystal("b");
+    assert_eq!(built.troubles[0].related[0].1, "as `b` takes it over");
+    // So is a lattice that the new layers do not fill, at the layers.
+    let text =
+        "crystal a\n  lattice chain 4 nm\n  layer 4 nm at 0\ncrystal b like a\n  layer 3 nm at 0\n";
+    assert_eq!(only_trouble(text).1, "layer 3 nm at 0");
+}
+
+#[test]
+fn a_let_that_replaces_another_is_used_by_what_is_taken_over() {
+    let desk =
+        Desk::new("crystal a\n  let w = 4 nm\n  layer w at 0\ncrystal b like a\n  let w = 5 nm\n");
+    let built = desk.crystal("b");
+    let used = built.references.iter().find(|one| one.name == "w").unwrap();
+    assert_eq!(
+        used.definition.unwrap().section,
+        desk.crystal_ref("b").section
+    );
+    assert_eq!(used.place.section, desk.crystal_ref("a").section);
 }
 
 #[test]

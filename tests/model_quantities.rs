@@ -40,7 +40,7 @@ fn constants_are_codata_2022() {
         codata("speed of light in vacuum"),
         0.0,
     );
-    assert_close(constant("pi").unwrap().value, 3.141_592_653_589_793, 0.0);
+    assert_close(constant("pi").unwrap().value, std::f64::consts::PI, 0.0);
     assert_eq!(CONSTANTS.len(), 5);
 }
 
@@ -128,7 +128,7 @@ fn functions_have_their_values_and_exact_slopes() {
     // Values by mpmath at 25 digits: `mp.dps = 25; nstr(tan(mpf(0.37)), 17)` and so on.
     let at = 0.37;
     let rows = [
-        ("sqrt", 0.608_276_253_029_821_97),
+        ("sqrt", 0.608_276_253_029_822),
         ("exp", 1.447_734_614_663_324_5),
         ("log", -0.994_252_273_343_866_9),
         ("log10", -0.431_798_275_933_005),
@@ -136,7 +136,7 @@ fn functions_have_their_values_and_exact_slopes() {
         ("cos", 0.932_327_345_606_034_4),
         ("tan", 0.387_863_161_655_849_05),
         ("asin", 0.379_009_020_695_950_8),
-        ("acos", 1.191_787_306_098_945_8),
+        ("acos", 1.191_787_306_098_946),
         ("atan", 0.354_379_919_123_437_8),
         ("sinh", 0.378_500_142_012_984_9),
         ("cosh", 1.069_234_472_650_339_6),

@@ -107,6 +107,10 @@ fn boxes_cover_their_inside_and_overlap_their_images() {
         (1.0, 1.0, 0.0, 1.0)
     );
     assert_eq!((at(1.4, 0.5), at(1.4, 0.1)), (2.0, 1.0));
+    assert_eq!(
+        (at(0.5, 0.25), at(0.5, -0.25), at(3.0, 0.5), at(3.0, 0.2)),
+        (0.5, 0.5, 3.0, 3.0)
+    );
 }
 
 /// Rows by spline.py (scipy.interpolate.CubicSpline, bc_type="periodic").
@@ -276,7 +280,7 @@ crystal a
     assert_close(crystal.potential_at(7.5e-9), 100.0 * MEV, 1e-12);
     assert_close(crystal.potential_at(-1e-9 + 0.5e-9), 100.0 * MEV, 1e-12);
     let graded = &crystal.potential.layers[0];
-    assert_eq!(graded.mass_origin, "of material well to of material wall");
+    assert_eq!(graded.mass_origin, "of materials well to wall");
     assert_close(
         graded.mass[1].mass.value / graded.mass[0].mass.value,
         2.0,

@@ -26,13 +26,20 @@ impl Memory {
     fn of(text: &str, sample: &Sample) -> Self {
         let path = |name: &str| normalise(&Path::new("/").join(name));
         let mut files = vec![(normalise(Path::new(EXAMPLE)), text.to_owned())];
-        files.extend(sample.files.iter().map(|(name, text)| (path(name), text.clone())));
+        files.extend(
+            sample
+                .files
+                .iter()
+                .map(|(name, text)| (path(name), text.clone())),
+        );
         Self(files)
     }
 
     fn text(&self, path: &Path) -> Result<&str, ReadFailure> {
         let found = self.0.iter().find(|(known, _)| known == path);
-        found.map(|(_, text)| text.as_str()).ok_or(ReadFailure::NotFound)
+        found
+            .map(|(_, text)| text.as_str())
+            .ok_or(ReadFailure::NotFound)
     }
 }
 
@@ -65,7 +72,12 @@ fn analysed(text: &str, sample: &Sample) -> Arc<FileAnalysis> {
 
 /// A place as bytes of the whole text.
 fn absolute(file: &FileAnalysis, place: Place) -> Span {
-    let entry = file.tree.entries.iter().find(|entry| entry.id == place.section).unwrap();
+    let entry = file
+        .tree
+        .entries
+        .iter()
+        .find(|entry| entry.id == place.section)
+        .unwrap();
     place.span.shifted(entry.start)
 }
 
@@ -85,8 +97,11 @@ fn mark(file: &FileAnalysis, place: Place) -> Mark {
 
 fn apply(file: &FileAnalysis, fix: &Fix) -> String {
     let mut text = file.tree.text.to_string();
-    let mut edits: Vec<(Span, &str)> =
-        fix.edits.iter().map(|edit| (absolute(file, edit.place), edit.text.as_str())).collect();
+    let mut edits: Vec<(Span, &str)> = fix
+        .edits
+        .iter()
+        .map(|edit| (absolute(file, edit.place), edit.text.as_str()))
+        .collect();
     edits.sort();
     for (span, new) in edits.into_iter().rev() {
         text.replace_range(span.start as usize..span.end as usize, new);
@@ -95,12 +110,21 @@ fn apply(file: &FileAnalysis, fix: &Fix) -> String {
 }
 
 fn of_rule<'f>(file: &'f FileAnalysis, rule: &Rule) -> Vec<&'f Finding> {
-    file.findings.iter().filter(|finding| finding.rule == rule.name).collect()
+    file.findings
+        .iter()
+        .filter(|finding| finding.rule == rule.name)
+        .collect()
 }
 
 fn told(findings: &[Finding]) -> String {
     findings.iter().fold(String::new(), |mut text, finding| {
-        let _ = writeln!(text, "  {} {}: {}", finding.level.word(), finding.rule, finding.message);
+        let _ = writeln!(
+            text,
+            "  {} {}: {}",
+            finding.level.word(),
+            finding.rule,
+            finding.message
+        );
         text
     })
 }
@@ -109,10 +133,18 @@ fn told(findings: &[Finding]) -> String {
 fn every_rule_is_documented() {
     for rule in rules::all() {
         let doc = rule.doc();
-        for (heading, body) in [("finds", &doc.finds), ("matters", &doc.matters), ("fix", &doc.fix)] {
+        for (heading, body) in [
+            ("finds", &doc.finds),
+            ("matters", &doc.matters),
+            ("fix", &doc.fix),
+        ] {
             assert!(!body.is_empty(), "{}: nothing under `{heading}`", rule.name);
         }
-        assert!(!doc.instead.text.is_empty(), "{} says nothing to write instead", rule.name);
+        assert!(
+            !doc.instead.text.is_empty(),
+            "{} says nothing to write instead",
+            rule.name
+        );
         assert!(rule.summary().ends_with('.'), "{}", rule.summary());
     }
 }
@@ -138,14 +170,27 @@ fn examples_are_found_exactly_at_their_marks() {
             continue;
         }
         let file = analysed(&doc.example.text, &doc.example);
-        let mut found: Vec<Mark> = of_rule(&file, rule).iter().map(|finding| mark(&file, finding.place)).collect();
+        let mut found: Vec<Mark> = of_rule(&file, rule)
+            .iter()
+            .map(|finding| mark(&file, finding.place))
+            .collect();
         found.sort();
         let all = told(&file.findings);
         if found != doc.example.marks {
-            let _ = writeln!(wrong, "{}: found at {found:?}, marked are {:?}\n{all}", rule.name, doc.example.marks);
+            let _ = writeln!(
+                wrong,
+                "{}: found at {found:?}, marked are {:?}\n{all}",
+                rule.name, doc.example.marks
+            );
         }
-        let others = file.findings.iter().filter(|finding| finding.rule != rule.name);
-        let loud: Vec<_> = others.filter(|finding| finding.level >= Level::Warning).map(|finding| finding.rule).collect();
+        let others = file
+            .findings
+            .iter()
+            .filter(|finding| finding.rule != rule.name);
+        let loud: Vec<_> = others
+            .filter(|finding| finding.level >= Level::Warning)
+            .map(|finding| finding.rule)
+            .collect();
         for name in &loud {
             if !doc.also_found.iter().any(|also| also == name) {
                 let _ = writeln!(wrong, "{}: {name} is found too\n{all}", rule.name);
@@ -166,10 +211,19 @@ fn what_to_write_instead_is_silent() {
     for rule in rules::all() {
         let instead = rule.doc().instead;
         let file = analysed(&instead.text, &instead);
-        let loud = file.findings.iter().filter(|finding| finding.level >= Level::Warning || finding.rule == rule.name);
+        let loud = file
+            .findings
+            .iter()
+            .filter(|finding| finding.level >= Level::Warning || finding.rule == rule.name);
         let loud: Vec<Finding> = loud.cloned().collect();
         if !loud.is_empty() {
-            let _ = writeln!(wrong, "{} on its instead\n{}{}", rule.name, instead.marked, told(&loud));
+            let _ = writeln!(
+                wrong,
+                "{} on its instead\n{}{}",
+                rule.name,
+                instead.marked,
+                told(&loud)
+            );
         }
     }
     assert!(wrong.is_empty(), "{wrong}");
@@ -186,7 +240,11 @@ fn safe_fixes_come_to_rest_and_add_nothing() {
             let file = analysed(&text, &example);
             let now = names(&file);
             let new: Vec<_> = now.iter().filter(|name| !known.contains(name)).collect();
-            assert!(new.is_empty(), "{}: a fix adds {new:?} to\n{text}", rule.name);
+            assert!(
+                new.is_empty(),
+                "{}: a fix adds {new:?} to\n{text}",
+                rule.name
+            );
             known = now;
             let fixes = file.findings.iter().flat_map(|finding| &finding.fixes);
             let Some(fix) = fixes.into_iter().find(|fix| fix.safe) else {
@@ -198,7 +256,10 @@ fn safe_fixes_come_to_rest_and_add_nothing() {
 }
 
 fn names(file: &FileAnalysis) -> Vec<String> {
-    file.findings.iter().map(|finding| finding.rule.to_owned()).collect()
+    file.findings
+        .iter()
+        .map(|finding| finding.rule.to_owned())
+        .collect()
 }
 
 /// Every fix of an example, safe or not, takes the finding away that it belongs to.
@@ -213,7 +274,12 @@ fn every_fix_mends_what_it_belongs_to() {
                 let after = analysed(&mended, &example);
                 let left = of_rule(&after, rule).len();
                 let before = of_rule(&file, rule).len();
-                assert!(left < before, "{}: `{}` leaves it in\n{mended}", rule.name, fix.title);
+                assert!(
+                    left < before,
+                    "{}: `{}` leaves it in\n{mended}",
+                    rule.name,
+                    fix.title
+                );
             }
         }
     }
@@ -263,5 +329,8 @@ fn the_reference_page_is_up_to_date() {
         std::fs::write(&path, &page).unwrap();
     }
     let committed = std::fs::read_to_string(&path).unwrap_or_default();
-    assert!(committed == page, "grammar/RULES.md is stale: run this test with CRENATE_WRITE_PAGES=1");
+    assert!(
+        committed == page,
+        "grammar/RULES.md is stale: run this test with CRENATE_WRITE_PAGES=1"
+    );
 }

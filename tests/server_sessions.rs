@@ -25,7 +25,7 @@ crystal tern_8
   require gap 1 >= 60 meV
 ";
 
-const A: &str = "file:///work/a.cren";
+const A: &str = "file:///models/a.cren";
 
 #[tokio::test]
 async fn findings_follow_the_edits_and_vanish_with_the_document() {
@@ -198,7 +198,10 @@ async fn files_see_unsaved_buffers_that_they_use_and_the_disk_behind_them() {
             json!([replace(line, character, character + 4, "fence")]),
         )
         .await;
-    assert_eq!(rules(&client.findings(&user, 1).await), ["unknown-name"]);
+    assert_eq!(
+        rules(&client.findings(&user, 1).await),
+        ["unknown-name", "target-untestable"]
+    );
 
     // Closed without saving, the disk counts again.
     client.close(&parts).await;
@@ -215,7 +218,10 @@ async fn files_see_unsaved_buffers_that_they_use_and_the_disk_behind_them() {
             json!({"changes": [{"uri": parts, "type": 2}]}),
         )
         .await;
-    assert_eq!(rules(&client.findings(&user, 1).await), ["unknown-name"]);
+    assert_eq!(
+        rules(&client.findings(&user, 1).await),
+        ["unknown-name", "target-untestable"]
+    );
 }
 
 #[tokio::test]
@@ -388,4 +394,38 @@ async fn edits_out_of_range_are_clamped() {
     let backwards = json!({"range": {"start": {"line": 14, "character": 900}, "end": {"line": 13, "character": 0}}, "text": ""});
     client.change(A, 3, json!([backwards])).await;
     assert!(!rules(&client.findings(A, 3).await).contains(&"unknown-statement".to_owned()));
+}
+
+#[tokio::test]
+async fn a_name_that_another_file_uses_is_not_idle() {
+    let folder = tempfile::tempdir().unwrap();
+    let root = folder.path().canonicalize().unwrap();
+    let text = format!("let spare = 3 nm\n{TERN}");
+    let (shared, user) = (uri(&root.join("shared.cren")), uri(&root.join("user.cren")));
+    std::fs::write(root.join("shared.cren"), &text).unwrap();
+    let mut client = Client::with(able(), &[&root], Settings::default()).await;
+    client.open(&shared, 1, &text).await;
+    assert_eq!(rules(&client.findings(&shared, 1).await), ["unused-name"]);
+    // An unsaved buffer uses it, and no longer does; then a file on the disk does.
+    client.open(&user, 1, "use \"shared.cren\"\n").await;
+    assert_eq!(
+        rules(&client.findings(&shared, 1).await),
+        Vec::<String>::new()
+    );
+    client
+        .change(&user, 2, json!([replace(0, 0, 0, "# ")]))
+        .await;
+    assert_eq!(rules(&client.findings(&shared, 1).await), ["unused-name"]);
+    client.close(&user).await;
+    std::fs::write(root.join("user.cren"), "use \"shared.cren\"\n").unwrap();
+    client
+        .notify(
+            "workspace/didChangeWatchedFiles",
+            json!({"changes": [{"uri": user, "type": 1}]}),
+        )
+        .await;
+    assert_eq!(
+        rules(&client.findings(&shared, 1).await),
+        Vec::<String>::new()
+    );
 }

@@ -9,7 +9,7 @@ use std::time::{Duration, Instant};
 
 use serde_json::{Value, json};
 
-const A: &str = "file:///work/a.cren";
+const A: &str = "file:///models/a.cren";
 const LONG: Duration = Duration::from_secs(60);
 
 struct Server {

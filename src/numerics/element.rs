@@ -164,8 +164,9 @@ impl Polynomial {
 /// The two solutions from the centre of a part: power series in t of u and v for each.
 /// Solution 0 starts as (1, 0), solution 1 as (0, 1).
 pub(crate) struct Series<T> {
-    pub u: [[T; TERMS]; 2],
-    pub v: [[T; TERMS]; 2],
+    /// `u[k][s]`: the k-th coefficient of solution s
+    pub u: [[T; 2]; TERMS],
+    pub v: [[T; 2]; TERMS],
     pub terms: usize,
 }
 
@@ -175,12 +176,12 @@ impl<T: Scalar> Series<T> {
         let zero = T::constant(0.0);
         let one = T::constant(1.0);
         let mut series = Series {
-            u: [[zero; TERMS]; 2],
-            v: [[zero; TERMS]; 2],
+            u: [[zero; 2]; TERMS],
+            v: [[zero; 2]; TERMS],
             terms: TERMS,
         };
         series.u[0][0] = one;
-        series.v[1][0] = one;
+        series.v[0][1] = one;
         let depth = (T::lift(coefficients[0]) - energy).scaled(half);
         let [mass, tilt] = mass.map(|m| m.scaled(half));
         let tilted = tilt.magnitude() != 0.0;
@@ -193,24 +194,28 @@ impl<T: Scalar> Series<T> {
         let mut quiet = 0;
         for k in 0..TERMS - 1 {
             let inverse = T::reciprocal(k + 1);
+            let [u0, u1] = series.u[k];
+            let [v0, v1] = series.v[k];
+            let mut u = [mass * v0, mass * v1];
+            if tilted && k > 0 {
+                let [w0, w1] = series.v[k - 1];
+                u = [u[0] + tilt * w0, u[1] + tilt * w1];
+            }
+            let mut v = [depth * u0, depth * u1];
+            let past = rest.min(k);
+            for (c, [x0, x1]) in scaled[..past]
+                .iter()
+                .zip(series.u[k - past..k].iter().rev())
+            {
+                v[0] = v[0] + x0.scaled(*c);
+                v[1] = v[1] + x1.scaled(*c);
+            }
             let mut small = true;
             for s in 0..2 {
-                let mut u = mass * series.v[s][k];
-                if tilted && k > 0 {
-                    u = u + tilt * series.v[s][k - 1];
-                }
-                let mut v = depth * series.u[s][k];
-                let past = rest.min(k);
-                for (c, x) in scaled[..past]
-                    .iter()
-                    .zip(series.u[s][k - past..k].iter().rev())
-                {
-                    v = v + x.scaled(*c);
-                }
-                let (u, v) = (u.scaled(inverse), v.scaled(inverse));
-                series.u[s][k + 1] = u;
-                series.v[s][k + 1] = v;
-                for (size, term) in greatest[s].iter_mut().zip([u, v]) {
+                let terms = [u[s].scaled(inverse), v[s].scaled(inverse)];
+                series.u[k + 1][s] = terms[0];
+                series.v[k + 1][s] = terms[1];
+                for (size, term) in greatest[s].iter_mut().zip(terms) {
                     let term = term.leading().abs();
                     small &= term <= T::UNIT * *size;
                     *size = size.max(term);
@@ -233,8 +238,8 @@ impl<T: Scalar> Series<T> {
         for k in (0..self.terms).rev() {
             let sums = if k % 2 == 0 { &mut even } else { &mut odd };
             for s in 0..2 {
-                sums[s][0] = sums[s][0] + self.u[s][k];
-                sums[s][1] = sums[s][1] + self.v[s][k];
+                sums[s][0] = sums[s][0] + self.u[k][s];
+                sums[s][1] = sums[s][1] + self.v[k][s];
             }
         }
         let side = |s: usize, i: usize| (even[s][i] + odd[s][i], even[s][i] - odd[s][i]);
@@ -287,7 +292,7 @@ pub(crate) fn layer<T: Scalar>(length: f64, potential: f64, mass: Mass, energy: 
 }
 
 /// Calls `visit` with every factor of the element's matrix from left to right, its power of two,
-/// and the phase across it (0 in a wall), which is below π for a part of a polynomial.
+/// and its z (0 for a delta and for a part of a polynomial, whose phase is below π).
 pub(crate) fn factors<T: Scalar>(
     element: &Element,
     energy: T,
@@ -312,7 +317,7 @@ pub(crate) fn factors<T: Scalar>(
                 c: depth * f[1],
                 d: f[0],
             };
-            visit(&matrix, exponent, (-z.leading()).max(0.0).sqrt());
+            visit(&matrix, exponent, z.leading());
         }
         Element::Polynomial(p) => {
             let count = p.parts(energy.leading());

@@ -19,13 +19,14 @@ use std::sync::LazyLock;
 
 /// Quadrature of one part: phase at most 3 and shape functions of degree 12 need no more.
 static QUADRATURE: LazyLock<Vec<(f64, f64)>> = LazyLock::new(|| gauss_legendre(20));
+/// Shape functions of a whole step at the quadrature's nodes.
+static SHAPES: LazyLock<Vec<[f64; DEGREE + 1]>> =
+    LazyLock::new(|| QUADRATURE.iter().map(|(t, _)| lagrange(*t)).collect());
+
 /// Nodes and weights for one part.
 pub(crate) fn quadrature() -> &'static [(f64, f64)] {
     &QUADRATURE
 }
-
-/// Rounding of one factor's entries in units, for the bound on what a sweep in `f64` loses.
-const FACTOR_ROUNDING: f64 = 6.0;
 
 /// A matrix and its power of two.
 #[derive(Clone, Copy)]
@@ -123,7 +124,7 @@ pub(crate) struct Gradient<T> {
     pub energy: T,
     /// D′
     pub energy_slope: T,
-    /// Σ |K||M_j| over factors: rounding of D, in units of a factor's relative rounding
+    /// Σ |K||M_j| over factors: change of D by a relative change of one in every entry
     pub rounding: f64,
     pub exponent: i64,
 }
@@ -158,7 +159,7 @@ pub(crate) fn gradient<T: Scalar>(ready: &Ready, energy: T) -> Gradient<T> {
     for factor in &list {
         let shift = factor.rest.exponent + factor.scaled.exponent - exponent;
         let around = factor.rest.matrix.shifted(shift);
-        result.rounding += FACTOR_ROUNDING * absolute(&factor.scaled.matrix, &around);
+        result.rounding += absolute(&factor.scaled.matrix, &around);
         match &ready.elements[factor.element] {
             Element::Delta { .. } => {
                 result.pieces.push(PieceSlope {
@@ -274,15 +275,19 @@ impl Polynomial {
         self.coefficients.len()
     }
 
-    /// The shape functions at t ∈ [−1, 1] of the element: what each sample (or end) weighs.
-    pub fn shape_values(&self, t: f64) -> [f64; DEGREE + 1] {
+    /// The shape functions at t ∈ [−1, 1] of the element, what each sample (or end) weighs; `node` if t is that node of
+    /// the quadrature.
+    pub fn shape_values(&self, t: f64, node: Option<usize>) -> [f64; DEGREE + 1] {
         if self.is_ramp() {
             let mut shapes = [0.0; DEGREE + 1];
             shapes[0] = 0.5 * (1.0 - t);
             shapes[1] = 0.5 * (1.0 + t);
             return shapes;
         }
-        lagrange(t)
+        match node {
+            Some(node) => SHAPES[node],
+            None => lagrange(t),
+        }
     }
 
     /// V(t), rounded.
@@ -312,10 +317,10 @@ pub(crate) fn values<T: Scalar>(series: &Series<T>, t: f64) -> Matrix<T> {
         d: zero,
     };
     for k in (0..series.terms).rev() {
-        sum.a = sum.a.times(t) + series.u[0][k];
-        sum.b = sum.b.times(t) + series.u[1][k];
-        sum.c = sum.c.times(t) + series.v[0][k];
-        sum.d = sum.d.times(t) + series.v[1][k];
+        sum.a = sum.a.times(t) + series.u[k][0];
+        sum.b = sum.b.times(t) + series.u[k][1];
+        sum.c = sum.c.times(t) + series.v[k][0];
+        sum.d = sum.d.times(t) + series.v[k][1];
     }
     sum
 }
@@ -347,14 +352,15 @@ fn part_slope<T: Scalar>(
     let form = |x: T, z: T| y.b * x * x + difference * x * z - y.c * z * z;
     let mut by_energy = T::constant(0.0);
     let mut by_log_length = T::constant(0.0);
-    for (t, weight) in QUADRATURE.iter() {
+    for (node, (t, weight)) in QUADRATURE.iter().enumerate() {
+        let node = (count == 1).then_some(node);
         let phi = values(&series, *t);
         let density = form(phi.a, phi.b).scaled(half).times(*weight);
         let kinetic = -form(phi.c, phi.d).scaled(half).times(*weight);
         // position in the whole element
         let place = (2.0 * index as f64 + 1.0 + t) / count as f64 - 1.0;
         let ends = [0.5 * (1.0 - place), 0.5 * (1.0 + place)];
-        for (sum, share) in slope.samples.iter_mut().zip(p.shape_values(place)) {
+        for (sum, share) in slope.samples.iter_mut().zip(p.shape_values(place, node)) {
             *sum = *sum + density.times(share);
         }
         for (sum, share) in slope.mass.iter_mut().zip(ends) {

@@ -56,7 +56,7 @@ fn bounded(
     finder.surround(band)?;
     let middle = match finder.inside(band)? {
         Inside::At(reading) => reading.energy,
-        Inside::Unresolved => value_energy(ready, band, meter)?,
+        Inside::Unresolved(_) => value_energy(ready, band, meter)?,
     };
     let (relative, rounding) = super::uncertainty::width_spread(ready, middle);
     let own = (r as f64) * relative * value.value.abs() + rounding * value.value.abs();
@@ -70,10 +70,8 @@ fn bounded(
 fn value_energy(ready: &Ready, band: usize, meter: &Meter) -> Result<f64, SolveError> {
     let mut finder = Finder::<Double>::new(ready, meter);
     finder.surround(band)?;
-    match finder.inside(band)? {
-        Inside::At(reading) => Ok(reading.energy.round()),
-        Inside::Unresolved => Err(SolveError::NoBracket),
-    }
+    let (Inside::At(reading) | Inside::Unresolved(reading)) = finder.inside(band)?;
+    Ok(reading.energy.round())
 }
 
 /// The integral with its unsettled part, and the size of its terms. `None` if the band is narrower than the arithmetic.
@@ -84,8 +82,10 @@ fn integrate<T: Scalar>(
     meter: &Meter,
 ) -> Result<Option<(Bounded, f64)>, SolveError> {
     let mut finder = Finder::<T>::new(ready, meter);
-    let Inside::At(start) = finder.isolate(band)? else {
-        return Ok(None);
+    let start = match finder.isolate(band)? {
+        Inside::At(start) => start,
+        Inside::Unresolved(_) if T::UNIT == f64::UNIT => return Ok(None),
+        Inside::Unresolved(nearest) => return unresolved(&finder, &nearest, r).map(Some),
     };
     let mut curve = Curve {
         finder,
@@ -110,6 +110,33 @@ fn integrate<T: Scalar>(
     }
     curve.last = start;
     curve.tanh_sinh().map(|value| Some((value, curve.size)))
+}
+
+/// A band narrower than double-double separates: D is linear in it, J₁ = −1/D′; J₂ = D″/(2 D′³) bounds the others.
+fn unresolved<T: Scalar>(
+    finder: &Finder<T>,
+    nearest: &Reading<T>,
+    r: usize,
+) -> Result<(Bounded, f64), SolveError> {
+    let first = -1.0 / nearest.slope();
+    let (_, curvature, exponent) = finder.curvature(nearest.energy)?;
+    let second = curvature * power_of_two(exponent) * first * first * first;
+    if r == 1 {
+        return Ok((
+            Bounded {
+                value: first,
+                error: second.abs() + 1e-12 * first.abs(),
+            },
+            0.0,
+        ));
+    }
+    Ok((
+        Bounded {
+            value: 0.0,
+            error: second.abs(),
+        },
+        0.0,
+    ))
 }
 
 /// π to 106 bits.

@@ -188,7 +188,9 @@ fn root_at<T: Scalar>(
     let mut finder = Finder::<T>::new(ready, meter);
     let start = match finder.isolate(band)? {
         Inside::At(reading) => reading.energy,
-        Inside::Unresolved => return Ok(None),
+        Inside::Unresolved(reading) => {
+            return Ok((T::UNIT < f64::UNIT).then(|| reading.energy.to_double()));
+        }
     };
     let (energy, _) = finder.root(level_target(band, share), start)?;
     Ok(Some(energy.to_double()))

@@ -136,14 +136,16 @@ pub(crate) fn samples_to_polynomial(samples: &[f64]) -> Vec<Double> {
     BASIS.powers.iter().map(row_sum).collect()
 }
 
-/// Value at t of the polynomial Σ_j ℓ_j(t) s_j belongs to: all ℓ_j(t) in `f64`.
+/// All ℓ_j(t): the value at t of the polynomial through samples s_j is Σ ℓ_j(t) s_j.
 pub(crate) fn lagrange(t: f64) -> [f64; NODES] {
-    let p = legendre_values(Double::new(t));
     let mut result = [0.0; NODES];
+    let (mut before, mut p) = (0.0, 1.0);
     for (k, row) in BASIS.legendre.iter().enumerate() {
         for (value, share) in result.iter_mut().zip(row) {
-            *value += share * p[k].high;
+            *value += share * p;
         }
+        let k = k as f64;
+        (before, p) = (p, ((2.0 * k + 1.0) * t * p - k * before) / (k + 1.0));
     }
     result
 }

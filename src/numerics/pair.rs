@@ -159,12 +159,13 @@ fn polynomial_forms(
     for index in 0..count {
         let (series, half) = part_series(p, index, count, energy);
         let start = inverse(&values(&series, -1.0)).product(&unscaled(&before));
-        for (t, weight) in quadrature() {
+        for (node, (t, weight)) in quadrature().iter().enumerate() {
+            let node = (count == 1).then_some(node);
             let phi = values(&series, *t).product(&start);
             let place = (2.0 * index as f64 + 1.0 + t) / count as f64 - 1.0;
             let [potential, mass] = [below(&phi), above(&phi)];
             let weight = weight * half;
-            for (sum, share) in piece.samples.iter_mut().zip(p.shape_values(place)) {
+            for (sum, share) in piece.samples.iter_mut().zip(p.shape_values(place, node)) {
                 sum.add(potential, weight * share);
             }
             let ends = [0.5 * (1.0 - place), 0.5 * (1.0 + place)];

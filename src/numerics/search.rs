@@ -17,6 +17,10 @@ use super::sweep::{Reading, product, read};
 const PATIENCE: usize = 260;
 /// s D − 2 above which a gap is wide: its edges are found apart.
 const WIDE: f64 = 1e-4;
+/// D′ relative to its size in the bands at which the top of s D is as good as found.
+const SETTLED: f64 = 1e-5;
+/// Noise of D above which a reading inside a band means nothing.
+const NOISY: f64 = 0.1;
 /// A band point is taken when N is at least this far from whole.
 const INSIDE: f64 = 0.02;
 
@@ -32,16 +36,29 @@ pub(crate) struct Finder<'a, T> {
     readings: Vec<Reading<T>>,
 }
 
-/// A band narrower than the arithmetic can separate, or a reading inside it.
+/// A reading inside a band, or, of a band narrower than the arithmetic can separate or hidden in its noise,
+/// the reading nearest to it.
 pub(crate) enum Inside<T> {
     At(Reading<T>),
-    Unresolved,
+    Unresolved(Reading<T>),
+}
+
+impl<T: Scalar> Inside<T> {
+    /// The reading; `None` for an unresolved band in an arithmetic that has a finer one.
+    pub fn accept(self) -> Option<Reading<T>> {
+        match self {
+            Inside::At(reading) => Some(reading),
+            Inside::Unresolved(reading) => (T::UNIT < f64::UNIT).then_some(reading),
+        }
+    }
 }
 
 /// Where s D is greatest between two bands, or a point of a wide gap.
 pub(crate) enum GapPoint<T> {
     Wide(T),
     Narrow(T),
+    /// rounding hides whether there is a gap
+    Noisy(T),
 }
 
 /// What a root search is after: N = `states` reached from below (`upper`: the edge at the upper
@@ -142,21 +159,33 @@ impl<'a, T: Scalar> Finder<'a, T> {
         Err(SolveError::NoBracket)
     }
 
+    /// Downwards from the lowest potential until no level lies below; towards, never past, the energy
+    /// at which a mass would vanish.
     fn reach_down(&mut self, step: f64) -> Result<(), SolveError> {
+        let lowest = self.ready.least_energy;
         let mut below = self.ready.floor - 1e-3 * self.ready.kinetic_scale();
+        if below <= lowest {
+            below = lowest + 1e-6 * (lowest.abs() + self.ready.kinetic_scale());
+        }
         let mut step = step.max(self.ready.floor.abs() * 1e-12);
         for _ in 0..PATIENCE {
-            let lowest = self.ready.least_energy;
-            if below <= lowest {
-                return Err(SolveError::MassOutOfRange);
-            }
             if self.read(T::constant(below))?.states <= 0.0 {
                 return Ok(());
             }
-            below -= step;
+            let next = below - step;
             step *= 2.0;
+            below = if next > lowest {
+                next
+            } else {
+                0.5 * (below + lowest)
+            };
             if !below.is_finite() {
                 break;
+            }
+            if lowest.is_finite()
+                && below - lowest <= 1e-9 * (lowest.abs() + self.ready.kinetic_scale())
+            {
+                return Err(SolveError::MassOutOfRange);
             }
         }
         Err(SolveError::NoBracket)
@@ -170,25 +199,33 @@ impl<'a, T: Scalar> Finder<'a, T> {
             let first = self.readings.partition_point(|r| r.states <= low);
             let last = self.readings.partition_point(|r| r.states < high);
             if let Some(found) = self.best_inside(first, last, low) {
-                return Ok(Inside::At(found));
+                return Ok(if found.noise() < NOISY {
+                    Inside::At(found)
+                } else {
+                    Inside::Unresolved(found)
+                });
             }
             if first == 0 || last >= self.readings.len() {
                 return Err(SolveError::NoBracket);
             }
             let (left, right) = (self.readings[first - 1], self.readings[last]);
             let width = (right.energy - left.energy).leading();
-            if width
-                <= 2.0
-                    * self
-                        .resolution(left.energy)
-                        .max(self.resolution(right.energy))
-            {
+            let resolution = self
+                .resolution(left.energy)
+                .max(self.resolution(right.energy));
+            if width <= 2.0 * resolution {
                 // a point too near an edge is better than none
-                return Ok(self
+                let inner = self
                     .readings
                     .get(first)
-                    .filter(|_| first < last)
-                    .map_or(Inside::Unresolved, |r| Inside::At(*r)));
+                    .filter(|r| first < last && r.noise() < NOISY);
+                let size = |r: &Reading<T>| r.discriminant().abs();
+                let nearest = if size(&left) < size(&right) {
+                    left
+                } else {
+                    right
+                };
+                return Ok(inner.map_or(Inside::Unresolved(nearest), |r| Inside::At(*r)));
             }
             let next = self.propose_inside(first, last, low, halve);
             self.read(next)?;
@@ -217,15 +254,10 @@ impl<'a, T: Scalar> Finder<'a, T> {
         let (left, right) = (&self.readings[first - 1], &self.readings[last]);
         let middle = (left.energy + right.energy).times(0.5);
         if first < last {
-            // some entry just inside an edge: step away from it
-            let (inner_left, inner_right) = (&self.readings[first], &self.readings[last - 1]);
-            let left_room = (inner_left.energy - left.energy).leading();
-            let right_room = (right.energy - inner_right.energy).leading();
-            return if right_room > left_room {
-                (inner_right.energy + right.energy).times(0.5)
-            } else {
-                (left.energy + inner_left.energy).times(0.5)
-            };
+            // some entry just inside an edge: between the two on either side of the band's middle
+            let split =
+                first + self.readings[first..last].partition_point(|r| r.states < low + 0.5);
+            return (self.readings[split - 1].energy + self.readings[split].energy).times(0.5);
         }
         if halve {
             return middle;
@@ -266,20 +298,15 @@ impl<'a, T: Scalar> Finder<'a, T> {
     /// D is monotone.
     pub fn isolate(&mut self, band: usize) -> Result<Inside<T>, SolveError> {
         self.surround(band + 1)?;
-        let Inside::At(middle) = self.inside(band)? else {
-            return Ok(Inside::Unresolved);
-        };
-        let Inside::At(above) = self.inside(band + 1)? else {
-            return Ok(Inside::Unresolved);
-        };
+        let found = self.inside(band)?;
+        let (Inside::At(middle) | Inside::Unresolved(middle)) = found;
+        let (Inside::At(above) | Inside::Unresolved(above)) = self.inside(band + 1)?;
         self.gap_point(middle, above, is_positive(band + 1))?;
         if band > 0 {
-            let Inside::At(below) = self.inside(band - 1)? else {
-                return Ok(Inside::Unresolved);
-            };
+            let (Inside::At(below) | Inside::Unresolved(below)) = self.inside(band - 1)?;
             self.gap_point(below, middle, is_positive(band))?;
         }
-        Ok(Inside::At(middle))
+        Ok(found)
     }
 
     /// A point in the gap between readings in neighbouring bands, or where s D is greatest.
@@ -291,9 +318,9 @@ impl<'a, T: Scalar> Finder<'a, T> {
     ) -> Result<GapPoint<T>, SolveError> {
         let (mut left, mut right) = (left, right);
         // entries already in the gap
-        let excess = |r: &Reading<T>| r.excess(positive).0.leading() * power_of_two(r.exponent);
         for r in &self.readings {
-            if less(left.energy, r.energy) && less(r.energy, right.energy) && excess(r) > WIDE {
+            let between = less(left.energy, r.energy) && less(r.energy, right.energy);
+            if between && r.rises(positive, WIDE) {
                 return Ok(GapPoint::Wide(r.energy));
             }
         }
@@ -302,6 +329,7 @@ impl<'a, T: Scalar> Finder<'a, T> {
             if positive { slope } else { -slope }
         };
         let (mut up, mut down) = (signed(&left), signed(&right));
+        let steepest = up.abs().max(down.abs());
         let mut halve = false;
         for _ in 0..PATIENCE {
             let width = (right.energy - left.energy).leading();
@@ -317,21 +345,15 @@ impl<'a, T: Scalar> Finder<'a, T> {
                 left.energy + T::constant(width * share.clamp(least, 1.0 - least))
             };
             let reading = self.read(energy)?;
-            if excess(&reading) > WIDE {
+            if reading.rises(positive, WIDE) {
                 return Ok(GapPoint::Wide(energy));
             }
+            if reading.noise() > WIDE && T::UNIT == f64::UNIT {
+                return Ok(GapPoint::Noisy(energy));
+            }
             let slope = signed(&reading);
-            let noise = 8.0
-                * T::UNIT
-                * reading
-                    .matrix
-                    .a
-                    .slope
-                    .leading()
-                    .abs()
-                    .max(reading.matrix.d.slope.leading().abs())
-                * power_of_two(reading.exponent);
-            if slope.abs() <= noise {
+            // near enough for Newton's steps by D″
+            if slope.abs() <= SETTLED * steepest {
                 return Ok(GapPoint::Narrow(energy));
             }
             if slope > 0.0 {
@@ -353,15 +375,20 @@ impl<'a, T: Scalar> Finder<'a, T> {
         Err(SolveError::NoBracket)
     }
 
-    /// D″ at an energy, and a reading there, without the exponent's effect: as `f64`.
-    pub fn curvature(&self, energy: T) -> Result<f64, SolveError> {
+    /// D′/D″ at an energy, D″, and the power of two of D″.
+    pub fn curvature(&self, energy: T) -> Result<(T, f64, i64), SolveError> {
         self.meter.spend()?;
         let variable = Dual {
             value: Dual::variable(energy),
             slope: Dual::constant(1.0),
         };
-        let (m, exponent, _) = product(self.ready, variable);
-        Ok((m.a + m.d).slope.slope.leading() * power_of_two(exponent))
+        let whole = product(self.ready, variable);
+        let second = (whole.matrix.a + whole.matrix.d).slope;
+        Ok((
+            second.value / second.slope,
+            second.slope.leading(),
+            whole.exponent,
+        ))
     }
 
     /// The root of a target, from `start`, within what the ledger brackets. Gives the root and the

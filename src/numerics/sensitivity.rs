@@ -121,6 +121,7 @@ fn differentiate(
                     energy,
                     slope: 1.0,
                     offset: 0.0,
+                    noise: 0.0,
                 },
                 false,
                 meter,

@@ -4,7 +4,7 @@ use super::cell::{Bounded, Budget, Cell, Meter, Ready, SolveError, prepare};
 use super::double::Double;
 use super::mesh::gauss_legendre;
 use super::scalar::{Scalar, power_of_two};
-use super::search::{Finder, GapPoint, Inside, Target, is_positive};
+use super::search::{Finder, GapPoint, Target, is_positive};
 use super::sweep::{Reading, read};
 
 /// Where in the zone an edge lies.
@@ -69,6 +69,8 @@ pub(crate) struct RawEdge {
     /// D′, possibly beyond the range of `f64`, at `energy` − `offset`
     pub slope: f64,
     pub offset: f64,
+    /// what the rounding of the arithmetic leaves open of the energy
+    pub noise: f64,
 }
 
 /// A gap as found: its lower and upper edge, or closed.
@@ -121,9 +123,9 @@ fn find_in<T: Scalar>(
     finder.surround(bands)?;
     let mut inside = Vec::with_capacity(bands + 1);
     for band in 0..=bands {
-        match finder.inside(band)? {
-            Inside::At(reading) => inside.push(reading),
-            Inside::Unresolved => return Ok(None),
+        match finder.inside(band)?.accept() {
+            Some(reading) => inside.push(reading),
+            None => return Ok(None),
         }
     }
     let polish = ready.layered;
@@ -138,7 +140,10 @@ fn find_in<T: Scalar>(
     )?;
     let mut gaps = Vec::with_capacity(bands);
     for band in 0..bands {
-        gaps.push(find_gap(&mut finder, &inside, band, polish)?);
+        match find_gap(&mut finder, &inside, band, polish)? {
+            Some(gap) => gaps.push(gap),
+            None => return Ok(None),
+        }
     }
     let exact = polish || T::UNIT < f64::UNIT;
     let mut widths = Vec::with_capacity(bands);
@@ -212,7 +217,7 @@ fn find_gap<T: Scalar>(
     inside: &[Reading<T>],
     band: usize,
     polish: bool,
-) -> Result<RawGap, SolveError> {
+) -> Result<Option<RawGap>, SolveError> {
     let gap = band + 1;
     let (ready, meter) = (finder.ready, finder.meter);
     let lower = Target::edge(gap, false);
@@ -223,18 +228,19 @@ fn find_gap<T: Scalar>(
             let lower = settle(ready, meter, lower, energy, &reading, polish)?;
             let (energy, reading) = finder.root(upper, inside[band + 1].energy)?;
             let upper = settle(ready, meter, upper, energy, &reading, polish)?;
-            Ok(RawGap {
+            Ok(Some(RawGap {
                 lower,
                 upper,
-                noise: 0.0,
+                noise: lower.noise + upper.noise,
                 narrow: false,
-            })
+            }))
         }
+        GapPoint::Noisy(_) => Ok(None),
         GapPoint::Narrow(centre) => {
             if polish {
-                narrow_pair(ready, meter, centre.to_double(), is_positive(gap))
+                narrow_pair(ready, meter, centre.to_double(), is_positive(gap)).map(Some)
             } else {
-                narrow_pair(ready, meter, centre, is_positive(gap))
+                narrow_pair(ready, meter, centre, is_positive(gap)).map(Some)
             }
         }
     }
@@ -250,28 +256,36 @@ fn settle<T: Scalar>(
     polish: bool,
 ) -> Result<RawEdge, SolveError> {
     if !polish || T::UNIT < f64::UNIT {
-        return Ok(RawEdge {
-            energy: energy.to_double(),
-            slope: reading.slope(),
-            offset: 0.0,
-        });
+        return Ok(raw_edge(&target, energy, reading));
     }
+    let fine = Target {
+        states: target.states,
+        ..Target::<Double>::edge(0, target.upper)
+    };
+    let fine = Target {
+        positive: target.positive,
+        ..fine
+    };
     let start = energy.to_double();
     let reading = read(ready, start, meter)?;
-    let fine = Target {
-        depth: Double::ZERO,
-        margin: 0.0,
-        states: target.states,
-        upper: target.upper,
-        positive: target.positive,
-    };
     let (residual, slope, _) = fine.residual(&reading);
     let step = -(residual / slope);
     Ok(RawEdge {
-        energy: start + step,
-        slope: reading.slope(),
         offset: step.leading(),
+        ..raw_edge(&fine, start + step, &reading)
     })
+}
+
+/// An edge from the reading at or next to it; the noise of each factor adds up.
+fn raw_edge<T: Scalar>(target: &Target<T>, energy: T, reading: &Reading<T>) -> RawEdge {
+    let (_, slope, noise) = target.residual(reading);
+    let noise = noise / slope.leading().abs() * reading.weight;
+    RawEdge {
+        energy: energy.to_double(),
+        slope: reading.slope(),
+        offset: 0.0,
+        noise: if noise.is_finite() { noise } else { 0.0 },
+    }
 }
 
 /// Both edges of a gap so narrow that s D − 2 hardly rises above 0 in it, from the place where
@@ -284,66 +298,74 @@ fn narrow_pair<T: Scalar>(
 ) -> Result<RawGap, SolveError> {
     let finder = Finder::<T>::new(ready, meter);
     let mut centre = centre;
-    let mut curvature = 0.0;
-    for _ in 0..2 {
-        curvature = finder.curvature(centre)?;
-        let reading = read(ready, centre, meter)?;
-        let step = -(reading.trace().slope.shifted(reading.exponent) / T::constant(curvature));
-        centre = centre + step;
+    let (mut curvature, mut exponent) = (0.0, 0);
+    for _ in 0..6 {
+        let (step, second, power) = finder.curvature(centre)?;
+        (curvature, exponent) = (second, power);
+        if !step.leading().is_finite() {
+            break;
+        }
+        centre = centre - step;
+        if step.leading().abs()
+            <= 1e-2 * finder.resolution(centre).sqrt() * ready.kinetic_scale().sqrt()
+        {
+            // the next step would be below the arithmetic's resolution
+            break;
+        }
     }
     let reading = read(ready, centre, meter)?;
     let (excess, noise) = reading.excess(positive);
-    let scale = power_of_two(reading.exponent);
-    let height = excess.leading() * scale;
+    let over_curvature = 2.0 * power_of_two(reading.exponent - exponent) / curvature.abs();
     // the half-gap's noise: rounding of the height, and of the place
-    let half_noise = (2.0 * noise * scale / curvature.abs()).sqrt() + finder.resolution(centre);
-    let half = (2.0 * height.max(0.0) / curvature.abs()).sqrt();
+    let half_noise = (reading.weight * noise * over_curvature).sqrt() + finder.resolution(centre);
+    let half = (excess.leading().max(0.0) * over_curvature).sqrt();
+    let middle = RawEdge {
+        energy: centre.to_double(),
+        slope: 0.0,
+        offset: 0.0,
+        noise: half_noise,
+    };
     if half <= half_noise {
-        let edge = RawEdge {
-            energy: centre.to_double(),
-            slope: 0.0,
-            offset: 0.0,
-        };
         return Ok(RawGap {
-            lower: edge,
-            upper: edge,
+            lower: middle,
+            upper: middle,
             noise: 2.0 * half_noise,
             narrow: true,
         });
     }
-    let mut edges = [RawEdge {
-        energy: centre.to_double(),
-        slope: 0.0,
-        offset: 0.0,
-    }; 2];
-    let mut noises = 0.0;
-    for (edge, direction) in edges.iter_mut().zip([-1.0, 1.0]) {
-        let mut energy = centre + T::constant(direction * half);
+    let mut edges = [middle; 2];
+    for (edge, upper) in edges.iter_mut().zip([false, true]) {
+        let mut energy = centre + T::constant(if upper { half } else { -half });
+        let target = Target {
+            positive,
+            ..Target::<T>::edge(0, upper)
+        };
         let mut last = read(ready, energy, meter)?;
-        for _ in 0..3 {
-            let target = Target::<T>::edge(usize::from(!positive), direction > 0.0);
-            let (residual, slope, noise) = target.residual(&last);
+        let mut offset = 0.0;
+        for _ in 0..4 {
+            let (residual, slope, _) = target.residual(&last);
             let step = -(residual / slope);
-            if !(step.leading().abs() < 0.5 * half) {
+            let size = step.leading().abs();
+            if !(size < 0.5 * half) {
                 break;
             }
             energy = energy + step;
-            noises = (noise / slope.leading().abs()) + finder.resolution(energy);
-            last = read(ready, energy, meter)?;
-            if step.leading().abs() <= finder.resolution(energy) {
+            // Newton's next step would be about size²/half
+            if size * size <= 0.1 * half * finder.resolution(energy) {
+                offset = step.leading();
                 break;
             }
+            last = read(ready, energy, meter)?;
         }
-        *edge = RawEdge {
-            energy: energy.to_double(),
-            slope: last.slope(),
-            offset: 0.0,
-        };
+        *edge = raw_edge(&target, energy, &last);
+        edge.offset = offset;
+        edge.noise += finder.resolution(energy);
     }
+    let noise = edges[0].noise + edges[1].noise;
     Ok(RawGap {
         lower: edges[0],
         upper: edges[1],
-        noise: 2.0 * noises,
+        noise,
         narrow: true,
     })
 }

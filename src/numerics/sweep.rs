@@ -25,6 +25,8 @@ pub(crate) struct Reading<T> {
     pub exponent: i64,
     /// zeros of the Dirichlet solution in (0, a]
     pub count: usize,
+    /// units of rounding that the factors' entries gather, relative to the largest terms
+    pub weight: f64,
     /// N(E)
     pub states: f64,
 }
@@ -32,15 +34,26 @@ pub(crate) struct Reading<T> {
 /// Largest magnitude before the product is brought back into range.
 const LARGE: f64 = 1e60;
 
-/// Product over the cell of any scalar, with exponent and zero count.
-pub(crate) fn product<T: Scalar>(ready: &Ready, energy: T) -> (Matrix<T>, i64, usize) {
+/// Product over the cell of any scalar.
+pub(crate) struct Product<T> {
+    pub matrix: Matrix<T>,
+    pub exponent: i64,
+    pub count: usize,
+    pub weight: f64,
+}
+
+/// Product over the cell of any scalar, with exponent and zero count. An entry of a factor is wrong by a few units, and
+/// by √|z| more from the rounding of z.
+pub(crate) fn product<T: Scalar>(ready: &Ready, energy: T) -> Product<T> {
     let mut state = Matrix::identity();
     let mut exponent = 0;
     let mut count = 0;
+    let mut weight = 4.0;
     for element in &ready.elements {
-        factors(element, energy, |matrix, shift, phase| {
+        factors(element, energy, |matrix, shift, z| {
             let next = matrix.product(&state);
-            count += zeros(&state, &next, phase);
+            count += zeros(&state, &next, (-z).max(0.0).sqrt());
+            weight += 4.0 + 4.0 * z.abs().sqrt();
             state = next;
             exponent += shift;
             let size = state.magnitude();
@@ -51,7 +64,12 @@ pub(crate) fn product<T: Scalar>(ready: &Ready, energy: T) -> (Matrix<T>, i64, u
             }
         });
     }
-    (state, exponent, count)
+    Product {
+        matrix: state,
+        exponent,
+        count,
+        weight,
+    }
 }
 
 /// Sign just right of a point.
@@ -104,7 +122,12 @@ pub(crate) fn read<T: Scalar>(
     if energy.leading() <= ready.least_energy {
         return Err(SolveError::MassOutOfRange);
     }
-    let (matrix, exponent, count) = product(ready, Dual::variable(energy));
+    let Product {
+        matrix,
+        exponent,
+        count,
+        weight,
+    } = product(ready, Dual::variable(energy));
     if !matrix.magnitude().is_finite() {
         return Err(SolveError::NotFinite);
     }
@@ -113,6 +136,7 @@ pub(crate) fn read<T: Scalar>(
         matrix,
         exponent,
         count,
+        weight,
         states: 0.0,
     };
     reading.states = reading.integrated_states();
@@ -133,6 +157,23 @@ impl<T: Scalar> Reading<T> {
     /// D′ as `f64`; ±∞ beyond the range.
     pub fn slope(&self) -> f64 {
         self.trace().slope.leading() * power_of_two(self.exponent)
+    }
+
+    /// Rounding to expect of D itself, without the exponent.
+    fn scaled_noise(&self) -> f64 {
+        let size = self.matrix.a.value.leading().abs() + self.matrix.d.value.leading().abs();
+        T::UNIT * self.weight * (size + 2.0 * power_of_two(-self.exponent))
+    }
+
+    /// Rounding to expect of D itself.
+    pub fn noise(&self) -> f64 {
+        self.scaled_noise() * power_of_two(self.exponent)
+    }
+
+    /// Is s D − 2 above `height`, beyond doubt?
+    pub fn rises(&self, positive: bool, height: f64) -> bool {
+        let excess = self.excess(positive).0.leading();
+        excess > 4.0 * self.scaled_noise() && excess * power_of_two(self.exponent) > height
     }
 
     /// s D − 2, without the exponent, in the better form; and the rounding to expect of it

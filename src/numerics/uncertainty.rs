@@ -10,10 +10,11 @@
 //! * the last rounding.
 
 use super::cell::{Bounded, Mass, Ready};
+use super::double::Double;
 use super::element::Element;
 use super::gradient::{Gradient, gradient};
 use super::pair::pair;
-use super::scalar::{Dual, power_of_two};
+use super::scalar::{Dual, Scalar, power_of_two};
 use super::search::is_positive;
 use super::sensitivity::{PieceSensitivity, difference, ratio, width_slopes};
 use super::solve::{Band, BandEdge, Bands, Gap, NARROW_WIDTH, Raw, RawEdge, Wave};
@@ -67,11 +68,11 @@ pub(crate) fn level_bound(ready: &Ready, energy: f64) -> f64 {
     let found = gradient(ready, energy);
     let slopes = ratio(&found, |p| -p / found.energy_slope);
     let (inputs, mesh) = spread(ready, &slopes);
-    let near = pair_error(ready, energy);
+    let (near, _) = pair_error(ready, energy, false);
     let bound = energy.abs() * UNIT
         + f64::EPSILON * inputs
         + mesh
-        + UNIT * found.rounding / found.energy_slope.abs();
+        + units(false) * found.rounding / found.energy_slope.abs();
     // near a closed gap the doublet's bound is the smaller and the right one
     if near < bound && near_edge(&found) {
         near
@@ -107,52 +108,54 @@ fn near_edge(found: &Gradient<f64>) -> bool {
         .iter()
         .map(|p| p.potential[0].abs() + p.potential[1].abs())
         .sum();
-    slope == 0.0 || found.rounding * UNIT > 1e-9 * slope.max(whole)
+    slope == 0.0 || found.rounding * UNIT > 1e-10 * slope.max(whole)
 }
 
-/// Bound on the error of either of two levels in a doublet.
-fn pair_error(ready: &Ready, energy: f64) -> f64 {
+/// Bound on the error of either of two levels in a doublet, and the rounding in it.
+fn pair_error(ready: &Ready, energy: f64, exact: bool) -> (f64, f64) {
     let found = pair(ready, energy);
     let (mean, mesh) = spread(ready, &found.means);
     let (rate, split) = spread(ready, &found.rates);
-    energy.abs() * UNIT
-        + f64::EPSILON * (mean + 0.5 * rate)
-        + mesh
-        + split
-        + 6.0 * UNIT * found.rounding
+    let rounding = units(exact) * found.rounding;
+    let inputs = f64::EPSILON * (mean + 0.5 * rate);
+    (
+        energy.abs() * UNIT + inputs + mesh + split + rounding,
+        rounding,
+    )
 }
 
 /// Size of a gap and the bound on it.
-fn gap_bound(
-    ready: &Ready,
-    raw: &Raw,
-    band: usize,
-    edges: Option<(&EdgeBound, &EdgeBound)>,
-) -> (f64, f64) {
+fn gap_bound(ready: &Ready, raw: &Raw, band: usize, edges: (&EdgeBound, &EdgeBound)) -> (f64, f64) {
     let gap = raw.gaps[band];
+    let (lower, upper) = edges;
     let size = (gap.upper.energy - gap.lower.energy).round().max(0.0);
     if gap.narrow {
         let found = pair(ready, 0.5 * (gap.lower.energy + gap.upper.energy).round());
         let (rate, mesh) = spread(ready, &found.rates);
-        let rounding = if raw.exact {
-            gap.noise
-        } else {
-            6.0 * UNIT * found.rounding + gap.noise
-        };
+        let rounding = units(raw.exact) * found.rounding + gap.noise;
         return (size, f64::EPSILON * rate + mesh + rounding + UNIT * size);
     }
-    let Some((lower, upper)) = edges else {
-        return (size, 0.0);
-    };
     let (inputs, mesh) = spread(ready, &difference(&upper.slopes, &lower.slopes));
-    let own = lower.rounding + upper.rounding;
+    let own = lower.rounding + upper.rounding + gap.noise;
     (size, f64::EPSILON * inputs + mesh + own + UNIT * size)
 }
 
 /// Is the gap above `band` indistinguishable from zero?
 pub(crate) fn is_closed(ready: &Ready, raw: &Raw, band: usize) -> bool {
-    let (size, error) = gap_bound(ready, raw, band, None);
-    raw.gaps[band].narrow && size <= error
+    let gap = raw.gaps[band];
+    let bound = |edge: &RawEdge| edge_bound(ready, edge, band + 1, raw.exact, gap.narrow);
+    let (size, error) = gap_bound(ready, raw, band, (&bound(&gap.lower), &bound(&gap.upper)));
+    size <= error
+}
+
+/// Relative rounding of an entry of a factor: of the `f64` sweep, or of the double-double one whose series and
+/// doublings lose up to ten bits in a thick wall.
+fn units(exact: bool) -> f64 {
+    if exact {
+        1024.0 * Double::UNIT
+    } else {
+        6.0 * UNIT
+    }
 }
 
 /// What is known about an edge besides its energy.
@@ -170,15 +173,20 @@ fn edge_bound(ready: &Ready, raw: &RawEdge, gap: usize, exact: bool, narrow: boo
     let slope = found.energy_slope;
     let slopes = ratio(&found, |p: Dual<f64>| -p.value / slope.value);
     let (inputs, mesh) = spread(ready, &slopes);
-    let rounding = if exact {
-        0.0
+    let found_slope = if raw.slope == 0.0 {
+        slope.value
     } else {
-        UNIT * found.rounding / slope.value.abs()
+        raw.slope * power_of_two(-found.exponent)
     };
+    let mut rounding = units(exact) * found.rounding / found_slope.abs();
     let mut error = energy.abs() * UNIT + f64::EPSILON * inputs + mesh + rounding;
     if narrow {
-        error = error.min(pair_error(ready, energy));
+        let (near, own) = pair_error(ready, energy, exact);
+        if near < error || error.is_nan() {
+            (error, rounding) = (near, own);
+        }
     }
+    error += raw.noise;
     // m* = −s D′/a², the derivative of D′ along the edge
     let scale = power_of_two(found.exponent) / (ready.period * ready.period);
     let sign = if is_positive(gap) { -1.0 } else { 1.0 };
@@ -188,11 +196,7 @@ fn edge_bound(ready: &Ready, raw: &RawEdge, gap: usize, exact: bool, narrow: boo
         scale * (p.slope - slope.slope * p.value / slope.value)
     });
     let (mass_inputs, mass_mesh) = spread(ready, &along);
-    let drift = if exact {
-        UNIT * energy.abs() * 1e-3
-    } else {
-        rounding.min(error)
-    };
+    let drift = rounding.min(error) + raw.noise;
     let own = if exact { 4.0 } else { found.rounding_count() };
     let mass_error = f64::EPSILON * (mass_inputs + 2.0 * mass.abs())
         + mass_mesh
@@ -230,7 +234,7 @@ pub(crate) fn finish(ready: &Ready, raw: &Raw, sweeps: usize) -> Bands {
         let gap = raw.gaps[band];
         let top = bound(&gap.lower, band + 1, gap.narrow);
         let next = bound(&gap.upper, band + 1, gap.narrow);
-        let (size, error) = gap_bound(ready, raw, band, Some((&top, &next)));
+        let (size, error) = gap_bound(ready, raw, band, (&top, &next));
         let closed = size <= error;
         gaps.push(Gap {
             size: Bounded {
@@ -239,7 +243,14 @@ pub(crate) fn finish(ready: &Ready, raw: &Raw, sweeps: usize) -> Bands {
             },
             closed,
         });
-        let width = width(ready, raw, band, (&bottom, &below), (&gap.lower, &top));
+        let width = width(
+            ready,
+            raw,
+            band,
+            (&bottom, &below),
+            (&gap.lower, &top),
+            (touching, closed),
+        );
         bands.push(Band {
             bottom: edge(&bottom, &below, band, touching),
             top: edge(&gap.lower, &top, band + 1, closed),
@@ -280,10 +291,12 @@ fn width(
     band: usize,
     bottom: (&RawEdge, &EdgeBound),
     top: (&RawEdge, &EdgeBound),
+    touching: (bool, bool),
 ) -> Bounded {
     let difference_of_edges = (top.0.energy - bottom.0.energy).round();
     let (middle, _, _) = raw.inside[band];
-    if let Some(value) = raw.widths[band] {
+    let isolated = !(touching.0 || touching.1);
+    if let Some(value) = raw.widths[band].filter(|_| isolated) {
         let (inputs, mesh) = spread(ready, &width_slopes(ready, middle.round()));
         let own = UNIT * (8.0 + 6.0 * ready.elements.len() as f64) * value;
         return Bounded {
@@ -297,11 +310,7 @@ fn width(
     } else {
         spread(ready, &difference(&top.1.slopes, &bottom.1.slopes))
     };
-    let own = if raw.exact {
-        0.0
-    } else {
-        top.1.rounding + bottom.1.rounding
-    };
+    let own = top.0.noise + bottom.0.noise + top.1.rounding + bottom.1.rounding;
     Bounded {
         value,
         error: f64::EPSILON * inputs + mesh + own + 2.0 * UNIT * value,

@@ -137,7 +137,8 @@ impl Analyst {
             .map(|section| section.depth)
             .min()
             .unwrap_or(request.depth);
-        let findings = findings(file, &sections, self.used_by_others(world, file), depth);
+        let used = self.used_by_others(world, file) || request.source.is_used(&file.path);
+        let findings = findings(file, &sections, used, depth);
         Some(FileAnalysis {
             file: id,
             path: file.path.clone(),

@@ -78,8 +78,11 @@ pub fn proposals(
     let (_, entry) = tree.entry_at(offset)?;
     let section = &entry.section;
     let byte = offset.checked_sub(entry.start)?;
-    let line = section.line_at(byte)?;
-    let before = Span::new(line.span.start, byte).of(&section.text);
+    // An empty text has no line yet.
+    let line = section
+        .line_at(byte)
+        .map_or(Span::default(), |line| line.span);
+    let before = Span::new(line.start, byte).of(&section.text);
     if let Some(written) = open_string(before) {
         let first = before.split_whitespace().next();
         let path = matches!(first, Some("use" | "table")).then(|| written.to_owned())?;
@@ -100,7 +103,7 @@ pub fn proposals(
     } else {
         word
     };
-    let typed = Span::new(line.span.start, word.start.max(line.span.start)).of(&section.text);
+    let typed = Span::new(line.start, word.start.max(line.start)).of(&section.text);
     let typed = typed
         .split_whitespace()
         .filter(|word| *word != "\\")

@@ -280,7 +280,7 @@ mod tests {
     use super::*;
     use crate::syntax::read;
 
-    const TEXT: &str = "use \"a.cren\"\nuse \"b.cren\"\nlet s = 8 nm\n\n# One wall.\n# Two lines.\nmaterial wall like base\n  edge 2 * (s + 1) meV\n\ncrystal tern\n  title \"T\"\n  layer s of wall\n  measure line = gap 1\n\n# end\n";
+    const TEXT: &str = "use \"a.cren\"\nuse \"b.cren\"\nlet s = 8 nm\n\n# One wall.\n# Two lines.\nmaterial wall like base\n  edge 2 meV * (s + 1)\n\ncrystal tern\n  title \"T\"\n  layer s of wall\n  measure line = gap 1\n\n# end\n";
 
     fn offset(needle: &str) -> u32 {
         TEXT.find(needle)
@@ -332,7 +332,7 @@ mod tests {
         let texts: Vec<&str> = spans.iter().map(|span| span.of(TEXT)).collect();
         assert_eq!(texts.first(), Some(&"s"));
         assert!(texts.contains(&"s + 1"), "{texts:?}");
-        assert!(texts.contains(&"edge 2 * (s + 1) meV"), "{texts:?}");
+        assert!(texts.contains(&"edge 2 meV * (s + 1)"), "{texts:?}");
         assert_eq!(texts.last(), Some(&TEXT));
         for pair in spans.windows(2) {
             if let [inner, outer] = pair {

@@ -46,6 +46,9 @@ fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
     let Some(crystal) = subject.crystal.filter(|crystal| crystal.dimension >= 2) else {
         return;
     };
+    if crystal.potential.waves.iter().all(|wave| wave.star) {
+        return;
+    }
     let operations = point_operations(&crystal.primitive_values());
     let written: Vec<&[i64]> = crystal
         .potential
@@ -99,7 +102,7 @@ fn finding(
     let some: Vec<_> = missing
         .iter()
         .take(3)
-        .map(|index| words::index(index))
+        .map(|index| words::index(&upright(index)))
         .collect();
     let more = if missing.len() > 3 { " …" } else { "" };
     let alone = missing.len() + 1 == star.len();
@@ -111,6 +114,17 @@ fn finding(
             ))
             .fix(if alone { fix(subject, wave) } else { None }),
     )
+}
+
+/// The one of ±G whose first index that is not zero is positive.
+fn upright(index: &[i64]) -> Vec<i64> {
+    let first = index.iter().find(|entry| **entry != 0);
+    let sign = if first.is_some_and(|entry| *entry < 0) {
+        -1
+    } else {
+        1
+    };
+    index.iter().map(|entry| sign * entry).collect()
 }
 
 fn contains(all: &[Vec<i64>], index: &[i64]) -> bool {

@@ -27,9 +27,10 @@
 //! None. If closure is the aim, say so: `require gap 2 closed`.
 
 use super::named_gaps::{NamedGap, named_gaps};
+use super::words::Trade;
 use super::{Finding, Level, Rule, Subject, Tier, words};
 use crate::bands::GapKind;
-use crate::model::Crystal;
+use crate::model::{Crystal, Dimension};
 
 /// The rule.
 pub const RULE: Rule = Rule {
@@ -55,11 +56,6 @@ fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
 
 fn finding(crystal: &Crystal, named: &NamedGap) -> Finding {
     let bound = named.gap.size.value.abs() + named.gap.size.uncertainty;
-    let unit = words::unit_for(
-        bound,
-        crate::model::Dimension::ENERGY,
-        words::recoil_of(crystal),
-    );
     let band = named.band;
     let message = match named.fermi {
         true => format!("gap {band}, which holds the Fermi level, is closed"),
@@ -67,7 +63,7 @@ fn finding(crystal: &Crystal, named: &NamedGap) -> Finding {
     };
     Finding::new(&RULE, named.place, message).help(format!(
         "it is below {}; if that is the aim, write `require gap {band} closed`",
-        words::in_unit(bound, unit, 1)
+        words::bound(bound, Dimension::ENERGY, Trade::of(crystal))
     ))
 }
 

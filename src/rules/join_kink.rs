@@ -58,12 +58,8 @@ fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
 fn finding(subject: &Subject<'_>, crystal: &Crystal, joint: &Joint<'_>) -> Option<Finding> {
     let [left, right] = joint.numbers();
     let place = subject.where_to_speak(joint.right.formula_place, &[&left, &right])?;
-    let slope = |joule_per_metre: f64| {
-        format!(
-            "{} per nm",
-            words::energy_of(crystal, joule_per_metre * 1e-9)
-        )
-    };
+    let slope =
+        |joule_per_metre: f64| format!("{} per nm", words::energy(crystal, joule_per_metre * 1e-9));
     let message = format!(
         "the potential has a corner at {}: its slope goes from {} to {}",
         words::length(joint.right.range[0].value),

@@ -29,6 +29,7 @@
 //! A piece that is off by the same amount at both of its ends is shifted by a constant.
 
 use super::stretch::{Joint, Swing, joints, swing};
+use super::words::Trade;
 use super::{Finding, Fix, Level, Replacement, Rule, Subject, Tier, words};
 use crate::model::{Crystal, Dimension, ProfilePiece};
 
@@ -70,10 +71,10 @@ fn finding(
     let [left, right] = joint.numbers();
     let place = subject.where_to_speak(joint.right.formula_place, &[&left, &right])?;
     let at = words::length(joint.right.range[0].value);
-    let size = words::energy_of(crystal, joint.step().abs());
+    let size = words::energy(crystal, joint.step().abs());
     let message = format!("the potential jumps by {size} at {at}");
-    let recoil = words::recoil_of(crystal);
-    let [before, after] = words::apart([left.value, right.value], Dimension::ENERGY, recoil);
+    let trade = Trade::of(crystal);
+    let [before, after] = words::apart([left.value, right.value], Dimension::ENERGY, trade);
     let finding = Finding::new(&RULE, place, message)
         .help(format!(
             "it is {before} to the left and {after} to the right"
@@ -105,7 +106,7 @@ fn shift(subject: &Subject<'_>, crystal: &Crystal, piece: &ProfilePiece, by: f64
     if !subject.holds(piece.formula_place) {
         return None;
     }
-    let unit = words::unit_for(by, Dimension::ENERGY, words::recoil_of(crystal))?;
+    let unit = words::unit_for(by, Dimension::ENERGY, Trade::of(crystal))?;
     let amount = words::number(by.abs() / unit.size, 12);
     let sign = if by < 0.0 { '-' } else { '+' };
     let name = unit.name.replace('µ', "u");

@@ -23,10 +23,10 @@
 //! ```
 //!
 //! # Fix
-//! The missing partner is written below.
+//! The missing partner is written below; one that does not match is replaced, to be looked at.
 
-use super::{Finding, Fix, Level, Rule, Subject, Tier, words};
-use crate::model::{Trouble, TroubleKind};
+use super::{Finding, Fix, Level, Replacement, Rule, Subject, Tier, words};
+use crate::model::{Place, Trouble, TroubleKind};
 
 /// The rule.
 pub const RULE: Rule = Rule {
@@ -42,26 +42,54 @@ pub const RULE: Rule = Rule {
 fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
     for trouble in subject.troubles {
         if let TroubleKind::LoneComponent { index, partner } = &trouble.kind {
-            findings.push(finding(subject, trouble, index, partner));
+            findings.extend(match trouble.related.first() {
+                None => Some(alone(subject, trouble, index, partner)),
+                Some((other, _)) => unequal(trouble, *other, index, partner),
+            });
         }
     }
 }
 
-fn finding(subject: &Subject<'_>, trouble: &Trouble, index: &[i64], partner: &str) -> Finding {
-    let opposite: Vec<i64> = index.iter().map(|entry| -entry).collect();
-    let (own, other) = (words::index(index), words::index(&opposite));
-    let missing = trouble.related.is_empty();
-    let message = if missing {
-        format!("the component at {own} stands alone: its partner at {other} is missing")
-    } else {
-        format!("the components at {own} and {other} are not complex conjugates of each other")
-    };
-    let finding = Finding::of_trouble(&RULE, trouble, message)
-        .help(format!("a real potential has `{partner}` beside it"));
-    match missing {
-        true => finding.fix(write_below(subject, trouble, partner)),
-        false => finding,
+fn alone(subject: &Subject<'_>, trouble: &Trouble, index: &[i64], partner: &str) -> Finding {
+    let [own, other] = both(index);
+    let message = format!("the component at {own} stands alone: its partner at {other} is missing");
+    Finding::of_trouble(&RULE, trouble, message)
+        .help(format!("a real potential has `{partner}` beside it"))
+        .fix(write_below(subject, trouble, partner))
+}
+
+/// Two partners that do not match are one finding, at the later of them.
+fn unequal(trouble: &Trouble, other: Place, index: &[i64], partner: &str) -> Option<Finding> {
+    let neighbours = (other.file, other.section) == (trouble.place.file, trouble.place.section);
+    if neighbours && other.span < trouble.place.span {
+        return None;
     }
+    let [own, opposite] = both(index);
+    let message =
+        format!("the components at {own} and {opposite} are not complex conjugates of each other");
+    let fix = Fix::guess(
+        format!("write `{partner}`"),
+        Replacement::new(other, partner),
+    );
+    Some(
+        Finding::new(
+            &RULE,
+            if neighbours { other } else { trouble.place },
+            message,
+        )
+        .help(format!("a real potential has `{partner}` here"))
+        .related(
+            if neighbours { trouble.place } else { other },
+            "the other component",
+        )
+        .fix(neighbours.then_some(fix)),
+    )
+}
+
+/// An index and its opposite, as the format writes them.
+fn both(index: &[i64]) -> [String; 2] {
+    let opposite: Vec<i64> = index.iter().map(|entry| -entry).collect();
+    [words::index(index), words::index(&opposite)]
 }
 
 fn write_below(subject: &Subject<'_>, trouble: &Trouble, partner: &str) -> Option<Fix> {
@@ -84,6 +112,19 @@ mod tests {
         let mended = fixed(&RULE, text);
         assert!(
             mended.contains("# first\n  fourier -1 = 3 meV phase -0.5"),
+            "{mended}"
+        );
+        silent(&RULE, &mended);
+    }
+
+    #[test]
+    fn partners_that_do_not_match_are_one_finding() {
+        let text = "crystal a\n  lattice chain 8 nm\n  fourier 1 = 3 meV phase 0.5\n  fourier -1 = 4 meV\n";
+        let message = "the components at 1 and -1 are not complex conjugates of each other";
+        assert_eq!(messages(&RULE, text), [message]);
+        let mended = fixed(&RULE, text);
+        assert!(
+            mended.ends_with("\n  fourier -1 = 3 meV phase -0.5\n"),
             "{mended}"
         );
         silent(&RULE, &mended);

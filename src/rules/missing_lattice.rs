@@ -42,6 +42,20 @@ fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
     let Some(trouble) = troubles.find(|trouble| trouble.kind == TroubleKind::MissingLattice) else {
         return;
     };
+    // A lattice may be what the missing crystal would bring along.
+    let base_is_missing = subject.troubles.iter().any(|trouble| {
+        matches!(
+            &trouble.kind,
+            TroubleKind::CircularName { .. }
+                | TroubleKind::UnknownName {
+                    wanted: "crystal",
+                    ..
+                }
+        )
+    });
+    if subject.entry.section.like.is_some() && base_is_missing {
+        return;
+    }
     let finding = Finding {
         place: subject.heading(),
         ..Finding::of_trouble(&RULE, trouble, "nothing says what repeats in this crystal")
@@ -61,6 +75,11 @@ mod tests {
     fn a_potential_needs_a_cell() {
         let found = messages(&RULE, "crystal a\n  mass 1 me\n  cosine 1 = 3 meV\n");
         assert_eq!(found, ["nothing says what repeats in this crystal"]);
+    }
+
+    #[test]
+    fn a_crystal_like_an_unknown_one_may_have_a_lattice() {
+        silent(&RULE, "crystal a like b\n  mass 1 me\n");
     }
 
     #[test]

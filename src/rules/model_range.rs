@@ -35,6 +35,7 @@
 //! None: state the gap of the material with `nonparabolic`.
 
 use super::formula::quantities;
+use super::words::Trade;
 use super::{Finding, Level, Rule, Subject, Tier, words};
 use crate::bands::Solution;
 use crate::model::constants::{ELECTRON_MASS, ELECTRONVOLT as EV};
@@ -84,11 +85,11 @@ fn finding(subject: &Subject<'_>) -> Option<Finding> {
     let share = words::number(100.0 * above / gap, 2);
     let message = format!(
         "band {band} lies {} above the edge of its well, {share} % of the material's gap of {}{}",
-        words::energy_of(crystal, above),
+        words::energy(crystal, above),
         if stated { "" } else { "about " },
         words::in_unit(
             gap,
-            words::unit_for(gap, crate::model::Dimension::ENERGY, None),
+            words::unit_for(gap, crate::model::Dimension::ENERGY, Trade::default()),
             2
         )
     );

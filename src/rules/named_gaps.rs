@@ -111,7 +111,7 @@ pub fn fermi_gap(crystal: &Crystal, solution: &Solution) -> Option<usize> {
     }
     let filled = crystal.filling.as_ref()?.value / f64::from(crystal.degeneracy.max(1));
     let bands = filled.round();
-    if bands < 1.0 || bands > 1e6 {
+    if !(1.0..=1e6).contains(&bands) {
         return None;
     }
     #[expect(

@@ -30,6 +30,7 @@
 //! None.
 
 use super::named_gaps::{NamedGap, named_gaps};
+use super::words::Trade;
 use super::{Finding, Level, Rule, Subject, Tier, words};
 use crate::bands::GapKind;
 use crate::model::constants::BOLTZMANN;
@@ -64,9 +65,9 @@ fn finding(crystal: &Crystal, named: &NamedGap) -> Option<Finding> {
         true => format!("gap {}, which holds the Fermi level,", named.band),
         false => format!("gap {}", named.band),
     };
-    let recoil = words::recoil_of(crystal);
+    let trade = Trade::of(crystal);
     if size.value <= size.uncertainty {
-        let [size, bound] = words::apart([size.value, size.uncertainty], Dimension::ENERGY, recoil);
+        let [size, bound] = words::apart([size.value, size.uncertainty], Dimension::ENERGY, trade);
         let message = format!("{what} is {size}, below its own uncertainty of {bound}");
         return Some(Finding::new(&RULE, named.place, message));
     }
@@ -75,8 +76,8 @@ fn finding(crystal: &Crystal, named: &NamedGap) -> Option<Finding> {
     if size.value >= thermal {
         return None;
     }
-    let [shown, limit] = words::apart([size.value, thermal], Dimension::ENERGY, recoil);
-    let kelvin = words::quantity(temperature, Dimension::TEMPERATURE, None);
+    let [shown, limit] = words::apart([size.value, thermal], Dimension::ENERGY, trade);
+    let kelvin = words::quantity(temperature, Dimension::TEMPERATURE, Trade::default());
     let message = format!("{what} is {shown}, less than kT = {limit} at {kelvin}");
     Some(Finding::new(&RULE, named.place, message).help("carriers are lifted over such a gap"))
 }

@@ -44,9 +44,11 @@ fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
                 .help("ask for fewer `bands`, or smooth the potential"),
         ),
         Unsolved::Dimension(dimension) => findings.push(
-            finding(format!("bands in {dimension} dimensions are not solved by this version"))
-                .at_level(Level::Note)
-                .help("the model itself was read and checked"),
+            finding(format!(
+                "bands in {dimension} dimensions are not solved by this version"
+            ))
+            .at_level(Level::Note)
+            .help("the model itself was read and checked"),
         ),
         Unsolved::BrokenModel | Unsolved::Cancelled => {}
     }

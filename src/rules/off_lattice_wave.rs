@@ -29,6 +29,7 @@
 use std::f64::consts::TAU;
 
 use super::stretch::ROUNDING;
+use super::words::Trade;
 use super::{Finding, Level, Rule, Subject, Tier, words};
 use crate::model::{Crystal, Dual, Formula, ParameterId, ProfilePiece, Trouble, TroubleKind};
 use crate::syntax::{Expression, ExpressionKind, Operator, StatementKind};
@@ -162,7 +163,7 @@ fn finding(
     let [own, whole, fits] = words::apart(
         [cell / periods.abs(), cell, fitting],
         crate::model::Dimension::LENGTH,
-        None,
+        Trade::default(),
     );
     let message =
         format!("this {name} repeats every {own}, which does not divide the cell of {whole}");

@@ -40,6 +40,7 @@
 //! # Fix
 //! The period is set to the sum of the layers, or the last layer takes up the rest.
 
+use super::words::Trade;
 use super::{Finding, Fix, Level, Replacement, Rule, Subject, Tier, words};
 use crate::model::{Dimension, Trouble, TroubleKind};
 use crate::syntax::{ExpressionKind, LayerPart, StatementKind, Value};
@@ -71,7 +72,8 @@ fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
 }
 
 fn open(subject: &Subject<'_>, trouble: &Trouble, sum: f64, period: f64, parts: &str) -> Finding {
-    let [shown_sum, shown_period] = words::apart([sum, period], Dimension::LENGTH, None);
+    let [shown_sum, shown_period] =
+        words::apart([sum, period], Dimension::LENGTH, Trade::default());
     let rest = words::length((period - sum).abs());
     let much = if sum < period {
         "short of"

@@ -42,6 +42,8 @@ pub struct Setting {
     pub atoms: bool,
     /// Whether a recoil is stated.
     pub recoil: bool,
+    /// Whether the layers are the steps of a staircase, which may be as thin as they like.
+    pub staircase: bool,
 }
 
 impl Default for Setting {
@@ -51,6 +53,7 @@ impl Default for Setting {
             period: None,
             atoms: false,
             recoil: false,
+            staircase: false,
         }
     }
 }
@@ -68,6 +71,8 @@ const HEAVIEST_POLARITON: f64 = 1e-3 * ELECTRON_MASS;
 const LIGHTEST: f64 = 1e-6 * ELECTRON_MASS;
 const LIGHTEST_ATOM: f64 = 0.5 * ATOMIC_MASS;
 const HEAVIEST_MOLECULE: f64 = 1e4 * ATOMIC_MASS;
+/// Layers are no thinner than this.
+pub const THINNEST: f64 = 0.09e-9;
 /// Lattices of light have at least this spacing.
 const OPTICAL: f64 = 80e-9;
 /// An electron's potential rarely exceeds this, or so many times the kinetic scale of its cell.
@@ -97,11 +102,18 @@ impl Setting {
     }
 
     /// h²/(8·m·a²): the kinetic energy at the edge of the zone.
-    fn kinetic(&self) -> Option<f64> {
+    #[must_use]
+    pub fn kinetic(&self) -> Option<f64> {
         let period = self.period?;
         let momentum = PLANCK / period;
         let energy = momentum * (momentum / (8.0 * self.mass));
         (energy.is_finite() && energy > 0.0).then_some(energy)
+    }
+
+    /// Whether electrons of a solid move.
+    #[must_use]
+    pub fn moves_electrons(&self) -> bool {
+        self.carrier() == Carrier::Electron
     }
 
     fn is_optical(&self) -> bool {
@@ -119,11 +131,14 @@ pub fn allowed(kind: Kind, setting: &Setting) -> Option<Range> {
         Kind::Rate => Some((0.2, 5.0)),
         Kind::Monolayer => Some((0.09e-9, 2.0e-9)),
         Kind::NonparabolicGap => Some((5e-3 * EV, 20.0 * EV)),
-        Kind::Thickness => match carrier {
-            Carrier::Electron => Some((0.09e-9, 1.001e-6)),
-            Carrier::Light | Carrier::Atom => Some((0.09e-9, 1e-3)),
-            Carrier::Neither => None,
-        },
+        Kind::Thickness => {
+            let thinnest = if setting.staircase { 0.0 } else { THINNEST };
+            match carrier {
+                Carrier::Electron => Some((thinnest, 1.001e-6)),
+                Carrier::Light | Carrier::Atom => Some((thinnest, 1e-3)),
+                Carrier::Neither => None,
+            }
+        }
         Kind::LatticeLength => match carrier {
             Carrier::Electron if setting.atoms => Some((0.1e-9, 3e-9)),
             Carrier::Electron => Some((0.09e-9, 20e-6)),
@@ -133,7 +148,7 @@ pub fn allowed(kind: Kind, setting: &Setting) -> Option<Range> {
             Carrier::Neither => None,
         },
         Kind::Recoil => setting.period.map(|period| (0.1 * period, 50.0 * period)),
-        Kind::SiteSize => setting.period.map(|period| (1e-3 * period, 20.0 * period)),
+        Kind::SiteSize => setting.period.map(|period| (2e-4 * period, 20.0 * period)),
         Kind::Temperature => match (carrier, setting.period) {
             (Carrier::Electron, _) => Some((0.0, 3000.0)),
             (Carrier::Atom, Some(period)) if period > OPTICAL => Some((0.0, 1e-2)),

@@ -25,7 +25,7 @@
 //! None: soften the formula there, as the example does, or cut it off with `max` or `min`.
 
 use super::{Finding, Level, Rule, Subject, Tier, words};
-use crate::model::TroubleKind;
+use crate::model::{Crystal, TroubleKind};
 
 /// The rule.
 pub const RULE: Rule = Rule {
@@ -43,7 +43,7 @@ fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
         if let TroubleKind::Pole { at } = &trouble.kind {
             let message = format!(
                 "this profile has no finite value near {}",
-                words::length(*at)
+                place_of(subject, *at)
             );
             findings.push(
                 Finding::of_trouble(&RULE, trouble, message)
@@ -51,6 +51,16 @@ fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
             );
         }
     }
+}
+
+/// A pole is located to rounding: what is next to nothing of the cell is nothing.
+fn place_of(subject: &Subject<'_>, at: f64) -> String {
+    let period = subject
+        .crystal
+        .and_then(Crystal::period)
+        .map_or(0.0, |period| period.value);
+    let next_to_nothing = at.abs() < 1e-6 * period;
+    words::length(if next_to_nothing { 0.0 } else { at })
 }
 
 #[cfg(test)]

@@ -54,12 +54,8 @@ fn finding(subject: &Subject<'_>) -> Option<Finding> {
     }
     let [before, after] = seam.numbers();
     let place = subject.where_to_speak(seam.left.formula_place, &[&before, &after])?;
-    let slope = |joule_per_metre: f64| {
-        format!(
-            "{} per nm",
-            words::energy_of(crystal, joule_per_metre * 1e-9)
-        )
-    };
+    let slope =
+        |joule_per_metre: f64| format!("{} per nm", words::energy(crystal, joule_per_metre * 1e-9));
     let message = format!(
         "the potential has a corner between one cell and the next: its slope goes from {} to {}",
         slope(seam.before.1),

@@ -27,6 +27,7 @@
 //! None for a single formula. Of several pieces, one that is off by the same amount at both of its ends is shifted.
 
 use super::stretch::{joints, swing};
+use super::words::Trade;
 use super::{Finding, Level, Rule, Subject, Tier, join_step, words};
 use crate::model::{Crystal, Dimension, Dual, ProfilePiece};
 
@@ -97,9 +98,9 @@ fn step_finding(
     before: f64,
     after: f64,
 ) -> Finding {
-    let recoil = words::recoil_of(crystal);
-    let [before, after] = words::apart([before, after], Dimension::ENERGY, recoil);
-    let size = words::energy_of(crystal, step.abs());
+    let trade = Trade::of(crystal);
+    let [before, after] = words::apart([before, after], Dimension::ENERGY, trade);
+    let size = words::energy(crystal, step.abs());
     let message = format!("the potential jumps by {size} from one cell to the next");
     Finding::new(&RULE, place, message).help(format!(
         "it ends the cell at {after_end} and begins it at {begin}; check the period",

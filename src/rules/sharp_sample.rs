@@ -93,7 +93,7 @@ fn finding(subject: &Subject<'_>) -> Option<Finding> {
     let beyond = overshoot(crystal, table)?;
     let message = format!(
         "the curve through these samples swings {} beyond them near {}",
-        words::energy_of(crystal, beyond.by),
+        words::energy(crystal, beyond.by),
         words::length(beyond.at)
     );
     Some(

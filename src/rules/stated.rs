@@ -1,10 +1,10 @@
 //! The quantities that a section states, each with the number in the text that it comes from.
 
 use super::Subject;
-use super::plausible::{Kind, Setting};
+use super::plausible::{Kind, Setting, THINNEST};
 use crate::model::{
-    Crystal, Dimension, Dual, Formula, Parameter, ParameterKind, Place, SiteShape, TargetFormula,
-    Wish, build_material,
+    Crystal, Dimension, Dual, FormfactorValues, Formula, Parameter, ParameterKind, Place,
+    SiteShape, TargetFormula, Wish, build_material,
 };
 use crate::syntax::SectionKind;
 
@@ -60,7 +60,28 @@ pub fn setting(crystal: &Crystal) -> Setting {
         period: period.filter(|period| period.is_finite() && *period > 0.0),
         atoms: !crystal.potential.formfactors.is_empty(),
         recoil: crystal.recoil.is_some(),
+        staircase: is_staircase(crystal),
     }
+}
+
+/// The number with a unit that an energy of a crystal is proportional to.
+#[must_use]
+pub fn number_behind<'c>(crystal: &'c Crystal, energy: &Dual) -> Option<&'c Parameter> {
+    number_of(&crystal.parameters, energy, Dimension::ENERGY)
+}
+
+/// So many thin layers are no slip, but the steps of a smooth potential.
+const STEPS: usize = 4;
+
+fn is_staircase(crystal: &Crystal) -> bool {
+    let layers = crystal.potential.layers.iter();
+    let mut thin: Vec<Place> = layers
+        .filter(|layer| layer.length.value < THINNEST)
+        .map(|layer| layer.length_place)
+        .collect();
+    thin.sort_unstable();
+    thin.dedup();
+    thin.len() >= STEPS
 }
 
 /// Collects quantities against the parameters that they depend on.
@@ -72,7 +93,7 @@ struct Collector<'s, 'a> {
 
 impl Collector<'_, '_> {
     fn add(&mut self, kind: Kind, dual: &Dual, statement: Place) {
-        let number = self.number_of(dual, dimension_of(kind)).cloned();
+        let number = number_of(self.parameters, dual, dimension_of(kind)).cloned();
         let own = number
             .as_ref()
             .map(|number| number.place)
@@ -90,19 +111,21 @@ impl Collector<'_, '_> {
             });
         }
     }
+}
 
-    /// The number with a unit that a quantity is proportional to.
-    fn number_of(&self, dual: &Dual, dimension: Dimension) -> Option<&Parameter> {
-        dual.slopes.iter().find_map(|(id, slope)| {
-            let found = self
-                .parameters
-                .iter()
-                .find(|parameter| parameter.id == *id)?;
-            let proportional = (slope * found.value - dual.value).abs() <= 1e-9 * dual.value.abs();
-            let literal = found.kind == ParameterKind::Literal && found.dimension == dimension;
-            (literal && proportional).then_some(found)
-        })
-    }
+/// The number with a unit that a quantity is proportional to; `parameters` are sorted.
+fn number_of<'p>(
+    parameters: &'p [Parameter],
+    dual: &Dual,
+    dimension: Dimension,
+) -> Option<&'p Parameter> {
+    dual.slopes.iter().find_map(|(id, slope)| {
+        let index = parameters.binary_search_by_key(id, |parameter| parameter.id);
+        let found = index.ok().and_then(|index| parameters.get(index))?;
+        let proportional = (slope * found.value - dual.value).abs() <= 1e-9 * dual.value.abs();
+        let literal = found.kind == ParameterKind::Literal && found.dimension == dimension;
+        (literal && proportional).then_some(found)
+    })
 }
 
 fn dimension_of(kind: Kind) -> Dimension {
@@ -214,11 +237,18 @@ fn potential(collector: &mut Collector<'_, '_>, crystal: &Crystal) {
             collector.add(Kind::SiteSize, size, site.place);
         }
     }
+    for formfactor in &potential.formfactors {
+        if let FormfactorValues::At { energies, .. } = &formfactor.form {
+            for energy in energies {
+                collector.add(Kind::Energy, energy, formfactor.place);
+            }
+        }
+    }
     for piece in &potential.profile {
         let mut energies = Vec::new();
         constants(&piece.formula, &mut energies);
         for energy in energies {
-            if collector.number_of(energy, Dimension::ENERGY).is_some() {
+            if number_of(collector.parameters, energy, Dimension::ENERGY).is_some() {
                 collector.add(Kind::Energy, energy, piece.formula_place);
             }
         }

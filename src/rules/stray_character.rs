@@ -42,7 +42,11 @@ fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
             continue;
         };
         let place = subject.place(problem.span);
-        let message = format!("{} is not used in this format", shown(*character));
+        let written = problem.span.of(&subject.entry.section.text);
+        let message = match written.chars().count() {
+            1 => format!("{} is not used in this format", shown(*character)),
+            _ => format!("`{written}` is not used in this format"),
+        };
         let help = instead.as_ref().map(|text| format!("write `{text}`"));
         let fix = instead.as_ref().map(|text| {
             Fix::safe(
@@ -77,6 +81,13 @@ mod tests {
         let text = "let a = 2 × 3 nm\n";
         assert_eq!(messages(&RULE, text), ["`×` is not used in this format"]);
         assert_eq!(fixed(&RULE, text), "let a = 2 * 3 nm\n");
+    }
+
+    #[test]
+    fn plus_and_minus_run_together_are_a_tolerance() {
+        let text = "let a = 3 nm +- 1 nm\n";
+        assert_eq!(messages(&RULE, text), ["`+-` is not used in this format"]);
+        assert_eq!(fixed(&RULE, text), "let a = 3 nm ± 1 nm\n");
     }
 
     #[test]

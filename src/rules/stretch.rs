@@ -150,7 +150,9 @@ fn tiles(crystal: &Crystal) -> bool {
     let mut pairs = pieces.iter().zip(pieces.iter().skip(1));
     let follow = pairs.all(|(left, right)| near(left.range[1].value, right.range[0].value));
     let ends = pieces.first().zip(pieces.last());
-    follow && ends.is_some_and(|(first, last)| near(last.range[1].value - first.range[0].value, period))
+    follow
+        && ends
+            .is_some_and(|(first, last)| near(last.range[1].value - first.range[0].value, period))
 }
 
 fn joint<'a>(left: &'a ProfilePiece, right: &'a ProfilePiece, seam: bool) -> Joint<'a> {

@@ -42,6 +42,7 @@
 
 use super::subject::parameter;
 use super::target_missed::{at_target, halves};
+use super::words::Trade;
 use super::{Finding, Level, Rule, Subject, Tier, words};
 use crate::bands::{Assessment, TargetState};
 use crate::model::{Crystal, Parameter, ParameterKind};
@@ -83,7 +84,7 @@ fn finding(subject: &Subject<'_>, target: &Assessment) -> Finding {
 
 fn message(subject: &Subject<'_>, target: &Assessment) -> String {
     let (what, _) = halves(&target.text);
-    let recoil = subject.crystal.and_then(words::recoil_of);
+    let trade = Trade::here(subject);
     let Some(worst) = target.worst else {
         return format!(
             "`{}` holds, but not everywhere within the tolerances",
@@ -91,7 +92,7 @@ fn message(subject: &Subject<'_>, target: &Assessment) -> String {
         );
     };
     if let Some(found) = &target.found {
-        let worst = words::quantity(worst, target.dimension, recoil);
+        let worst = words::quantity(worst, target.dimension, trade);
         return format!(
             "`{what}` holds ({found}), but the gap closes within the tolerances ({worst} at worst)"
         );
@@ -103,8 +104,8 @@ fn message(subject: &Subject<'_>, target: &Assessment) -> String {
         );
     };
     let nominal = target.value.map_or(f64::NAN, |value| value.value);
-    let shown = words::apart([nominal, worst, limit], target.dimension, recoil);
-    let off = words::quantity((worst - limit).abs(), target.dimension, recoil);
+    let shown = words::apart([nominal, worst, limit], target.dimension, trade);
+    let off = words::quantity((worst - limit).abs(), target.dimension, trade);
     let [nominal, worst, limit] = shown;
     format!(
         "`{what}` is {nominal}, but within the tolerances it comes to {worst}, {off} {side} the limit of {limit}"

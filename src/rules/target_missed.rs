@@ -40,6 +40,8 @@
 //! # Fix
 //! None: either the crystal or the wish has to change. While the design is under way, this error alone may be waived.
 
+use super::subject::parameter;
+use super::words::Trade;
 use super::{Finding, Level, Rule, Subject, Tier, words};
 use crate::bands::{Assessment, TargetState};
 use crate::model::Place;
@@ -62,7 +64,15 @@ fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
         .filter(|target| target.state == TargetState::Missed);
     for target in missed {
         let finding = at_target(&RULE, subject, target, message(subject, target));
-        findings.push(finding.help_if(help(target)));
+        let finding = finding.help_if(help(subject, target));
+        let driver = subject
+            .crystal
+            .zip(target.driver)
+            .and_then(|(crystal, id)| parameter(crystal, id));
+        findings.push(match driver {
+            Some(driver) => finding.related(driver.place, "the tolerance that matters most here"),
+            None => finding,
+        });
     }
 }
 
@@ -80,14 +90,21 @@ fn message(subject: &Subject<'_>, target: &Assessment) -> String {
     let Some((limit, side)) = broken_limit(target, value.value) else {
         return format!("`{}` does not hold", target.text);
     };
-    let recoil = subject.crystal.and_then(words::recoil_of);
-    let [shown, shown_limit] = words::apart([value.value, limit], target.dimension, recoil);
-    let off = words::quantity((value.value - limit).abs(), target.dimension, recoil);
+    let trade = Trade::here(subject);
+    let [shown, shown_limit] = words::apart([value.value, limit], target.dimension, trade);
+    let off = words::quantity((value.value - limit).abs(), target.dimension, trade);
     format!("`{what}` is {shown}, {off} {side} the limit of {shown_limit}")
 }
 
-fn help(target: &Assessment) -> Option<String> {
-    target.reason.clone()
+/// The worst case, where there are tolerances.
+fn help(subject: &Subject<'_>, target: &Assessment) -> Option<String> {
+    let Some(worst) = target.worst else {
+        return target.reason.clone();
+    };
+    let worst = words::quantity(worst, target.dimension, Trade::here(subject));
+    Some(format!(
+        "at the worst values of the tolerances it comes to {worst}"
+    ))
 }
 
 /// The limit that a value breaks, and on which side of it the value lies.

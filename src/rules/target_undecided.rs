@@ -27,6 +27,7 @@
 //! None: move the limit off the value, or ask for something else.
 
 use super::target_missed::{at_target, halves};
+use super::words::Trade;
 use super::{Finding, Level, Rule, Subject, Tier, words};
 use crate::bands::{Assessment, TargetState};
 
@@ -55,11 +56,11 @@ fn message(subject: &Subject<'_>, target: &Assessment) -> String {
     let Some(value) = target.value else {
         return format!("whether `{}` holds cannot be told", target.text);
     };
-    let recoil = subject.crystal.and_then(words::recoil_of);
-    let of = |size| words::quantity(size, target.dimension, recoil);
+    let trade = Trade::here(subject);
+    let of = |size| words::quantity(size, target.dimension, trade);
     let bound = words::in_unit(
         value.uncertainty,
-        words::unit_for(value.uncertainty, target.dimension, recoil),
+        words::unit_for(value.uncertainty, target.dimension, trade),
         2,
     );
     format!(

@@ -73,7 +73,7 @@ fn finding(subject: &Subject<'_>, layer: &Layer) -> Option<Finding> {
     );
     Some(
         Finding::new(&RULE, place, message)
-            .help("no layer is thinner than one monolayer")
+            .help("material comes in whole monolayers, so this is the least there is")
             .fix(whole_monolayers(subject, layer)),
     )
 }

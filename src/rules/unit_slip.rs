@@ -1,7 +1,8 @@
 //! # What it finds
 //! A quantity of the right dimension and an implausible size for what it is, where another unit would make it
-//! plausible: eV for meV, um for nm, nm for angstrom, `u` for `me`. Electrons and atoms are told apart. Also a bare
-//! lattice angle above π and a bare phase above 2π, which are likely degrees.
+//! plausible: eV for meV, um for nm, nm for angstrom, `u` for `me`. Electrons and atoms are told apart. Also layers
+//! whose edges hardly differ, samples of a table in another unit than it says, and a bare lattice angle above π or a
+//! bare phase above 2π, which are likely degrees.
 //!
 //! # Why it matters
 //! A wrong unit passes every check of dimensions and moves the bands by powers of ten.
@@ -31,7 +32,9 @@ use std::f64::consts::{PI, TAU};
 use super::plausible::{self, Kind, Setting};
 use super::stated::{self, Stated};
 use super::subject::parameter;
+use super::words::Trade;
 use super::{Finding, Fix, Level, Replacement, Rule, Subject, Tier, literal, words};
+use crate::model::constants::ELECTRONVOLT;
 use crate::model::{Crystal, Parameter, ParameterKind, Place, Wave, unit};
 use crate::syntax::{StatementKind, Value};
 
@@ -50,6 +53,8 @@ fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
     findings.extend(sizes(subject));
     findings.extend(lattice_angles(subject));
     if let Some(crystal) = subject.crystal {
+        findings.extend(weak_layers(subject, crystal));
+        findings.extend(table(subject, crystal));
         let waves = crystal.potential.waves.iter();
         findings.extend(waves.filter_map(|wave| phase(subject, crystal, wave)));
     }
@@ -97,11 +102,11 @@ fn slip(stated: &Stated, setting: &Setting) -> Option<Finding> {
             let side = match stated.value.abs() > highest {
                 true => format!(
                     "at most about {}",
-                    words::quantity(highest, dimension, None)
+                    words::quantity(highest, dimension, Trade::default())
                 ),
                 false => format!(
                     "at least about {}",
-                    words::quantity(lowest, dimension, None)
+                    words::quantity(lowest, dimension, Trade::default())
                 ),
             };
             format!(
@@ -152,6 +157,92 @@ fn rewritten(number: &Parameter, unit: &str) -> Option<String> {
         None => number.text.as_str(),
     };
     Some(format!("{digits} {unit}"))
+}
+
+/// Layers of materials whose edges differ by less than this are hardly layers.
+const WEAK: f64 = 1e-3 * ELECTRONVOLT;
+/// Nor are those whose edges differ by less than this part of the kinetic scale of the cell.
+const WEAK_RATIO: f64 = 1e-2;
+
+/// Materials whose edges hardly differ, where a thousandfold edge would be usual: meV for eV.
+fn weak_layers(subject: &Subject<'_>, crystal: &Crystal) -> Option<Finding> {
+    let edges = || {
+        let layers = crystal
+            .potential
+            .layers
+            .iter()
+            .filter(|layer| layer.materials.is_some());
+        layers.flat_map(|layer| layer.edge.iter().map(move |edge| (layer, edge)))
+    };
+    let lowest = edges()
+        .map(|(_, edge)| edge.value)
+        .fold(f64::INFINITY, f64::min);
+    let highest = edges()
+        .map(|(_, edge)| edge.value)
+        .fold(f64::NEG_INFINITY, f64::max);
+    let setting = stated::setting(crystal);
+    let contrast = highest - lowest;
+    let weak = contrast > 0.0 && contrast < WEAK && contrast < WEAK_RATIO * setting.kinetic()?;
+    if !weak || !setting.moves_electrons() {
+        return None;
+    }
+    let (layer, edge) =
+        edges().max_by(|(_, one), (_, other)| one.value.abs().total_cmp(&other.value.abs()))?;
+    let number = stated::number_behind(crystal, edge)?;
+    let (written, size) = number.unit.as_ref()?;
+    let stronger = ["meV", "eV"].into_iter().find(|name| {
+        let unit = unit::find(name).map_or(0.0, |unit| unit.size);
+        *name != written.as_str() && (0.01..=5.0).contains(&(contrast * unit / size / ELECTRONVOLT))
+    })?;
+    let instead = rewritten(number, stronger)?;
+    let place = subject.where_to_speak(layer.place, &[edge])?;
+    let message = format!(
+        "the edges of these layers differ by only {}",
+        words::energy(crystal, contrast)
+    );
+    let edit = Replacement::new(number.place, instead.clone());
+    Some(
+        Finding::new(&RULE, place, message)
+            .help(format!("is `{instead}` meant for the edge?"))
+            .related(number.place, "the edge is stated here")
+            .fix(Fix::guess(format!("write `{instead}`"), edit)),
+    )
+}
+
+/// Samples in another unit of energy than the table says.
+fn table(subject: &Subject<'_>, crystal: &Crystal) -> Option<Finding> {
+    let table = crystal.potential.table.as_ref()?;
+    let largest = table
+        .energies
+        .iter()
+        .fold(0.0_f64, |most, energy| most.max(energy.abs()));
+    let setting = stated::setting(crystal);
+    if plausible::is_plausible(Kind::Energy, largest, &setting) {
+        return None;
+    }
+    let StatementKind::Table { energy_unit, .. } = &subject.statement_at(table.place)?.kind else {
+        return None;
+    };
+    let written = energy_unit.span.of(&subject.entry.section.text);
+    let size = unit::find(written)?.size;
+    let mut units = plausible::usual_units(Kind::Energy, &setting).iter();
+    let instead = units.find(|name| {
+        let unit = unit::find(name).map_or(0.0, |unit| unit.size);
+        plausible::is_typical(Kind::Energy, largest * unit / size, &setting)
+    })?;
+    let place = subject.place(energy_unit.span);
+    let shown = words::energy(crystal, largest);
+    let message =
+        format!("in `{written}`, these samples reach {shown}, an unlikely potential in this cell");
+    let fix = Fix::guess(
+        format!("write `{instead}`"),
+        Replacement::new(place, *instead),
+    );
+    Some(
+        Finding::new(&RULE, place, message)
+            .help(format!("are they in `{instead}`?"))
+            .fix(fix),
+    )
 }
 
 /// Bare angles of the lattice that no cell has in radians.
@@ -232,7 +323,7 @@ fn phase(subject: &Subject<'_>, crystal: &Crystal, wave: &Wave) -> Option<Findin
 
 #[cfg(test)]
 mod tests {
-    use super::super::fixture::{fixed, messages, silent};
+    use super::super::fixture::{fixed, messages, messages_with, silent};
     use super::RULE;
 
     fn electron(statement: &str, instead: &str) {
@@ -298,6 +389,47 @@ mod tests {
                 &format!("crystal a\n  lattice chain 5 nm\n  cosine 1 = 1 meV {phase}\n"),
             );
         }
+    }
+
+    #[test]
+    fn edges_that_hardly_differ_are_found_and_mended() {
+        let material =
+            |name: &str, edge: &str| format!("material {name}\n  mass 0.067 me\n  edge {edge}\n");
+        let layers = "crystal a\n  layer 5 nm of m\n  layer 3 nm of n\n";
+        let sound = format!(
+            "{}{}{layers}",
+            material("m", "0 eV"),
+            material("n", "0.235 eV")
+        );
+        check_slip(&sound, "0.235 meV", "0.235 eV");
+        // Far apart, the same edges hold an electron well.
+        let wide = "crystal a\n  layer 500 nm of m\n  layer 300 nm of n\n";
+        silent(
+            &RULE,
+            &format!(
+                "{}{}{wide}",
+                material("m", "0 eV"),
+                material("n", "0.235 meV")
+            ),
+        );
+    }
+
+    #[test]
+    fn samples_in_another_unit_are_found() {
+        let text = "crystal a\n  mass 0.067 me\n  lattice chain 8 nm\n  table \"t.csv\" in nm, eV by line\n";
+        let file = [("t.csv", "0,0\n2,0\n3,235\n5,235\n6,0\n")];
+        assert_eq!(messages_with(&RULE, text, &file).len(), 1);
+        assert!(messages_with(&RULE, &text.replace("eV by", "meV by"), &file).is_empty());
+    }
+
+    #[test]
+    fn the_steps_of_a_staircase_may_be_thin() {
+        let step = |edge: u32| format!("  layer 0.01 nm at {edge} meV\n");
+        let steps: String = (0..40).map(step).collect();
+        silent(
+            &RULE,
+            &format!("crystal a\n  mass 0.067 me\n  layer 5 nm at 0\n{steps}"),
+        );
     }
 
     #[test]

@@ -41,7 +41,7 @@
 //! # Fix
 //! The closest name of that sort, where one is close.
 
-use super::{Finding, Fix, Level, Replacement, Rule, Subject, Tier, all};
+use super::{Finding, Fix, Level, Replacement, Rule, Subject, Tier, all, words};
 use crate::model::words::nearest;
 use crate::model::{Place, TroubleKind};
 use crate::syntax::StatementKind;
@@ -66,13 +66,22 @@ fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
         } = &trouble.kind
         {
             let found = finding(trouble.place, name, wanted, nearest.as_deref());
+            let points = zone_points(subject).filter(|_| *wanted == "zone point");
             findings.push(Finding {
                 related: trouble.related.clone(),
+                help: found.help.clone().or(points),
                 ..found
             });
         }
     }
     findings.extend(unknown_rules(subject));
+}
+
+/// The zone points of the crystal's lattice, in words.
+fn zone_points(subject: &Subject<'_>) -> Option<String> {
+    let points = subject.crystal?.zone_points();
+    let names: Vec<String> = points.iter().map(|(name, _)| format!("`{name}`")).collect();
+    (!names.is_empty()).then(|| format!("this lattice has {}", words::listed(&names)))
 }
 
 /// Waivers of rules that do not exist.

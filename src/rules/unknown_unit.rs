@@ -24,7 +24,7 @@
 //! The closest unit; before a constant or a name, the `*` that was meant.
 
 use super::{Finding, Fix, Level, Replacement, Rule, Subject, Tier};
-use crate::model::{Trouble, TroubleKind};
+use crate::model::{Trouble, TroubleKind, unit};
 
 /// The rule.
 pub const RULE: Rule = Rule {
@@ -49,14 +49,26 @@ fn finding(trouble: &Trouble) -> Option<Finding> {
         Some(why) => format!("`{unit}` is no unit here: {why}"),
         None => format!("`{unit}` is not a unit"),
     };
-    let help = instead
-        .as_ref()
-        .map(|text| format!("did you mean `{text}`?"));
+    let usual = nearest_usual(unit).filter(|_| why.is_none());
+    let instead = instead.as_deref().map(|text| match usual {
+        Some(usual) if unit::is_unit(text) => usual,
+        _ => text,
+    });
+    let help = instead.map(|text| format!("did you mean `{text}`?"));
     Some(
         Finding::of_trouble(&RULE, trouble, message)
             .help_if(help)
-            .fix(instead.as_deref().map(|text| fix(trouble, text))),
+            .fix(instead.map(|text| fix(trouble, text))),
     )
+}
+
+/// Of the units that are equally close, the one that the trade uses most.
+fn nearest_usual(word: &str) -> Option<&'static str> {
+    let distance = |unit: &&unit::Unit| strsim::damerau_levenshtein(word, unit.name);
+    unit::UNITS
+        .iter()
+        .min_by_key(distance)
+        .map(|unit| unit.name)
 }
 
 /// Putting the missing `*` before a name only says what was written; another unit is a guess.
@@ -79,6 +91,7 @@ mod tests {
         let text = "let a = 5 meVV\n";
         assert_eq!(messages(&RULE, text), ["`meVV` is not a unit"]);
         assert_eq!(fixed(&RULE, text), "let a = 5 meV\n");
+        assert_eq!(fixed(&RULE, "let a = 5 nn\n"), "let a = 5 nm\n");
     }
 
     #[test]

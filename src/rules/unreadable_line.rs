@@ -27,9 +27,12 @@
 //! ```
 //!
 //! # Fix
-//! A `\` with nothing behind it is taken away. For the rest, the message says what would have been readable.
+//! A `\` with nothing behind it is taken away, and a misspelt word is replaced, to be looked at. For the rest, the
+//! message says what would have been readable.
 
 use super::{Finding, Fix, Level, Replacement, Rule, Subject, Tier};
+use crate::model::words::nearest;
+use crate::syntax::words::{LATTICES, lattice, statement};
 use crate::syntax::{Problem, ProblemKind};
 
 /// The rule.
@@ -57,7 +60,12 @@ fn finding(subject: &Subject<'_>, problem: &Problem) -> Option<Finding> {
     let of = |message: String| Finding::new(&RULE, place, message);
     match &problem.kind {
         ProblemKind::Unreadable { expected, found } => {
-            Some(of(format!("expected {expected}, found {found}")))
+            let finding = of(format!("expected {expected}, found {found}"));
+            let finding = finding.help_if(form(subject, problem));
+            Some(finding.fix(nearest_word(expected, found).map(|word| {
+                let title = format!("write `{word}`");
+                Fix::guess(title, Replacement::new(place, word))
+            })))
         }
         ProblemKind::DanglingContinuation => Some(
             of("`\\` continues this line, but the text ends here".to_owned())
@@ -72,9 +80,39 @@ fn finding(subject: &Subject<'_>, problem: &Problem) -> Option<Finding> {
     }
 }
 
+/// The one of the words that were expected which is close to the word that stands there.
+fn nearest_word(expected: &str, found: &str) -> Option<String> {
+    let found = found.strip_prefix('`')?.strip_suffix('`')?;
+    if expected.contains("kind of lattice") {
+        return nearest(found, LATTICES.iter().map(|kind| kind.word));
+    }
+    let quoted = expected.split('`').skip(1).step_by(2);
+    nearest(
+        found,
+        quoted.filter(|word| word.chars().all(char::is_alphanumeric)),
+    )
+}
+
+/// How the statement on the line is written.
+fn form(subject: &Subject<'_>, problem: &Problem) -> Option<String> {
+    let line = subject.line_at(problem.span.start)?;
+    let content = line.content.of(&subject.entry.section.text);
+    let mut words = content.split([' ', '\t']).filter(|word| !word.is_empty());
+    let first = words.next()?;
+    let kind = words
+        .next()
+        .filter(|_| first == "lattice")
+        .and_then(lattice);
+    let form = match kind {
+        Some(kind) => format!("lattice {}", kind.form),
+        None => statement(first)?.form.to_owned(),
+    };
+    Some(format!("it is written `{form}`"))
+}
+
 #[cfg(test)]
 mod tests {
-    use super::super::fixture::{messages, silent};
+    use super::super::fixture::{fixed, messages, silent};
     use super::RULE;
 
     #[test]
@@ -89,6 +127,14 @@ mod tests {
                 .iter()
                 .all(|text| text.starts_with("expected ") && text.contains("`off`"))
         );
+    }
+
+    #[test]
+    fn a_misspelt_word_is_replaced() {
+        let text = "crystal a\n  lattice chin 5 nm\n";
+        assert_eq!(fixed(&RULE, text), "crystal a\n  lattice chain 5 nm\n");
+        let text = "crystal a\n  layer 5 nm off b\n";
+        assert_eq!(fixed(&RULE, text), "crystal a\n  layer 5 nm of b\n");
     }
 
     #[test]

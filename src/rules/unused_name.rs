@@ -49,7 +49,9 @@ fn check(_: &Subject<'_>, _: &mut Vec<Finding>) {}
 /// Finds the names of a file that nothing uses.
 pub fn file_check(file: &FileSubject<'_>, findings: &mut Vec<Finding>) {
     let mut sections = file.tree.entries.iter().map(|entry| &entry.section);
-    let has_crystals = sections.clone().any(|section| section.kind == SectionKind::Crystal);
+    let has_crystals = sections
+        .clone()
+        .any(|section| section.kind == SectionKind::Crystal);
     // A line that does not read may be the one that uses a name.
     let unreadable = sections.any(|section| !section.problems.is_empty());
     if file.used_by_others || !has_crystals || unreadable {
@@ -129,8 +131,14 @@ mod tests {
 
     #[test]
     fn where_a_name_is_misspelt_none_is_called_unused() {
-        silent(&RULE, "material wall\n  mass 1 me\n  edge 0 eV\ncrystal c\n  layer 5 nm of wal\n");
-        silent(&RULE, "material wall\n  mass 1 me\n  edge 0 eV\ncrystal c\n  layer 5 nm off wall\n");
+        silent(
+            &RULE,
+            "material wall\n  mass 1 me\n  edge 0 eV\ncrystal c\n  layer 5 nm of wal\n",
+        );
+        silent(
+            &RULE,
+            "material wall\n  mass 1 me\n  edge 0 eV\ncrystal c\n  layer 5 nm off wall\n",
+        );
     }
 
     #[test]

@@ -1,6 +1,7 @@
 //! How numbers and lists are worded in messages: units that a person would pick, and as many digits as tell two
 //! numbers apart.
 
+use super::Subject;
 use crate::model::constants::{ATOMIC_MASS, ELECTRON_MASS, ELECTRONVOLT as EV, PLANCK};
 use crate::model::{Crystal, Dimension};
 
@@ -18,19 +19,24 @@ pub struct Unit {
     pub size: f64,
 }
 
-const ENERGIES: [Unit; 5] = [
+const ENERGIES: [Unit; 4] = [
     unit("eV", EV),
     unit("meV", 1e-3 * EV),
     unit("µeV", 1e-6 * EV),
     unit("neV", 1e-9 * EV),
+];
+/// Energies of atoms are told as frequencies.
+const FREQUENCIES: [Unit; 4] = [
+    unit("GHz", 1e9 * PLANCK),
+    unit("MHz", 1e6 * PLANCK),
+    unit("kHz", 1e3 * PLANCK),
     unit("Hz", PLANCK),
 ];
-const LENGTHS: [Unit; 6] = [
+const LENGTHS: [Unit; 5] = [
     unit("m", 1.0),
     unit("mm", 1e-3),
     unit("µm", 1e-6),
     unit("nm", 1e-9),
-    unit("pm", 1e-12),
     unit("pm", 1e-12),
 ];
 const TEMPERATURES: [Unit; 4] = [
@@ -44,16 +50,40 @@ const fn unit(name: &'static str, size: f64) -> Unit {
     Unit { name, size }
 }
 
-/// The unit that a person would pick for a value of that dimension; `recoil` is the crystal's `Er` in joule.
+/// What a crystal's people measure energies in.
+#[derive(Clone, Copy, Debug, Default, PartialEq)]
+pub struct Trade {
+    /// One `Er` in joule, where the crystal has a `recoil`.
+    pub recoil: Option<f64>,
+    /// Whether an atom moves.
+    pub atoms: bool,
+}
+
+impl Trade {
+    /// Told by the crystal's recoil and mass.
+    #[must_use]
+    pub fn of(crystal: &Crystal) -> Self {
+        let recoil = crystal.recoil.as_ref().map(|recoil| recoil.energy.value);
+        Self {
+            recoil: recoil.filter(|joule| joule.is_finite() && *joule > 0.0),
+            atoms: crystal.mass.value > 0.5 * ATOMIC_MASS,
+        }
+    }
+
+    /// The trade of the crystal that a rule looks at; the usual one where there is none.
+    #[must_use]
+    pub fn here(subject: &Subject<'_>) -> Self {
+        subject.crystal.map(Self::of).unwrap_or_default()
+    }
+}
+
+/// The unit that a person would pick for a value of that dimension.
 #[must_use]
-pub fn unit_for(value: f64, dimension: Dimension, recoil: Option<f64>) -> Option<Unit> {
+pub fn unit_for(value: f64, dimension: Dimension, trade: Trade) -> Option<Unit> {
     let size = value.abs();
     match dimension {
         Dimension::NUMBER => Some(unit("", 1.0)),
-        Dimension::ENERGY => Some(match recoil {
-            Some(joule) if joule > 0.0 => unit("Er", joule),
-            _ => energy_unit(size),
-        }),
+        Dimension::ENERGY => Some(energy_unit(size, trade)),
         Dimension::LENGTH => Some(length_unit(size)),
         Dimension::MASS if size < 0.5 * ATOMIC_MASS => Some(unit("me", ELECTRON_MASS)),
         Dimension::MASS => Some(unit("u", ATOMIC_MASS)),
@@ -64,18 +94,28 @@ pub fn unit_for(value: f64, dimension: Dimension, recoil: Option<f64>) -> Option
     }
 }
 
-/// Tenths of a millielectronvolt are still told in millielectronvolts.
-fn energy_unit(size: f64) -> Unit {
-    let milli = ENERGIES[1];
+/// Tenths of a millielectronvolt are still told in millielectronvolts; what is too small for any unit in electronvolts
+/// with an exponent.
+fn energy_unit(size: f64, trade: Trade) -> Unit {
+    let [whole, milli, .., nano] = ENERGIES;
+    if let Some(joule) = trade.recoil {
+        return unit("Er", joule);
+    }
+    if trade.atoms && size < milli.size {
+        return first_at_most(&FREQUENCIES, size);
+    }
     if size == 0.0 || (size >= 0.0999 * milli.size && size < milli.size) {
         return milli;
+    }
+    if size < 0.0999 * nano.size {
+        return whole;
     }
     first_at_most(&ENERGIES, size)
 }
 
 fn length_unit(size: f64) -> Unit {
     let nanometre = LENGTHS[3];
-    if size == 0.0 || (size >= 0.05e-9 && size < 2e-6) {
+    if size == 0.0 || (0.05e-9..2e-6).contains(&size) {
         return nanometre;
     }
     first_at_most(&LENGTHS, size)
@@ -88,49 +128,39 @@ fn first_at_most(units: &[Unit], size: f64) -> Unit {
 
 /// A value in a unit a person would pick.
 #[must_use]
-pub fn quantity(value: f64, dimension: Dimension, recoil: Option<f64>) -> String {
-    in_unit(value, unit_for(value, dimension, recoil), DIGITS)
+pub fn quantity(value: f64, dimension: Dimension, trade: Trade) -> String {
+    in_unit(value, unit_for(value, dimension, trade), DIGITS)
 }
 
-/// An energy in joule.
+/// A bound, which one digit tells.
 #[must_use]
-pub fn energy(joule: f64) -> String {
-    quantity(joule, Dimension::ENERGY, None)
+pub fn bound(value: f64, dimension: Dimension, trade: Trade) -> String {
+    in_unit(value, unit_for(value, dimension, trade), 1)
 }
 
-/// An energy in joule, in `Er` where the crystal has it.
+/// An energy in joule, in the unit of the crystal's people.
 #[must_use]
-pub fn energy_of(crystal: &Crystal, joule: f64) -> String {
-    quantity(joule, Dimension::ENERGY, recoil_of(crystal))
-}
-
-/// The crystal's `Er` in joule.
-#[must_use]
-pub fn recoil_of(crystal: &Crystal) -> Option<f64> {
-    crystal.recoil.as_ref().map(|recoil| recoil.energy.value)
+pub fn energy(crystal: &Crystal, joule: f64) -> String {
+    quantity(joule, Dimension::ENERGY, Trade::of(crystal))
 }
 
 /// A length in metre.
 #[must_use]
 pub fn length(metre: f64) -> String {
-    quantity(metre, Dimension::LENGTH, None)
+    quantity(metre, Dimension::LENGTH, Trade::default())
 }
 
 /// A mass in kg.
 #[must_use]
 pub fn mass(kilogram: f64) -> String {
-    quantity(kilogram, Dimension::MASS, None)
+    quantity(kilogram, Dimension::MASS, Trade::default())
 }
 
 /// Values in one unit, with digits enough to tell neighbours apart that are not equal.
 #[must_use]
-pub fn apart<const N: usize>(
-    values: [f64; N],
-    dimension: Dimension,
-    recoil: Option<f64>,
-) -> [String; N] {
+pub fn apart<const N: usize>(values: [f64; N], dimension: Dimension, trade: Trade) -> [String; N] {
     let largest = values.iter().fold(0.0_f64, |most, v| most.max(v.abs()));
-    let unit = unit_for(largest, dimension, recoil);
+    let unit = unit_for(largest, dimension, trade);
     let shown = |digits| values.map(|value| in_unit(value, unit, digits));
     (DIGITS..MOST_DIGITS)
         .map(shown)
@@ -247,10 +277,25 @@ mod tests {
 
     #[test]
     fn energies_take_the_unit_a_person_would_pick() {
-        assert_eq!(energy(0.1324 * EV), "132.4 meV");
-        assert_eq!(energy(1.5 * EV), "1.5 eV");
-        assert_eq!(energy(0.0), "0 meV");
-        assert_eq!(quantity(2.0, Dimension::ENERGY, Some(100.0)), "0.02 Er");
+        let solid = |joule| quantity(joule, Dimension::ENERGY, Trade::default());
+        assert_eq!(solid(0.1324 * EV), "132.4 meV");
+        assert_eq!(solid(1.5 * EV), "1.5 eV");
+        assert_eq!(solid(5e-4 * EV), "0.5 meV");
+        assert_eq!(solid(0.0), "0 meV");
+        assert_eq!(solid(9.5e-14 * EV), "9.5e-14 eV");
+        let light = Trade {
+            recoil: Some(100.0),
+            atoms: true,
+        };
+        assert_eq!(quantity(2.0, Dimension::ENERGY, light), "0.02 Er");
+        let atoms = Trade {
+            recoil: None,
+            ..light
+        };
+        assert_eq!(
+            quantity(2.5e3 * PLANCK, Dimension::ENERGY, atoms),
+            "2.5 kHz"
+        );
     }
 
     #[test]
@@ -270,7 +315,11 @@ mod tests {
 
     #[test]
     fn close_numbers_get_the_digits_that_tell_them_apart() {
-        let texts = apart([59.9996e-3 * EV, 60e-3 * EV], Dimension::ENERGY, None);
+        let texts = apart(
+            [59.9996e-3 * EV, 60e-3 * EV],
+            Dimension::ENERGY,
+            Trade::default(),
+        );
         assert_eq!(texts, ["59.9996 meV", "60 meV"].map(str::to_owned));
     }
 

@@ -41,6 +41,7 @@ pub(super) struct Backend {
     pub(super) analyst: Arc<Analyst>,
     abilities: OnceLock<Arc<Abilities>>,
     views: Arc<Semaphore>,
+    patience: Duration,
 }
 
 impl Backend {
@@ -53,6 +54,7 @@ impl Backend {
             analyst,
             abilities: OnceLock::new(),
             views: Arc::new(Semaphore::new(VIEWS_AT_ONCE)),
+            patience: settings.patience.unwrap_or(PATIENCE),
         }
     }
 
@@ -96,7 +98,7 @@ impl Backend {
     /// The document as it is now, with what is known of it; with less than `depth` where that takes too long.
     pub(super) async fn view(&self, uri: &Url, depth: Option<Depth>) -> Result<Option<View>> {
         let wanted = self.owner.want(uri, depth);
-        let answer = match timeout(PATIENCE, wanted).await {
+        let answer = match timeout(self.patience, wanted).await {
             Ok(answer) => answer,
             Err(_) => {
                 self.owner.tell(Message::Owe(path_of(uri)));

@@ -10,6 +10,8 @@ use std::time::SystemTime;
 use tower_lsp::lsp_types::Url;
 
 use super::cancel::Cancel;
+use crate::report::disk;
+use crate::report::editor_links::links;
 use crate::report::editor_text::{Tree, normalise, read, reread};
 use crate::report::{FileSource, ReadFailure};
 use crate::text::{Document, LineIndex};
@@ -26,7 +28,12 @@ pub(super) struct Files {
     pub(super) folders: Vec<PathBuf>,
     /// What was read from the disk.
     pub(super) disk: Arc<Disk>,
+    /// Which files the files in the folders use, as they are on the disk.
+    pub(super) uses: Arc<Uses>,
 }
+
+/// Each file's path and the paths that it uses.
+pub(super) type Uses = HashMap<PathBuf, Vec<PathBuf>>;
 
 /// An open document as it is at one moment.
 #[derive(Clone)]
@@ -117,6 +124,15 @@ impl Files {
         self.folders.iter().any(|folder| path.starts_with(folder))
     }
 
+    /// What the files in the folders use; reads them all.
+    pub(super) fn survey(&self) -> Uses {
+        let used = |path: PathBuf| {
+            let uses: Vec<PathBuf> = disk::uses(&path).into_iter().collect();
+            (!uses.is_empty()).then_some((path, uses))
+        };
+        self.all().into_iter().filter_map(used).collect()
+    }
+
     /// Whether a document that belongs to no folder lies at or above the path.
     fn beside_loose_file(&self, path: &Path) -> bool {
         let loose = self.open.keys().filter(|open| !self.in_folder(open));
@@ -143,6 +159,20 @@ impl FileSource for Files {
 
     fn inside(&self, path: &Path) -> bool {
         self.in_folder(path) || self.open.contains_key(path) || self.beside_loose_file(path)
+    }
+
+    fn is_used(&self, path: &Path) -> bool {
+        let on_disk = self
+            .uses
+            .iter()
+            .filter(|(user, _)| !self.open.contains_key(*user));
+        let mut on_disk = on_disk.filter(|(_, used)| used.iter().any(|used| used == path));
+        let in_buffer = |file: &Arc<OpenFile>| {
+            links(&file.tree, &file.path())
+                .iter()
+                .any(|(_, used)| used == path)
+        };
+        on_disk.next().is_some() || self.open.values().any(in_buffer)
     }
 }
 

@@ -44,6 +44,8 @@ use tower_lsp::LspService;
 pub struct Settings {
     /// Lets the bands of every document take this long.
     pub slow_bands: Option<Duration>,
+    /// Lets requests wait this long for the bands before they are answered without them.
+    pub patience: Option<Duration>,
     /// Answers the request `crenate/test/panic` by a panic.
     pub may_panic: bool,
 }

@@ -22,7 +22,7 @@ use tower_lsp::lsp_types::{
 
 use super::abilities::Abilities;
 use super::checker::{Checked, Depth, Job};
-use super::files::{Files, OpenFile, path_of};
+use super::files::{Files, OpenFile, Uses, path_of};
 use super::lane::Lane;
 use super::log::log;
 use super::outgoing::Outgoing;
@@ -63,6 +63,8 @@ pub(super) enum Message {
     WantFiles(oneshot::Sender<Arc<Files>>),
     /// A request was answered before the bands were known.
     Owe(PathBuf),
+    /// What the files in the folders use is known.
+    Surveyed(Uses),
     /// The client's user wants the long work to stop.
     StopWork,
     /// A worker is done.
@@ -134,6 +136,7 @@ impl Owner {
         let runtime = tokio::runtime::Handle::current();
         let lane = |name| Lane::start(name, sender.clone(), Arc::clone(analyst), slow);
         let state = State {
+            own: sender.clone(),
             inbox,
             outgoing,
             runtime,
@@ -185,6 +188,8 @@ impl Drop for Owner {
 }
 
 struct State {
+    /// For messages to itself.
+    own: Sender<Message>,
     inbox: Receiver<Message>,
     outgoing: Outgoing,
     runtime: tokio::runtime::Handle,
@@ -245,6 +250,7 @@ impl State {
             Message::Start(abilities, folders) => {
                 self.abilities = abilities;
                 Arc::make_mut(&mut self.files).folders = folders;
+                self.survey();
             }
             Message::Open { uri, version, text } => self.open(uri, version, &text),
             Message::Change {
@@ -255,12 +261,14 @@ impl State {
             Message::Close { uri } => self.close(uri),
             Message::Disk(paths) => {
                 self.files.disk.forget(&paths);
+                self.survey();
                 self.touched();
             }
             Message::Folders { added, removed } => {
                 let folders = &mut Arc::make_mut(&mut self.files).folders;
                 folders.retain(|folder| !removed.contains(folder));
                 folders.extend(added);
+                self.survey();
                 self.touched();
             }
             Message::Want(want) => self.answer_or_keep(want),
@@ -271,6 +279,12 @@ impl State {
             Message::Owe(path) => {
                 if let Some(record) = self.records.get_mut(&path) {
                     record.owes = true;
+                }
+            }
+            Message::Surveyed(uses) => {
+                if *self.files.uses != uses {
+                    Arc::make_mut(&mut self.files).uses = Arc::new(uses);
+                    self.touched();
                 }
             }
             Message::StopWork => self.dear.cancel(),
@@ -343,6 +357,18 @@ impl State {
             self.show(uri, None, Vec::new());
         }
         self.touched();
+    }
+
+    /// Looks, beside other work, at what the files in the folders use.
+    fn survey(&self) {
+        if self.files.folders.is_empty() {
+            return;
+        }
+        let (files, own) = (Arc::clone(&self.files), self.own.clone());
+        self.runtime.spawn_blocking(move || {
+            // The owner is gone only when the session is over.
+            let _ = own.send(Message::Surveyed(files.survey()));
+        });
     }
 
     fn touched(&mut self) {

@@ -14,11 +14,17 @@ use std::pin::Pin;
 use std::task::{Context, Poll, Waker};
 use std::time::Duration;
 
+use serde::Deserialize;
 use serde_json::{Value, json};
 use tokio::io::{AsyncRead, AsyncReadExt, AsyncWrite};
 use tokio::task::JoinSet;
 use tower::Service;
 use tower_lsp::jsonrpc::{Error, Id, Request, Response};
+use tower_lsp::lsp_types::notification::ShowMessage;
+use tower_lsp::lsp_types::{
+    DidChangeTextDocumentParams, DidCloseTextDocumentParams, DidOpenTextDocumentParams,
+    MessageType, ShowMessageParams,
+};
 use tower_lsp::{ExitedError, LanguageServer, LspService};
 
 use super::frame::{Frame, Framer};
@@ -152,6 +158,10 @@ impl<S: LanguageServer> Session<S> {
                 .filter(|&id| parent::is_alive(id));
             mend_diagnostics_ability(&mut message);
         }
+        if let Some(why) = misread(&method, &message) {
+            self.complain(&method, &why);
+            return Next::Read;
+        }
         let id = message.get("id").cloned();
         match serde_json::from_value::<Request>(message) {
             Ok(request) if !method.is_empty() => self.call(request, &method).await,
@@ -196,10 +206,32 @@ impl<S: LanguageServer> Session<S> {
         }
     }
 
+    /// A notification has no answer, so an edit that cannot be read would be lost in silence.
+    fn complain(&self, method: &str, why: &str) {
+        log!("{method} cannot be read: {why}");
+        let message = format!("crenate could not read {method} ({why}); reopen the file to go on");
+        self.outgoing.notify::<ShowMessage>(ShowMessageParams {
+            typ: MessageType::ERROR,
+            message,
+        });
+    }
+
     fn refuse(&self, id: Value, error: &Error) {
         self.outgoing
             .send(&json!({"jsonrpc": "2.0", "id": id, "error": error}));
     }
+}
+
+/// Why the parameters of a notification about a document cannot be read.
+fn misread(method: &str, message: &Value) -> Option<String> {
+    let params = message.get("params").unwrap_or(&Value::Null);
+    let error = match method {
+        "textDocument/didOpen" => DidOpenTextDocumentParams::deserialize(params).err(),
+        "textDocument/didChange" => DidChangeTextDocumentParams::deserialize(params).err(),
+        "textDocument/didClose" => DidCloseTextDocumentParams::deserialize(params).err(),
+        _ => None,
+    };
+    error.map(|error| error.to_string())
 }
 
 /// The protocol names a client's ability `workspace.diagnostics`; the types that we read it with, `workspace.diagnostic`.

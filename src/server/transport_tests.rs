@@ -361,3 +361,21 @@ async fn three_hundred_waiting_questions_do_not_block_the_reader() {
         1000
     );
 }
+
+#[tokio::test]
+async fn an_edit_that_cannot_be_read_is_complained_about() {
+    let mut client = Client::started().await;
+    let document = json!({"uri": "file:///a.cren", "version": 2});
+    let change = json!({"textDocument": document, "contentChanges": [{"newText": "x"}]});
+    client
+        .send(&json!({"jsonrpc": "2.0", "method": "textDocument/didChange", "params": change}))
+        .await;
+    let message = client.read().await;
+    assert_eq!(message["method"], "window/showMessage");
+    assert!(
+        message["params"]["message"]
+            .as_str()
+            .unwrap()
+            .contains("textDocument/didChange")
+    );
+}

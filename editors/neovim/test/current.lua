@@ -18,7 +18,6 @@ end
 -- A misspelt material is found, and mended by its fix.
 steps.wait('the finding', function() return steps.finding('unknown-name') ~= nil end)
 local finding = steps.finding('unknown-name')
-local line, column = steps.find('wal\n') or steps.find('of wal')
 if finding.lnum ~= 10 or finding.col ~= 18 then
   steps.fail('it is found at ' .. finding.lnum .. ':' .. finding.col)
 end

@@ -56,7 +56,7 @@ function steps.ask(client, method, needle, more)
   local reply
   client.request(method, params, function(error, result)
     reply = { error = error, result = result }
-  end, 0)
+  end, vim.api.nvim_get_current_buf())
   steps.wait('an answer to ' .. method, function() return reply ~= nil end)
   if reply.error then
     steps.fail(method .. ': ' .. vim.inspect(reply.error))

@@ -5,7 +5,7 @@ use std::rc::Rc;
 use rustc_hash::FxHashMap;
 
 use super::scales::Scales;
-use super::takeover::{Statements, Taken, chain_of, check_chain};
+use super::takeover::{Statements, Taken, chain_of, check_chain, mark_taken_over};
 use super::{Built, BuiltMaterial, Key, SectionRef, World, check_lets, checks};
 use crate::model::evaluate::{Context, Evaluator};
 use crate::model::{Crystal, CrystalRef, FileSource, Setting, Trouble};
@@ -50,6 +50,7 @@ pub fn build_crystal(
     let mut built = build.finish();
     if chain.len() > 1 {
         drop_known(world, &chain, setting, source, &mut built.troubles);
+        mark_taken_over(home, &mut built.troubles);
     }
     built
 }

@@ -2,7 +2,7 @@
 
 use super::crystal::CrystalBuild;
 use super::takeover::Taken;
-use crate::model::evaluate::Context;
+use crate::model::evaluate::{Context, is_bare};
 use crate::model::shape::centring::{Centring, LATTICE_KINDS, LatticeKind, lattice_kind};
 use crate::model::words::nearest;
 use crate::model::{Dimension, Dual, Scalar, TroubleKind};
@@ -99,7 +99,10 @@ impl<'w> CrystalBuild<'_, 'w> {
         let angle = self
             .evaluator
             .quantity_of(value, Dimension::NUMBER, context)?;
-        if angle.value > 0.0 && angle.value < std::f64::consts::PI {
+        let bare = is_bare(&value.expression);
+        let within = angle.value < std::f64::consts::PI || bare;
+        // A bare angle above π was likely meant in degrees: that is said elsewhere, and it stays what is written.
+        if angle.value > 0.0 && within && angle.value.sin().abs() > FLATTEST {
             return Some(angle);
         }
         let degrees = angle.value.to_degrees();

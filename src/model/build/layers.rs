@@ -267,15 +267,17 @@ impl<'w> CrystalBuild<'_, 'w> {
     }
 
     fn mass_origin(&self, left: &BuiltMaterial, right: &BuiltMaterial) -> String {
-        let one = |material: &BuiltMaterial| match material.mass {
-            Some(_) => format!("of material {}", material.name),
-            None => self.own_mass_origin(),
-        };
-        let (from, to) = (one(left), one(right));
-        if from == to {
-            return from;
+        match (&left.mass, &right.mass) {
+            (Some(_), _) if left.key == right.key => format!("of material {}", left.name),
+            (Some(_), Some(_)) => format!("of materials {} to {}", left.name, right.name),
+            (Some(_), None) => format!("of material {} to {}", left.name, self.own_mass_origin()),
+            (None, Some(_)) => format!(
+                "{} to that of material {}",
+                self.own_mass_origin(),
+                right.name
+            ),
+            (None, None) => self.own_mass_origin(),
         }
-        format!("{from} to {to}")
     }
 
     /// The period: what the layers add up to, else the lattice's.
@@ -305,15 +307,22 @@ impl<'w> CrystalBuild<'_, 'w> {
         let Some(lattice) = self.statements.single("lattice") else {
             return;
         };
+        let Some(last) = self.statements.layers.last() else {
+            return;
+        };
         let kind = TroubleKind::OpenCell {
             sum,
             period,
             parts: "layers",
         };
-        let mut trouble = Trouble::new(kind, lattice.home.place(lattice.statement.span));
-        if let Some(last) = self.statements.layers.last() {
-            trouble = trouble.beside(last.home.place(last.statement.span), "the last layer");
-        }
+        let lattice_place = lattice.home.place(lattice.statement.span);
+        let last_place = last.home.place(last.statement.span);
+        // Of the two, the one that this crystal itself says.
+        let trouble = if lattice.home.key() == self.evaluator.home.key() {
+            Trouble::new(kind, lattice_place).beside(last_place, "the last layer")
+        } else {
+            Trouble::new(kind, last_place).beside(lattice_place, "the lattice")
+        };
         self.evaluator.report(trouble);
     }
 

@@ -1,6 +1,6 @@
 //! Materials.
 
-use super::takeover::{Statements, Taken, chain_of, check_chain};
+use super::takeover::{Statements, Taken, chain_of, check_chain, mark_taken_over};
 use super::{Key, Reference, SectionRef, World, check_lets, checks};
 use crate::model::dual::ParameterSort;
 use crate::model::evaluate::{Context, Evaluator, Scale};
@@ -83,6 +83,7 @@ pub fn build_material(
     material.troubles = build.evaluator.troubles;
     if chain.len() > 1 {
         drop_known(world, &chain, setting, &mut material.troubles);
+        mark_taken_over(home, &mut material.troubles);
     }
     material
 }

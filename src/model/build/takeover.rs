@@ -106,6 +106,16 @@ pub(crate) fn check_chain<'w>(
         .any(|section| !section.section.problems.is_empty());
 }
 
+/// Mistakes in statements of another section that only the taking over makes: says who takes them over.
+pub(crate) fn mark_taken_over(home: SectionRef<'_>, troubles: &mut [Trouble]) {
+    for trouble in troubles {
+        if (trouble.place.file, trouble.place.section) != home.key() {
+            let what = format!("as `{}` takes it over", home.name());
+            trouble.related.push((home.name_place(), what));
+        }
+    }
+}
+
 /// The statements of a crystal or material, its own and those taken over, sorted by what they do.
 #[derive(Debug, Default)]
 pub(crate) struct Statements<'w> {
@@ -173,10 +183,9 @@ impl<'w> Statements<'w> {
 
     /// Puts the statements of a section over those that it takes over.
     fn take(&mut self, own: Self) {
-        for (word, taken) in own.singles {
-            self.singles.retain(|(known, _)| *known != word);
-            self.singles.push((word, taken));
-        }
+        self.singles
+            .retain(|(known, _)| own.single(known).is_none());
+        append(&mut self.singles, own.singles);
         // A cell described anew is described wholly.
         if !own.layers.is_empty() {
             self.layers = own.layers;
@@ -184,19 +193,29 @@ impl<'w> Statements<'w> {
         if !own.profiles.is_empty() {
             self.profiles = own.profiles;
         }
-        self.deltas.extend(own.deltas);
-        self.waves.extend(own.waves);
-        self.sites.extend(own.sites);
-        self.atoms.extend(own.atoms);
-        self.formfactors.extend(own.formfactors);
+        append(&mut self.deltas, own.deltas);
+        append(&mut self.waves, own.waves);
+        append(&mut self.sites, own.sites);
+        append(&mut self.atoms, own.atoms);
+        append(&mut self.formfactors, own.formfactors);
         for measure in own.measures {
             replace(&mut self.measures, measure, measure_name(&measure));
         }
-        let mut requirements = std::mem::take(&mut self.requirements);
-        let keys: Vec<Option<String>> = own.requirements.iter().map(wanted_quantity).collect();
-        requirements.retain(|old| !keys.contains(&wanted_quantity(old)));
-        requirements.extend(own.requirements);
-        self.requirements = requirements;
+        if !self.requirements.is_empty() && !own.requirements.is_empty() {
+            let keys: Vec<Option<String>> = own.requirements.iter().map(wanted_quantity).collect();
+            self.requirements
+                .retain(|old| !keys.contains(&wanted_quantity(old)));
+        }
+        append(&mut self.requirements, own.requirements);
+    }
+}
+
+/// Adds statements to a list; the list itself where there were none.
+fn append<T>(list: &mut Vec<T>, mut more: Vec<T>) {
+    if list.is_empty() {
+        *list = more;
+    } else {
+        list.append(&mut more);
     }
 }
 

@@ -11,7 +11,7 @@ use crate::text::Span;
 /// A component and its partner agree within this share of their size.
 const SAME_COMPONENT: f64 = 1e-9;
 /// Larger indices are slips of the keyboard, and would not be exact further on.
-const LARGEST_INDEX: i64 = 10_000;
+const LARGEST_INDEX: u64 = 10_000;
 
 impl<'w> CrystalBuild<'_, 'w> {
     /// Reads all waves and checks that Fourier components have their partners.
@@ -107,7 +107,7 @@ impl<'w> CrystalBuild<'_, 'w> {
             let word = taken.home.text(taken.statement.word).to_owned();
             return self.evaluator.wrong_dimension(&word, needs, place);
         }
-        if indices.iter().any(|one| one.abs() > LARGEST_INDEX) {
+        if indices.iter().any(|one| one.unsigned_abs() > LARGEST_INDEX) {
             let what = format!("an index is at most {LARGEST_INDEX}");
             return self.evaluator.bad(place, what);
         }

@@ -17,7 +17,7 @@ impl<'w> Evaluator<'w> {
             return self.bad(
                 context.place(expression.span),
                 format!(
-                    "brackets and names nest more than {} deep here",
+                    "this is too long, or nests too deep: more than {} steps",
                     super::DEEPEST
                 ),
             );
@@ -302,7 +302,7 @@ fn call_not_finite_words(name: &str, argument: f64) -> &'static str {
 }
 
 /// Whether an expression is made of numbers without units alone.
-pub(super) fn is_bare(expression: &Expression) -> bool {
+pub(crate) fn is_bare(expression: &Expression) -> bool {
     match &expression.kind {
         ExpressionKind::Number { unit, .. } => unit.is_none(),
         ExpressionKind::Name(name) => name == "pi",

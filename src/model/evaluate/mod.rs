@@ -20,6 +20,7 @@ use super::{
 use crate::syntax::{Expression, SectionId, Word};
 use crate::text::Span;
 
+pub(crate) use expression::is_bare;
 pub(crate) use quantity::MOST_BANDS;
 pub(crate) use term::Term;
 pub(crate) use value::is_relative;
@@ -164,7 +165,7 @@ impl<'w> Evaluator<'w> {
             home,
             troubles: Vec::new(),
             references: Vec::new(),
-            parameters: Vec::new(),
+            parameters: Vec::with_capacity(32),
             broken: !home.section.problems.is_empty(),
             units: LocalUnits::default(),
             measures: Vec::new(),
@@ -191,7 +192,7 @@ impl<'w> Evaluator<'w> {
         self.fail(TroubleKind::BadValue { what: what.into() }, place)
     }
 
-    /// Notes the use of a name, where it is written in the section that is built.
+    /// Notes the use of a name, where it is written in the section that is built, or means something defined there.
     pub(crate) fn refer(
         &mut self,
         place: Place,
@@ -199,7 +200,8 @@ impl<'w> Evaluator<'w> {
         sort: NameSort,
         definition: Option<Place>,
     ) {
-        if (place.file, place.section) == self.home.key() && self.setting.is_nominal() {
+        let here = |place: Place| (place.file, place.section) == self.home.key();
+        if self.setting.is_nominal() && (here(place) || definition.is_some_and(here)) {
             self.references.push(Reference {
                 place,
                 name: name.to_owned(),
@@ -220,7 +222,7 @@ impl<'w> Evaluator<'w> {
     /// The parameters found, each once, sorted by identity.
     pub(crate) fn sorted_parameters(&mut self) -> Vec<Parameter> {
         let mut parameters = std::mem::take(&mut self.parameters);
-        parameters.sort_by_key(|parameter| parameter.id);
+        parameters.sort_unstable_by_key(|parameter| parameter.id);
         parameters.dedup_by_key(|parameter| parameter.id);
         parameters
     }

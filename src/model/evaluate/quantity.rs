@@ -14,6 +14,9 @@ use crate::syntax::{
 /// No crystal has more bands than this worked out.
 pub(crate) const MOST_BANDS: i64 = 1000;
 
+/// Hoppings farther than this are slips of the keyboard.
+const FARTHEST_HOP: u64 = 10_000;
+
 impl<'w> Evaluator<'w> {
     pub(super) fn quantity(
         &mut self,
@@ -137,13 +140,13 @@ impl<'w> Evaluator<'w> {
         lattice: &LatticeSummary,
         context: &Context<'_, 'w>,
     ) -> Option<Vec<f64>> {
-        let known = lattice.kind.map(zone_points).unwrap_or_default();
         if let Some(point) = lattice.kind.and_then(|kind| zone_point(kind, &word.text)) {
             return Some(point);
         }
         if lattice.kind.is_none() && matches!(word.text.as_str(), "centre" | "Γ" | "gamma") {
             return Some(vec![0.0; lattice.dimension]);
         }
+        let known = lattice.kind.map(zone_points).unwrap_or_default();
         let kind = TroubleKind::UnknownName {
             name: word.text.clone(),
             wanted: "zone point",
@@ -183,6 +186,14 @@ impl<'w> Evaluator<'w> {
                 several => format!("{several} whole numbers of cells here"),
             };
             return self.wrong_dimension("hopping", needs, context.place(by.span));
+        }
+        if let Some(far) = by
+            .entries
+            .iter()
+            .find(|entry| entry.value.unsigned_abs() > FARTHEST_HOP)
+        {
+            let what = format!("a hop goes over at most {FARTHEST_HOP} cells");
+            return self.bad(context.place(far.span), what);
         }
         Some(by.entries.iter().map(|entry| entry.value).collect())
     }

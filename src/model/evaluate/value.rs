@@ -1,7 +1,6 @@
 //! Values: tolerances, and the dimension that a place wants.
 
-use super::expression::is_bare;
-use super::{Context, Evaluator, Term, Typed};
+use super::{Context, Evaluator, Term, Typed, is_bare};
 use crate::model::dual::ParameterSort;
 use crate::model::{Dimension, Dual, Parameter, ParameterId, ParameterKind, Scalar};
 use crate::syntax::{Expression, ExpressionKind, Operator, Value};

@@ -40,22 +40,19 @@ fn nearest_image<S: Scalar>(from: &S, period: &S) -> S {
     from.minus(&period.scaled(turns))
 }
 
-/// How many images of a box cover a place; half of one on its face.
+/// How many images of a box cover a place: the whole numbers n with |u − nP| < size/2; half of one on its face.
 fn cover(u: f64, size: f64, period: f64) -> f64 {
-    let reach = 0.5 * size;
-    let mut count = 0.0;
-    let last = ((reach + u.abs()) / period).ceil().min(1e4);
-    let mut n = -last;
-    while n <= last {
-        let away = (u - n * period).abs();
-        if away < reach {
-            count += 1.0;
-        } else if away == reach {
-            count += 0.5;
-        }
-        n += 1.0;
-    }
+    let (low, high) = ((u - 0.5 * size) / period, (u + 0.5 * size) / period);
+    let faces = [low, high].iter().filter(|end| end.fract() == 0.0).count();
+    let count = high.floor() - low.ceil() + 1.0;
     count
+        - if faces == 2 {
+            1.0
+        } else if faces == 1 {
+            0.5
+        } else {
+            0.0
+        }
 }
 
 /// Σ over images: the nearest, then pairs on both sides until they no longer count.

@@ -82,22 +82,23 @@ fn table(kind: &LatticeKind) -> Points {
 #[must_use]
 pub fn zone_points(kind: &LatticeKind) -> Vec<(&'static str, Vec<f64>)> {
     let centre = ("centre", vec![0.0; kind.dimension]);
-    let named = table(kind).iter().map(|(name, conventional)| {
-        let own = conventional.get(..kind.dimension).unwrap_or_default();
-        (*name, kind.centring.fractions_to_primitive(own))
-    });
+    let named = table(kind)
+        .iter()
+        .map(|(name, conventional)| (*name, to_primitive(kind, conventional)));
     std::iter::once(centre).chain(named).collect()
+}
+
+fn to_primitive(kind: &LatticeKind, conventional: &[f64; 3]) -> Vec<f64> {
+    let own = conventional.get(..kind.dimension).unwrap_or_default();
+    kind.centring.fractions_to_primitive(own)
 }
 
 /// The point of that name; the zone centre is also `Γ` or `gamma`.
 #[must_use]
 pub fn zone_point(kind: &LatticeKind, name: &str) -> Option<Vec<f64>> {
-    let name = match name {
-        "Γ" | "gamma" => "centre",
-        other => other,
-    };
-    zone_points(kind)
-        .into_iter()
-        .find(|(known, _)| *known == name)
-        .map(|(_, fractions)| fractions)
+    if matches!(name, "centre" | "Γ" | "gamma") {
+        return Some(vec![0.0; kind.dimension]);
+    }
+    let (_, conventional) = table(kind).iter().find(|(known, _)| *known == name)?;
+    Some(to_primitive(kind, conventional))
 }

@@ -21,6 +21,12 @@ pub trait FileSource: Sync {
 
     /// Whether a path lies in the workspace.
     fn inside(&self, path: &Path) -> bool;
+
+    /// Whether a file that is not at hand is known to use this one.
+    fn is_used(&self, path: &Path) -> bool {
+        let _ = path;
+        false
+    }
 }
 
 /// Why a file cannot be read.

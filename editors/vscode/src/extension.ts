@@ -1,0 +1,44 @@
+// Starts `crenate serve` and lets it do the rest.
+
+import * as vscode from "vscode";
+import { LanguageClient, ServerOptions, LanguageClientOptions, TransportKind } from "vscode-languageclient/node";
+
+let client: LanguageClient | undefined;
+
+export async function activate(context: vscode.ExtensionContext): Promise<void> {
+  context.subscriptions.push(
+    vscode.commands.registerCommand("crenate.restart", restart),
+    vscode.workspace.onDidChangeConfiguration(async (change) => {
+      if (change.affectsConfiguration("crenate.path")) {
+        await restart();
+      }
+    }),
+  );
+  await start();
+}
+
+export async function deactivate(): Promise<void> {
+  await client?.dispose();
+  client = undefined;
+}
+
+async function restart(): Promise<void> {
+  await deactivate();
+  await start();
+}
+
+async function start(): Promise<void> {
+  const command = vscode.workspace.getConfiguration("crenate").get("path", "crenate");
+  const server: ServerOptions = { command, args: ["serve"], transport: TransportKind.stdio };
+  const options: LanguageClientOptions = { documentSelector: [{ language: "crenate" }] };
+  client = new LanguageClient("crenate", "crenate", server, options);
+  try {
+    await client.start();
+  } catch (error) {
+    const message = `crenate could not be started (${String(error)}). Put it on the PATH, or name it in the settings.`;
+    const settings = "Open the settings";
+    if ((await vscode.window.showErrorMessage(message, settings)) === settings) {
+      await vscode.commands.executeCommand("workbench.action.openSettings", "crenate.path");
+    }
+  }
+}

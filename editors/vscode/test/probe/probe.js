@@ -1,0 +1,72 @@
+// Walks through the features by the editor's own interface and writes what it saw.
+const fs = require("fs");
+const path = require("path");
+const vscode = require("vscode");
+
+exports.activate = async () => {
+  const seen = {};
+  try {
+    await walk(seen);
+  } catch (error) {
+    seen.error = String(error && error.stack ? error.stack : error);
+  }
+  fs.writeFileSync(process.env.CRENATE_PROBE, JSON.stringify(seen));
+};
+
+async function until(what, condition) {
+  for (let attempt = 0; attempt < 600; attempt++) {
+    const value = await condition();
+    if (value) {
+      return value;
+    }
+    await new Promise((resolve) => setTimeout(resolve, 50));
+  }
+  throw new Error(`waited in vain for ${what}`);
+}
+
+async function walk(seen) {
+  const folder = vscode.workspace.workspaceFolders[0].uri;
+  const document = await vscode.workspace.openTextDocument(vscode.Uri.file(path.join(folder.fsPath, "sample.cren")));
+  await vscode.window.showTextDocument(document);
+  const uri = document.uri;
+  seen.language = document.languageId;
+  const place = (needle, ahead = 0) => document.positionAt(document.getText().indexOf(needle) + ahead);
+  const findings = () => vscode.languages.getDiagnostics(uri);
+  const code = (finding) => (typeof finding.code === "object" ? finding.code.value : finding.code);
+  const all = new vscode.Range(0, 0, 99, 0);
+
+  const found = await until("the finding", () => findings().find((finding) => code(finding) === "unknown-name"));
+  seen.finding = { start: [found.range.start.line, found.range.start.character], message: found.message, link: String(found.code.target || "") };
+  seen.findings = findings().map(code);
+
+  const fixes = await vscode.commands.executeCommand("vscode.executeCodeActionProvider", uri, found.range, "quickfix");
+  seen.fixes = fixes.map((fix) => fix.title);
+  await vscode.workspace.applyEdit(fixes.find((fix) => fix.title.includes("wall")).edit);
+  await until("the finding to go", () => findings().length === 0);
+
+  const hover = async () => {
+    const hovers = await vscode.commands.executeCommand("vscode.executeHoverProvider", uri, place("crystal tern", 9));
+    return hovers.flatMap((hover) => hover.contents.map((content) => content.value || String(content))).join("\n");
+  };
+  seen.before = await hover();
+  const edit = new vscode.WorkspaceEdit();
+  edit.replace(uri, new vscode.Range(place("5.4 nm"), place("5.4 nm", 3)), "8.4");
+  await vscode.workspace.applyEdit(edit);
+  seen.after = await hover();
+
+  const hints = await vscode.commands.executeCommand("vscode.executeInlayHintProvider", uri, all);
+  seen.hints = hints.map((hint) => [hint.position.line, typeof hint.label === "string" ? hint.label : hint.label.map((part) => part.value).join("")]);
+  const symbols = await vscode.commands.executeCommand("vscode.executeDocumentSymbolProvider", uri);
+  seen.symbols = symbols.map((symbol) => symbol.name);
+  const completion = await vscode.commands.executeCommand("vscode.executeCompletionItemProvider", uri, place("of wall", 3));
+  seen.completion = completion.items.map((item) => (typeof item.label === "string" ? item.label : item.label.label));
+  const definition = await vscode.commands.executeCommand("vscode.executeDefinitionProvider", uri, place("of wall", 4));
+  seen.definition = definition.map((target) => (target.targetSelectionRange || target.range).start.line);
+  const rename = await vscode.commands.executeCommand("vscode.executeDocumentRenameProvider", uri, place("of wall", 4), "fence");
+  seen.renamed = rename.entries().flatMap(([, edits]) => edits).length;
+  const layout = await vscode.commands.executeCommand("vscode.executeFormatDocumentProvider", uri, { tabSize: 2, insertSpaces: true });
+  const format = new vscode.WorkspaceEdit();
+  format.set(uri, layout);
+  await vscode.workspace.applyEdit(format);
+  seen.text = document.getText();
+}
