@@ -96,12 +96,13 @@ struct Frame {
 
 impl Frame {
     fn around(potential: &[f64], bands: &[(f64, f64)]) -> Option<Self> {
-        let highest_band = bands.last()?.1;
+        // The walls and two bands; the third shows only where it is near.
+        let second = bands.get(1).or(bands.first())?.1;
         let finite = potential.iter().copied().filter(|value| value.is_finite());
         let floor = finite.clone().fold(bands.first()?.0, f64::min);
-        let roof = finite.fold(highest_band, f64::max);
+        let roof = finite.fold(second, f64::max);
         // A wall far above the bands is cut, so that the bands stay apart.
-        let roof = roof.min(highest_band + 0.5 * (highest_band - floor));
+        let roof = roof.min(second + 0.5 * (second - floor));
         let step = (roof - floor) / (ROWS as f64 - 0.5);
         (step > 0.0 && step.is_finite()).then_some(Self {
             lowest: floor - 0.25 * step,
@@ -200,9 +201,13 @@ mod tests {
             "{lines:#?}"
         );
         let text = lines.join("\n");
-        for band in ["1 64 meV", "2 255 meV", "3 605 meV"] {
+        for band in ["1 64 meV", "2 255 meV"] {
             assert!(text.contains(band), "{band} in\n{text}");
         }
+        assert!(
+            !text.contains("3 605 meV"),
+            "a band far above the walls\n{text}"
+        );
         assert!(
             text.contains('╌') && text.contains('━') && text.contains('░'),
             "{text}"
