@@ -283,7 +283,16 @@ fn folders_are_walked_with_care() {
     let found = findings(&stdout(&output));
     assert_eq!(found.len(), 1, "{found:#?}");
     assert_eq!(found[0]["file"], "seen.cren");
-    let output = run(&folder, &["lint", "seen.cren", "./seen.cren", "."]);
+    let output = run(
+        &folder,
+        &[
+            "lint",
+            "seen.cren",
+            "./seen.cren",
+            "built/../seen.cren",
+            ".",
+        ],
+    );
     assert!(
         stdout(&output).ends_with("1 file: 1 error\n"),
         "{}",

@@ -1,6 +1,7 @@
 //! Which files a command works on.
 
 use std::collections::HashSet;
+use std::fs;
 use std::path::{Path, PathBuf};
 
 use ignore::WalkBuilder;
@@ -64,7 +65,9 @@ pub fn select(paths: &[PathBuf], shard: Option<Shard>) -> Selection {
         }
     }
     let mut seen = HashSet::new();
-    selection.all.retain(|path| seen.insert(plain(path)));
+    selection
+        .all
+        .retain(|path| seen.insert(fs::canonicalize(path).unwrap_or_else(|_| path.clone())));
     let whole = Shard { part: 1, parts: 1 };
     let shard = shard.unwrap_or(whole);
     let chosen = selection
@@ -98,13 +101,6 @@ fn walk(folder: &Path, selection: &mut Selection) {
             Err(error) => selection.failures.push(error.to_string()),
         }
     }
-}
-
-/// A path without `./` in front, so that both ways to write it are one file.
-fn plain(path: &Path) -> PathBuf {
-    path.components()
-        .filter(|part| *part != std::path::Component::CurDir)
-        .collect()
 }
 
 /// Where `use` may reach: the folder we are in, those given, and those of the files given.
