@@ -7,6 +7,7 @@
 
 mod abilities;
 mod backend;
+mod cache;
 mod cancel;
 mod capabilities;
 mod checker;
@@ -19,6 +20,7 @@ mod frame;
 mod lane;
 mod log;
 mod navigation;
+mod offers;
 mod outgoing;
 mod owner;
 mod parent;
@@ -92,6 +94,7 @@ where
         service = service.custom_method("crenate/test/panic", backend::Backend::panic);
     }
     let (service, _) = service
+        .custom_method("crenate/picture", backend::Backend::picture)
         .custom_method(
             "window/workDoneProgress/cancel",
             backend::Backend::stop_work,
