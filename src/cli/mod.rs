@@ -4,11 +4,13 @@
 //! 0 where nothing reaches the failing level, 1 where something does, 2 where the
 //! work could not be done.
 
+mod draw;
 mod files;
 mod in_order;
 mod lint;
 mod output;
 mod rules;
+mod scan;
 mod show;
 mod tidy;
 
@@ -62,6 +64,10 @@ enum Command {
     Lint(lint::Arguments),
     /// Show the bands, gaps, masses, filling and targets of each crystal.
     Show(show::Arguments),
+    /// Draw each crystal: its potential with the bands, E(k), and |ψ|² at the edges, as SVG.
+    Draw(draw::Arguments),
+    /// Show the bands against one named value.
+    Scan(scan::Arguments),
     /// Rewrite files in the one standard layout.
     Tidy(tidy::Arguments),
     /// List the rules, or explain one of them.
@@ -108,6 +114,8 @@ pub fn run() -> Outcome {
     match Arguments::parse().command {
         Command::Lint(arguments) => Outcome::Done(lint::run(&arguments)),
         Command::Show(arguments) => Outcome::Done(show::run(&arguments)),
+        Command::Draw(arguments) => Outcome::Done(draw::run(&arguments)),
+        Command::Scan(arguments) => Outcome::Done(scan::run(&arguments)),
         Command::Tidy(arguments) => Outcome::Done(tidy::run(&arguments)),
         Command::Rules(arguments) => Outcome::Done(rules::run(&arguments)),
         Command::Serve(_) => Outcome::Serve,

@@ -5,7 +5,8 @@
 //! same band inside a wall, where it tunnels. Two cells are drawn, as walls only show between wells.
 
 use super::units::Trade;
-use crate::model::Dimension;
+use crate::bands::{Solution, potential_line};
+use crate::model::{Crystal, Dimension};
 
 /// Characters for two cells.
 const COLUMNS: usize = 44;
@@ -14,11 +15,66 @@ const ROWS: usize = 9;
 /// Bands drawn at most.
 const BANDS: usize = 3;
 
+/// Samples of a cell's potential, two for each character.
+const SAMPLES: usize = COLUMNS;
+
+/// The picture of a one-dimensional crystal, or nothing.
+#[must_use]
+pub fn of_crystal(crystal: &Crystal, solution: &Solution) -> Vec<String> {
+    let bands: Vec<(f64, f64)> = solution
+        .bands
+        .iter()
+        .map(|band| (band.bottom.energy.value, band.top.energy.value))
+        .collect();
+    draw(&samples(crystal), &bands, &Trade::of(crystal))
+}
+
+/// The potential at even distances over one cell; a repulsive delta stands as an infinite wall, an attractive one
+/// as an infinite well.
+fn samples(crystal: &Crystal) -> Vec<f64> {
+    let line = potential_line(crystal, 8 * SAMPLES);
+    let (Some(first), Some(last)) = (line.first(), line.last()) else {
+        return Vec::new();
+    };
+    let period = last.0 - first.0;
+    let place = |sample: usize| first.0 + (sample as f64 + 0.5) / SAMPLES as f64 * period;
+    let mut samples: Vec<f64> = (0..SAMPLES)
+        .map(|sample| at(&line, place(sample)))
+        .collect();
+    for delta in &crystal.potential.deltas {
+        let share = (delta.at.value - first.0).rem_euclid(period) / period;
+        // The sample that is drawn for the delta's character.
+        let character = (share * (COLUMNS / 2) as f64) as usize;
+        let sample = samples.get_mut(character * SAMPLES / (COLUMNS / 2));
+        if let Some(sample) = sample {
+            *sample = delta.strength.value.signum() * f64::INFINITY;
+        }
+    }
+    samples
+}
+
+/// The value of a line of points at a position.
+fn at(line: &[(f64, f64)], position: f64) -> f64 {
+    let after = line.partition_point(|point| point.0 <= position);
+    let right = line.get(after).or(line.last());
+    let left = after
+        .checked_sub(1)
+        .and_then(|index| line.get(index))
+        .or(line.first());
+    match (left, right) {
+        (Some(left), Some(right)) if right.0 > left.0 => {
+            left.1 + (right.1 - left.1) * (position - left.0) / (right.0 - left.0)
+        }
+        (Some(left), _) => left.1,
+        _ => f64::NAN,
+    }
+}
+
 /// The picture, at most 60 columns wide and 10 lines high, or nothing where there is nothing to see.
 ///
 /// `potential` samples one cell evenly, `bands` are (bottom, top); all in joule.
 #[must_use]
-pub fn draw(potential: &[f64], bands: &[(f64, f64)], trade: &Trade) -> Vec<String> {
+fn draw(potential: &[f64], bands: &[(f64, f64)], trade: &Trade) -> Vec<String> {
     let bands = bands.get(..BANDS.min(bands.len())).unwrap_or(bands);
     let Some(frame) = Frame::around(potential, bands) else {
         return Vec::new();

@@ -53,8 +53,9 @@ struct PotentialRecord {
     highest: f64,
 }
 
+/// One band.
 #[derive(Debug, Serialize)]
-struct BandRecord {
+pub(super) struct BandRecord {
     band: usize,
     #[serde(rename = "bottom_eV")]
     bottom_ev: f64,
@@ -75,8 +76,9 @@ struct BandRecord {
     width_uncertainty_ev: f64,
 }
 
+/// One gap.
 #[derive(Debug, Serialize)]
-struct GapRecord {
+pub(super) struct GapRecord {
     above_band: usize,
     #[serde(rename = "size_eV")]
     size_ev: f64,
@@ -227,7 +229,8 @@ fn potential(solution: &Solution) -> PotentialRecord {
     }
 }
 
-fn bands(solution: &Solution) -> Vec<BandRecord> {
+/// The bands of a solution.
+pub(super) fn bands(solution: &Solution) -> Vec<BandRecord> {
     let numbered = solution.bands.iter().enumerate();
     numbered
         .map(|(index, band)| band_record(index + 1, band))
@@ -261,7 +264,8 @@ fn mass(extremum: &Extremum) -> Option<Measured> {
     extremum.mass.map(|mass| scaled(mass, ELECTRON_MASS))
 }
 
-fn gaps(solution: &Solution) -> Vec<GapRecord> {
+/// The gaps of a solution.
+pub(super) fn gaps(solution: &Solution) -> Vec<GapRecord> {
     let numbered = solution.gaps.iter().enumerate();
     numbered
         .map(|(index, gap)| gap_record(index + 1, gap))

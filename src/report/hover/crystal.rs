@@ -16,8 +16,6 @@ use crate::syntax::Statement;
 const GAPS: usize = 3;
 /// Bands told of.
 const BANDS: usize = 2;
-/// Samples of the potential for the drawing.
-const SAMPLES: usize = 88;
 /// Light between these energies (in eV) is told by its wavelength.
 const OPTICAL: (f64, f64) = (1e-3, 10.0);
 
@@ -69,7 +67,7 @@ fn told(view: &View<'_>, section: &SectionAnalysis) -> Option<Card> {
     }
     card.say(about.join(" · "));
     match (section.solution(), section.unsolved()) {
-        (Some(solution), _) => numbers(view, section, crystal, solution, &mut card),
+        (Some(solution), _) => numbers(section, crystal, solution, &mut card),
         (None, Some(why)) => card.say(words::unsolved(why)),
         (None, None) => {}
     }
@@ -88,13 +86,7 @@ fn description(view: &View<'_>, heading: Place) -> Option<String> {
     (!words.is_empty()).then(|| words.join(" "))
 }
 
-fn numbers(
-    view: &View<'_>,
-    section: &SectionAnalysis,
-    crystal: &Crystal,
-    solution: &Solution,
-    card: &mut Card,
-) {
+fn numbers(section: &SectionAnalysis, crystal: &Crystal, solution: &Solution, card: &mut Card) {
     let trade = Trade::of(crystal);
     let temperature = crystal.temperature.as_ref().map(|dual| dual.value);
     for (index, gap) in solution.gaps.iter().take(GAPS).enumerate() {
@@ -127,7 +119,7 @@ fn numbers(
     if !section.targets.is_empty() {
         card.row(["targets".to_owned(), targets(section)]);
     }
-    card.picture(picture(view, crystal, solution));
+    card.picture(drawing::of_crystal(crystal, solution));
 }
 
 /// A gap with its kind, the light it absorbs, the kT it holds.
@@ -203,19 +195,6 @@ fn targets(section: &SectionAnalysis) -> String {
         .map(|(state, count)| format!("{count} {state}"))
         .collect();
     parts.join(", ")
-}
-
-fn picture(view: &View<'_>, crystal: &Crystal, solution: &Solution) -> Vec<String> {
-    let samples: Option<Vec<f64>> = None;
-    let bands: Vec<(f64, f64)> = solution
-        .bands
-        .iter()
-        .map(|band| (band.bottom.energy.value, band.top.energy.value))
-        .collect();
-    match samples {
-        Some(samples) => drawing::draw(&samples, &bands, &Trade::of(crystal)),
-        None => Vec::new(),
-    }
 }
 
 /// The layers that a `layer` or `stack` statement adds.
