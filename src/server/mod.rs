@@ -2,7 +2,7 @@
 //!
 //! A message walks through these files: `frame` cuts it off the stream,
 //! `transport` hands it to the service in order, `backend` and `protocol` hold the
-//! handlers, `owner` keeps the documents, `lane` and `checker` are the workers,
+//! handlers, `owner` and `state` keep the documents, `lane` and `checker` are the workers,
 //! and one file a feature words the results for the client.
 
 mod abilities;
@@ -26,7 +26,9 @@ mod owner;
 mod parent;
 mod positions;
 mod protocol;
+mod record;
 mod scene;
+mod state;
 mod structure;
 mod symbols;
 mod tokens;
