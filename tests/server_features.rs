@@ -334,3 +334,48 @@ async fn formatting_gives_edits_of_the_lines_that_change() {
     let again = of_document(&mut client, "textDocument/formatting").await;
     assert_eq!(again, json!([]));
 }
+
+#[tokio::test]
+async fn a_crystal_can_be_drawn_and_its_named_values_scanned() {
+    let mut client = opened(TEXT).await;
+    let lenses = of_document(&mut client, "textDocument/codeLens").await;
+    let titles: Vec<&str> = lenses
+        .as_array()
+        .unwrap()
+        .iter()
+        .map(|lens| lens["command"]["title"].as_str().unwrap())
+        .collect();
+    assert_eq!(titles, ["draw", "scan thick by ±10 %"]);
+
+    let picture = ask(&mut client, "crenate/picture", "crystal tern", 2).await;
+    assert_eq!(picture["crystal"], "tern");
+    let svg = picture["svg"].as_str().unwrap();
+    assert!(
+        svg.contains("<svg") && svg.trim_end().ends_with("</svg>"),
+        "{svg}"
+    );
+    assert_eq!(
+        ask(&mut client, "crenate/picture", "material wall", 2).await,
+        Value::Null
+    );
+
+    for (lens, sample) in [(0, "<svg"), (1, "meV")] {
+        let reply = client
+            .request("workspace/executeCommand", lenses[lens]["command"].clone())
+            .await;
+        let path = reply["result"]
+            .as_str()
+            .unwrap_or_else(|| panic!("{reply}"));
+        assert!(
+            std::fs::read_to_string(path).unwrap().contains(sample),
+            "{path}"
+        );
+        client
+            .wait(|message| message["method"] == "window/showMessage")
+            .await;
+    }
+    let mut nothing = lenses[0]["command"].clone();
+    nothing["arguments"][0]["crystal"] = json!("nobody");
+    let reply = client.request("workspace/executeCommand", nothing).await;
+    assert_eq!(reply["error"]["code"], -32803, "{reply}");
+}

@@ -10,6 +10,7 @@ pub mod editor_format;
 pub mod editor_links;
 pub mod editor_names;
 pub mod editor_outline;
+pub mod editor_picture;
 pub mod editor_rules;
 pub mod editor_signature;
 pub mod editor_text;

@@ -3,7 +3,7 @@
 use tower_lsp::lsp_types::{
     ClientCapabilities, CodeActionClientCapabilities, DiagnosticTag, MarkupKind,
     PositionEncodingKind, PublishDiagnosticsClientCapabilities, TextDocumentClientCapabilities,
-    WindowClientCapabilities, WorkspaceClientCapabilities,
+    WorkspaceClientCapabilities,
 };
 
 use crate::text::Encoding;
@@ -14,8 +14,6 @@ pub(super) struct Abilities {
     /// Columns count bytes, not UTF-16 units.
     pub(super) bytes: bool,
     pub(super) hover_markdown: bool,
-    pub(super) completion_markdown: bool,
-    pub(super) completion_snippets: bool,
     pub(super) signature_offsets: bool,
     pub(super) action_literals: bool,
     pub(super) action_preferred: bool,
@@ -27,10 +25,9 @@ pub(super) struct Abilities {
     /// The client fetches diagnostics itself and can be told when to do so again.
     pub(super) pulls: bool,
     pub(super) refresh_hints: bool,
-    pub(super) refresh_lenses: bool,
     pub(super) watch: bool,
     pub(super) progress: bool,
-    pub(super) workspace_folders: bool,
+    pub(super) show_document: bool,
 }
 
 impl Abilities {
@@ -46,7 +43,11 @@ impl Abilities {
         if let Some(workspace) = &client.workspace {
             abilities.read_workspace(workspace);
         }
-        abilities.progress = client.window.as_ref().is_some_and(progress);
+        if let Some(window) = &client.window {
+            abilities.progress = window.work_done_progress == Some(true);
+            let show = window.show_document.as_ref();
+            abilities.show_document = show.is_some_and(|show| show.support);
+        }
         let pulls = client
             .text_document
             .as_ref()
@@ -70,13 +71,6 @@ impl Abilities {
             .as_ref()
             .and_then(|hover| hover.content_format.as_deref());
         self.hover_markdown = prefers_markdown(formats);
-        let item = text
-            .completion
-            .as_ref()
-            .and_then(|completion| completion.completion_item.as_ref());
-        self.completion_markdown =
-            prefers_markdown(item.and_then(|item| item.documentation_format.as_deref()));
-        self.completion_snippets = item.is_some_and(|item| item.snippet_support == Some(true));
         let signature = text
             .signature_help
             .as_ref()
@@ -115,11 +109,8 @@ impl Abilities {
         self.watch = watched.is_some_and(|watched| watched.dynamic_registration == Some(true));
         let hints = workspace.inlay_hint.as_ref();
         self.refresh_hints = hints.is_some_and(|hints| hints.refresh_support == Some(true));
-        let lenses = workspace.code_lens.as_ref();
-        self.refresh_lenses = lenses.is_some_and(|lenses| lenses.refresh_support == Some(true));
         let pulled = workspace.diagnostic.as_ref();
         self.pulls = pulled.is_some_and(|pulled| pulled.refresh_support == Some(true));
-        self.workspace_folders = workspace.workspace_folders == Some(true);
     }
 }
 
@@ -137,8 +128,4 @@ fn prefers_markdown(formats: Option<&[MarkupKind]>) -> bool {
     formats.is_some_and(|formats| {
         formats.contains(&MarkupKind::Markdown) && formats.first() != Some(&MarkupKind::PlainText)
     })
-}
-
-fn progress(window: &WindowClientCapabilities) -> bool {
-    window.work_done_progress == Some(true)
 }

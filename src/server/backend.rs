@@ -24,7 +24,8 @@ use super::checker::Depth;
 use super::files::{Files, path_of};
 use super::log::log;
 use super::outgoing::Outgoing;
-use super::owner::{Answer, Message, Owner, View};
+use super::owner::{Message, Owner};
+use super::record::{Answer, View};
 use super::scene::Scene;
 use crate::report::Analyst;
 

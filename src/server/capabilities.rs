@@ -3,8 +3,8 @@
 use tower_lsp::lsp_types::{
     CodeActionKind, CodeActionOptions, CodeActionProviderCapability, CodeLensOptions,
     CompletionOptions, DiagnosticOptions, DiagnosticServerCapabilities, DocumentLinkOptions,
-    FoldingRangeProviderCapability, HoverProviderCapability, InlayHintOptions,
-    InlayHintServerCapabilities, OneOf, PositionEncodingKind, RenameOptions,
+    ExecuteCommandOptions, FoldingRangeProviderCapability, HoverProviderCapability,
+    InlayHintOptions, InlayHintServerCapabilities, OneOf, PositionEncodingKind, RenameOptions,
     SelectionRangeProviderCapability, SemanticTokensFullOptions, SemanticTokensOptions,
     SemanticTokensServerCapabilities, ServerCapabilities, SignatureHelpOptions,
     TextDocumentSyncCapability, TextDocumentSyncKind, TextDocumentSyncOptions,
@@ -12,7 +12,7 @@ use tower_lsp::lsp_types::{
 };
 
 use super::abilities::Abilities;
-use super::tokens;
+use super::{offers, tokens};
 
 /// The server's side of the bargain.
 pub(super) fn offered(abilities: &Abilities) -> ServerCapabilities {
@@ -42,6 +42,10 @@ pub(super) fn offered(abilities: &Abilities) -> ServerCapabilities {
         code_action_provider: Some(code_actions(abilities)),
         code_lens_provider: Some(CodeLensOptions {
             resolve_provider: Some(false),
+        }),
+        execute_command_provider: Some(ExecuteCommandOptions {
+            commands: offers::COMMANDS.map(str::to_owned).to_vec(),
+            ..ExecuteCommandOptions::default()
         }),
         document_formatting_provider: Some(OneOf::Left(true)),
         rename_provider: Some(OneOf::Right(RenameOptions {

@@ -6,10 +6,11 @@
 
 use std::path::PathBuf;
 use std::sync::OnceLock;
-use std::{env, fs, io};
+use std::{fs, io};
 
 use tower_lsp::lsp_types::Url;
 
+use super::cache;
 use super::log::log;
 use crate::report::editor_rules;
 
@@ -28,17 +29,8 @@ pub(super) fn page(rule: &str) -> Option<Url> {
 }
 
 fn folder() -> Option<PathBuf> {
-    let from = |name: &str| {
-        env::var_os(name)
-            .filter(|value| !value.is_empty())
-            .map(PathBuf::from)
-    };
-    let cache = from("XDG_CACHE_HOME").or_else(|| from("LOCALAPPDATA"));
-    let cache = cache.or_else(|| from("HOME").map(|home| home.join(".cache")))?;
     let version = env!("CARGO_PKG_VERSION");
-    cache
-        .is_absolute()
-        .then(|| cache.join("crenate").join(format!("rules-{version}")))
+    cache::folder().map(|cache| cache.join(format!("rules-{version}")))
 }
 
 /// Writes the pages that are not there yet, or not as they should be.
@@ -49,10 +41,7 @@ fn write(folder: &std::path::Path) -> io::Result<()> {
         if fs::read_to_string(&page).is_ok_and(|there| there == text) {
             continue;
         }
-        // Another server may write the same page: a rename is all or nothing.
-        let draft = folder.join(format!(".{name}.{}", std::process::id()));
-        fs::write(&draft, &text)?;
-        fs::rename(&draft, &page)?;
+        cache::write(&page, &text)?;
     }
     Ok(())
 }

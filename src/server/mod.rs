@@ -2,11 +2,12 @@
 //!
 //! A message walks through these files: `frame` cuts it off the stream,
 //! `transport` hands it to the service in order, `backend` and `protocol` hold the
-//! handlers, `owner` keeps the documents, `lane` and `checker` are the workers,
+//! handlers, `owner` and `state` keep the documents, `lane` and `checker` are the workers,
 //! and one file a feature words the results for the client.
 
 mod abilities;
 mod backend;
+mod cache;
 mod cancel;
 mod capabilities;
 mod checker;
@@ -19,12 +20,15 @@ mod frame;
 mod lane;
 mod log;
 mod navigation;
+mod offers;
 mod outgoing;
 mod owner;
 mod parent;
 mod positions;
 mod protocol;
+mod record;
 mod scene;
+mod state;
 mod structure;
 mod symbols;
 mod tokens;
@@ -92,6 +96,7 @@ where
         service = service.custom_method("crenate/test/panic", backend::Backend::panic);
     }
     let (service, _) = service
+        .custom_method("crenate/picture", backend::Backend::picture)
         .custom_method(
             "window/workDoneProgress/cancel",
             backend::Backend::stop_work,

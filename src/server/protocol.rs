@@ -9,22 +9,24 @@ use tower_lsp::lsp_types::{
     DidChangeWorkspaceFoldersParams, DidCloseTextDocumentParams, DidOpenTextDocumentParams,
     DocumentDiagnosticParams, DocumentDiagnosticReport, DocumentDiagnosticReportResult,
     DocumentFormattingParams, DocumentHighlight, DocumentHighlightParams, DocumentLink,
-    DocumentLinkParams, DocumentSymbolParams, DocumentSymbolResponse, FoldingRange,
-    FoldingRangeParams, FullDocumentDiagnosticReport, GotoDefinitionParams, GotoDefinitionResponse,
-    Hover, HoverParams, InitializeParams, InitializeResult, InitializedParams, InlayHint,
-    InlayHintParams, Location, PrepareRenameResponse, ReferenceParams,
-    RelatedFullDocumentDiagnosticReport, RenameParams, SelectionRange, SelectionRangeParams,
-    SemanticTokensParams, SemanticTokensRangeParams, SemanticTokensRangeResult,
-    SemanticTokensResult, ServerInfo, SignatureHelp, SignatureHelpParams, SymbolInformation,
-    TextDocumentPositionParams, TextEdit, WorkDoneProgressCancelParams, WorkspaceEdit,
-    WorkspaceFolder, WorkspaceSymbolParams,
+    DocumentLinkParams, DocumentSymbolParams, DocumentSymbolResponse, ExecuteCommandParams,
+    FoldingRange, FoldingRangeParams, FullDocumentDiagnosticReport, GotoDefinitionParams,
+    GotoDefinitionResponse, Hover, HoverParams, InitializeParams, InitializeResult,
+    InitializedParams, InlayHint, InlayHintParams, Location, PrepareRenameResponse,
+    ReferenceParams, RelatedFullDocumentDiagnosticReport, RenameParams, SelectionRange,
+    SelectionRangeParams, SemanticTokensParams, SemanticTokensRangeParams,
+    SemanticTokensRangeResult, SemanticTokensResult, ServerInfo, SignatureHelp,
+    SignatureHelpParams, SymbolInformation, TextDocumentPositionParams, TextEdit,
+    WorkDoneProgressCancelParams, WorkspaceEdit, WorkspaceFolder, WorkspaceSymbolParams,
 };
 
 use super::backend::Backend;
 use super::checker::Depth;
 use super::files::path_of;
 use super::owner::Message;
-use super::{capabilities, completion, findings, navigation, structure, symbols, tokens, views};
+use super::{
+    capabilities, completion, findings, navigation, offers, structure, symbols, tokens, views,
+};
 
 #[tower_lsp::async_trait]
 impl LanguageServer for Backend {
@@ -282,10 +284,12 @@ impl LanguageServer for Backend {
     }
 
     async fn code_lens(&self, params: CodeLensParams) -> Result<Option<Vec<CodeLens>>> {
-        self.look(&params.text_document.uri, None, |scene| {
-            Some(structure::lenses(scene))
-        })
-        .await
+        let uri = params.text_document.uri;
+        self.look(&uri, Some(Depth::Cheap), offers::lenses).await
+    }
+
+    async fn execute_command(&self, params: ExecuteCommandParams) -> Result<Option<Value>> {
+        self.carry_out(params).await
     }
 
     async fn formatting(&self, params: DocumentFormattingParams) -> Result<Option<Vec<TextEdit>>> {

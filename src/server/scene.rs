@@ -7,8 +7,8 @@ use tower_lsp::lsp_types::{Position, Range};
 
 use super::abilities::Abilities;
 use super::findings::Locations;
-use super::owner::View;
 use super::positions;
+use super::record::View;
 use crate::report::editor_text::Tree;
 use crate::report::{Analysis, Analyst, Request, Tier};
 use crate::text::Span;

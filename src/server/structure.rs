@@ -1,17 +1,12 @@
-//! Folding, growing selections, links and lenses.
+//! Folding, growing selections and links.
 
-use serde_json::json;
 use tower_lsp::lsp_types::{
-    CodeLens, Command, DocumentLink, FoldingRange, FoldingRangeKind, Position, Range,
-    SelectionRange, Url,
+    DocumentLink, FoldingRange, FoldingRangeKind, Position, Range, SelectionRange,
 };
 
 use super::scene::Scene;
 use crate::report::editor_links::links;
-use crate::report::editor_outline::{FoldSort, OutlineSort, folds, outline, selections};
-
-/// The command that draws a crystal.
-pub(super) const DRAW: &str = "crenate.draw";
+use crate::report::editor_outline::{FoldSort, folds, selections};
 
 /// What folds.
 pub(super) fn folding(scene: &Scene) -> Vec<FoldingRange> {
@@ -70,22 +65,4 @@ pub(super) fn document_links(scene: &Scene) -> Vec<DocumentLink> {
         .into_iter()
         .filter_map(link)
         .collect()
-}
-
-/// One lens a crystal: draw it.
-pub(super) fn lenses(scene: &Scene) -> Vec<CodeLens> {
-    let uri: &Url = &scene.view.file.uri;
-    let crystals = outline(scene.tree())
-        .into_iter()
-        .filter(|item| item.sort == OutlineSort::Crystal);
-    let lens = crystals.map(|item| CodeLens {
-        range: scene.range(item.name_span),
-        command: Some(Command {
-            title: "draw".to_owned(),
-            command: DRAW.to_owned(),
-            arguments: Some(vec![json!(uri), json!(item.name)]),
-        }),
-        data: None,
-    });
-    lens.collect()
 }
