@@ -65,7 +65,41 @@ fn zone(
     });
 }
 
+/// `--repeat real 20`: only solves the hundred wave vectors so many times and prints the sum, for `eigh_ratio.py` to
+/// take the processor time of.
+fn repeat() -> bool {
+    let arguments: Vec<String> = std::env::args().collect();
+    let Some(at) = arguments.iter().position(|a| a == "--repeat") else {
+        return false;
+    };
+    let (form, a) = if arguments[at + 1] == "real" {
+        SILICON
+    } else {
+        GALLIUM_ARSENIDE
+    };
+    let components = zincblende(form, a);
+    let potential = Potential {
+        components: &components,
+        decay: Decay::Finite {
+            radius: 3.3166247903554,
+        },
+    };
+    let waves = Waves::new(&fcc(), potential).unwrap();
+    let budget = Budget::new(&|| false, 3000, 10_000_000);
+    for _ in 0..arguments[at + 2].parse::<usize>().unwrap() {
+        let sum: f64 = hundred()
+            .iter()
+            .map(|k| waves.levels_at(*k, 8, 27.3, &budget).unwrap().energies[7])
+            .sum();
+        println!("{sum:.12}");
+    }
+    true
+}
+
 fn main() {
+    if repeat() {
+        return;
+    }
     let mut bench = Criterion::default().sample_size(10).configure_from_args();
     for (name, (form, a)) in [("real", SILICON), ("complex", GALLIUM_ARSENIDE)] {
         let components = zincblende(form, a);
