@@ -5,7 +5,7 @@
 //! everywhere, and its derivative by energy takes its place: the limit from inside the band.
 
 use super::cell::{Budget, Cell, Meter, Ready, SolveError, prepare};
-use super::element::{Element, Matrix, factors, part_series};
+use super::element::{Element, Matrix, Series, factors, part_series};
 use super::gradient::{cyclic_factors, inverse, values};
 use super::level::level_energy;
 use super::scalar::{Dual, Scalar};
@@ -109,7 +109,8 @@ fn density_at<T: Scalar>(
                 .b
         }
         Element::Polynomial(p) => {
-            let (series, _) = part_series(p, part.0, part.1, energy);
+            let mut series = Series::blank();
+            part_series(p, part.0, part.1, energy, &mut series);
             let y = inverse(&values(&series, -1.0))
                 .product(around)
                 .product(&values(&series, 1.0));
