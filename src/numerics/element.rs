@@ -80,6 +80,8 @@ pub(crate) struct Polynomial {
     pub mass: [Mass; 2],
     /// least and greatest potential
     pub range: [f64; 2],
+    /// Σ |c_i| over i ≥ 1
+    pub swing: f64,
     /// |δV| of the mesh to expect
     pub remainder: f64,
 }
@@ -107,11 +109,13 @@ impl Polynomial {
             potentials[0].min(potentials[1]),
             potentials[0].max(potentials[1]),
         ];
+        let swing = coefficients[1..].iter().map(|c| c.high.abs()).sum();
         Polynomial {
             length,
             coefficients,
             mass,
             range,
+            swing,
             remainder: 0.0,
         }
     }
@@ -121,9 +125,8 @@ impl Polynomial {
         let mass = self.mass[0].value.abs()
             + self.mass[1].value.abs()
             + (self.mass[0].slope.abs() + self.mass[1].slope.abs()) * energy.abs();
-        let depth = (self.range[0] - energy)
-            .abs()
-            .max((self.range[1] - energy).abs());
+        // |V(t) − E| on the whole disk |t| ≤ 1, so that the series converges fast whatever the samples
+        let depth = (self.coefficients[0].high - energy).abs() + self.swing;
         let phase = self.length * (mass * depth).sqrt();
         (phase / PHASE).ceil().clamp(1.0, 1e7) as usize
     }
@@ -255,9 +258,8 @@ impl<T: Scalar> Series<T> {
         let mut odd = [[zero; 2]; 2];
         for k in (0..self.terms).rev() {
             let sums = if k % 2 == 0 { &mut even } else { &mut odd };
-            for s in 0..2 {
-                sums[s][0] = sums[s][0] + self.u[k][s];
-                sums[s][1] = sums[s][1] + self.v[k][s];
+            for (sum, (u, v)) in sums.iter_mut().zip(self.u[k].into_iter().zip(self.v[k])) {
+                *sum = [sum[0] + u, sum[1] + v];
             }
         }
         let side = |s: usize, i: usize| (even[s][i] + odd[s][i], even[s][i] - odd[s][i]);

@@ -349,7 +349,7 @@ fn narrow_pair<T: Scalar>(
             let (residual, slope, _) = target.residual(&last);
             let step = -(residual / slope);
             let size = step.leading().abs();
-            if !(size < 0.5 * half) {
+            if size.is_nan() || size >= 0.5 * half {
                 break;
             }
             energy = energy + step;
