@@ -140,7 +140,7 @@ impl Polynomial {
         if count == 1 {
             return shifted;
         }
-        let width = Double::new(1.0) / Double::new(count as f64);
+        let width = reciprocal(count);
         let centre = T::real(width.times((2 * index + 1) as f64) - Double::new(1.0));
         let width = T::real(width);
         let degree = self.coefficients.len() - 1;
@@ -165,7 +165,7 @@ impl Polynomial {
         if count == 1 {
             return [middle, half];
         }
-        let width = T::lift(T::real(Double::new(1.0) / Double::new(count as f64)));
+        let width = T::lift(T::real(reciprocal(count)));
         let centre = width.times((2 * index + 1) as f64) - T::constant(1.0);
         [middle + half * centre, half * width]
     }
@@ -350,6 +350,15 @@ pub(crate) fn factors<T: Scalar>(
     }
 }
 
+/// 1/n in double-double, from the table where it has it.
+fn reciprocal(n: usize) -> Double {
+    if n < 128 {
+        <Double as Scalar>::reciprocal(n)
+    } else {
+        Double::new(1.0) / Double::new(n as f64)
+    }
+}
+
 /// The series on one part; returns half of the part's length.
 pub(crate) fn part_series<T: Scalar>(
     p: &Polynomial,
@@ -358,12 +367,7 @@ pub(crate) fn part_series<T: Scalar>(
     energy: T,
     series: &mut Series<T>,
 ) -> T::Real {
-    let half = Double::new(0.5 * p.length);
-    let half = T::real(if count == 1 {
-        half
-    } else {
-        half / Double::new(count as f64)
-    });
+    let half = T::real(reciprocal(count).times(0.5 * p.length));
     let mass = p.part_mass(index, count, energy);
     let coefficients = p.part::<T>(index, count);
     series.solve(half, &coefficients[..p.coefficients.len()], mass, energy);
