@@ -1,5 +1,10 @@
 //! Hard cases by name, invariants, budgets, refusals; each against a closed form, a symmetry or a count.
-#![allow(clippy::indexing_slicing, clippy::unwrap_used, missing_docs)]
+#![allow(
+    clippy::indexing_slicing,
+    clippy::print_stdout,
+    clippy::unwrap_used,
+    missing_docs
+)]
 
 #[path = "reference/mod.rs"]
 mod reference;
@@ -329,7 +334,7 @@ fn a_thousand_layers_are_solved() {
     turned.rotate_left(333);
     let found = bands(&Cell { pieces }, 6);
     assert_same("turned", &found, &bands(&Cell { pieces: turned }, 6), 0.0);
-    assert!(found.sweeps < 6 * 60, "{}", found.sweeps);
+    assert!(found.sweeps < 6 * 45, "{}", found.sweeps);
 }
 
 #[test]
@@ -450,7 +455,7 @@ fn sweeps_are_bounded() {
         worst = worst.max(found.sweeps as f64 / 6.0);
     }
     println!("sweeps a band: worst {worst}");
-    assert!(worst < 90.0, "{worst}");
+    assert!(worst < 45.0, "{worst}");
 }
 
 #[test]
@@ -486,6 +491,16 @@ fn budgets_and_cancelling_are_kept() {
     };
     assert_eq!(solve(&cell, 4, &budget), Err(SolveError::Cancelled));
     assert_eq!(asked.load(Ordering::Relaxed), 11);
+    // a sweep that alone would take too long is not begun
+    let long = Piece::Ramp {
+        length: 1e9,
+        potential: [0.0, 10.0],
+        mass: [Mass::constant(1.0); 2],
+    };
+    assert_eq!(
+        solve(&Cell { pieces: vec![long] }, 2, &Budget::default()),
+        Err(SolveError::BudgetSpent)
+    );
     // a function that no mesh follows ends at the budget, not never
     let wild = |x: f64| (1e9 * x).sin();
     let small = Budget {

@@ -1,6 +1,11 @@
 //! Layered cells and delta combs against rows computed from the closed form
 //! (Kronig & Penney, Proc. R. Soc. A 130, 499 (1931); BenDaniel & Duke, Phys. Rev. 152, 683 (1966)).
-#![allow(clippy::indexing_slicing, clippy::unwrap_used, missing_docs)]
+#![allow(
+    clippy::indexing_slicing,
+    clippy::print_stdout,
+    clippy::unwrap_used,
+    missing_docs
+)]
 
 #[path = "reference/mod.rs"]
 mod reference;

@@ -1,7 +1,12 @@
 //! D(E), Fermi energies, levels, hopping amplitudes and densities against computed rows, and the published
 //! hopping of the optical lattice (Bloch, Dalibard & Zwerger, Rev. Mod. Phys. 80, 885 (2008), Table I; from memory,
 //! reproduced by the computed rows).
-#![allow(clippy::indexing_slicing, clippy::unwrap_used, missing_docs)]
+#![allow(
+    clippy::indexing_slicing,
+    clippy::print_stdout,
+    clippy::unwrap_used,
+    missing_docs
+)]
 
 #[path = "reference/mod.rs"]
 mod reference;
@@ -181,7 +186,6 @@ fn dispersions_rise_from_edge_to_edge() {
             (found.bottom.energy.value, found.top.energy.value)
         );
         let sign = if band % 2 == 0 { 1.0 } else { -1.0 };
-        println!("{curve:?}");
         assert!(curve.windows(2).all(|w| sign * (w[1][1] - w[0][1]) > 0.0));
     }
 }

@@ -1,7 +1,12 @@
 //! Smooth cells: characteristic values of Mathieu's equation (Abramowitz & Stegun, NBS 1964, Table 20.1;
 //! DLMF ch. 28), the optical lattice (Bloch, Dalibard & Zwerger, Rev. Mod. Phys. 80, 885 (2008)), Lamé's
 //! finite-gap potentials (Ince, Proc. R. Soc. Edinburgh 60, 47 (1940); DLMF ch. 29), chains of wells.
-#![allow(clippy::indexing_slicing, clippy::unwrap_used, missing_docs)]
+#![allow(
+    clippy::indexing_slicing,
+    clippy::print_stdout,
+    clippy::unwrap_used,
+    missing_docs
+)]
 
 #[path = "reference/mod.rs"]
 mod reference;

@@ -175,6 +175,19 @@ impl Ready {
         (std::f64::consts::PI / self.optical_length).powi(2)
     }
 
+    /// Parts into which the polynomial elements are cut at an energy.
+    pub fn parts(&self, energy: f64) -> usize {
+        let parts = |element: &Element| match element {
+            Element::Polynomial(p) => p.parts(energy),
+            _ => 0,
+        };
+        if self.layered {
+            0
+        } else {
+            self.elements.iter().map(parts).sum()
+        }
+    }
+
     /// The scale of the potential.
     pub fn potential_size(&self) -> f64 {
         self.floor.abs().max(self.ceiling.abs())
@@ -212,12 +225,13 @@ pub(crate) fn prepare(cell: &Cell) -> Result<Ready, SolveError> {
         ready.elements.push(element);
         ready.origin.push(index);
     }
-    if !(ready.period > 0.0 && ready.period.is_finite()) || !ready.floor.is_finite() {
+    let sound = ready.period > 0.0 && ready.period.is_finite() && ready.floor.is_finite();
+    if !sound {
         return Err(SolveError::NotFinite);
     }
     // −S δ alone binds by m S²/4; many together at most like their sum, plus their mean
     ready.delta_depth = attraction * attraction * greatest_mass + attraction / ready.period;
-    ready.delta_size = ready.delta_size / ready.period;
+    ready.delta_size /= ready.period;
     if ready.optical_length <= 0.0 {
         return Err(SolveError::MassOutOfRange);
     }

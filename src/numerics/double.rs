@@ -135,6 +135,9 @@ impl Scalar for Double {
     fn real_times(value: Double, factor: Double) -> Double {
         value * factor
     }
+    fn real_plus(value: Double, other: Double) -> Double {
+        value + other
+    }
     #[inline(always)]
     fn scaled(self, factor: Double) -> Self {
         self * factor

@@ -80,6 +80,8 @@ pub(crate) struct Polynomial {
     pub mass: [Mass; 2],
     /// least and greatest potential
     pub range: [f64; 2],
+    /// Σ |c_i| over i ≥ 1
+    pub swing: f64,
     /// |δV| of the mesh to expect
     pub remainder: f64,
 }
@@ -107,11 +109,13 @@ impl Polynomial {
             potentials[0].min(potentials[1]),
             potentials[0].max(potentials[1]),
         ];
+        let swing = coefficients[1..].iter().map(|c| c.high.abs()).sum();
         Polynomial {
             length,
             coefficients,
             mass,
             range,
+            swing,
             remainder: 0.0,
         }
     }
@@ -121,29 +125,35 @@ impl Polynomial {
         let mass = self.mass[0].value.abs()
             + self.mass[1].value.abs()
             + (self.mass[0].slope.abs() + self.mass[1].slope.abs()) * energy.abs();
-        let depth = (self.range[0] - energy)
-            .abs()
-            .max((self.range[1] - energy).abs());
+        // |V(t) − E| on the whole disk |t| ≤ 1, so that the series converges fast whatever the samples
+        let depth = (self.coefficients[0].high - energy).abs() + self.swing;
         let phase = self.length * (mass * depth).sqrt();
         (phase / PHASE).ceil().clamp(1.0, 1e7) as usize
     }
 
-    /// Coefficients on part `index` of `count`, in that part's own t ∈ [−1, 1].
-    pub fn part(&self, index: usize, count: usize) -> Vec<Double> {
-        let width = Double::new(1.0) / Double::new(count as f64);
-        let centre = (Double::new((2 * index + 1) as f64)) * width - Double::new(1.0);
-        let mut shifted = self.coefficients.clone();
-        let degree = shifted.len() - 1;
+    /// Coefficients on part `index` of `count`, in that part's own t ∈ [−1, 1]. All sums are bounded by Σ |c_i|.
+    fn part<T: Scalar>(&self, index: usize, count: usize) -> [T::Real; DEGREE + 1] {
+        let mut shifted = [T::real(Double::ZERO); DEGREE + 1];
+        for (c, exact) in shifted.iter_mut().zip(&self.coefficients) {
+            *c = T::real(*exact);
+        }
+        if count == 1 {
+            return shifted;
+        }
+        let width = reciprocal(count);
+        let centre = T::real(width.times((2 * index + 1) as f64) - Double::new(1.0));
+        let width = T::real(width);
+        let degree = self.coefficients.len() - 1;
         // Taylor shift by repeated synthetic division
         for start in 0..degree {
             for i in (start..degree).rev() {
-                shifted[i] = shifted[i] + centre * shifted[i + 1];
+                shifted[i] = T::real_plus(shifted[i], T::real_times(centre, shifted[i + 1]));
             }
         }
-        let mut power = Double::new(1.0);
-        for c in &mut shifted {
-            *c = *c * power;
-            power = power * width;
+        let mut power = width;
+        for c in &mut shifted[1..=degree] {
+            *c = T::real_times(*c, power);
+            power = T::real_times(power, width);
         }
         shifted
     }
@@ -155,7 +165,7 @@ impl Polynomial {
         if count == 1 {
             return [middle, half];
         }
-        let width = T::lift(T::real(Double::new(1.0) / Double::new(count as f64)));
+        let width = T::lift(T::real(reciprocal(count)));
         let centre = width.times((2 * index + 1) as f64) - T::constant(1.0);
         [middle + half * centre, half * width]
     }
@@ -171,17 +181,21 @@ pub(crate) struct Series<T> {
 }
 
 impl<T: Scalar> Series<T> {
-    /// Solves the recurrences until three terms running are below the rounding unit.
-    pub fn solve(half: T::Real, coefficients: &[T::Real], mass: [T; 2], energy: T) -> Series<T> {
+    /// Room for a series.
+    pub fn blank() -> Series<T> {
         let zero = T::constant(0.0);
-        let one = T::constant(1.0);
-        let mut series = Series {
+        Series {
             u: [[zero; 2]; TERMS],
             v: [[zero; 2]; TERMS],
-            terms: TERMS,
-        };
-        series.u[0][0] = one;
-        series.v[0][1] = one;
+            terms: 0,
+        }
+    }
+
+    /// Solves the recurrences until three terms running are below the rounding unit.
+    pub fn solve(&mut self, half: T::Real, coefficients: &[T::Real], mass: [T; 2], energy: T) {
+        let zero = T::constant(0.0);
+        let one = T::constant(1.0);
+        (self.u[0], self.v[0], self.terms) = ([one, zero], [zero, one], TERMS);
         let depth = (T::lift(coefficients[0]) - energy).scaled(half);
         let [mass, tilt] = mass.map(|m| m.scaled(half));
         let tilted = tilt.magnitude() != 0.0;
@@ -194,28 +208,36 @@ impl<T: Scalar> Series<T> {
         let mut quiet = 0;
         for k in 0..TERMS - 1 {
             let inverse = T::reciprocal(k + 1);
-            let [u0, u1] = series.u[k];
-            let [v0, v1] = series.v[k];
+            let [u0, u1] = self.u[k];
+            let [v0, v1] = self.v[k];
             let mut u = [mass * v0, mass * v1];
             if tilted && k > 0 {
-                let [w0, w1] = series.v[k - 1];
+                let [w0, w1] = self.v[k - 1];
                 u = [u[0] + tilt * w0, u[1] + tilt * w1];
             }
             let mut v = [depth * u0, depth * u1];
             let past = rest.min(k);
-            for (c, [x0, x1]) in scaled[..past]
-                .iter()
-                .zip(series.u[k - past..k].iter().rev())
-            {
-                v[0] = v[0] + x0.scaled(*c);
-                v[1] = v[1] + x1.scaled(*c);
+            // two sums: each addition need not wait for the one before
+            let mut other = [zero; 2];
+            let history = &self.u[k - past..k];
+            let mut pairs = history.rchunks_exact(2);
+            for (c, x) in scaled[..past].chunks_exact(2).zip(&mut pairs) {
+                v = [v[0] + x[1][0].scaled(c[0]), v[1] + x[1][1].scaled(c[0])];
+                other = [
+                    other[0] + x[0][0].scaled(c[1]),
+                    other[1] + x[0][1].scaled(c[1]),
+                ];
             }
+            if let [x] = pairs.remainder() {
+                let c = scaled[past - 1];
+                other = [other[0] + x[0].scaled(c), other[1] + x[1].scaled(c)];
+            }
+            let u = u.map(|x| x.scaled(inverse));
+            let v = [0, 1].map(|s| (v[s] + other[s]).scaled(inverse));
+            (self.u[k + 1], self.v[k + 1]) = (u, v);
             let mut small = true;
             for s in 0..2 {
-                let terms = [u[s].scaled(inverse), v[s].scaled(inverse)];
-                series.u[k + 1][s] = terms[0];
-                series.v[k + 1][s] = terms[1];
-                for (size, term) in greatest[s].iter_mut().zip(terms) {
+                for (size, term) in greatest[s].iter_mut().zip([u[s], v[s]]) {
                     let term = term.leading().abs();
                     small &= term <= T::UNIT * *size;
                     *size = size.max(term);
@@ -223,11 +245,10 @@ impl<T: Scalar> Series<T> {
             }
             quiet = if small { quiet + 1 } else { 0 };
             if quiet >= 3 {
-                series.terms = k + 2;
+                self.terms = k + 2;
                 break;
             }
         }
-        series
     }
 
     /// The transfer matrix across the part, t = −1 to 1.
@@ -237,9 +258,8 @@ impl<T: Scalar> Series<T> {
         let mut odd = [[zero; 2]; 2];
         for k in (0..self.terms).rev() {
             let sums = if k % 2 == 0 { &mut even } else { &mut odd };
-            for s in 0..2 {
-                sums[s][0] = sums[s][0] + self.u[k][s];
-                sums[s][1] = sums[s][1] + self.v[k][s];
+            for (sum, (u, v)) in sums.iter_mut().zip(self.u[k].into_iter().zip(self.v[k])) {
+                *sum = [sum[0] + u, sum[1] + v];
             }
         }
         let side = |s: usize, i: usize| (even[s][i] + odd[s][i], even[s][i] - odd[s][i]);
@@ -321,36 +341,35 @@ pub(crate) fn factors<T: Scalar>(
         }
         Element::Polynomial(p) => {
             let count = p.parts(energy.leading());
+            let mut series = Series::blank();
             for index in 0..count {
-                let (series, _) = part_series(p, index, count, energy);
+                part_series(p, index, count, energy, &mut series);
                 visit(&series.transfer(), 0, 0.0);
             }
         }
     }
 }
 
-/// The series on one part, and half of the part's length.
+/// 1/n in double-double, from the table where it has it.
+fn reciprocal(n: usize) -> Double {
+    if n < 128 {
+        <Double as Scalar>::reciprocal(n)
+    } else {
+        Double::new(1.0) / Double::new(n as f64)
+    }
+}
+
+/// The series on one part; returns half of the part's length.
 pub(crate) fn part_series<T: Scalar>(
     p: &Polynomial,
     index: usize,
     count: usize,
     energy: T,
-) -> (Series<T>, T::Real) {
-    let half = T::real(Double::new(0.5 * p.length) / Double::new(count as f64));
+    series: &mut Series<T>,
+) -> T::Real {
+    let half = T::real(reciprocal(count).times(0.5 * p.length));
     let mass = p.part_mass(index, count, energy);
-    let mut coefficients = [T::real(Double::ZERO); DEGREE + 1];
-    let used = p.coefficients.len();
-    if count == 1 {
-        for i in 0..used {
-            coefficients[i] = T::real(p.coefficients[i]);
-        }
-    } else {
-        for (c, exact) in coefficients.iter_mut().zip(p.part(index, count)) {
-            *c = T::real(exact);
-        }
-    }
-    (
-        Series::solve(half, &coefficients[..used], mass, energy),
-        half,
-    )
+    let coefficients = p.part::<T>(index, count);
+    series.solve(half, &coefficients[..p.coefficients.len()], mass, energy);
+    half
 }

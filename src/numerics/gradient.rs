@@ -17,17 +17,20 @@ use super::mesh::{gauss_legendre, lagrange};
 use super::scalar::Scalar;
 use std::sync::LazyLock;
 
-/// Quadrature of one part: phase at most 3 and shape functions of degree 12 need no more.
-static QUADRATURE: LazyLock<Vec<(f64, f64)>> = LazyLock::new(|| gauss_legendre(20));
-/// Shape functions of a whole step at the quadrature's nodes.
-static SHAPES: LazyLock<Vec<[f64; DEGREE + 1]>> =
-    LazyLock::new(|| QUADRATURE.iter().map(|(t, _)| lagrange(*t)).collect());
+/// Nodes of a quadrature over one part with their weights and the shape functions of a whole step there.
+pub(crate) type Quadrature = Vec<(f64, f64, [f64; DEGREE + 1])>;
 
-/// Nodes and weights for one part.
-pub(crate) fn quadrature() -> &'static [(f64, f64)] {
-    &QUADRATURE
+fn quadrature(count: usize) -> Quadrature {
+    gauss_legendre(count)
+        .into_iter()
+        .map(|(t, weight)| (t, weight, lagrange(t)))
+        .collect()
 }
 
+/// Exact: a phase of at most 3 and shape functions of degree 12 need no more.
+pub(crate) static FINE: LazyLock<Quadrature> = LazyLock::new(|| quadrature(20));
+/// For bounds, which need but their first digits.
+pub(crate) static COARSE: LazyLock<Quadrature> = LazyLock::new(|| quadrature(8));
 /// A matrix and its power of two.
 #[derive(Clone, Copy)]
 pub(crate) struct Scaled<T> {
@@ -141,7 +144,7 @@ fn blank<T: Scalar>() -> PieceSlope<T> {
 }
 
 /// The derivatives of D at an energy.
-pub(crate) fn gradient<T: Scalar>(ready: &Ready, energy: T) -> Gradient<T> {
+pub(crate) fn gradient<T: Scalar>(ready: &Ready, energy: T, nodes: &Quadrature) -> Gradient<T> {
     let list = cyclic_factors(ready, energy);
     let exponent = list
         .iter()
@@ -185,7 +188,7 @@ pub(crate) fn gradient<T: Scalar>(ready: &Ready, energy: T) -> Gradient<T> {
                     });
                 }
                 if let Some(slope) = result.pieces.last_mut() {
-                    let by_energy = part_slope(p, factor.part, energy, &around, slope);
+                    let by_energy = part_slope(p, factor.part, energy, &around, nodes, slope);
                     result.energy_slope = result.energy_slope + by_energy;
                 }
             }
@@ -275,19 +278,15 @@ impl Polynomial {
         self.coefficients.len()
     }
 
-    /// The shape functions at t ∈ [−1, 1] of the element, what each sample (or end) weighs; `node` if t is that node of
-    /// the quadrature.
-    pub fn shape_values(&self, t: f64, node: Option<usize>) -> [f64; DEGREE + 1] {
+    /// The shape functions at t ∈ [−1, 1] of the element: what each sample (or end) weighs; `known` if already at hand.
+    pub fn shape_values(&self, t: f64, known: Option<&[f64; DEGREE + 1]>) -> [f64; DEGREE + 1] {
         if self.is_ramp() {
             let mut shapes = [0.0; DEGREE + 1];
             shapes[0] = 0.5 * (1.0 - t);
             shapes[1] = 0.5 * (1.0 + t);
             return shapes;
         }
-        match node {
-            Some(node) => SHAPES[node],
-            None => lagrange(t),
-        }
+        known.map_or_else(|| lagrange(t), |shapes| *shapes)
     }
 
     /// V(t), rounded.
@@ -341,10 +340,12 @@ fn part_slope<T: Scalar>(
     part: (usize, usize),
     energy: T,
     around: &Matrix<T>,
+    nodes: &Quadrature,
     slope: &mut PieceSlope<T>,
 ) -> T {
     let (index, count) = part;
-    let (series, half) = part_series(p, index, count, energy);
+    let mut series = Series::blank();
+    let half = part_series(p, index, count, energy, &mut series);
     let y = inverse(&values(&series, -1.0))
         .product(around)
         .product(&values(&series, 1.0));
@@ -352,15 +353,15 @@ fn part_slope<T: Scalar>(
     let form = |x: T, z: T| y.b * x * x + difference * x * z - y.c * z * z;
     let mut by_energy = T::constant(0.0);
     let mut by_log_length = T::constant(0.0);
-    for (node, (t, weight)) in QUADRATURE.iter().enumerate() {
-        let node = (count == 1).then_some(node);
+    for (t, weight, shapes) in nodes {
+        let shapes = (count == 1).then_some(shapes);
         let phi = values(&series, *t);
         let density = form(phi.a, phi.b).scaled(half).times(*weight);
         let kinetic = -form(phi.c, phi.d).scaled(half).times(*weight);
         // position in the whole element
         let place = (2.0 * index as f64 + 1.0 + t) / count as f64 - 1.0;
         let ends = [0.5 * (1.0 - place), 0.5 * (1.0 + place)];
-        for (sum, share) in slope.samples.iter_mut().zip(p.shape_values(place, node)) {
+        for (sum, share) in slope.samples.iter_mut().zip(p.shape_values(place, shapes)) {
             *sum = *sum + density.times(share);
         }
         for (sum, share) in slope.mass.iter_mut().zip(ends) {

@@ -8,38 +8,56 @@
 //! With P the product up to a place, δV(x) adds P⁻¹ [0 0; 1 0] P and δm(x) adds P⁻¹ [0 1; 0 0] P to N.
 
 use super::cell::{Mass, Ready};
-use super::element::{Element, Matrix, factors, part_series};
-use super::gradient::{Scaled, flat_derivatives, inverse, quadrature, values};
+use super::element::{Element, Matrix, Polynomial, Series, factors, mass_at, part_series};
+use super::gradient::{Quadrature, Scaled, flat_derivatives, inverse, values};
+use super::scalar::Scalar;
 use super::sensitivity::PieceSensitivity;
 
 /// N₁₁, N₁₂, N₂₁ of a traceless matrix.
-#[derive(Clone, Copy, Default)]
-struct Form([f64; 3]);
+#[derive(Clone, Copy)]
+struct Form<T>([T; 3]);
 
-impl Form {
-    fn of(m: &Matrix<f64>) -> Form {
-        Form([0.5 * (m.a - m.d), m.b, m.c])
+impl<T: Scalar> Form<T> {
+    fn zero() -> Self {
+        Form([T::constant(0.0); 3])
     }
 
-    fn add(&mut self, other: Form, factor: f64) {
+    fn of(m: &Matrix<T>) -> Self {
+        Form([(m.a - m.d).times(0.5), m.b, m.c])
+    }
+
+    fn add(&mut self, other: Form<T>, factor: T) {
         for (sum, term) in self.0.iter_mut().zip(other.0) {
-            *sum += factor * term;
+            *sum = *sum + factor * term;
         }
     }
 
-    fn polar(&self, other: &Form) -> f64 {
-        self.0[0] * other.0[0] + 0.5 * (self.0[1] * other.0[2] + self.0[2] * other.0[1])
+    fn polar(&self, other: &Form<T>) -> f64 {
+        let cross = self.0[1] * other.0[2] + self.0[2] * other.0[1];
+        (self.0[0] * other.0[0] + cross.times(0.5)).leading()
     }
 }
 
 /// The forms of one piece.
-#[derive(Clone, Default)]
-struct PieceForms {
-    length: Form,
-    potential: [Form; 2],
-    mass: [Form; 2],
-    strength: Form,
-    samples: Vec<Form>,
+struct PieceForms<T> {
+    length: Form<T>,
+    potential: [Form<T>; 2],
+    mass: [Form<T>; 2],
+    strength: Form<T>,
+    samples: Vec<Form<T>>,
+}
+
+impl<T: Scalar> PieceForms<T> {
+    fn blank() -> Self {
+        let zero = Form::zero();
+        PieceForms {
+            length: zero,
+            potential: [zero; 2],
+            mass: [zero; 2],
+            strength: zero,
+            samples: Vec::new(),
+        }
+    }
 }
 
 /// A doublet's response.
@@ -52,15 +70,15 @@ pub(crate) struct Pair {
     pub rounding: f64,
 }
 
-/// The response of the doublet near `energy`.
-pub(crate) fn pair(ready: &Ready, energy: f64) -> Pair {
-    let mut forms: Vec<PieceForms> = Vec::with_capacity(ready.elements.len());
-    let mut by_energy = Form::default();
-    let mut rounding = Form::default();
-    let mut before = Scaled::<f64>::identity();
+/// The response of the doublet near `energy`. Behind thick walls P⁻¹ … P cancels: then take `T` in double-double.
+pub(crate) fn pair<T: Scalar>(ready: &Ready, energy: T, nodes: &Quadrature) -> Pair {
+    let mut forms: Vec<PieceForms<T>> = Vec::with_capacity(ready.elements.len());
+    let mut by_energy = Form::zero();
+    let mut rounding = Form::<f64>::zero();
+    let mut before = Scaled::<T>::identity();
     for element in &ready.elements {
         let start = unscaled(&before);
-        let mut piece = PieceForms::default();
+        let mut piece = PieceForms::blank();
         match element {
             Element::Delta { .. } => piece.strength = below(&start),
             Element::Flat {
@@ -68,25 +86,24 @@ pub(crate) fn pair(ready: &Ready, energy: f64) -> Pair {
                 potential,
                 mass,
             } => {
-                let [v, m, l] = flat_derivatives(*length, *potential, *mass, energy);
+                let derivatives = flat_derivatives(*length, *potential, *mass, energy);
                 let mut whole = Matrix::identity();
                 let mut exponent = 0;
                 factors(element, energy, |x, shift, _| {
                     (whole, exponent) = (*x, shift)
                 });
                 // M_j⁻¹ ∂M_j: both carry the element's power of two
-                let local = |d: &Matrix<f64>| {
+                let local = |d: &Matrix<T>| {
                     let n = inverse(&whole).product(d).shifted(2 * exponent);
                     Form::of(&inverse(&start).product(&n).product(&start))
                 };
-                piece.potential[0] = local(&v);
-                piece.mass[0] = local(&m);
-                piece.length = local(&l);
-                by_energy.add(piece.potential[0], -1.0);
-                by_energy.add(piece.mass[0], mass.slope);
+                [piece.potential[0], piece.mass[0], piece.length] =
+                    [0, 1, 2].map(|i| local(&derivatives[i]));
+                by_energy.add(piece.potential[0], T::constant(-1.0));
+                by_energy.add(piece.mass[0], T::constant(mass.slope));
             }
-            Element::Polynomial(_) => {
-                polynomial_forms(element, energy, &before, &mut piece, &mut by_energy)
+            Element::Polynomial(p) => {
+                polynomial_forms(p, energy, &before, nodes, &mut piece, &mut by_energy)
             }
         }
         factors(element, energy, |x, shift, _| {
@@ -104,14 +121,15 @@ pub(crate) fn pair(ready: &Ready, energy: f64) -> Pair {
         forms.push(piece);
     }
     let q_energy = by_energy.polar(&by_energy);
-    let mean = |f: Form| -by_energy.polar(&f) / q_energy;
-    let rate = |f: Form| {
+    let mean = |f: Form<T>| -by_energy.polar(&f) / q_energy;
+    let rate = |f: Form<T>| {
         let b = by_energy.polar(&f);
         2.0 * (b * b - q_energy * f.polar(&f)).max(0.0).sqrt() / q_energy.abs()
     };
-    let greatest = Form(by_energy.0.map(f64::abs)).polar(&rounding);
+    let greatest = Form(by_energy.0.map(|x| x.leading().abs())).polar(&rounding);
     let rounding = 2.0 * (greatest * greatest + q_energy.abs() * rounding.polar(&rounding)).sqrt()
         / q_energy.abs();
+    let energy = energy.leading();
     Pair {
         means: forms.iter().map(|f| f.map(energy, mean)).collect(),
         rates: forms.iter().map(|f| f.map(energy, rate)).collect(),
@@ -119,70 +137,69 @@ pub(crate) fn pair(ready: &Ready, energy: f64) -> Pair {
     }
 }
 
-fn unscaled(s: &Scaled<f64>) -> Matrix<f64> {
+fn unscaled<T: Scalar>(s: &Scaled<T>) -> Matrix<T> {
     s.matrix.shifted(s.exponent)
 }
 
-fn absolute(m: &Matrix<f64>) -> Matrix<f64> {
+fn absolute<T: Scalar>(m: &Matrix<T>) -> Matrix<f64> {
+    let size = |x: T| x.leading().abs();
     Matrix {
-        a: m.a.abs(),
-        b: m.b.abs(),
-        c: m.c.abs(),
-        d: m.d.abs(),
+        a: size(m.a),
+        b: size(m.b),
+        c: size(m.c),
+        d: size(m.d),
     }
 }
 
 /// P⁻¹ [0 0; 1 0] P
-fn below(p: &Matrix<f64>) -> Form {
-    Form([-p.a * p.b, -p.b * p.b, p.a * p.a])
+fn below<T: Scalar>(p: &Matrix<T>) -> Form<T> {
+    Form([-(p.a * p.b), -(p.b * p.b), p.a * p.a])
 }
 
 /// P⁻¹ [0 1; 0 0] P
-fn above(p: &Matrix<f64>) -> Form {
-    Form([p.c * p.d, p.d * p.d, -p.c * p.c])
+fn above<T: Scalar>(p: &Matrix<T>) -> Form<T> {
+    Form([p.c * p.d, p.d * p.d, -(p.c * p.c)])
 }
 
 /// Integrates the forms over a polynomial element that starts after `before`.
-fn polynomial_forms(
-    element: &Element,
-    energy: f64,
-    before: &Scaled<f64>,
-    piece: &mut PieceForms,
-    by_energy: &mut Form,
+fn polynomial_forms<T: Scalar>(
+    p: &Polynomial,
+    energy: T,
+    before: &Scaled<T>,
+    nodes: &Quadrature,
+    piece: &mut PieceForms<T>,
+    by_energy: &mut Form<T>,
 ) {
-    let Element::Polynomial(p) = element else {
-        return;
-    };
-    piece.samples = vec![Form::default(); p.coefficients.len()];
+    piece.samples = vec![Form::zero(); p.coefficients.len()];
     let mut before = *before;
-    let count = p.parts(energy);
+    let count = p.parts(energy.leading());
+    let mut series = Series::blank();
     for index in 0..count {
-        let (series, half) = part_series(p, index, count, energy);
+        let half = T::lift(part_series(p, index, count, energy, &mut series));
         let start = inverse(&values(&series, -1.0)).product(&unscaled(&before));
-        for (node, (t, weight)) in quadrature().iter().enumerate() {
-            let node = (count == 1).then_some(node);
+        for (t, weight, shapes) in nodes {
+            let shapes = (count == 1).then_some(shapes);
             let phi = values(&series, *t).product(&start);
             let place = (2.0 * index as f64 + 1.0 + t) / count as f64 - 1.0;
             let [potential, mass] = [below(&phi), above(&phi)];
-            let weight = weight * half;
-            for (sum, share) in piece.samples.iter_mut().zip(p.shape_values(place, node)) {
-                sum.add(potential, weight * share);
+            let weight = half.times(*weight);
+            for (sum, share) in piece.samples.iter_mut().zip(p.shape_values(place, shapes)) {
+                sum.add(potential, weight.times(share));
             }
             let ends = [0.5 * (1.0 - place), 0.5 * (1.0 + place)];
             for (sum, share) in piece.mass.iter_mut().zip(ends) {
-                sum.add(mass, weight * share);
+                sum.add(mass, weight.times(share));
             }
             let local = p.mass_at(place);
             by_energy.add(potential, -weight);
-            by_energy.add(mass, weight * local.slope);
-            piece.length.add(
-                potential,
-                weight * (p.potential_at(place) - energy) / p.length,
-            );
-            piece.length.add(
-                mass,
-                weight * (local.value + local.slope * energy) / p.length,
-            );
+            by_energy.add(mass, weight.times(local.slope));
+            let wall = T::constant(p.potential_at(place)) - energy;
+            piece
+                .length
+                .add(potential, weight * wall.times(1.0 / p.length));
+            piece
+                .length
+                .add(mass, weight * mass_at(local, energy).times(1.0 / p.length));
         }
         before = Scaled {
             matrix: series.transfer(),
@@ -196,9 +213,9 @@ fn polynomial_forms(
     }
 }
 
-impl PieceForms {
-    fn map(&self, energy: f64, answer: impl Fn(Form) -> f64) -> PieceSensitivity {
-        let mass = |f: Form| {
+impl<T: Scalar> PieceForms<T> {
+    fn map(&self, energy: f64, answer: impl Fn(Form<T>) -> f64) -> PieceSensitivity {
+        let mass = |f: Form<T>| {
             let value = answer(f);
             Mass {
                 value,

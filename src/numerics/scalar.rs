@@ -34,6 +34,8 @@ pub(crate) trait Scalar:
     fn lift(value: Self::Real) -> Self;
     /// Product of two reals.
     fn real_times(value: Self::Real, factor: Self::Real) -> Self::Real;
+    /// Sum of two reals.
+    fn real_plus(value: Self::Real, other: Self::Real) -> Self::Real;
     /// Product with a real.
     fn scaled(self, factor: Self::Real) -> Self;
     /// 1/n as a real, n ≥ 1 and below 128.
@@ -70,6 +72,10 @@ impl Scalar for f64 {
     }
     fn real_times(value: f64, factor: f64) -> f64 {
         value * factor
+    }
+    #[inline(always)]
+    fn real_plus(value: f64, other: f64) -> f64 {
+        value + other
     }
     #[inline(always)]
     fn scaled(self, factor: f64) -> Self {
@@ -184,6 +190,10 @@ impl<S: Scalar> Scalar for Dual<S> {
     }
     fn real_times(value: S::Real, factor: S::Real) -> S::Real {
         S::real_times(value, factor)
+    }
+    #[inline(always)]
+    fn real_plus(value: S::Real, other: S::Real) -> S::Real {
+        S::real_plus(value, other)
     }
     #[inline(always)]
     fn scaled(self, factor: S::Real) -> Self {

@@ -120,10 +120,13 @@ impl<'a, T: Scalar> Finder<'a, T> {
         }
     }
 
-    /// A sweep, kept in the ledger.
+    /// A sweep, kept in the ledger, or what the ledger has.
     pub fn read(&mut self, energy: T) -> Result<Reading<T>, SolveError> {
-        let reading = read(self.ready, energy, self.meter)?;
         let place = self.readings.partition_point(|r| less(r.energy, energy));
+        if let Some(known) = self.readings.get(place).filter(|r| !less(energy, r.energy)) {
+            return Ok(*known);
+        }
+        let reading = read(self.ready, energy, self.meter)?;
         self.readings.insert(place, reading);
         Ok(reading)
     }
@@ -391,6 +394,20 @@ impl<'a, T: Scalar> Finder<'a, T> {
         ))
     }
 
+    /// Of the two entries around a root the one whose Newton step is the shorter and stays between them.
+    fn nearest(&self, target: &Target<T>, split: usize) -> Option<T> {
+        let (left, right) = (&self.readings[split - 1], &self.readings[split]);
+        let width = (right.energy - left.energy).leading();
+        let step = |r: &Reading<T>, direction: f64| {
+            let (residual, slope, _) = target.residual(r);
+            let size = -(residual / slope).leading() * direction;
+            (size > 0.0 && size < width).then_some((size, r.energy))
+        };
+        let both = [step(left, 1.0), step(right, -1.0)].into_iter().flatten();
+        both.min_by(|a, b| a.0.total_cmp(&b.0))
+            .map(|(_, energy)| energy)
+    }
+
     /// The root of a target, from `start`, within what the ledger brackets. Gives the root and the
     /// reading nearest to it.
     pub fn root(&mut self, target: Target<T>, start: T) -> Result<(T, Reading<T>), SolveError> {
@@ -400,10 +417,10 @@ impl<'a, T: Scalar> Finder<'a, T> {
         }
         let mut low = self.readings[split - 1].energy;
         let mut high = self.readings[split].energy;
-        let mut energy = start;
+        let mut energy = self.nearest(&target, split).unwrap_or(start);
         let mut previous = f64::INFINITY;
         for _ in 0..PATIENCE {
-            if !(less(low, energy) && less(energy, high)) {
+            if less(energy, low) || less(high, energy) {
                 energy = (low + high).times(0.5);
             }
             let reading = self.read(energy)?;

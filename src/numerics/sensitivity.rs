@@ -9,10 +9,11 @@
 //! its polar form on N = M⁻¹ ∂M (first-order degenerate perturbation theory, see `pair`). That rate is reported, ≥ 0.
 
 use super::cell::{Budget, Cell, Mass, Meter, Ready, SolveError, prepare};
-use super::gradient::{Gradient, PieceSlope, gradient};
-use super::pair::pair;
+use super::double::Double;
+use super::gradient::{FINE, Gradient, PieceSlope, Quadrature, gradient};
+use super::pair::{Pair, pair};
 use super::scalar::{Dual, Scalar};
-use super::solve::{NARROW_WIDTH, Raw, RawEdge, find};
+use super::solve::{NARROW_WIDTH, Raw, find};
 use super::uncertainty::is_closed;
 
 /// What to differentiate. Bands from 0.
@@ -74,105 +75,128 @@ pub fn sensitivities(
     };
     let bands = quantities.iter().map(band).max().unwrap_or(0);
     let raw = find(&ready, bands, &meter)?;
-    quantities
-        .iter()
-        .map(|q| differentiate(&ready, &raw, *q, &meter))
-        .collect()
+    let closed = (0..bands).map(|gap| is_closed(&ready, &raw, gap)).collect();
+    let known = vec![[None, None]; bands + 1];
+    let mut work = Work {
+        ready: &ready,
+        raw: &raw,
+        meter: &meter,
+        closed,
+        known,
+    };
+    quantities.iter().map(|q| work.differentiate(*q)).collect()
 }
 
-fn differentiate(
-    ready: &Ready,
-    raw: &Raw,
-    quantity: Quantity,
-    meter: &Meter,
-) -> Result<Vec<PieceSensitivity>, SolveError> {
-    match quantity {
-        Quantity::Bottom(0) => edge_slopes(ready, raw.bottom, false, meter),
-        Quantity::Bottom(n) => gap_edge(ready, raw, n - 1, true, meter),
-        Quantity::Top(n) => gap_edge(ready, raw, n, false, meter),
-        Quantity::Gap(n) => {
-            if is_closed(ready, raw, n) {
+/// The edges differentiated so far, so that none is twice.
+struct Work<'a> {
+    ready: &'a Ready,
+    raw: &'a Raw,
+    meter: &'a Meter<'a>,
+    closed: Vec<bool>,
+    /// per number of states below: the lower end of the gap there, and its upper end
+    known: Vec<[Option<Vec<PieceSensitivity>>; 2]>,
+}
+
+impl Work<'_> {
+    fn differentiate(&mut self, quantity: Quantity) -> Result<Vec<PieceSensitivity>, SolveError> {
+        let (ready, raw, meter) = (self.ready, self.raw, self.meter);
+        match quantity {
+            Quantity::Bottom(band) => self.edge(band, true),
+            Quantity::Top(band) => self.edge(band + 1, false),
+            Quantity::Gap(gap) if self.closed[gap] => {
                 meter.spend()?;
-                return Ok(pair(ready, raw.gaps[n].lower.energy.round()).rates);
+                Ok(self.doublet(gap).rates)
             }
-            let upper = gap_edge(ready, raw, n, true, meter)?;
-            let lower = gap_edge(ready, raw, n, false, meter)?;
-            Ok(difference(&upper, &lower))
-        }
-        Quantity::Width(n) => {
-            let (middle, _, slope) = raw.inside[n];
-            if 4.0 / slope.abs() < NARROW_WIDTH * ready.kinetic_scale() {
-                meter.spend()?;
-                return Ok(width_slopes(ready, middle.round()));
+            Quantity::Gap(gap) => Ok(difference(
+                &self.edge(gap + 1, true)?,
+                &self.edge(gap + 1, false)?,
+            )),
+            Quantity::Width(band) => {
+                let (middle, _, slope) = raw.inside[band];
+                if 4.0 / slope.abs() < NARROW_WIDTH * ready.kinetic_scale() {
+                    meter.spend()?;
+                    return Ok(width_slopes(ready, middle.round(), &FINE));
+                }
+                Ok(difference(
+                    &self.edge(band + 1, false)?,
+                    &self.edge(band, true)?,
+                ))
             }
-            let top = gap_edge(ready, raw, n, false, meter)?;
-            let bottom = if n == 0 {
-                edge_slopes(ready, raw.bottom, false, meter)?
-            } else {
-                gap_edge(ready, raw, n - 1, true, meter)?
-            };
-            Ok(difference(&top, &bottom))
+            Quantity::Level(band, ka) => {
+                let energy = super::level::level_energy(ready, band, ka, meter)?;
+                edge_slopes(ready, energy, false, meter)
+            }
         }
-        Quantity::Level(band, ka) => {
-            let energy = super::level::level_energy(ready, band, ka, meter)?;
-            edge_slopes(
-                ready,
-                RawEdge {
-                    energy,
-                    slope: 1.0,
-                    offset: 0.0,
-                    noise: 0.0,
-                },
-                false,
-                meter,
-            )
+    }
+
+    /// The response of a closed gap's doublet.
+    fn doublet(&self, gap: usize) -> Pair {
+        let energy = self.raw.gaps[gap].lower.energy;
+        if self.raw.exact {
+            pair(self.ready, energy, &FINE)
+        } else {
+            pair(self.ready, energy.round(), &FINE)
         }
+    }
+
+    /// The edge at the lower or upper end of the gap where N = `states`.
+    fn edge(&mut self, states: usize, upper: bool) -> Result<Vec<PieceSensitivity>, SolveError> {
+        if let Some(known) = &self.known[states][usize::from(upper)] {
+            return Ok(known.clone());
+        }
+        let found = self.new_edge(states, upper)?;
+        self.known[states][usize::from(upper)] = Some(found.clone());
+        Ok(found)
+    }
+
+    fn new_edge(&self, states: usize, upper: bool) -> Result<Vec<PieceSensitivity>, SolveError> {
+        let (ready, raw, meter) = (self.ready, self.raw, self.meter);
+        if states == 0 {
+            return edge_slopes(ready, raw.bottom.energy, false, meter);
+        }
+        let gap = raw.gaps[states - 1];
+        if self.closed[states - 1] {
+            meter.spend()?;
+            return Ok(self.doublet(states - 1).means);
+        }
+        let energy = if upper {
+            gap.upper.energy
+        } else {
+            gap.lower.energy
+        };
+        let size = (gap.upper.energy - gap.lower.energy).leading();
+        edge_slopes(
+            ready,
+            energy,
+            size < NARROW_GAP * ready.kinetic_scale(),
+            meter,
+        )
     }
 }
 
-/// An edge of gap `gap`, its upper or lower one.
-fn gap_edge(
-    ready: &Ready,
-    raw: &Raw,
-    gap: usize,
-    upper: bool,
-    meter: &Meter,
-) -> Result<Vec<PieceSensitivity>, SolveError> {
-    let found = &raw.gaps[gap];
-    let size = (found.upper.energy - found.lower.energy).leading();
-    if is_closed(ready, raw, gap) {
-        meter.spend()?;
-        return Ok(pair(ready, found.lower.energy.round()).means);
-    }
-    let edge = if upper { found.upper } else { found.lower };
-    edge_slopes(
-        ready,
-        edge,
-        size < NARROW_GAP * ready.kinetic_scale(),
-        meter,
-    )
-}
-
-/// −∂D/∂p / ∂D/∂E at an edge.
+/// −∂D/∂p / ∂D/∂E at an edge or level.
 fn edge_slopes(
     ready: &Ready,
-    edge: RawEdge,
+    energy: Double,
     narrow: bool,
     meter: &Meter,
 ) -> Result<Vec<PieceSensitivity>, SolveError> {
     meter.spend()?;
     if narrow {
-        let found = gradient(ready, edge.energy);
+        let found = gradient(ready, energy, &FINE);
         return Ok(ratio(&found, |p| -(p / found.energy_slope).leading()));
     }
-    let energy = edge.energy.round();
-    let found = gradient(ready, energy);
+    let found = gradient(ready, energy.round(), &FINE);
     Ok(ratio(&found, |p| -p / found.energy_slope))
 }
 
 /// The width of a narrow band about `middle`.
-pub(crate) fn width_slopes(ready: &Ready, middle: f64) -> Vec<PieceSensitivity> {
-    let found = gradient(ready, Dual::variable(middle));
+pub(crate) fn width_slopes(
+    ready: &Ready,
+    middle: f64,
+    nodes: &Quadrature,
+) -> Vec<PieceSensitivity> {
+    let found = gradient(ready, Dual::variable(middle), nodes);
     let slope = found.energy_slope;
     let width = 4.0 / (slope.value.abs() * super::scalar::power_of_two(found.exponent));
     ratio(&found, |p: Dual<f64>| {

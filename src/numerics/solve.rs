@@ -6,6 +6,7 @@ use super::mesh::gauss_legendre;
 use super::scalar::{Scalar, power_of_two};
 use super::search::{Finder, GapPoint, Target, is_positive};
 use super::sweep::{Reading, read};
+use std::sync::LazyLock;
 
 /// Where in the zone an edge lies.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
@@ -61,6 +62,8 @@ pub struct Bands {
 
 /// Widths below this share of the spacing of bands are taken from D′ where edges are in `f64`.
 pub(crate) const NARROW_WIDTH: f64 = 1e-3;
+
+static FOUR_NODES: LazyLock<Vec<(f64, f64)>> = LazyLock::new(|| gauss_legendre(4));
 
 /// An edge as found.
 #[derive(Clone, Copy)]
@@ -195,7 +198,7 @@ fn narrow_width<T: Scalar>(
         return Ok(None);
     }
     let mut sum = 0.0;
-    for (node, weight) in gauss_legendre(4) {
+    for (node, weight) in FOUR_NODES.iter() {
         let mut reading = *inside;
         for _ in 0..2 {
             let trace = reading.trace();
@@ -346,7 +349,7 @@ fn narrow_pair<T: Scalar>(
             let (residual, slope, _) = target.residual(&last);
             let step = -(residual / slope);
             let size = step.leading().abs();
-            if !(size < 0.5 * half) {
+            if size.is_nan() || size >= 0.5 * half {
                 break;
             }
             energy = energy + step;

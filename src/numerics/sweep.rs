@@ -31,6 +31,8 @@ pub(crate) struct Reading<T> {
     pub states: f64,
 }
 
+/// Most parts of polynomial elements in one sweep: a bound on its time.
+const MOST_PARTS: usize = 200_000;
 /// Largest magnitude before the product is brought back into range.
 const LARGE: f64 = 1e60;
 
@@ -121,6 +123,9 @@ pub(crate) fn read<T: Scalar>(
     meter.spend()?;
     if energy.leading() <= ready.least_energy {
         return Err(SolveError::MassOutOfRange);
+    }
+    if ready.parts(energy.leading()) > MOST_PARTS {
+        return Err(SolveError::BudgetSpent);
     }
     let Product {
         matrix,
@@ -221,5 +226,58 @@ impl<T: Scalar> Reading<T> {
         } else {
             (self.count + 1) as f64 - angle
         }
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::super::cell::{Cell, Mass, Piece, prepare};
+    use super::super::double::Double;
+    use super::*;
+
+    /// det M = 1 at every energy, and N(E) never falls.
+    #[test]
+    fn determinant_is_one_and_states_never_fall() {
+        let mass = |value: f64| Mass { value, slope: 0.01 };
+        let cell = Cell {
+            pieces: vec![
+                Piece::Flat {
+                    length: 0.8,
+                    potential: 3.0,
+                    mass: mass(0.5),
+                },
+                Piece::Delta { strength: -1.5 },
+                Piece::Ramp {
+                    length: 1.1,
+                    potential: [0.0, 7.0],
+                    mass: [mass(1.0), mass(0.4)],
+                },
+                Piece::Smooth {
+                    length: 0.9,
+                    samples: (0..13).map(|i| f64::from(i).sin()).collect(),
+                    mass: [mass(0.4), mass(0.6)],
+                },
+            ],
+        };
+        let ready = prepare(&cell).expect("a sound cell");
+        let mut last = 0.0;
+        for i in 0..600 {
+            let energy = -5.0 + 0.1 * f64::from(i);
+            let whole = product(&ready, Double::new(energy));
+            let m = whole.matrix.shifted(whole.exponent);
+            let determinant = m.a * m.d - m.b * m.c - Double::new(1.0);
+            let size = m.a.high.abs() * m.d.high.abs() + m.b.high.abs() * m.c.high.abs();
+            assert!(
+                determinant.high.abs() < 1e-28 * size,
+                "{energy}: {determinant:?}"
+            );
+            let budget = super::super::Budget::default();
+            let states = read(&ready, energy, &Meter::new(&budget))
+                .expect("a sweep")
+                .states;
+            assert!(states >= last, "{energy}: {states} after {last}");
+            last = states;
+        }
+        assert!(last > 5.0);
     }
 }

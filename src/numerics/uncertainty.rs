@@ -12,14 +12,19 @@
 use super::cell::{Bounded, Mass, Ready};
 use super::double::Double;
 use super::element::Element;
-use super::gradient::{Gradient, gradient};
-use super::pair::pair;
+use super::gradient::{COARSE, Gradient, gradient};
+use super::pair::{Pair, pair};
 use super::scalar::{Dual, Scalar, power_of_two};
 use super::search::is_positive;
 use super::sensitivity::{PieceSensitivity, difference, ratio, width_slopes};
 use super::solve::{Band, BandEdge, Bands, Gap, NARROW_WIDTH, Raw, RawEdge, Wave};
 
 const UNIT: f64 = f64::EPSILON / 2.0;
+
+/// A gap above this share of the scale is open without further question.
+const OPEN: f64 = 1e-6;
+/// Rounding carried by 1/D′ above which a level is taken for one of a doublet, relative to the spacing of bands.
+const NEAR_EDGE: f64 = 1e-10;
 
 /// A bound on the error of an energy in `f64`, before any derivative is known.
 pub(crate) fn a_priori(ready: &Ready, energy: f64) -> f64 {
@@ -65,16 +70,17 @@ fn spread(ready: &Ready, slopes: &[PieceSensitivity]) -> (f64, f64) {
 
 /// Bound on a level's error by the gradient in `f64` there.
 pub(crate) fn level_bound(ready: &Ready, energy: f64) -> f64 {
-    let found = gradient(ready, energy);
+    let found = gradient(ready, energy, &COARSE);
     let slopes = ratio(&found, |p| -p / found.energy_slope);
     let (inputs, mesh) = spread(ready, &slopes);
-    let (near, _) = pair_error(ready, energy, false);
-    let bound = energy.abs() * UNIT
-        + f64::EPSILON * inputs
-        + mesh
-        + units(false) * found.rounding / found.energy_slope.abs();
-    // near a closed gap the doublet's bound is the smaller and the right one
-    if near < bound && near_edge(&found) {
+    let rounding = units(false) * found.rounding / found.energy_slope.abs();
+    let bound = energy.abs() * UNIT + f64::EPSILON * inputs + mesh + rounding;
+    if rounding < NEAR_EDGE * ready.kinetic_scale() {
+        return bound;
+    }
+    // D′ nearly vanishes: the level is one of a doublet
+    let (near, _) = pair_error(ready, energy, &pair(ready, energy, &COARSE), false);
+    if near < bound || bound.is_nan() {
         near
     } else {
         bound
@@ -83,7 +89,7 @@ pub(crate) fn level_bound(ready: &Ready, energy: f64) -> f64 {
 
 /// Bound on D at a given energy by inputs and mesh, for a sweep in double-double.
 pub(crate) fn discriminant_error(ready: &Ready, energy: f64) -> f64 {
-    let found = gradient(ready, energy);
+    let found = gradient(ready, energy, &COARSE);
     let slopes = ratio(&found, |p| p * power_of_two(found.exponent));
     let (inputs, mesh) = spread(ready, &slopes);
     f64::EPSILON * inputs + mesh
@@ -91,29 +97,17 @@ pub(crate) fn discriminant_error(ready: &Ready, energy: f64) -> f64 {
 
 /// Relative effect of inputs and mesh on the width of a narrow band about `middle`, and of rounding.
 pub(crate) fn width_spread(ready: &Ready, middle: f64) -> (f64, f64) {
-    let found = gradient(ready, Dual::variable(middle));
+    let found = gradient(ready, Dual::variable(middle), &COARSE);
     let width = 4.0 / (found.energy_slope.value.abs() * power_of_two(found.exponent));
-    let (inputs, mesh) = spread(ready, &width_slopes(ready, middle));
+    let (inputs, mesh) = spread(ready, &width_slopes(ready, middle, &COARSE));
     (
         (f64::EPSILON * inputs + mesh) / width,
         UNIT * found.rounding_count(),
     )
 }
 
-/// |D′| so small that the level is one of a doublet.
-fn near_edge(found: &Gradient<f64>) -> bool {
-    let slope = found.energy_slope.abs();
-    let whole: f64 = found
-        .pieces
-        .iter()
-        .map(|p| p.potential[0].abs() + p.potential[1].abs())
-        .sum();
-    slope == 0.0 || found.rounding * UNIT > 1e-10 * slope.max(whole)
-}
-
 /// Bound on the error of either of two levels in a doublet, and the rounding in it.
-fn pair_error(ready: &Ready, energy: f64, exact: bool) -> (f64, f64) {
-    let found = pair(ready, energy);
+fn pair_error(ready: &Ready, energy: f64, found: &Pair, exact: bool) -> (f64, f64) {
     let (mean, mesh) = spread(ready, &found.means);
     let (rate, split) = spread(ready, &found.rates);
     let rounding = units(exact) * found.rounding;
@@ -125,12 +119,17 @@ fn pair_error(ready: &Ready, energy: f64, exact: bool) -> (f64, f64) {
 }
 
 /// Size of a gap and the bound on it.
-fn gap_bound(ready: &Ready, raw: &Raw, band: usize, edges: (&EdgeBound, &EdgeBound)) -> (f64, f64) {
+fn gap_bound(
+    ready: &Ready,
+    raw: &Raw,
+    band: usize,
+    doublet: Option<&Pair>,
+    edges: [&EdgeBound; 2],
+) -> (f64, f64) {
     let gap = raw.gaps[band];
-    let (lower, upper) = edges;
+    let [lower, upper] = edges;
     let size = (gap.upper.energy - gap.lower.energy).round().max(0.0);
-    if gap.narrow {
-        let found = pair(ready, 0.5 * (gap.lower.energy + gap.upper.energy).round());
+    if let Some(found) = doublet {
         let (rate, mesh) = spread(ready, &found.rates);
         let rounding = units(raw.exact) * found.rounding + gap.noise;
         return (size, f64::EPSILON * rate + mesh + rounding + UNIT * size);
@@ -140,19 +139,44 @@ fn gap_bound(ready: &Ready, raw: &Raw, band: usize, edges: (&EdgeBound, &EdgeBou
     (size, f64::EPSILON * inputs + mesh + own + UNIT * size)
 }
 
+/// The doublet at a narrow gap.
+fn doublet(ready: &Ready, raw: &Raw, band: usize) -> Option<Pair> {
+    let gap = raw.gaps[band];
+    let middle = (gap.lower.energy + gap.upper.energy).times(0.5);
+    if !gap.narrow {
+        return None;
+    }
+    Some(if raw.exact {
+        pair(ready, middle, &COARSE)
+    } else {
+        pair(ready, middle.round(), &COARSE)
+    })
+}
+
 /// Is the gap above `band` indistinguishable from zero?
 pub(crate) fn is_closed(ready: &Ready, raw: &Raw, band: usize) -> bool {
     let gap = raw.gaps[band];
-    let bound = |edge: &RawEdge| edge_bound(ready, edge, band + 1, raw.exact, gap.narrow);
-    let (size, error) = gap_bound(ready, raw, band, (&bound(&gap.lower), &bound(&gap.upper)));
+    let plain = (gap.upper.energy - gap.lower.energy).leading();
+    if plain > OPEN * (ready.kinetic_scale() + ready.potential_size()) {
+        return false;
+    }
+    let near = doublet(ready, raw, band);
+    let bound = |edge: &RawEdge| edge_bound(ready, edge, band + 1, raw.exact, near.as_ref());
+    let (size, error) = gap_bound(
+        ready,
+        raw,
+        band,
+        near.as_ref(),
+        [&bound(&gap.lower), &bound(&gap.upper)],
+    );
     size <= error
 }
 
 /// Relative rounding of an entry of a factor: of the `f64` sweep, or of the double-double one whose series and
-/// doublings lose up to ten bits in a thick wall.
+/// doublings lose up to eight bits in a thick wall.
 fn units(exact: bool) -> f64 {
     if exact {
-        1024.0 * Double::UNIT
+        256.0 * Double::UNIT
     } else {
         6.0 * UNIT
     }
@@ -167,9 +191,15 @@ struct EdgeBound {
 }
 
 /// Bounds at an edge next to gap `gap` − 1.
-fn edge_bound(ready: &Ready, raw: &RawEdge, gap: usize, exact: bool, narrow: bool) -> EdgeBound {
+fn edge_bound(
+    ready: &Ready,
+    raw: &RawEdge,
+    gap: usize,
+    exact: bool,
+    near: Option<&Pair>,
+) -> EdgeBound {
     let energy = raw.energy.round();
-    let found = gradient(ready, Dual::variable(energy));
+    let found = gradient(ready, Dual::variable(energy), &COARSE);
     let slope = found.energy_slope;
     let slopes = ratio(&found, |p: Dual<f64>| -p.value / slope.value);
     let (inputs, mesh) = spread(ready, &slopes);
@@ -180,8 +210,8 @@ fn edge_bound(ready: &Ready, raw: &RawEdge, gap: usize, exact: bool, narrow: boo
     };
     let mut rounding = units(exact) * found.rounding / found_slope.abs();
     let mut error = energy.abs() * UNIT + f64::EPSILON * inputs + mesh + rounding;
-    if narrow {
-        let (near, own) = pair_error(ready, energy, exact);
+    if let Some(found) = near {
+        let (near, own) = pair_error(ready, energy, found, exact);
         if near < error || error.is_nan() {
             (error, rounding) = (near, own);
         }
@@ -223,18 +253,20 @@ impl Gradient<Dual<f64>> {
 /// Puts the bounds on.
 pub(crate) fn finish(ready: &Ready, raw: &Raw, sweeps: usize) -> Bands {
     let count = raw.gaps.len();
-    let bound =
-        |edge: &RawEdge, gap: usize, narrow: bool| edge_bound(ready, edge, gap, raw.exact, narrow);
+    let bound = |edge: &RawEdge, gap: usize, near: Option<&Pair>| {
+        edge_bound(ready, edge, gap, raw.exact, near)
+    };
     let mut bands = Vec::with_capacity(count);
     let mut gaps = Vec::with_capacity(count);
     let mut bottom = raw.bottom;
-    let mut below = bound(&raw.bottom, 0, false);
+    let mut below = bound(&raw.bottom, 0, None);
     let mut touching = false;
     for band in 0..count {
         let gap = raw.gaps[band];
-        let top = bound(&gap.lower, band + 1, gap.narrow);
-        let next = bound(&gap.upper, band + 1, gap.narrow);
-        let (size, error) = gap_bound(ready, raw, band, (&top, &next));
+        let near = doublet(ready, raw, band);
+        let top = bound(&gap.lower, band + 1, near.as_ref());
+        let next = bound(&gap.upper, band + 1, near.as_ref());
+        let (size, error) = gap_bound(ready, raw, band, near.as_ref(), [&top, &next]);
         let closed = size <= error;
         gaps.push(Gap {
             size: Bounded {
@@ -297,7 +329,7 @@ fn width(
     let (middle, _, _) = raw.inside[band];
     let isolated = !(touching.0 || touching.1);
     if let Some(value) = raw.widths[band].filter(|_| isolated) {
-        let (inputs, mesh) = spread(ready, &width_slopes(ready, middle.round()));
+        let (inputs, mesh) = spread(ready, &width_slopes(ready, middle.round(), &COARSE));
         let own = UNIT * (8.0 + 6.0 * ready.elements.len() as f64) * value;
         return Bounded {
             value,
@@ -306,7 +338,7 @@ fn width(
     }
     let value = difference_of_edges;
     let (inputs, mesh) = if value < NARROW_WIDTH * ready.kinetic_scale() {
-        spread(ready, &width_slopes(ready, middle.round()))
+        spread(ready, &width_slopes(ready, middle.round(), &COARSE))
     } else {
         spread(ready, &difference(&top.1.slopes, &bottom.1.slopes))
     };

@@ -5,7 +5,7 @@
 //! everywhere, and its derivative by energy takes its place: the limit from inside the band.
 
 use super::cell::{Budget, Cell, Meter, Ready, SolveError, prepare};
-use super::element::{Element, Matrix, factors, part_series};
+use super::element::{Element, Matrix, Series, factors, part_series};
 use super::gradient::{cyclic_factors, inverse, values};
 use super::level::level_energy;
 use super::scalar::{Dual, Scalar};
@@ -62,7 +62,7 @@ pub fn wave_function(
         }
         start += length;
     }
-    fill(&ready, &mut curve, &mut densities, spacing, start);
+    fill(&ready, &mut curve, &densities, spacing);
     Ok(curve)
 }
 
@@ -109,7 +109,8 @@ fn density_at<T: Scalar>(
                 .b
         }
         Element::Polynomial(p) => {
-            let (series, _) = part_series(p, part.0, part.1, energy);
+            let mut series = Series::blank();
+            part_series(p, part.0, part.1, energy, &mut series);
             let y = inverse(&values(&series, -1.0))
                 .product(around)
                 .product(&values(&series, 1.0));
@@ -120,28 +121,16 @@ fn density_at<T: Scalar>(
     }
 }
 
-/// Chooses M_x₁₂ or its derivative, and normalises by Simpson-like weights of the trapezoidal rule.
-fn fill(
-    ready: &Ready,
-    curve: &mut Vec<[f64; 2]>,
-    densities: &mut Vec<[f64; 2]>,
-    spacing: f64,
-    _end: f64,
-) {
+/// Chooses M_x₁₂ or its derivative, and normalises by the trapezoidal rule: both ends are the same place.
+fn fill(ready: &Ready, curve: &mut [[f64; 2]], densities: &[[f64; 2]], spacing: f64) {
     let most = |i: usize| densities.iter().fold(0.0f64, |m, d| m.max(d[i].abs()));
     let degenerate = most(0) <= 1e-12 * most(1) * ready.kinetic_scale();
     let pick = usize::from(degenerate);
-    let total: f64 = densities.iter().map(|d| d[pick].abs()).sum::<f64>() * spacing;
-    // both ends are the same place
-    let doubled = densities.first().map_or(0.0, |d| d[pick].abs()) * spacing;
-    let norm = total - doubled;
     let sum: f64 = densities.iter().map(|d| d[pick]).sum();
+    let total: f64 = densities.iter().skip(1).map(|d| d[pick].abs()).sum();
     for (point, density) in curve.iter_mut().zip(densities) {
-        let value = density[pick] * sum.signum() / norm;
-        point[1] = if value > 0.0 && norm > 0.0 {
-            value
-        } else {
-            0.0
-        };
+        let value = density[pick] * sum.signum() / (total * spacing);
+        // rounding may turn the sign where the state has all but died out
+        point[1] = if value > 0.0 { value } else { 0.0 };
     }
 }

@@ -1,5 +1,11 @@
 //! Reading the compact reference files, and the tally of errors and coverage against them.
-#![allow(dead_code, clippy::indexing_slicing, clippy::unwrap_used, missing_docs)]
+#![allow(
+    dead_code,
+    clippy::indexing_slicing,
+    clippy::print_stdout,
+    clippy::unwrap_used,
+    missing_docs
+)]
 
 use crenate::numerics::{Bounded, Budget, Cell, Mass, Mesh, Piece};
 
@@ -77,7 +83,7 @@ impl Tally {
                 .push(format!("{row}: {found:?} against {truth:e}"));
         }
         let eps = error / scale / f64::EPSILON;
-        if !(eps <= self.worst) {
+        if eps > self.worst || eps.is_nan() || self.worst_row.is_empty() {
             self.worst = eps;
             self.worst_row = row.into();
         }
