@@ -94,7 +94,11 @@ pub fn discriminant(cell: &Cell, energy: f64, budget: &Budget) -> Result<Bounded
     Ok(Bounded { value, error })
 }
 
-/// `points` pairs (ka, E_n) from ka = 0 to π, evenly spaced; for pictures.
+/// A band narrower than this share of its energy is followed as E = mean − half width · cos ka, which it is to rounding.
+const COSINE_BAND: f64 = 1e-9;
+
+/// `points` pairs (ka, E_n), ka ascending from 0 to π, closer together near the edges; for pictures. Energies are chosen
+/// and ka is computed, one sweep a point.
 pub fn dispersion(
     cell: &Cell,
     band: usize,
@@ -103,13 +107,30 @@ pub fn dispersion(
 ) -> Result<Vec<[f64; 2]>, SolveError> {
     let ready = prepare(cell)?;
     let meter = Meter::new(budget);
-    let last = points.saturating_sub(1).max(1) as f64;
-    let at = |i: usize| {
-        let share = i as f64 / last;
+    let raw = find(&ready, band + 1, &meter)?;
+    let bottom = if band == 0 { raw.bottom.energy } else { raw.gaps[band - 1].upper.energy };
+    let top = raw.gaps[band].lower.energy;
+    let half = (top - bottom).times(0.5).round();
+    let (bottom, top) = (bottom.round(), top.round());
+    let narrow = half <= COSINE_BAND * bottom.abs().max(top.abs());
+    let last = points.max(2) - 1;
+    let mut curve = Vec::with_capacity(last + 1);
+    for i in 0..=last {
+        let angle = PI * i as f64 / last as f64;
+        let energy = bottom + half * (1.0 - angle.cos());
+        let share = match i {
+            0 => 0.0,
+            _ if i == last => 1.0,
+            _ if narrow => angle / PI,
+            _ => (read(&ready, energy, &meter)?.states - band as f64).clamp(0.0, 1.0),
+        };
         let filled = if band % 2 == 0 { share } else { 1.0 - share };
-        at_share(&ready, band, filled, &meter).map(|energy| [share * PI, energy.value])
-    };
-    (0..points).map(at).collect()
+        curve.push([filled * PI, energy]);
+    }
+    if band % 2 == 1 {
+        curve.reverse();
+    }
+    Ok(curve)
 }
 
 /// The level of a band at which a share of it, 0 to 1, lies below.

@@ -2,8 +2,9 @@
 
 use super::{Finding, Level, Rule, Tier, find, idle_waiver, unused_name};
 use crate::model::{FileId, NameSort, Place, Reference};
-use crate::syntax::{Entry, StatementKind, Tree};
+use crate::syntax::{Entry, SectionId, StatementKind, Tree};
 use crate::text::Span;
+use rustc_hash::{FxHashMap, FxHashSet};
 
 /// A whole file, and what is known of it.
 pub struct FileSubject<'a> {
@@ -27,20 +28,47 @@ impl FileSubject<'_> {
             span,
         }
     }
+}
+
+/// The names that a file uses, for many questions.
+pub struct Uses<'a> {
+    definitions: FxHashSet<(NameSort, Place)>,
+    /// Sorts of which a name that nothing defines is used: it may mean any of that sort.
+    unknown: FxHashSet<NameSort>,
+    values: FxHashSet<&'a str>,
+}
+
+impl<'a> Uses<'a> {
+    /// Of a file.
+    #[must_use]
+    pub fn of(file: &FileSubject<'a>) -> Self {
+        let mut uses = Self {
+            definitions: FxHashSet::default(),
+            unknown: FxHashSet::default(),
+            values: FxHashSet::default(),
+        };
+        for reference in file.references.iter().copied().flatten() {
+            match reference.definition {
+                Some(place) => uses.definitions.insert((reference.sort, place)),
+                None => uses.unknown.insert(reference.sort),
+            };
+            if reference.sort == NameSort::Value {
+                uses.values.insert(&reference.name);
+            }
+        }
+        uses
+    }
 
     /// Whether a name that is defined at `definition` is used, or may be meant where a name of that sort is unknown.
     #[must_use]
     pub fn may_use(&self, definition: Place, sort: NameSort) -> bool {
-        let all = self.references.iter().copied().flatten();
-        let mut of_sort = all.filter(|reference| reference.sort == sort);
-        of_sort.any(|reference| reference.definition.is_none_or(|place| place == definition))
+        self.unknown.contains(&sort) || self.definitions.contains(&(sort, definition))
     }
 
     /// Whether a value of that name is used anywhere in the file.
     #[must_use]
     pub fn mentions(&self, name: &str) -> bool {
-        let mut all = self.references.iter().copied().flatten();
-        all.any(|reference| reference.sort == NameSort::Value && reference.name == name)
+        self.values.contains(name)
     }
 }
 
@@ -135,7 +163,7 @@ fn waivers(file: FileId, tree: &Tree) -> Vec<Waiver<'_>> {
 }
 
 fn silenced(finding: &Finding, waivers: &mut [Waiver<'_>]) -> bool {
-    if !can_be_waived(finding) {
+    if waivers.is_empty() || !can_be_waived(finding) {
         return false;
     }
     let mut silenced = false;
@@ -182,12 +210,11 @@ fn idle_finding(waiver: &Waiver<'_>, errors: &[Place], depth: Tier) -> Option<Fi
 
 /// By place, and each finding once.
 fn in_order(tree: &Tree, mut findings: Vec<Finding>) -> Vec<Finding> {
+    let entries = tree.entries.iter().enumerate();
+    let positions: FxHashMap<SectionId, usize> = entries.map(|(index, entry)| (entry.id, index)).collect();
     let order = |finding: &Finding| {
-        let position = tree
-            .entries
-            .iter()
-            .position(|entry| entry.id == finding.place.section);
-        (position.unwrap_or(usize::MAX), finding.place.span)
+        let position = positions.get(&finding.place.section);
+        (position.copied().unwrap_or(usize::MAX), finding.place.span)
     };
     findings.sort_by_cached_key(order);
     let mut kept: Vec<Finding> = Vec::new();

@@ -26,6 +26,7 @@
 //! # Fix
 //! An unused `let` is taken out.
 
+use super::file::Uses;
 use super::{FileSubject, Finding, Fix, Level, Replacement, Rule, Subject, Tier};
 use crate::model::words::holder_of;
 use crate::model::{NameSort, Place};
@@ -57,19 +58,20 @@ pub fn file_check(file: &FileSubject<'_>, findings: &mut Vec<Finding>) {
     if file.used_by_others || !has_crystals || unreadable {
         return;
     }
+    let uses = Uses::of(file);
     for entry in &file.tree.entries {
-        findings.extend(material(file, entry));
-        findings.extend(names(file, entry));
+        findings.extend(material(file, &uses, entry));
+        findings.extend(names(file, &uses, entry));
     }
 }
 
-fn material(file: &FileSubject<'_>, entry: &Entry) -> Option<Finding> {
+fn material(file: &FileSubject<'_>, uses: &Uses<'_>, entry: &Entry) -> Option<Finding> {
     if entry.section.kind != SectionKind::Material {
         return None;
     }
     let name = entry.section.name.as_ref()?;
     let place = file.place(entry, name.span);
-    if file.may_use(place, NameSort::Material) {
+    if uses.may_use(place, NameSort::Material) {
         return None;
     }
     Some(unused(
@@ -78,7 +80,7 @@ fn material(file: &FileSubject<'_>, entry: &Entry) -> Option<Finding> {
     ))
 }
 
-fn names<'a>(file: &'a FileSubject<'_>, entry: &'a Entry) -> impl Iterator<Item = Finding> + 'a {
+fn names<'a>(file: &'a FileSubject<'_>, uses: &'a Uses<'_>, entry: &'a Entry) -> impl Iterator<Item = Finding> + 'a {
     let statements = entry.section.statements.iter();
     statements.filter_map(move |statement| {
         let StatementKind::Let { name, .. } = &statement.kind else {
@@ -88,7 +90,7 @@ fn names<'a>(file: &'a FileSubject<'_>, entry: &'a Entry) -> impl Iterator<Item 
         if holder_of(&name.text).is_some() {
             return None;
         }
-        if file.may_use(place, NameSort::Value) || may_be_inherited(file, entry, name) {
+        if uses.may_use(place, NameSort::Value) || may_be_inherited(uses, entry, name) {
             return None;
         }
         let fix = take_out(file, entry, statement.span);
@@ -97,8 +99,8 @@ fn names<'a>(file: &'a FileSubject<'_>, entry: &'a Entry) -> impl Iterator<Item 
 }
 
 /// A `let` under a heading with `like` also replaces that name in all that is taken over.
-fn may_be_inherited(file: &FileSubject<'_>, entry: &Entry, name: &Word) -> bool {
-    entry.section.like.is_some() && file.mentions(&name.text)
+fn may_be_inherited(uses: &Uses<'_>, entry: &Entry, name: &Word) -> bool {
+    entry.section.like.is_some() && uses.mentions(&name.text)
 }
 
 fn unused(place: Place, message: String) -> Finding {
