@@ -178,7 +178,7 @@ fn a_gap_that_closes_inside_the_tolerance_is_found() {
     let draw = draw
         .filter(|parameter| parameter.kind == ParameterKind::Draw)
         .map(|parameter| parameter.id)
-        .last()
+        .next_back()
         .unwrap();
     for end in [-1.0, 1.0] {
         let mut setting = Setting::default();

@@ -1,5 +1,5 @@
 //! `crenate show` as a user and a script meet it.
-#![allow(missing_docs, clippy::unwrap_used)]
+#![allow(clippy::indexing_slicing, clippy::unwrap_used, missing_docs)]
 
 mod cli;
 

@@ -1,5 +1,10 @@
 //! How long a keystroke takes in a large file, and that only what it touched is worked on.
-#![allow(missing_docs, clippy::unwrap_used, clippy::print_stdout)]
+#![allow(
+    clippy::indexing_slicing,
+    clippy::unwrap_used,
+    missing_docs,
+    clippy::print_stdout
+)]
 
 use std::path::{Path, PathBuf};
 use std::sync::{Arc, Mutex};

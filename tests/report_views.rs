@@ -1,5 +1,5 @@
 //! Hints and actions, each applied to the text it is for.
-#![allow(missing_docs, clippy::unwrap_used)]
+#![allow(clippy::indexing_slicing, clippy::unwrap_used, missing_docs)]
 
 mod report;
 

@@ -2,7 +2,7 @@
 #![cfg(unix)]
 #![allow(clippy::unwrap_used, clippy::indexing_slicing)]
 
-use std::io::{BufRead, BufReader, Read, Write};
+use std::io::{BufRead, BufReader, Write};
 use std::process::{Child, ChildStdin, Command, Stdio};
 use std::sync::mpsc::{Receiver, channel};
 use std::time::{Duration, Instant};

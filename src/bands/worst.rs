@@ -299,6 +299,7 @@ fn edge_of_box(point: &[f64], direction: &[f64]) -> Vec<f64> {
 }
 
 #[cfg(test)]
+#[allow(clippy::indexing_slicing)]
 mod tests {
     use super::*;
 

@@ -108,7 +108,11 @@ pub fn dispersion(
     let ready = prepare(cell)?;
     let meter = Meter::new(budget);
     let raw = find(&ready, band + 1, &meter)?;
-    let bottom = if band == 0 { raw.bottom.energy } else { raw.gaps[band - 1].upper.energy };
+    let bottom = if band == 0 {
+        raw.bottom.energy
+    } else {
+        raw.gaps[band - 1].upper.energy
+    };
     let top = raw.gaps[band].lower.energy;
     let half = (top - bottom).times(0.5).round();
     let (bottom, top) = (bottom.round(), top.round());

@@ -211,7 +211,8 @@ fn idle_finding(waiver: &Waiver<'_>, errors: &[Place], depth: Tier) -> Option<Fi
 /// By place, and each finding once.
 fn in_order(tree: &Tree, mut findings: Vec<Finding>) -> Vec<Finding> {
     let entries = tree.entries.iter().enumerate();
-    let positions: FxHashMap<SectionId, usize> = entries.map(|(index, entry)| (entry.id, index)).collect();
+    let positions: FxHashMap<SectionId, usize> =
+        entries.map(|(index, entry)| (entry.id, index)).collect();
     let order = |finding: &Finding| {
         let position = positions.get(&finding.place.section);
         (position.copied().unwrap_or(usize::MAX), finding.place.span)

@@ -80,7 +80,11 @@ fn material(file: &FileSubject<'_>, uses: &Uses<'_>, entry: &Entry) -> Option<Fi
     ))
 }
 
-fn names<'a>(file: &'a FileSubject<'_>, uses: &'a Uses<'_>, entry: &'a Entry) -> impl Iterator<Item = Finding> + 'a {
+fn names<'a>(
+    file: &'a FileSubject<'_>,
+    uses: &'a Uses<'_>,
+    entry: &'a Entry,
+) -> impl Iterator<Item = Finding> + 'a {
     let statements = entry.section.statements.iter();
     statements.filter_map(move |statement| {
         let StatementKind::Let { name, .. } = &statement.kind else {
