@@ -187,5 +187,12 @@ fn dispersions_rise_from_edge_to_edge() {
         );
         let sign = if band % 2 == 0 { 1.0 } else { -1.0 };
         assert!(curve.windows(2).all(|w| sign * (w[1][1] - w[0][1]) > 0.0));
+        for [ka, energy] in &curve[1..20] {
+            let there = level(&cell, band, *ka, &Budget::default()).unwrap();
+            assert!(
+                (there.value - energy).abs() < 1e-12 * energy.abs(),
+                "{ka}: {energy} against {there:?}"
+            );
+        }
     }
 }

@@ -121,7 +121,11 @@ pub fn dispersion(
     let mut curve = Vec::with_capacity(last + 1);
     for i in 0..=last {
         let angle = PI * i as f64 / last as f64;
-        let energy = bottom + half * (1.0 - angle.cos());
+        let energy = if i == last {
+            top
+        } else {
+            bottom + half * (1.0 - angle.cos())
+        };
         let share = match i {
             0 => 0.0,
             _ if i == last => 1.0,
