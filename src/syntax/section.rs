@@ -19,6 +19,9 @@ use crate::text::Span;
 
 /// Deepest nesting of brackets.
 const BRACKET_LIMIT: usize = 256;
+/// Lines with more brackets and powers than this are read on a stack of their own, as deep ones need up to 1.5 MB.
+const SHALLOW: usize = 24;
+const STACK_FOR_DEEP: usize = 8 << 20;
 
 /// A fast hash of a section's text.
 pub(super) fn hash_text(text: &str) -> u64 {
@@ -76,6 +79,24 @@ fn read_line(
         return Err(stray(line.offset + token.start, token.text));
     }
     line.hold_bracket_limit()?;
+    if content.bytes().filter(|byte| matches!(byte, b'(' | b'^')).count() > SHALLOW {
+        return stacker::maybe_grow(STACK_FOR_DEEP, STACK_FOR_DEEP, || {
+            read_statement(section, text, place, line, (word, rule), heading)
+        });
+    }
+    read_statement(section, text, place, line, (word, rule), heading)
+}
+
+/// Reads what the grammar's rule for the line's first word makes of it.
+fn read_statement(
+    section: &mut Section,
+    text: &str,
+    place: Span,
+    line: LineText<'_>,
+    (word, rule): (&str, Rule),
+    heading: bool,
+) -> Result<(), Problem> {
+    let content = line.content;
     let pairs = LineParser::parse(rule, content).map_err(|error| line.refused(word, &error))?;
     let pair = pairs.into_iter().next().ok_or_else(|| line.broken())?;
     let builder = Builder {

@@ -6,6 +6,11 @@ use crate::model::words::nearest;
 use crate::model::{Dimension, Dual, TroubleKind};
 use crate::syntax::{Expression, ExpressionKind, Operator, Word};
 
+/// Below this many bytes of stack an expression goes on in a new piece of it, of `STACK_MORE` bytes: how deep a text nests
+/// must not depend on the thread that reads it.
+const STACK_LEFT: usize = 256 << 10;
+const STACK_MORE: usize = 4 << 20;
+
 impl<'w> Evaluator<'w> {
     /// What an expression comes to.
     pub(crate) fn expression(
@@ -23,7 +28,7 @@ impl<'w> Evaluator<'w> {
             );
         }
         self.depth += 1;
-        let result = self.dispatch(expression, context);
+        let result = stacker::maybe_grow(STACK_LEFT, STACK_MORE, || self.dispatch(expression, context));
         self.depth -= 1;
         result
     }
