@@ -6,7 +6,7 @@ use std::path::{Path, PathBuf};
 use clap::{Args, ValueEnum};
 
 use super::files::{self, Selection, Shard};
-use super::{FailOn, Status, in_order, output};
+use super::{FailOn, Status, in_order, mend, output};
 use crate::report::analyst::{Analyst, Request};
 use crate::report::disk::Disk;
 use crate::report::lint_text::{self, Tally};
@@ -31,6 +31,12 @@ pub struct Arguments {
     /// Take the I-th of N parts of the files.
     #[arg(long, value_name = "I/N")]
     shard: Option<Shard>,
+    /// Apply the safe fixes to the files first, then report what is left.
+    #[arg(long)]
+    mend: bool,
+    /// With `--mend`: change nothing and print what would change as a unified diff; fail if there is any.
+    #[arg(long, requires = "mend")]
+    dry_run: bool,
 }
 
 #[derive(Clone, Copy, Debug, PartialEq, Eq, ValueEnum)]
@@ -66,7 +72,21 @@ pub fn run(arguments: &Arguments) -> Status {
     for failure in &selection.failures {
         output::message(failure);
     }
+    let mut mended = Status::Clean;
+    if arguments.mend {
+        let chosen = mend::Chosen {
+            selection: &selection,
+            reach: &files::reach(&arguments.paths),
+            only: &arguments.only,
+        };
+        match mend::run(&chosen, arguments.dry_run) {
+            status if arguments.dry_run => return status,
+            Status::Failed => mended = Status::Failed,
+            _ => {}
+        }
+    }
     let mut printer = Printer::new(arguments, &selection);
+    printer.failed |= mended == Status::Failed;
     let outcome = check(arguments, &selection, &mut printer);
     let status = printer.status(arguments, &selection);
     output::written(outcome, status)

@@ -1,12 +1,10 @@
 //! `crenate tidy PATH… [--check]`
 
-use std::fs;
-use std::io::{self, Write};
 use std::path::{Path, PathBuf};
 
 use clap::Args;
 
-use super::{Status, files, in_order, output};
+use super::{Status, files, in_order, output, replace};
 use crate::report::disk::{Disk, STANDARD_INPUT};
 use crate::report::{FileSource, tidy};
 
@@ -76,24 +74,9 @@ fn one(path: &Path, disk: &Disk, check: bool) -> Done {
     let name = path.display().to_string();
     match check {
         true => Done::Changed(name),
-        false => match replace(path, &tidied) {
+        false => match replace::replace(path, &tidied) {
             Ok(()) => Done::Changed(name),
             Err(error) => failed(error.to_string()),
         },
     }
-}
-
-/// Puts a new text in a file's place at once, so that no reader ever sees half of it; a link stays a link.
-fn replace(path: &Path, text: &str) -> io::Result<()> {
-    let real = fs::canonicalize(path)?;
-    let folder = real.parent().unwrap_or(Path::new("."));
-    let mut fresh = tempfile::Builder::new()
-        .prefix(".crenate-")
-        .tempfile_in(folder)?;
-    fresh.write_all(text.as_bytes())?;
-    fresh
-        .as_file()
-        .set_permissions(fs::metadata(&real)?.permissions())?;
-    fresh.persist(&real).map_err(|error| error.error)?;
-    Ok(())
 }

@@ -23,6 +23,7 @@ mod lines;
 pub mod lint_json;
 pub mod lint_text;
 pub mod locate;
+pub mod mend;
 pub mod paint;
 pub mod rule_page;
 pub mod sarif;
