@@ -23,6 +23,7 @@ mod lines;
 pub mod lint_json;
 pub mod lint_text;
 pub mod locate;
+mod meet;
 pub mod paint;
 pub mod rule_page;
 pub mod sarif;
@@ -32,6 +33,7 @@ pub mod show_json;
 pub mod show_text;
 pub mod svg;
 pub mod tidy;
+mod trial;
 pub mod units;
 pub mod words;
 
