@@ -5,7 +5,7 @@ mod report;
 
 use std::path::Path;
 
-use crenate::report::actions::{Action, actions};
+use crenate::report::actions::{Action, Asked, actions};
 use crenate::report::hints::hints;
 use crenate::report::{Analyst, Tier};
 use crenate::text::Span;
@@ -73,9 +73,15 @@ fn hints_keep_to_the_range_asked_for() {
 fn at_mark(text: &str) -> (String, Vec<Action>) {
     let (text, marks) = marked(text);
     let files = Files::default().with("a.cren", &text);
-    let analysis = analysed(&Analyst::default(), &files, Tier::Bands);
-    let range = Span::new(marks[0], marks[0]);
-    (text, actions(&analysis, Path::new("a.cren"), range))
+    let analyst = Analyst::default();
+    let asked = Asked {
+        analyst: &analyst,
+        source: &files,
+        analysis: &analysed(&analyst, &files, Tier::Bands),
+        cancel: &|| false,
+    };
+    let found = actions(&asked, Path::new("a.cren"), Span::new(marks[0], marks[0]));
+    (text, found)
 }
 
 #[track_caller]
@@ -144,7 +150,7 @@ fn todays_gap_becomes_a_target_that_is_met() {
         &LAYERS.replace('|', "").replace("crystal", "crys|tal"),
         "add `require",
     );
-    assert!(text.contains("within 5 %"), "{text}");
+    assert!(text.contains("  require gap 1 >= "), "{text}");
     let files = Files::default().with("a.cren", &text);
     let analysis = analysed(&Analyst::default(), &files, Tier::Bands);
     let section = analysis.files[0].sections.last().unwrap();

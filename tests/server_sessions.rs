@@ -248,6 +248,24 @@ async fn a_file_outside_every_folder_is_out_of_reach() {
 }
 
 #[tokio::test]
+async fn a_folder_named_by_its_path_alone_is_the_workspace() {
+    let folder = tempfile::tempdir().unwrap();
+    let root = folder.path().canonicalize().unwrap();
+    std::fs::create_dir(root.join("deep")).unwrap();
+    std::fs::write(root.join("far.cren"), "let far = 1 nm\n").unwrap();
+    let user = uri(&root.join("deep/user.cren"));
+    let mut client = Client::start(Settings::default());
+    let params = json!({"processId": null, "rootPath": root, "capabilities": able()});
+    client.request("initialize", params).await;
+    client.notify("initialized", json!({})).await;
+    client.open(&user, 1, "use \"../far.cren\"\n").await;
+    assert_eq!(
+        rules(&client.findings(&user, 1).await),
+        Vec::<String>::new()
+    );
+}
+
+#[tokio::test]
 async fn watching_is_asked_of_clients_that_can() {
     let mut client = Client::new().await;
     let asked = client

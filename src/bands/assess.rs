@@ -78,7 +78,8 @@ impl Assessor<'_> {
         (self.rebuild)(of, setting)
     }
 
-    fn target(&self, index: usize) -> Option<Assessment> {
+    /// What became of one target; `None` when the work was overtaken.
+    pub fn target(&self, index: usize) -> Option<Assessment> {
         let target = self.crystal.targets.get(index)?;
         let found = match &target.wish {
             Wish::Compare { dimension, .. } => self.compare(index, target, *dimension),
@@ -329,7 +330,7 @@ fn limits(reading: &Reading) -> (Option<Measured>, Option<Measured>) {
 }
 
 /// Whether a target speaks only of quantities with exact derivatives.
-fn has_exact_slopes(target: &Target) -> bool {
+pub(super) fn has_exact_slopes(target: &Target) -> bool {
     let differenced = |kind: &QuantityKind| {
         matches!(
             kind,

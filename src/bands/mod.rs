@@ -10,6 +10,7 @@ mod field;
 mod filling;
 mod fingerprint;
 mod layout;
+mod meet;
 mod picture;
 mod probe;
 mod quantity;
@@ -25,6 +26,7 @@ use std::sync::Arc;
 use crate::model::{Crystal, CrystalRef};
 
 pub use assess::{Rebuild, class_word, gap_word};
+pub use meet::Wanted;
 pub use picture::{EdgeWave, Picture, potential_line};
 pub use types::*;
 

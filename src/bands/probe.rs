@@ -172,7 +172,7 @@ impl Probe<'_> {
 }
 
 /// A margin and its derivatives by all parameters.
-fn margin_of(reading: &Reading, side: Side) -> Option<(f64, Vec<(ParameterId, f64)>)> {
+pub(super) fn margin_of(reading: &Reading, side: Side) -> Option<(f64, Vec<(ParameterId, f64)>)> {
     let zero = Leaf::default();
     let (limit, sign) = match side {
         Side::Lower => (

@@ -3,10 +3,11 @@
 use std::path::{Path, PathBuf};
 
 use super::analysis::{Analysis, FileAnalysis, SectionAnalysis};
-use super::rule_page;
-use super::units::{Trade, tell_in};
-use crate::bands::GapKind;
-use crate::model::{Layer, ParameterKind, Place};
+use super::analyst::Analyst;
+use super::units::Trade;
+use super::{meet, rule_page, trial};
+use crate::bands::{Assessment, GapKind, TargetState};
+use crate::model::{FileSource, Layer, ParameterKind, Place};
 use crate::rules::{Finding, Fix};
 use crate::syntax::{Entry, SectionKind};
 use crate::text::Span;
@@ -37,9 +38,24 @@ pub struct Action {
     pub rule: Option<&'static str>,
 }
 
-/// What can be done within a range of bytes of a file.
+/// What actions are made from.
+#[derive(Clone, Copy)]
+pub struct Asked<'a> {
+    /// Solves what an action needs.
+    pub analyst: &'a Analyst,
+    /// Where files come from.
+    pub source: &'a dyn FileSource,
+    /// What is known of them.
+    pub analysis: &'a Analysis,
+    /// Whether the actions are not wanted any more.
+    pub cancel: &'a (dyn Fn() -> bool + Sync),
+}
+
+/// What can be done within a range of bytes of a file. On the line of a target that is not met this solves for what
+/// would meet it.
 #[must_use]
-pub fn actions(analysis: &Analysis, path: &Path, range: Span) -> Vec<Action> {
+pub fn actions(asked: &Asked<'_>, path: &Path, range: Span) -> Vec<Action> {
+    let analysis = asked.analysis;
     let Some(file) = analysis.file(path) else {
         return Vec::new();
     };
@@ -55,11 +71,13 @@ pub fn actions(analysis: &Analysis, path: &Path, range: Span) -> Vec<Action> {
     }
     if let Some((entry, section)) = file.section_at(range.start) {
         let desk = Desk {
+            asked,
             file,
             entry,
             section,
             at: range.start - entry.start,
         };
+        actions.extend(desk.meet_target());
         actions.extend(desk.whole_monolayers());
         actions.extend(desk.name_number());
         actions.extend(desk.require_today());
@@ -166,6 +184,7 @@ fn line_end(entry: &Entry) -> &'static str {
 
 /// A place in a section, and what is known there.
 struct Desk<'a> {
+    asked: &'a Asked<'a>,
     file: &'a FileAnalysis,
     entry: &'a Entry,
     section: &'a SectionAnalysis,
@@ -258,44 +277,81 @@ impl Desk<'_> {
         format!("value_{number}")
     }
 
-    /// Requires today's lowest open gap, within five per cent.
+    /// The changes of one number that meet the target on this line.
+    fn meet_target(&self) -> Vec<Action> {
+        let lines = &self.entry.section.lines;
+        let Some(line) = lines.iter().find(|line| line.span.touches(self.at)) else {
+            return Vec::new();
+        };
+        let here = |target: &Assessment| {
+            let start = target.place.span.start;
+            self.holds(&target.place) && line.span.start <= start && start < line.span.end
+        };
+        match self.section.targets.iter().position(here) {
+            Some(index) => meet::meet(self.asked, self.file, self.section, index),
+            None => Vec::new(),
+        }
+    }
+
+    /// Requires what today's lowest open gap keeps, tolerances included, in two digits.
     fn require_today(&self) -> Option<Action> {
         if !self.entry.section.heading.touches(self.at) {
             return None;
         }
-        let crystal = self.section.crystal.as_deref()?;
         let solution = self.section.solution().filter(|solution| solution.fine)?;
         let open = |kind: GapKind| matches!(kind, GapKind::Direct | GapKind::Indirect);
         let band = solution.gaps.iter().position(|gap| open(gap.kind))?;
-        let gap = solution.gaps.get(band)?;
-        let trade = Trade::of(crystal);
-        let mut size = gap.size;
-        size.uncertainty = 0.0;
-        let told = tell_in(size, &trade.energy(size.value));
-        let statement = format!("require gap {} = {told} within 5 %", band + 1);
-        let last = self.entry.section.statements.last();
-        let (at, text) = match last {
-            Some(last) => (
-                last.span.end,
-                format!("{}{}{statement}", line_end(self.entry), indent(self.entry)),
-            ),
-            None => {
-                let (at, text) = below_heading(self.entry, &statement)?;
-                (at - self.entry.start, text)
-            }
-        };
-        // A comment behind the last statement stays on its line.
-        let line = self
-            .entry
-            .section
-            .lines
-            .iter()
-            .find(|line| line.span.touches(at));
-        let at = line.map_or(at, |line| line.comment.end.max(at));
-        Some(self.rewrite(
+        let size = solution.gaps.get(band)?.size;
+        let (action, outcome) = self.require_gap(band + 1, size.value - size.uncertainty)?;
+        if outcome.state == TargetState::Met {
+            return Some(action);
+        }
+        let (action, outcome) = self.require_gap(band + 1, outcome.worst?)?;
+        (outcome.state == TargetState::Met).then_some(action)
+    }
+
+    /// A requirement that a gap be as large as a size (J), rounded down, and what becomes of it.
+    fn require_gap(&self, band: usize, size: f64) -> Option<(Action, Assessment)> {
+        if size <= 0.0 {
+            return None;
+        }
+        let crystal = self.section.crystal.as_deref()?;
+        let scale = Trade::of(crystal).energy(size);
+        let told = rounded_down(size / scale.factor);
+        let statement = format!("require gap {band} >= {told} {}", scale.name);
+        let (at, text) = self.at_end(&statement)?;
+        let action = self.rewrite(
             format!("add `{statement}`"),
             ActionKind::Rewrite,
             vec![(at, at, text)],
-        ))
+        );
+        let section = self.section.section;
+        let mut after = trial::targets(self.asked, self.file, section, &action.edits)?;
+        Some((action, after.pop()?))
+    }
+
+    /// Where a statement goes to be the section's last, and the text to put there.
+    fn at_end(&self, statement: &str) -> Option<(u32, String)> {
+        let Some(last) = self.entry.section.statements.last() else {
+            let (at, text) = below_heading(self.entry, statement)?;
+            return Some((at - self.entry.start, text));
+        };
+        // A comment behind the last statement stays on its line.
+        let end = last.span.end;
+        let mut lines = self.entry.section.lines.iter();
+        let line = lines.find(|line| line.span.touches(end));
+        let at = line.map_or(end, |line| line.comment.end.max(end));
+        let text = format!("{}{}{statement}", line_end(self.entry), indent(self.entry));
+        Some((at, text))
+    }
+}
+
+/// A positive number in two significant digits, not above it.
+fn rounded_down(value: f64) -> f64 {
+    let places = 1 - value.log10().floor() as i32;
+    let size = 10_f64.powi(places.abs());
+    match places >= 0 {
+        true => (value * size).floor() / size,
+        false => (value / size).floor() * size,
     }
 }

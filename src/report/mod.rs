@@ -24,6 +24,7 @@ pub mod lint_json;
 pub mod lint_text;
 pub mod locate;
 pub mod mend;
+mod meet;
 pub mod paint;
 pub mod rule_page;
 pub mod sarif;
@@ -33,6 +34,7 @@ pub mod show_json;
 pub mod show_text;
 pub mod svg;
 pub mod tidy;
+mod trial;
 pub mod units;
 pub mod words;
 

@@ -177,7 +177,7 @@ impl<'a> Canvas<'a> {
     /// The bands as stripes through both panels.
     fn bands(&self) -> Group {
         let mut group = Group::new();
-        for band in &self.solution.bands {
+        for (index, band) in self.solution.bands.iter().enumerate() {
             let (bottom, top) = (
                 self.y(band.bottom.energy.value),
                 self.y(band.top.energy.value),
@@ -188,6 +188,9 @@ impl<'a> Canvas<'a> {
             // A band narrower than a line is still seen.
             let middle = 0.5 * (bottom + top);
             let half = (0.5 * (bottom - top)).max(0.75);
+            let mut stripes = Group::new()
+                .set("class", "band")
+                .set("data-band", index + 1);
             for (left, right) in [CELLS, ZONE] {
                 let stripe = rectangle(
                     left,
@@ -195,8 +198,9 @@ impl<'a> Canvas<'a> {
                     right,
                     (middle + half).min(BOTTOM),
                 );
-                group = group.add(stripe.set("fill", BAND).set("fill-opacity", 0.42));
+                stripes = stripes.add(stripe.set("fill", BAND).set("fill-opacity", 0.42));
             }
+            group = group.add(stripes);
         }
         group
     }
@@ -230,7 +234,7 @@ impl<'a> Canvas<'a> {
                     .set("fill", WALL)
                     .set("fill-opacity", 0.75),
             )
-            .add(stroke(outline, WALL_EDGE, 1.6));
+            .add(stroke(outline, WALL_EDGE, 1.6).set("class", "potential"));
         for (position, strength) in &self.picture.spikes {
             for cell in 0..2 {
                 let x = self.x(position + f64::from(cell) * self.picture.period);
@@ -267,7 +271,7 @@ impl<'a> Canvas<'a> {
                     begun = true;
                 }
             }
-            group = group.add(stroke(data, colour, 1.8));
+            group = group.add(stroke(data, colour, 1.8).set("class", "wave"));
         }
         group
     }
@@ -288,7 +292,7 @@ impl<'a> Canvas<'a> {
                     data.line_to(point)
                 };
             }
-            group = group.add(stroke(data, INK, 2.0));
+            group = group.add(stroke(data, INK, 2.0).set("class", "dispersion"));
         }
         group
     }

@@ -177,5 +177,15 @@ fn folders(params: &InitializeParams) -> Vec<PathBuf> {
     if !folders.is_empty() {
         return folders;
     }
-    params.root_uri.iter().map(path_of).collect()
+    match &params.root_uri {
+        Some(root) => vec![path_of(root)],
+        None => root_path(params).into_iter().collect(),
+    }
+}
+
+/// The folder of a client that names it by path alone, as the first ones did.
+#[allow(deprecated, reason = "it is read for the sake of such clients")]
+fn root_path(params: &InitializeParams) -> Option<PathBuf> {
+    let path = params.root_path.as_deref().map(PathBuf::from)?;
+    path.is_absolute().then_some(path)
 }

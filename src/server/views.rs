@@ -10,7 +10,7 @@ use tower_lsp::lsp_types::{
 
 use super::edits;
 use super::scene::Scene;
-use crate::report::actions::{Action, ActionKind, actions};
+use crate::report::actions::{Action, ActionKind, Asked, actions};
 use crate::report::editor_format;
 use crate::report::hints::hints;
 use crate::report::hover::hover;
@@ -60,7 +60,14 @@ pub(super) fn offered(
         let only = params.context.only.as_deref();
         only.is_none_or(|only| only.iter().any(|wanted| includes(wanted, kind)))
     };
-    let found = actions(scene.analysis()?, &scene.path(), scene.span(params.range));
+    let overtaken = &scene.view.file.overtaken;
+    let asked = Asked {
+        analyst: &scene.analyst,
+        source: &*scene.view.files,
+        analysis: scene.analysis()?,
+        cancel: &|| overtaken.is_cancelled(),
+    };
+    let found = actions(&asked, &scene.path(), scene.span(params.range));
     let found = found
         .into_iter()
         .filter(|action| wanted(&kind(action.kind)));

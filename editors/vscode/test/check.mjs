@@ -21,10 +21,62 @@ async function until(what, condition) {
 
 const address = `http://127.0.0.1:${port}`;
 await until("the editor", () => fetch(`${address}/healthz`).then((reply) => reply.ok, () => false));
+/// What the panel shows, asked of its innermost frame.
+async function shown(page) {
+  for (const frame of page.frames()) {
+    const found = await frame
+      .evaluate(() => {
+        const picture = document.getElementById("picture");
+        const svg = picture?.querySelector("svg");
+        const count = (wanted) => svg.querySelectorAll(wanted).length;
+        return svg && {
+          dispersion: count("path.dispersion"),
+          bands: count("g.band"),
+          potential: count("path.potential"),
+          head: svg.querySelector("text")?.textContent.trim(),
+          stale: picture.classList.contains("stale"),
+          trouble: document.getElementById("trouble").textContent,
+        };
+      })
+      .catch(() => null);
+    if (found) {
+      return found;
+    }
+  }
+  return null;
+}
+
+/// Waits for the probe's step, then for the panel to be as wanted, and tells the probe.
+async function look(page, step, wanted) {
+  await until(`the probe's step ${step}`, () => {
+    const failed = fs.existsSync(seenPath) ? fs.readFileSync(seenPath, "utf8") : "";
+    assert.ok(!failed.includes('"error"'), failed);
+    return fs.existsSync(`${seenPath}.step`) && fs.readFileSync(`${seenPath}.step`, "utf8") === step;
+  });
+  let last = null;
+  await until(`the panel when ${step}`, async () => {
+    last = await shown(page);
+    return last !== null && wanted(last);
+  }).catch((error) => {
+    throw new Error(`${error.message}: ${JSON.stringify(last)}`);
+  });
+  await page.screenshot({ path: picture.replace(".png", `-${step}.png`) });
+  fs.writeFileSync(`${seenPath}.${step}`, "");
+  return last;
+}
+
 const browser = await chromium.launch({ executablePath: "/usr/bin/chromium", args: ["--no-sandbox"] });
 try {
   const page = await browser.newPage();
+  await page.setViewportSize({ width: 1440, height: 810 });
   await page.goto(address);
+  // Four bands are solved where none says how many, and each is one line of E(k); two of them and the walls are drawn.
+  const opened = await look(page, "opened", (panel) => panel.dispersion === 4 && !panel.stale);
+  assert.equal(opened.head, "tern");
+  assert.equal(opened.potential, 1);
+  assert.equal(opened.bands, 2);
+  await look(page, "typed", (panel) => panel.dispersion === 6 && !panel.stale);
+  await look(page, "broken", (panel) => panel.stale && panel.trouble !== "");
   await until("the probe", () => fs.existsSync(seenPath) && fs.readFileSync(seenPath, "utf8").endsWith("}"));
   await page.screenshot({ path: picture });
 } finally {

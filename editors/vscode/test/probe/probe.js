@@ -69,4 +69,20 @@ async function walk(seen) {
   format.set(uri, layout);
   await vscode.workspace.applyEdit(format);
   seen.text = document.getText();
+
+  // The panel beside the text: the page says when it has looked at it.
+  const reached = (step) => until(`the page after "${step}"`, () => fs.existsSync(`${process.env.CRENATE_PROBE}.${step}`));
+  const step = (name) => fs.writeFileSync(`${process.env.CRENATE_PROBE}.step`, name);
+  const editor = vscode.window.activeTextEditor;
+  const cursor = place("crystal tern", 9);
+  editor.selection = new vscode.Selection(cursor, cursor);
+  await vscode.commands.executeCommand("crenate.showPicture");
+  step("opened");
+  await reached("opened");
+  await editor.edit((builder) => builder.insert(place("layer", 0), "bands 6\n  "));
+  step("typed");
+  await reached("typed");
+  await editor.edit((builder) => builder.replace(new vscode.Range(place("bands 6"), place("bands 6", 7)), "bands 6 nm"));
+  step("broken");
+  await reached("broken");
 }
