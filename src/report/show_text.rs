@@ -343,6 +343,14 @@ pub fn margin(target: &Assessment, trade: &Trade) -> Option<String> {
     })
 }
 
+/// How far the worst value is inside or outside of its limits, as [`margin`] tells it; `None` for a class or kind of gap.
+#[must_use]
+pub fn worst_margin(target: &Assessment, worst: f64, trade: &Trade) -> Option<String> {
+    let mut there = target.clone();
+    there.value.as_mut()?.value = worst;
+    margin(&there, trade)
+}
+
 /// How far the value is inside its limits; negative outside.
 #[must_use]
 pub fn spare(target: &Assessment) -> Option<f64> {

@@ -129,7 +129,10 @@ impl<'a> View<'a> {
             _ => None,
         };
         let word = statement.word.of(&self.entry.section.text);
-        let card = card.or_else(|| term::statement(word))?;
+        let mut card = card.or_else(|| term::statement(word))?;
+        if self.entry.section.kind == SectionKind::Material {
+            number::field(self, word, &mut card);
+        }
         Some((statement.span, card))
     }
 

@@ -59,6 +59,22 @@ pub fn named(view: &View<'_>, reference: &Reference) -> Option<Card> {
     Some(card)
 }
 
+/// What moves with the field of this material that a statement's word gives.
+pub fn field(view: &View<'_>, word: &str, card: &mut Card) {
+    let is_field = |parameter: &&Parameter| {
+        matches!(&parameter.kind, ParameterKind::Field(_, field) if field == word)
+            && view.holds(&parameter.place)
+    };
+    let own = view.section.parameters.iter();
+    let others = view
+        .file
+        .crystals(&[])
+        .flat_map(|(_, crystal)| crystal.parameters.iter());
+    if let Some(parameter) = own.chain(others).find(is_field) {
+        describe(view, parameter, card);
+    }
+}
+
 /// The smallest parameter at the view's place: the section's own, or one of a crystal that takes it from here.
 fn touched(view: &View<'_>) -> Option<Parameter> {
     let near = |parameter: &&Parameter| {

@@ -37,7 +37,10 @@ pub fn required(view: &View<'_>, statement: &Statement) -> Option<Card> {
         card.row(["margin".to_owned(), margin]);
     }
     if let Some(worst) = target.worst {
-        let told = show_text::worst_value(target, worst, &trade);
+        let mut told = show_text::worst_value(target, worst, &trade);
+        if let Some(margin) = show_text::worst_margin(target, worst, &trade) {
+            told = format!("{told}, {margin}");
+        }
         card.row(["at worst".to_owned(), told]);
         corner(view, crystal, target, &mut card);
     }
