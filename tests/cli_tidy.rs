@@ -3,7 +3,16 @@
 
 mod cli;
 
+use std::path::{Path, PathBuf};
+use std::sync::{Arc, OnceLock};
+
 use cli::{Folder, run, run_with_input, stderr, stdout};
+use crenate::model::{FileSource, ReadFailure};
+use crenate::report::analyst::{Analyst, Request};
+use crenate::report::tidy::tidy;
+use crenate::rules::Tier;
+use crenate::syntax::{Tree, read};
+use proptest::prelude::*;
 
 const LOOSE: &str = "crystal tern\n\n\n mass   0.07 me#light\n layer 8 nm at 0 meV\n";
 const NEAT: &str = "crystal tern\n\n  mass      0.07 me  #light\n  layer     8 nm at 0 meV\n";
@@ -67,4 +76,152 @@ fn the_examples_are_tidy() {
         (output.status.code(), stdout(&output)),
         (Some(0), String::new())
     );
+}
+
+/// A sound text with statements of many kinds.
+const SOUND: &str = r#"
+let well = 5.4 nm # the well
+# The well.
+material basin
+  mass 0.067 me
+  edge 0 meV ± 2 meV
+material wall like basin
+  edge 235 meV
+  source "made up,  with # two blanks"
+# One cell.
+crystal tern
+  layer well of basin
+  layer 2.6 nm ± 0.1 nm of wall
+  require gap 1 >= 40 meV
+crystal pair
+  mass 0.5 me
+  lattice chain \
+    1.2 nm
+  cosine 1 = 300 meV phase 90 deg
+  waive narrow-gap because "not  here"
+"#;
+
+/// Lines that cannot be read.
+const UNREADABLE: [&str; 5] = [
+    "flavour   very  strange",
+    "layer  5 nm   off basin",
+    "mass \"half  a string",
+    "x  =  3,  4",
+    "<<<<<<<  ours",
+];
+
+struct One(String);
+
+impl FileSource for One {
+    fn tree(&self, _: &Path) -> Result<Arc<Tree>, ReadFailure> {
+        Ok(Arc::new(read(&self.0)))
+    }
+
+    fn bytes(&self, _: &Path) -> Result<Arc<[u8]>, ReadFailure> {
+        Err(ReadFailure::NotFound)
+    }
+
+    fn inside(&self, _: &Path) -> bool {
+        true
+    }
+}
+
+/// What a text means: what is found in it, and the bands of its crystals to the last bit.
+fn meaning(text: &str) -> Vec<String> {
+    static ANALYST: OnceLock<Analyst> = OnceLock::new();
+    let path = PathBuf::from("/a.cren");
+    let analysis = ANALYST.get_or_init(Analyst::default).analyse(&Request {
+        source: &One(text.to_owned()),
+        roots: std::slice::from_ref(&path),
+        depth: Tier::Bands,
+        cancel: &|| false,
+    });
+    let file = analysis.file(&path).unwrap();
+    let findings = file.findings.iter();
+    let mut told: Vec<String> = findings
+        .map(|finding| format!("{}: {}", finding.rule, finding.message))
+        .collect();
+    for (section, crystal) in file.crystals(&[]) {
+        told.push(format!("{}: {:?}", crystal.name, section.solution()));
+        let targets = section.targets.iter();
+        told.extend(targets.map(|target| format!("{:?} {:?}", target.state, target.worst)));
+    }
+    told
+}
+
+/// A line with other blanks between its words, strings and comments as they were.
+fn respaced(line: &str, blanks: &[&str]) -> String {
+    let mut text = String::new();
+    let (mut quoted, mut comment) = (false, false);
+    let mut next = blanks.iter().cycle();
+    for character in line.trim_start().chars() {
+        quoted ^= character == '"';
+        comment |= character == '#' && !quoted;
+        match character {
+            ' ' if !quoted && !comment => text += next.next().unwrap(),
+            _ => text.push(character),
+        }
+    }
+    text
+}
+
+fn blanks() -> impl Strategy<Value = &'static str> {
+    prop::sample::select(vec![" ", "  ", "\t", "    ", " \t "])
+}
+
+/// The sound text, line by line laid out in another way, with lines that cannot be read between.
+fn loose() -> impl Strategy<Value = (String, Vec<&'static str>)> {
+    let count = SOUND.lines().count();
+    let line = (
+        prop::sample::select(vec!["", " ", "\t", "        "]),
+        prop::collection::vec(blanks(), 1..4),
+        prop::sample::select(vec!["", "", "", "\n", "\n\n\n", "  "]),
+        prop::option::weighted(0.06, prop::sample::select(UNREADABLE.to_vec())),
+    );
+    let lines = prop::collection::vec(line, count);
+    (lines, any::<bool>()).prop_map(|(lines, windows)| {
+        let mut text = String::new();
+        let mut unreadable = Vec::new();
+        for (line, (indent, blanks, tail, more)) in SOUND.lines().zip(lines) {
+            let continues = line.ends_with('\\');
+            text += &format!("{indent}{}", respaced(line, &blanks));
+            text += "\n";
+            if !continues {
+                text += tail;
+                text += if tail == "  " { "\n" } else { "" };
+                if let Some(more) = more {
+                    text += &format!("{indent}{more}\n");
+                    unreadable.push(more);
+                }
+            }
+        }
+        let text = if windows {
+            text.replace('\n', "\r\n")
+        } else {
+            text
+        };
+        (text, unreadable)
+    })
+}
+
+proptest! {
+    #![proptest_config(ProptestConfig { cases: 96, failure_persistence: None, ..ProptestConfig::default() })]
+
+    #[test]
+    fn tidying_comes_to_rest_and_changes_no_meaning((text, unreadable) in loose()) {
+        let tidied = tidy(&read(&text));
+        prop_assert_eq!(&tidy(&read(&tidied)), &tidied);
+        prop_assert_eq!(meaning(&tidied), meaning(&text));
+        for line in unreadable {
+            prop_assert!(tidied.lines().any(|tidy| tidy.trim() == line), "{line} is not in\n{tidied}");
+        }
+        let plain = |text: &str| text.split_whitespace().collect::<String>();
+        prop_assert_eq!(plain(&tidied), plain(&text));
+    }
+
+    #[test]
+    fn any_text_comes_to_rest(text in "(crystal |material |layer |\"|#|\\\\|\n|\r\n|\r|[ \t]|5 nm|of |é|\u{feff}|×|let a = 2){0,40}") {
+        let tidied = tidy(&read(&text));
+        prop_assert_eq!(&tidy(&read(&tidied)), &tidied);
+    }
 }

@@ -44,7 +44,8 @@ pub fn tidy(tree: &Tree) -> String {
     let mut rows = Vec::new();
     for entry in &tree.entries {
         for line in &entry.section.lines {
-            add_line(&entry.section, line, &mut rows);
+            let first = rows.is_empty();
+            add_line(&entry.section, line, first, &mut rows);
         }
     }
     let mut rows = spaced(rows);
@@ -65,7 +66,7 @@ fn line_end(text: &str) -> &'static str {
     if crlf { "\r\n" } else { "\n" }
 }
 
-fn add_line(section: &Section, line: &Line, rows: &mut Vec<Row>) {
+fn add_line(section: &Section, line: &Line, first_of_file: bool, rows: &mut Vec<Row>) {
     let whole = line.span.of(&section.text);
     let physical = physical_lines(whole);
     let heading = !section.heading.is_empty()
@@ -78,7 +79,13 @@ fn add_line(section: &Section, line: &Line, rows: &mut Vec<Row>) {
     for (number, text) in physical.iter().enumerate() {
         let first = number == 0;
         let margin = section.kind == SectionKind::Preamble || heading;
-        let text = text.trim_start_matches('\u{feff}');
+        // A byte-order mark is one only at the very start.
+        let mark = if first_of_file && first {
+            text.strip_prefix('\u{feff}')
+        } else {
+            None
+        };
+        let text = mark.unwrap_or(text);
         let (content, comment) = split_comment(text);
         let content = match readable {
             true => single_blanks(content),
