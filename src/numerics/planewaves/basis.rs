@@ -19,9 +19,12 @@ pub struct Waves<'a> {
     /// (Σ |V(G)|²)^½ over the components looked at, G ≠ 0: the size of the potential.
     pub(super) swing: f64,
     /// The components other than V(0), where they end and are few.
-    pub(super) few: Option<Vec<([i32; 3], Complex<f64>)>>,
+    pub(super) few: Option<Vec<Component>>,
     table: Mutex<Option<Arc<Table>>>,
 }
+
+/// An index and V there.
+pub(super) type Component = ([i32; 3], Complex<f64>);
 
 /// V(G)·e^{iG·τ} on a box of indices, τ the origin of inversion (0 where there is none).
 #[derive(Debug)]
@@ -205,7 +208,7 @@ fn few(dimension: usize) -> f64 {
 
 /// The components that symmetry is judged by: all within the radius of a finite potential, else the shortest few
 /// hundred. By rising |G|.
-fn sample(frame: &Frame, potential: &Potential) -> Result<Vec<([i32; 3], Complex<f64>)>, Error> {
+fn sample(frame: &Frame, potential: &Potential) -> Result<Vec<Component>, Error> {
     let few = few(frame.dimension);
     let cut = match potential.decay {
         Decay::Finite { radius } => {

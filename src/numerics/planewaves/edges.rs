@@ -233,6 +233,8 @@ impl Waves<'_> {
                 waves: self,
                 target,
                 basis: self.basis(start, plan.cut),
+                centre: start,
+                cut: plan.cut,
                 count: plan.count,
                 spacing,
                 budget,
@@ -272,7 +274,7 @@ impl Waves<'_> {
         loop {
             let point = plan.solved.at(self, spot.k, cut, plan.count, budget)?;
             let (levels, predictions) = (&point.levels, &point.predictions);
-            let polished = self.polish(target, &mut spot, &point, &mut tensors, budget)?;
+            let polished = self.polish(target, &mut spot, &point, plan, &mut tensors, budget)?;
             let mut value = self.judge(
                 target,
                 levels,
@@ -297,7 +299,7 @@ impl Waves<'_> {
                 || (plan.tolerance.is_none() && lower.is_some())
                 || lower_is_rounding(predictions, plan, masses)
             {
-                let tensor = self.mass_of(&tensors, &levels, target, &value);
+                let tensor = self.mass_of(&tensors, levels, target, &value);
                 return Ok(Found {
                     spot,
                     target,
@@ -317,6 +319,7 @@ impl Waves<'_> {
         target: Target,
         spot: &mut Spot,
         point: &Point,
+        plan: &Plan,
         tensors: &mut Vec<Tensor>,
         budget: &Budget,
     ) -> Result<f64, Error> {
@@ -332,6 +335,8 @@ impl Waves<'_> {
                 waves: self,
                 target,
                 basis: point.basis.clone(),
+                centre: levels.k,
+                cut: plan.cut,
                 count: levels.energies.len(),
                 spacing: [0.0; 3],
                 budget,
@@ -357,7 +362,7 @@ impl Waves<'_> {
             spot.seat = Seat::Creased(step.gain.min(unit));
             return Ok(0.0);
         }
-        let moved = self.frame.from_axes(step.parts);
+        let moved = self.frame.off_axes(step.parts);
         spot.k = std::array::from_fn(|i| spot.k[i] + moved[i]);
         Ok(step.gain)
     }

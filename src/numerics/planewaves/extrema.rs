@@ -97,14 +97,21 @@ pub(super) fn distance(energies: &[f64], level: usize) -> f64 {
 
 /// Levels closer than this share of the natural unit are searched as crossings.
 const APART: f64 = 1e-5;
+/// Rounds of the pattern search: forty halvings, and as many moves.
+const ROUNDS: usize = 80;
 /// Differences below this share of the natural unit are rounding.
 const ROUNDING: f64 = 1e-13;
 
-/// A search on one basis.
+/// A search on one basis, which must not be left behind: it serves only near where it is centred.
+#[derive(Clone)]
 pub(super) struct Search<'w, 'a> {
     pub waves: &'w Waves<'a>,
     pub target: Target,
     pub basis: Basis,
+    /// Where the basis is centred.
+    pub centre: [f64; 3],
+    /// Its cut.
+    pub cut: f64,
     /// Levels to solve for.
     pub count: usize,
     /// A step of the mesh along each reciprocal vector.
@@ -143,28 +150,56 @@ impl Search<'_, '_> {
 
     /// The extremum that a start leads to.
     pub fn run(&self, start: [f64; 3]) -> Result<Spot, Error> {
+        let mut search = self.clone();
+        let mut best: Option<Spot> = None;
         let mut k = start;
-        // A crossing may lie on the way, so the two searches may take turns, a few times.
-        for _ in 0..4 {
-            let levels = self.solve(k, true)?;
-            if self.target.simple(&levels.energies, APART * self.unit()) {
-                match self.newton(levels)? {
+        // A crossing may lie on the way, or the way may lead off this basis, so searches take turns, a few times.
+        for _ in 0..8 {
+            if search.drifted(k) {
+                search.basis = self.waves.basis(k, self.cut);
+                search.centre = k;
+            }
+            let levels = search.solve(k, true)?;
+            let value = self.target.value(&levels.energies);
+            if let Some(best) = best.filter(|best| value >= best.value) {
+                // Only the old basis promised more.
+                return Ok(best);
+            }
+            best = Some(Spot {
+                k,
+                value,
+                seat: Seat::Smooth,
+            });
+            if search.simple(&levels) {
+                match search.newton(levels)? {
                     Ok(spot) => return Ok(spot),
-                    Err(crossing) => k = crossing,
+                    Err(left) => k = left,
+                }
+                if search.drifted(k) {
+                    continue;
                 }
             }
-            let spot = self.creep(k)?;
-            let ends = self.solve(spot.k, false)?;
-            let simple = self.target.simple(&ends.energies, APART * self.unit());
-            if spot.seat == Seat::Pinned || !simple {
+            let spot = search.creep(k)?;
+            let ends = search.solve(spot.k, false)?;
+            let done = spot.seat == Seat::Pinned || !search.simple(&ends);
+            if done && !search.drifted(spot.k) {
                 return Ok(spot);
             }
             k = spot.k;
         }
-        self.creep(k)
+        best.ok_or(Error::NotFinite)
     }
 
-    /// Newton's search; the inner error is where it met a crossing, or did not settle.
+    fn simple(&self, levels: &Levels) -> bool {
+        self.target.simple(&levels.energies, APART * self.unit())
+    }
+
+    /// Whether a wave vector is farther from the basis's centre than a step of the mesh and a half.
+    fn drifted(&self, k: [f64; 3]) -> bool {
+        (0..3).any(|i| (k[i] - self.centre[i]).abs() > 1.5 * self.spacing[i] + 1e-12)
+    }
+
+    /// Newton's search; the inner error is where it met a crossing, left the basis, or did not settle.
     fn newton(&self, start: Levels) -> Result<Result<Spot, [f64; 3]>, Error> {
         let frame = &self.waves.frame;
         let unit = self.unit();
@@ -190,7 +225,7 @@ impl Search<'_, '_> {
             let mut better = None;
             for halving in 0..8 {
                 let share = 0.5f64.powi(halving);
-                let moved = frame.from_axes(step.parts.map(|x| x * share));
+                let moved = frame.off_axes(step.parts.map(|x| x * share));
                 let tries = if step.saddle {
                     vec![1.0, -1.0]
                 } else {
@@ -213,7 +248,7 @@ impl Search<'_, '_> {
                 let flat = step.gain <= 1e-9 * unit;
                 return Ok(if flat { Ok(spot) } else { Err(spot.k) });
             };
-            if !self.target.simple(&next.energies, APART * unit) {
+            if !self.simple(&next) || self.drifted(next.k) {
                 return Ok(Err(next.k));
             }
             levels = next;
@@ -223,13 +258,17 @@ impl Search<'_, '_> {
 
     /// The search by shrinking patterns.
     fn creep(&self, start: [f64; 3]) -> Result<Spot, Error> {
-        let floor = 0.1 * ROUNDING * self.unit();
+        // Well above the rounding of a level, or noise would lead the search about.
+        let floor = 10.0 * ROUNDING * self.unit();
         let mut k = start;
         let mut value = self.target.value(&self.solve(k, false)?.energies);
         let mut directions = self.directions(start, true);
         let (mut step, mut moved, mut failures, mut rise) = (0.5, false, 0, f64::INFINITY);
         let mut turn = 0;
-        while step > 1e-9 {
+        for _ in 0..ROUNDS {
+            if step <= 1e-9 || self.drifted(k) {
+                break;
+            }
             let mut best = (value - floor, None);
             rise = f64::INFINITY;
             for direction in &directions {

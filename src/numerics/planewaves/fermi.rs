@@ -4,7 +4,7 @@
 //! E′ + (E′ − E)/((M′/M)² − 1). The whole of that last term is the stated error, with what the cut-off left uncertain.
 
 use super::basis::Waves;
-use super::states::States;
+use super::states::{Filled, States};
 use super::{Budget, Error, Estimate};
 
 /// A Fermi level.
@@ -37,54 +37,56 @@ impl Waves<'_> {
             2 => &[12, 24, 48, 96, 192],
             _ => &[6, 12, 24, 32, 48],
         };
-        let mut last: Option<(f64, Fermi, States)> = None;
+        let mut last: Option<(f64, Filled)> = None;
         let mut best: Option<Fermi> = None;
         for size in sizes {
             let states = match self.enough_states(levels, *size, cut, budget) {
                 Err(Error::BudgetSpent) if best.is_some() => break,
                 other => other?,
             };
-            let raw = states.fill(levels);
-            if let Some((coarser, lower, _)) = &last {
-                let factor = 1.0 / ((*size as f64 / coarser).powi(2) - 1.0);
-                let further = |fine: f64, coarse: f64, cut_off: f64| {
-                    let change = (fine - coarse) * factor;
-                    Estimate {
-                        value: fine + change,
-                        error: change.abs() + cut_off + 1e-13 * self.frame.unit(),
-                    }
-                };
-                let level = further(
-                    raw.level.value,
-                    lower.level.value,
-                    states.error_below(levels),
-                );
-                // Blöchl's correction has taken the second order off the energy already.
-                // Two meshes may agree by chance, so a quarter of that correction counts too.
-                let change =
-                    (raw.energy.value - lower.energy.value).abs() + 0.25 * raw.energy.error;
-                let energy = Estimate {
-                    value: raw.energy.value,
-                    error: change + states.error_below(levels) * levels.max(1.0),
-                };
-                let density = Estimate {
-                    value: raw.density.value,
-                    error: raw.density.error + (raw.density.value - lower.density.value).abs(),
-                };
-                let settled = level.error <= tolerance;
-                best = Some(Fermi {
-                    level,
-                    density,
-                    energy,
-                    settled,
-                });
+            let filled = states.fill(levels);
+            let cut_off = states.error_below(levels);
+            if let Some((coarser, lower)) = last {
+                let found = self.refined(&filled, &lower, *size as f64 / coarser, cut_off, levels);
+                let settled = found.level.error <= tolerance;
+                best = Some(Fermi { settled, ..found });
                 if settled {
                     break;
                 }
             }
-            last = Some((*size as f64, raw, states));
+            last = Some((*size as f64, filled));
         }
         best.ok_or(Error::BudgetSpent)
+    }
+
+    /// What two meshes tell, `finer` with `ratio` times the points along an edge of `coarser`.
+    fn refined(
+        &self,
+        finer: &Filled,
+        coarser: &Filled,
+        ratio: f64,
+        cut_off: f64,
+        levels: f64,
+    ) -> Fermi {
+        let change = (finer.level - coarser.level) / (ratio * ratio - 1.0);
+        // Blöchl's correction has taken the second order off the energy. Two meshes may agree by chance, so a quarter of
+        // that correction counts too.
+        let energy_change = (finer.energy - coarser.energy).abs() + 0.25 * finer.curved.abs();
+        Fermi {
+            level: Estimate {
+                value: finer.level + change,
+                error: change.abs() + cut_off + 1e-13 * self.frame.unit(),
+            },
+            density: Estimate {
+                value: finer.density.value,
+                error: finer.density.error + (finer.density.value - coarser.density.value).abs(),
+            },
+            energy: Estimate {
+                value: finer.energy,
+                error: energy_change + cut_off * levels.max(1.0),
+            },
+            settled: false,
+        }
     }
 
     /// A cut at which the levels up to the filling are known to half the tolerance, or the largest that is affordable.
@@ -124,7 +126,7 @@ impl Waves<'_> {
         let mut bands = levels.ceil() as usize + 1;
         for _ in 0..6 {
             let states = self.states(bands, size, cut, budget)?;
-            let level = states.fill(levels).level.value;
+            let level = states.fill(levels).level;
             // The first band left out may begin below the last one's top, not below its own bottom.
             let deepest = states
                 .simplices

@@ -169,7 +169,7 @@ impl Frame {
     }
 
     /// Fractions of the bᵢ of a wave vector given on the axes.
-    pub fn from_axes(&self, parts: [f64; 3]) -> [f64; 3] {
+    pub fn off_axes(&self, parts: [f64; 3]) -> [f64; 3] {
         let wave = std::array::from_fn(|x| (0..3).map(|i| parts[i] * self.axes[i][x]).sum());
         self.fractions(wave)
     }
@@ -191,14 +191,6 @@ impl Frame {
     pub fn square(&self, k: [f64; 3]) -> f64 {
         let wave = self.wave(k);
         dot(wave, wave)
-    }
-
-    /// How far index i must reach to hold every G with |G| ≤ `radius`: |nᵢ| = |G·aᵢ|/2π ≤ |G||aᵢ|/2π.
-    pub fn reach(&self, radius: f64) -> [i32; 3] {
-        std::array::from_fn(|i| {
-            let length = dot(self.direct[i], self.direct[i]).sqrt();
-            (radius * length / (2.0 * PI) + 1e-9).floor().min(1e6) as i32
-        })
     }
 
     /// All n with |k+G|² ≤ `cut` (rounding forgiven), by rising |k+G|², equal ones by their indices.

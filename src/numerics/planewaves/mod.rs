@@ -21,7 +21,8 @@
 //!
 //! Fails, with a typed error: flat lattices, components that are not finite, a spent budget, cancellation.
 
-#![allow(clippy::indexing_slicing)]
+// Kernels index by plane wave, level and axis, often several arrays at once.
+#![allow(clippy::indexing_slicing, clippy::needless_range_loop)]
 
 mod basis;
 mod edges;

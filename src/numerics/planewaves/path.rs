@@ -30,7 +30,13 @@ pub fn path(
     budget: &Budget,
 ) -> Result<Vec<PathPoint>, Error> {
     let waves = Waves::new(lattice, potential)?;
-    if points.iter().flatten().any(|x| !(x.abs() <= FARTHEST)) || per_segment == 0 || bands == 0 {
+    if points
+        .iter()
+        .flatten()
+        .any(|x| !x.is_finite() || x.abs() > FARTHEST)
+        || per_segment == 0
+        || bands == 0
+    {
         return Err(Error::NotFinite);
     }
     let stops = waves.stops(points, per_segment);

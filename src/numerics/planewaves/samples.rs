@@ -136,7 +136,7 @@ fn difference(
                 0
             }
         });
-        if n.iter().any(|x| *x == half) {
+        if n.contains(&half) {
             // The coarse grid cannot tell ±N/2 apart: what lies there was folded.
             worst = worst.max(double[place(dimension, 2 * size, n)].norm());
             continue;

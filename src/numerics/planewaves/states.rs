@@ -14,7 +14,6 @@
 //! stated error, the whole of that last extrapolation, is then less generous.
 
 use super::basis::Waves;
-use super::fermi::Fermi;
 use super::mesh::Mesh;
 use super::{Budget, Error, Estimate};
 use rustc_hash::FxHashMap;
@@ -29,6 +28,17 @@ pub struct States {
     range: (f64, f64),
     /// What the cut-off left uncertain, band by band.
     errors: Vec<f64>,
+}
+
+/// The levels of one mesh filled.
+#[derive(Clone, Copy, Debug)]
+pub(super) struct Filled {
+    pub level: f64,
+    pub density: Estimate,
+    /// With Blöchl's correction.
+    pub energy: f64,
+    /// That correction.
+    pub curved: f64,
 }
 
 impl Waves<'_> {
@@ -202,7 +212,7 @@ impl States {
     }
 
     /// The level at which this many levels per cell are filled; the lower edge where a range of energies does.
-    pub(super) fn fill(&self, levels: f64) -> Fermi {
+    pub(super) fn fill(&self, levels: f64) -> Filled {
         let (mut low, mut high) = self.range;
         let slack = 1e-12 * levels;
         for _ in 0..200 {
@@ -216,18 +226,11 @@ impl States {
                 high = middle;
             }
         }
-        Fermi {
-            level: Estimate {
-                value: high,
-                error: self.error_below(levels),
-            },
+        Filled {
+            level: high,
             density: self.smooth_density(high),
-            // For the while of a comparison: the size of the correction.
-            energy: Estimate {
-                value: self.energy(high),
-                error: self.curved(high).abs(),
-            },
-            settled: false,
+            energy: self.energy(high),
+            curved: self.curved(high),
         }
     }
 }
