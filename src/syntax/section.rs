@@ -79,7 +79,12 @@ fn read_line(
         return Err(stray(line.offset + token.start, token.text));
     }
     line.hold_bracket_limit()?;
-    if content.bytes().filter(|byte| matches!(byte, b'(' | b'^')).count() > SHALLOW {
+    if content
+        .bytes()
+        .filter(|byte| matches!(byte, b'(' | b'^'))
+        .count()
+        > SHALLOW
+    {
         return stacker::maybe_grow(STACK_FOR_DEEP, STACK_FOR_DEEP, || {
             read_statement(section, text, place, line, (word, rule), heading)
         });

@@ -28,7 +28,9 @@ impl<'w> Evaluator<'w> {
             );
         }
         self.depth += 1;
-        let result = stacker::maybe_grow(STACK_LEFT, STACK_MORE, || self.dispatch(expression, context));
+        let result = stacker::maybe_grow(STACK_LEFT, STACK_MORE, || {
+            self.dispatch(expression, context)
+        });
         self.depth -= 1;
         result
     }
