@@ -103,7 +103,7 @@ pub struct Solution {
 pub enum Unsolved {
     /// The model has errors.
     BrokenModel,
-    /// What was asked for is not made in this dimension (pictures are of one).
+    /// This dimension is not solved yet.
     Dimension(usize),
     /// The budget was spent before the numbers settled.
     NotConverged(String),
