@@ -12,6 +12,9 @@ use super::assess::{Assessor, has_exact_slopes};
 use super::probe::{Measures, Probe, Reading, Side, margin_of};
 use super::{Assessment, Cancelled, Rebuild, Solver};
 
+/// Derivatives by parameter.
+type Slopes = Vec<(ParameterId, f64)>;
+
 /// How far a number may go, as parts of what it is.
 const BOUNDS: [f64; 2] = [0.3, 3.0];
 /// One step of the search goes no farther than this part of the number.
@@ -186,7 +189,7 @@ fn margin(
     corner: &Corner,
     side: Option<Side>,
     with_slopes: bool,
-) -> Option<(Side, f64, Vec<(ParameterId, f64)>)> {
+) -> Option<(Side, f64, Slopes)> {
     let (draws, point): (Vec<ParameterId>, Vec<f64>) = corner.iter().copied().unzip();
     let probe = Probe {
         assessor,

@@ -265,6 +265,7 @@ fn plain(value: f64, places: i32) -> String {
 }
 
 #[cfg(test)]
+#[allow(clippy::indexing_slicing)]
 mod tests {
     use super::*;
 

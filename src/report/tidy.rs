@@ -9,7 +9,7 @@
 //!
 //! Nothing else changes: no word, number or string. A line that cannot be read keeps its content as it is.
 
-use crate::syntax::{Line, Section, SectionKind, Tree};
+use crate::syntax::{Line, Section, SectionKind, Tree, read};
 
 /// What follows a statement's first word stands this many characters behind its first.
 const WORD_COLUMN: usize = 10;
@@ -56,7 +56,11 @@ pub fn tidy(tree: &Tree) -> String {
         text += &line;
         text += end;
     }
-    text
+    // A stray mark that the layout brings to the very start would be read as a byte-order mark: it goes.
+    match text.strip_prefix('\u{feff}') {
+        Some(rest) => tidy(&read(rest.trim_start_matches('\u{feff}'))),
+        None => text,
+    }
 }
 
 /// The terminator that the file begins with; a lone CR becomes LF.

@@ -537,7 +537,7 @@ fn dropped_and_doubled(text: &str, line: &Line) -> [(String, &'static str); 2] {
     ]
 }
 
-fn layers_of<'l>(all: &'l [Line], heading: Option<usize>) -> impl Iterator<Item = &'l Line> {
+fn layers_of(all: &[Line], heading: Option<usize>) -> impl Iterator<Item = &Line> {
     all.iter()
         .filter(move |line| line.heading == heading && line.word == "layer")
 }
@@ -782,7 +782,8 @@ fn stale(models: &Models) -> Vec<Fault> {
     for (file, (name, text)) in models.files.iter().enumerate() {
         let crystals = statements(text).iter().any(|line| line.word == "crystal");
         if name.ends_with(".cren") && crystals {
-            for old in ["material old_bank\n  mass 0.09 me\n  edge 210 meV\n"] {
+            {
+                let old = "material old_bank\n  mass 0.09 me\n  edge 210 meV\n";
                 let lines = text.lines().count();
                 faults.push(Fault {
                     file,
