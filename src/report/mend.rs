@@ -2,7 +2,7 @@
 //!
 //! Mending goes by rounds: the findings of a text give fixes, those that do not
 //! touch each other are applied, and the text is looked at again. It ends where
-//! nothing is left to apply, where a text comes back, or after [`ROUNDS`] rounds.
+//! nothing is left to apply, where a text comes back, or after `ROUNDS` rounds.
 //!
 //! *Invariant*: only what a fix calls safe is applied, and only in the file that
 //! the finding stands in.
