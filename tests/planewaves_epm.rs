@@ -83,12 +83,6 @@ fn endless<'a>() -> Budget<'a> {
     Budget::new(&|| false, 4000, 1_000_000)
 }
 
-/// Without optimisation the whole set takes many minutes: then the larger cut-offs, the tight tolerances and the whole zone
-/// are checked for two materials, one with an inversion centre and one without; with `--release` for all fourteen.
-fn is_light_on(name: &str) -> bool {
-    cfg!(debug_assertions) && name != "Si" && name != "GaAs"
-}
-
 /// Form factors of Cohen & Bergstresser, Phys. Rev. 141, 789 (1966), Table II; levels computed by
 /// `tests/reference/epm_generate.py` at the same cut-offs.
 #[test]
@@ -119,9 +113,6 @@ fn form_factor_models_agree_with_lapack_at_equal_cut_off() {
             if cut == "80" && name != "Si" && name != "GaAs" {
                 continue;
             }
-            if is_light_on(name) && cut.parse::<f64>().unwrap() > 20.0 {
-                continue;
-            }
             for (label, levels) in points.as_object().unwrap() {
                 let found = waves
                     .levels_at(point(label), 10, cut.parse().unwrap(), &budget)
@@ -149,9 +140,6 @@ fn stated_errors_hold_at_every_tolerance() {
     let rows = reference(include_str!("reference/epm_levels.json"));
     let mut used: Vec<(f64, String)> = Vec::new();
     for (name, row) in rows.as_object().unwrap() {
-        if is_light_on(name) {
-            continue;
-        }
         let form = numbers(&row["form"]);
         let components = zincblende(&form, row["a"].as_f64().unwrap());
         let waves = Waves::new(
@@ -201,9 +189,6 @@ const RYDBERG: f64 = 13.605693122990;
 fn form_factor_models_settle_inside_their_stated_errors() {
     let rows = reference(include_str!("reference/epm_levels.json"));
     for (name, row) in rows.as_object().unwrap() {
-        if is_light_on(name) {
-            continue;
-        }
         let a = row["a"].as_f64().unwrap();
         let electronvolt = unit(a) * RYDBERG;
         let form = numbers(&row["form"]);

@@ -136,7 +136,7 @@ impl Assessor<'_> {
         target: &Target,
         assessment: &mut Assessment,
     ) -> Result<(), Untested> {
-        let exact = has_exact_slopes(target);
+        let exact = self.has_exact_slopes(target);
         let mut least: Option<(Sample, Sample)> = None;
         for side in [Side::Lower, Side::Upper] {
             let found = probe.least_margin(side, exact, f64::NEG_INFINITY)?;
@@ -167,6 +167,24 @@ impl Assessor<'_> {
             }
         }
         Ok(())
+    }
+
+    /// Whether a target speaks only of quantities with exact derivatives.
+    pub fn has_exact_slopes(&self, target: &Target) -> bool {
+        let Wish::Compare { expression, .. } = &target.wish else {
+            return true;
+        };
+        let differenced = |quantity: &&Quantity| match quantity.kind {
+            QuantityKind::MassBottom(_) | QuantityKind::MassTop(_) | QuantityKind::Hopping(..) => {
+                true
+            }
+            // A metal's, past one dimension, comes from sums over the whole zone.
+            QuantityKind::Fermi => self
+                .at(quantity.of, &Setting::default())
+                .is_some_and(|crystal| crystal.dimension > 1),
+            _ => false,
+        };
+        !expression.quantities().iter().any(differenced)
     }
 
     /// The tolerances that reach any crystal that a target speaks of.
@@ -327,23 +345,6 @@ fn limits(reading: &Reading) -> (Option<Measured>, Option<Measured>) {
         reading.lower.as_ref().map(|leaf| leaf.value),
         reading.upper.as_ref().map(|leaf| leaf.value),
     )
-}
-
-/// Whether a target speaks only of quantities with exact derivatives.
-pub(super) fn has_exact_slopes(target: &Target) -> bool {
-    let differenced = |kind: &QuantityKind| {
-        matches!(
-            kind,
-            QuantityKind::MassBottom(_) | QuantityKind::MassTop(_) | QuantityKind::Hopping(..)
-        )
-    };
-    match &target.wish {
-        Wish::Compare { expression, .. } => !expression
-            .quantities()
-            .iter()
-            .any(|quantity| differenced(&quantity.kind)),
-        _ => true,
-    }
 }
 
 /// Whether a value is within its limits, outside, or too near to tell.

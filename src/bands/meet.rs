@@ -8,7 +8,7 @@ use std::sync::Arc;
 
 use crate::model::{Crystal, CrystalRef, ParameterId, Setting};
 
-use super::assess::{Assessor, has_exact_slopes};
+use super::assess::Assessor;
 use super::probe::{Measures, Probe, Reading, Side, margin_of};
 use super::{Assessment, Cancelled, Rebuild, Solver};
 
@@ -62,7 +62,7 @@ impl Solver {
         numbers: &[(ParameterId, f64)],
         corner: &Corner,
     ) -> Option<Vec<f64>> {
-        let exact = wanted.exact()?;
+        let exact = wanted.exact(self)?;
         let (side, _, slopes) = {
             let assessor = wanted.assessor(self, wanted.crystal, wanted.rebuild);
             margin(&assessor, wanted.index, corner, None, exact)?
@@ -120,7 +120,7 @@ impl Solver {
         corner: &Corner,
         side: Side,
     ) -> Option<Point> {
-        let exact = wanted.exact()?;
+        let exact = wanted.exact(self)?;
         let at = |value: f64| {
             wanted.with((id, value), |crystal, rebuild| {
                 let assessor = wanted.assessor(self, crystal, rebuild);
@@ -144,8 +144,10 @@ impl Solver {
 }
 
 impl Wanted<'_> {
-    fn exact(&self) -> Option<bool> {
-        self.crystal.targets.get(self.index).map(has_exact_slopes)
+    fn exact(&self, solver: &Solver) -> Option<bool> {
+        let assessor = self.assessor(solver, self.crystal, self.rebuild);
+        let target = self.crystal.targets.get(self.index)?;
+        Some(assessor.has_exact_slopes(target))
     }
 
     fn assessor<'b>(

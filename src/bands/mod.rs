@@ -20,6 +20,14 @@ mod slopes;
 mod solve;
 mod types;
 mod worst;
+mod zone_cell;
+mod zone_field;
+mod zone_names;
+mod zone_quantity;
+mod zone_range;
+mod zone_shapes;
+mod zone_slopes;
+mod zone_solve;
 
 use std::sync::Arc;
 
@@ -33,6 +41,7 @@ pub use types::*;
 use assess::Assessor;
 use cache::Cache;
 use chain::{Chain, budget};
+use zone_solve::{Effort, zone_solution};
 
 /// Asked again and again during long work; `true` stops it.
 pub type Cancelled<'a> = dyn Fn() -> bool + Sync + 'a;
@@ -53,28 +62,43 @@ impl Solver {
         crystal: &Crystal,
         cancelled: &Cancelled<'_>,
     ) -> Result<Arc<Solution>, Unsolved> {
-        match crystal.dimension {
-            _ if crystal.broken => return Err(Unsolved::BrokenModel),
-            1 => {}
-            0 => return Err(Unsolved::BrokenModel),
-            dimension => return Err(Unsolved::Dimension(dimension)),
+        if let Some(unsolved) = impossible(crystal) {
+            return Err(unsolved);
         }
         let fingerprint = fingerprint::fingerprint(crystal);
         if let Some(answer) = self.cache.get(fingerprint) {
             return answer;
         }
-        let answer = solve::chain_solution(crystal, &budget(cancelled)).map(Arc::new);
+        let answer = match crystal.dimension {
+            1 => solve::chain_solution(crystal, &budget(cancelled)),
+            _ => zone_solution(crystal, Effort::Fine, cancelled),
+        }
+        .map(Arc::new);
         self.cache.put(fingerprint, &answer);
         answer
     }
 
     /// What is known of a crystal's bands without any work.
     pub fn known(&self, crystal: &Crystal) -> Option<Result<Arc<Solution>, Unsolved>> {
-        match crystal.dimension {
-            _ if crystal.broken => Some(Err(Unsolved::BrokenModel)),
-            1 => self.cache.get(fingerprint::fingerprint(crystal)),
-            0 => Some(Err(Unsolved::BrokenModel)),
-            dimension => Some(Err(Unsolved::Dimension(dimension))),
+        match impossible(crystal) {
+            Some(unsolved) => Some(Err(unsolved)),
+            None => self.cache.get(fingerprint::fingerprint(crystal)),
+        }
+    }
+
+    /// A quick answer with wider error bounds; the fine one where it is known, or as quick to have (one dimension).
+    ///
+    /// # Errors
+    /// [`Unsolved`] says why there is none.
+    pub fn solve_coarse(
+        &self,
+        crystal: &Crystal,
+        cancelled: &Cancelled<'_>,
+    ) -> Result<Arc<Solution>, Unsolved> {
+        match self.known(crystal) {
+            Some(answer) => answer,
+            None if crystal.dimension == 1 => self.solve(crystal, cancelled),
+            None => zone_solution(crystal, Effort::Coarse, cancelled).map(Arc::new),
         }
     }
 
@@ -89,6 +113,9 @@ impl Solver {
         cancelled: &Cancelled<'_>,
     ) -> Result<Vec<Sensitivity>, Unsolved> {
         self.solve(crystal, cancelled)?;
+        if crystal.dimension > 1 {
+            return zone_slopes::sensitivities(self, crystal, bands, cancelled);
+        }
         let budget = budget(cancelled);
         Chain::new(crystal, &budget)?.sensitivities(bands, &budget)
     }
@@ -126,7 +153,19 @@ impl Solver {
         points: usize,
         cancelled: &Cancelled<'_>,
     ) -> Result<Picture, Unsolved> {
+        if crystal.dimension > 1 {
+            return Err(Unsolved::Dimension(crystal.dimension));
+        }
         let solution = self.solve(crystal, cancelled)?;
         picture::picture(crystal, &solution, points, cancelled)
+    }
+}
+
+/// Why a crystal cannot be solved whatever the effort, if so.
+fn impossible(crystal: &Crystal) -> Option<Unsolved> {
+    match crystal.dimension {
+        _ if crystal.broken => Some(Unsolved::BrokenModel),
+        1..=3 => None,
+        _ => Some(Unsolved::BrokenModel),
     }
 }

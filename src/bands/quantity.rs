@@ -7,7 +7,9 @@ use crate::numerics;
 
 use super::chain::{Chain, budget, unsolved};
 use super::filling::Filled;
-use super::{Extremum, Feature, Measured, Solution, Solver, Unsolved, solve};
+use super::{
+    Extremum, Feature, Measured, Solution, Solver, Unsolved, solve, zone_quantity, zone_slopes,
+};
 
 /// Why a quantity has no value.
 #[derive(Clone, Debug, PartialEq, Eq)]
@@ -24,7 +26,7 @@ impl From<Unsolved> for Untested {
             Unsolved::Cancelled => Self::Cancelled,
             Unsolved::BrokenModel => because("the model has errors"),
             Unsolved::Dimension(dimension) => {
-                Self::Because(format!("bands in {dimension} dimensions are not solved"))
+                Self::Because(format!("this is not made in {dimension} dimensions"))
             }
             Unsolved::NotConverged(why) => {
                 Self::Because(format!("the bands are not converged: {why}"))
@@ -130,6 +132,9 @@ impl Evaluation<'_> {
     }
 
     fn level(&self, crystal: &Crystal, number: usize, k: &[f64]) -> Result<Measured, Untested> {
+        if crystal.dimension > 1 {
+            return zone_quantity::level(crystal, number, k, self.cancelled);
+        }
         let budget = budget(self.cancelled);
         let chain = Chain::new(crystal, &budget)?;
         let level = numerics::level(&chain.cell, number - 1, turn(k), &budget).map_err(unsolved)?;
@@ -137,6 +142,9 @@ impl Evaluation<'_> {
     }
 
     fn hopping(&self, crystal: &Crystal, number: usize, hop: &[i64]) -> Result<Measured, Untested> {
+        if crystal.dimension > 1 {
+            return zone_quantity::hopping(crystal, number, hop, self.cancelled);
+        }
         let budget = budget(self.cancelled);
         let chain = Chain::new(crystal, &budget)?;
         let cells = hop.first().map_or(0, |cells| cells.unsigned_abs());
@@ -159,6 +167,10 @@ impl Evaluation<'_> {
             QuantityKind::Width(number) => Feature::Width(*number),
             QuantityKind::Bottom(number) => Feature::Bottom(*number),
             QuantityKind::Top(number) => Feature::Top(*number),
+            QuantityKind::Level(number, k) if crystal.dimension > 1 => {
+                let slopes = zone_slopes::level_slopes(crystal, *number, k, self.cancelled)?;
+                return Ok(slopes);
+            }
             QuantityKind::Level(number, k) => {
                 return Ok(Chain::new(crystal, &budget)?.level_slopes(
                     *number,
@@ -171,6 +183,20 @@ impl Evaluation<'_> {
                 return Ok(Vec::new());
             }
         };
+        self.feature_slopes(crystal, feature)
+    }
+
+    fn feature_slopes(
+        &self,
+        crystal: &Crystal,
+        feature: Feature,
+    ) -> Result<Vec<(ParameterId, f64)>, Untested> {
+        if crystal.dimension > 1 {
+            let slopes =
+                zone_slopes::feature_slopes(self.solver, crystal, feature, self.cancelled)?;
+            return Ok(slopes);
+        }
+        let budget = budget(self.cancelled);
         Ok(Chain::new(crystal, &budget)?.feature_slopes(feature, &budget)?)
     }
 
@@ -180,10 +206,12 @@ impl Evaluation<'_> {
         crystal: &Crystal,
         solution: &Solution,
     ) -> Result<Vec<(ParameterId, f64)>, Untested> {
-        let budget = budget(self.cancelled);
-        let chain = Chain::new(crystal, &budget)?;
         match solve::filled(crystal) {
+            // Through the whole zone: differences, see `assess::has_exact_slopes`.
+            Some(Filled::Part(_)) if crystal.dimension > 1 => Ok(Vec::new()),
             Some(Filled::Part(part)) => {
+                let budget = budget(self.cancelled);
+                let chain = Chain::new(crystal, &budget)?;
                 let band = part.floor() as usize;
                 let share = part - part.floor();
                 // Levels fill from the bottom: at k = 0 in odd bands, at the zone edge in even ones.
@@ -191,8 +219,8 @@ impl Evaluation<'_> {
                 Ok(chain.level_slopes(band + 1, share * std::f64::consts::PI, &budget)?)
             }
             Some(Filled::Whole(whole)) => {
-                let top = chain.feature_slopes(Feature::Top(whole), &budget)?;
-                let bottom = chain.feature_slopes(Feature::Bottom(whole + 1), &budget)?;
+                let top = self.feature_slopes(crystal, Feature::Top(whole))?;
+                let bottom = self.feature_slopes(crystal, Feature::Bottom(whole + 1))?;
                 Ok(sum_slopes(&[(0.5, &top), (0.5, &bottom)]))
             }
             _ => Err(no_fermi(crystal, solution)),

@@ -75,7 +75,7 @@ pub(super) fn filled(crystal: &Crystal) -> Option<Filled> {
 }
 
 /// The gap above whole filled bands.
-fn gap_above(filled: Filled, gaps: &[Gap]) -> Option<&Gap> {
+pub(super) fn gap_above(filled: Filled, gaps: &[Gap]) -> Option<&Gap> {
     match filled {
         Filled::Whole(bands) => gaps.get(bands.checked_sub(1)?),
         _ => None,

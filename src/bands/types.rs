@@ -103,7 +103,7 @@ pub struct Solution {
 pub enum Unsolved {
     /// The model has errors.
     BrokenModel,
-    /// This dimension is not solved yet.
+    /// What was asked for is not made in this dimension (pictures are of one).
     Dimension(usize),
     /// The budget was spent before the numbers settled.
     NotConverged(String),
