@@ -110,17 +110,6 @@ impl ZoneCell<f64> {
         reach(&self.reciprocal, radius)
     }
 
-    /// How many reciprocal vectors are expected up to this length.
-    pub fn expected(&self, radius: f64) -> f64 {
-        let turn = radius / (2.0 * PI);
-        let ball = if self.vectors.len() == 2 {
-            PI * turn * turn
-        } else {
-            4.0 / 3.0 * PI * turn.powi(3)
-        };
-        ball * self.volume
-    }
-
     /// The length up to which this many reciprocal vectors are expected.
     pub fn radius_for(&self, count: f64) -> f64 {
         let ball = count / self.volume;

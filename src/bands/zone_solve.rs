@@ -22,12 +22,13 @@ pub(super) enum Effort {
     Coarse,
 }
 
-/// What the edges of a smooth potential are settled to, and of one with hard edges; in the largest |bᵢ|².
-const SETTLED: [f64; 2] = [1e-10, 1e-5];
+/// What edges are settled to, in the largest |bᵢ|²: where the components end, in two and three dimensions, and where
+/// they do not.
+const SETTLED: [f64; 3] = [1e-10, 1e-6, 1e-5];
 /// An answer whose edges are less certain than this, in the largest |bᵢ|², is none.
 const USELESS: f64 = 0.05;
 /// The Fermi level of a metal, in the largest |bᵢ|², in two and three dimensions.
-const FERMI: [f64; 2] = [1e-6, 1e-4];
+const FERMI: [f64; 2] = [1e-5, 3e-4];
 
 /// A crystal with its plane waves, and the unit |b|² of its tolerances.
 pub(super) struct Zone<'a> {
@@ -49,7 +50,7 @@ pub(super) fn zone_budget<'a>(
         (_, Effort::Coarse, _) => (420, 2_000),
         (2, Effort::Fine, true) => (700, 40_000),
         (2, Effort::Fine, false) => (1000, 40_000),
-        (_, Effort::Fine, true) => (700, 20_000),
+        (_, Effort::Fine, true) => (400, 20_000),
         (_, Effort::Fine, false) => (1000, 20_000),
     };
     // Room for as many bands as are asked for, up to where matrices take seconds each.
@@ -165,13 +166,13 @@ pub(super) fn zone_solution(
 impl Zone<'_> {
     /// What edges are settled to.
     pub fn tolerance(&self) -> f64 {
-        let [smooth, hard] = SETTLED;
-        self.unit
-            * if self.field.ends.is_some() {
-                smooth
-            } else {
-                hard
-            }
+        let [flat, solid, endless] = SETTLED;
+        let share = match (self.field.ends, self.field.dimension) {
+            (None, _) => endless,
+            (Some(_), 2) => flat,
+            (Some(_), _) => solid,
+        };
+        self.unit * share
     }
 
     /// An energy in joule; what a profile's grid missed counts as uncertain.

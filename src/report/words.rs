@@ -64,9 +64,7 @@ pub fn unsolved(why: &Unsolved) -> String {
     match why {
         Unsolved::BrokenModel => "its errors keep it from being solved".to_owned(),
         Unsolved::Dimension(dimension) => {
-            format!(
-                "read and checked; bands in {dimension} dimensions are not solved by this version"
-            )
+            format!("this is drawn of one dimension, and the crystal has {dimension}")
         }
         Unsolved::NotConverged(how) => format!("its numbers did not settle: {how}"),
         Unsolved::Cancelled => "the work was stopped".to_owned(),
