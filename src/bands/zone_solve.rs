@@ -46,8 +46,8 @@ pub(super) fn zone_budget<'a>(
     cancelled: &'a Cancelled<'a>,
 ) -> Budget<'a> {
     let (basis, solves) = match (field.dimension, effort, field.ends.is_some()) {
-        (2, Effort::Coarse, _) => (320, 3_000),
-        (_, Effort::Coarse, _) => (420, 2_000),
+        (2, Effort::Coarse, _) => (320, 8_000),
+        (_, Effort::Coarse, _) => (420, 8_000),
         (2, Effort::Fine, true) => (700, 40_000),
         (2, Effort::Fine, false) => (1000, 40_000),
         (_, Effort::Fine, true) => (400, 20_000),
