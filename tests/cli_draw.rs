@@ -37,7 +37,7 @@ fn a_crystal_is_drawn_and_another_dimension_said_to_be_none() {
     assert_eq!(stdout(&output), "pictures/a-tern.svg\n");
     assert!(stderr(&output).contains("a-floor"), "{}", stderr(&output));
     assert!(
-        stderr(&output).contains("2 dimensions"),
+        stderr(&output).contains("the crystal has 2"),
         "{}",
         stderr(&output)
     );

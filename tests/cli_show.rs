@@ -157,15 +157,19 @@ fn what_does_not_exist_is_null() {
     assert_eq!(swell["fermi_eV"], Value::Null);
     assert!(swell["er_eV"].as_f64().unwrap() > 1e-12);
     assert_eq!(floor["dimension"], 2);
-    assert_eq!(floor["potential_eV"], Value::Null);
-    assert_eq!(floor["bands"], serde_json::json!([]));
-    assert!(floor["unsolved"].as_str().unwrap().contains("2 dimensions"));
+    // Two crossed cosines of 0.1 eV reach from twice that below their mean to twice that above.
+    assert_eq!(floor["potential_eV"]["lowest"], -0.2);
+    assert_eq!(floor["bands"].as_array().unwrap().len(), 4);
+    assert_eq!(floor["bands"][0]["bottom_point"], "centre");
+    assert_eq!(floor["bands"][0]["bottom_k"], serde_json::json!([0.0, 0.0]));
+    assert_eq!(floor["bands"][0]["top_point"], "M");
+    assert_eq!(floor["unsolved"], Value::Null);
 }
 
 #[test]
 fn bands_and_gaps_agree_with_each_other() {
     let document = shown(&folder());
-    for index in [0, 2] {
+    for index in [0, 1, 2] {
         let crystal = &document["crystals"][index];
         let bands = crystal["bands"].as_array().unwrap();
         let gaps = crystal["gaps"].as_array().unwrap();

@@ -215,12 +215,10 @@ fn form_factor_models_settle_inside_their_stated_errors() {
             let seconds = started.elapsed().as_secs_f64();
             let (bottom, top, gap) = (zone.bands[0].bottom, zone.bands[3].top, zone.gaps[3]);
             println!(
-                "{name:5}{accuracy:?} gap {:.3}±{:.0e} eV {:?}, direct {:.3} eV at {:?}; {} waves, {} solves, {seconds:.2} s",
+                "{name:5}{accuracy:?} gap {:.3}±{:.0e} eV {:?}; {} waves, {} solves, {seconds:.2} s",
                 gap.size.value * electronvolt,
                 gap.size.error * electronvolt,
                 gap.kind,
-                gap.direct.value * electronvolt,
-                gap.direct_k,
                 zone.basis,
                 zone.spent
             );

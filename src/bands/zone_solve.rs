@@ -30,6 +30,9 @@ const USELESS: f64 = 0.05;
 /// The Fermi level of a metal, in the largest |bᵢ|², in two and three dimensions.
 const FERMI: [f64; 2] = [1e-5, 3e-4];
 
+/// The sum of the cubes of all bases, coarse and fine: some three seconds and half a minute of one core.
+const COST: [f64; 2] = [1e10, 1e11];
+
 /// A crystal with its plane waves, and the unit |b|² of its tolerances.
 pub(super) struct Zone<'a> {
     pub field: &'a ZoneField<'a>,
@@ -55,7 +58,10 @@ pub(super) fn zone_budget<'a>(
     };
     // Room for as many bands as are asked for, up to where matrices take seconds each.
     let basis = basis.max((4 * bands + 60).min(1400));
-    Budget::new(cancelled, basis, solves)
+    Budget::new(cancelled, basis, solves).within(match effort {
+        Effort::Coarse => COST[0],
+        Effort::Fine => COST[1],
+    })
 }
 
 /// Why the kernel gave up, for the user.
@@ -64,7 +70,7 @@ pub(super) fn unsolved(error: Error) -> Unsolved {
         Error::Cancelled => return Unsolved::Cancelled,
         Error::FlatLattice => return Unsolved::BrokenModel,
         Error::NotFinite => "the potential, a length or a mass is not finite",
-        Error::BudgetSpent => "the plane waves allowed are too few for these bands",
+        Error::BudgetSpent => "these bands want more plane waves or more work than is allowed",
         Error::Touching => "the band touches another",
     };
     Unsolved::NotConverged(why.into())
@@ -131,10 +137,15 @@ pub(super) fn zone_solution(
             Effort::Coarse => Accuracy::Coarse,
             Effort::Fine => Accuracy::Settled(zone.tolerance()),
         };
-        let found = zone
-            .waves
-            .zone(count, accuracy, &budget)
-            .map_err(unsolved)?;
+        let found = match zone.waves.zone(count, accuracy, &budget) {
+            // What the budget allows, with its wider bounds, is better than nothing.
+            Err(Error::BudgetSpent) if effort == Effort::Fine => {
+                let budget = zone_budget(&field, count, Effort::Coarse, cancelled);
+                zone.waves.zone(count, Accuracy::Coarse, &budget)
+            }
+            found => found,
+        };
+        let found = found.map_err(unsolved)?;
         zone.check(&found)?;
         let names = ZoneNames::new(crystal);
         let bands: Vec<Band> = found

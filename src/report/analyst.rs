@@ -60,6 +60,13 @@ struct Kept {
     section: Arc<SectionAnalysis>,
 }
 
+/// How much work a crystal's bands may be.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+enum Effort {
+    Quick,
+    Whole,
+}
+
 /// One section to look at.
 #[derive(Clone, Copy)]
 struct Task<'a> {
@@ -82,6 +89,17 @@ impl Analyst {
     /// Analyses files. When cancelled, sections that were not reached stay at [`Tier::Model`].
     #[must_use]
     pub fn analyse(&self, request: &Request<'_>) -> Analysis {
+        self.analyse_with(request, Effort::Whole)
+    }
+
+    /// The same, but a crystal whose bands take long gets a quick answer with wider error bounds, without targets,
+    /// measures and what the rules say of bands; its section stays at [`Tier::Model`].
+    #[must_use]
+    pub fn analyse_quickly(&self, request: &Request<'_>) -> Analysis {
+        self.analyse_with(request, Effort::Quick)
+    }
+
+    fn analyse_with(&self, request: &Request<'_>, effort: Effort) -> Analysis {
         let now = self.clock.fetch_add(1, Ordering::Relaxed) + 1;
         let world = World::gather(request.source, request.roots);
         let mut seen = Vec::new();
@@ -92,7 +110,7 @@ impl Analyst {
                 continue;
             }
             seen.push(id);
-            files.extend(self.file(&world, id, request, now).map(Arc::new));
+            files.extend(self.file(&world, id, request, effort, now).map(Arc::new));
         }
         self.forget(now);
         Analysis { world, files }
@@ -118,6 +136,7 @@ impl Analyst {
         world: &World,
         id: FileId,
         request: &Request<'_>,
+        effort: Effort,
         now: u64,
     ) -> Option<FileAnalysis> {
         let file = world.file(id)?;
@@ -131,7 +150,7 @@ impl Analyst {
                 hash: world.dependency_hash(id, entry.id),
             })
             .collect();
-        let sections = self.sections(&tasks, request, now);
+        let sections = self.sections(&tasks, request, effort, now);
         let depth = sections
             .iter()
             .map(|section| section.depth)
@@ -160,9 +179,10 @@ impl Analyst {
         &self,
         tasks: &[Task<'_>],
         request: &Request<'_>,
+        effort: Effort,
         now: u64,
     ) -> Vec<Arc<SectionAnalysis>> {
-        let mut found = self.known(tasks, request.depth, now);
+        let mut found = self.known(tasks, request.depth, effort, now);
         let missing: Vec<usize> = (0..tasks.len())
             .filter(|index| found.get(*index).is_some_and(|known| !known.done))
             .collect();
@@ -170,7 +190,7 @@ impl Analyst {
             let known = found.get(*index).and_then(|known| known.section.clone());
             tasks
                 .get(*index)
-                .map(|task| self.make(task, known, request))
+                .map(|task| self.make(task, known, request, effort))
         };
         let made: Vec<Option<Arc<SectionAnalysis>>> = match missing.len() >= WORTH_SHARING {
             true => missing.par_iter().map(make).collect(),
@@ -197,7 +217,7 @@ impl Analyst {
     }
 
     /// What is kept of each task, and whether that is all that is asked for.
-    fn known(&self, tasks: &[Task<'_>], depth: Tier, now: u64) -> Vec<Known> {
+    fn known(&self, tasks: &[Task<'_>], depth: Tier, effort: Effort, now: u64) -> Vec<Known> {
         let mut kept = self.kept.lock().unwrap_or_else(PoisonError::into_inner);
         let look = |task: &Task<'_>| {
             let current = kept
@@ -210,9 +230,10 @@ impl Analyst {
         sections
             .into_iter()
             .map(|section| Known {
-                done: section
-                    .as_ref()
-                    .is_some_and(|section| section.settled(depth)),
+                done: section.as_ref().is_some_and(|section| {
+                    let quick = effort == Effort::Quick && section.solution().is_some();
+                    section.settled(depth) || quick
+                }),
                 section,
             })
             .collect()
@@ -223,15 +244,36 @@ impl Analyst {
         task: &Task<'_>,
         known: Option<Arc<SectionAnalysis>>,
         request: &Request<'_>,
+        effort: Effort,
     ) -> Arc<SectionAnalysis> {
         let model = known.unwrap_or_else(|| Arc::new(modelled(task, request.source)));
         if request.depth < Tier::Bands || (request.cancel)() {
             return model;
         }
+        if effort == Effort::Quick && self.takes_long(&model) {
+            return self.sketched(&model, request).map_or(model, Arc::new);
+        }
         match self.solved(task, &model, request) {
             Some(section) => Arc::new(section),
             None => model,
         }
+    }
+
+    /// Whether a section's bands are not known and not had at once.
+    fn takes_long(&self, model: &SectionAnalysis) -> bool {
+        let crystal = model.crystal.as_ref();
+        crystal.is_some_and(|crystal| crystal.dimension > 1 && self.solver.known(crystal).is_none())
+    }
+
+    /// The same section with a quick answer for its bands; `None` where there is none.
+    fn sketched(&self, model: &SectionAnalysis, request: &Request<'_>) -> Option<SectionAnalysis> {
+        let crystal = model.crystal.as_ref()?;
+        let bands = self.solver.solve_coarse(crystal, request.cancel).ok()?;
+        Some(SectionAnalysis {
+            bands: Some(Ok(bands)),
+            findings: model.findings.clone(),
+            ..bare(model, Tier::Model)
+        })
     }
 
     /// The same section with its bands; `None` where the work was cancelled.
@@ -241,18 +283,7 @@ impl Analyst {
         model: &SectionAnalysis,
         request: &Request<'_>,
     ) -> Option<SectionAnalysis> {
-        let mut section = SectionAnalysis {
-            section: model.section,
-            troubles: model.troubles.clone(),
-            references: model.references.clone(),
-            parameters: model.parameters.clone(),
-            crystal: model.crystal.clone(),
-            bands: None,
-            targets: Vec::new(),
-            measures: Vec::new(),
-            findings: Vec::new(),
-            depth: Tier::Bands,
-        };
+        let mut section = bare(model, Tier::Bands);
         if let Some(crystal) = &model.crystal {
             let bands = self.solver.solve(crystal, request.cancel);
             if matches!(bands, Err(Unsolved::Cancelled)) {
@@ -292,6 +323,22 @@ impl Analyst {
 struct Known {
     section: Option<Arc<SectionAnalysis>>,
     done: bool,
+}
+
+/// What a section's model gives, without bands and findings.
+fn bare(model: &SectionAnalysis, depth: Tier) -> SectionAnalysis {
+    SectionAnalysis {
+        section: model.section,
+        troubles: model.troubles.clone(),
+        references: model.references.clone(),
+        parameters: model.parameters.clone(),
+        crystal: model.crystal.clone(),
+        bands: None,
+        targets: Vec::new(),
+        measures: Vec::new(),
+        findings: Vec::new(),
+        depth,
+    }
 }
 
 /// A section's model and the findings that need no more.

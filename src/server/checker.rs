@@ -19,6 +19,8 @@ use crate::report::{Analysis, Analyst, Request, Tier};
 pub(super) enum Depth {
     /// What costs little, with the dear results that are known already.
     Cheap,
+    /// Quick answers with wider error bounds where the bands take long; what is had at once in full.
+    Rough,
     /// Everything.
     Dear,
 }
@@ -54,7 +56,7 @@ pub(super) fn check(analyst: &Analyst, job: Job, slow: Option<Duration>) -> Chec
         cancel,
     } = job;
     let work = || {
-        if let (Some(slow), Depth::Dear) = (slow, depth) {
+        if let (Some(slow), true) = (slow, depth > Depth::Cheap) {
             dawdle(slow, &cancel);
         }
         let analysis = analyse(analyst, &files, &path, depth, &cancel);
@@ -65,6 +67,15 @@ pub(super) fn check(analyst: &Analyst, job: Job, slow: Option<Duration>) -> Chec
         .inspect_err(|_| log!("a fault while analysing {}", path.display()))
         .ok();
     let (analysis, diagnostics) = done.unzip();
+    let whole = |analysis: &Analysis| {
+        let file = analysis.file(&path);
+        file.is_some_and(|file| file.depth >= Tier::Bands)
+    };
+    let depth = match depth {
+        // Nothing took long, or a fault would only come again.
+        Depth::Rough if analysis.as_ref().is_none_or(whole) => Depth::Dear,
+        depth => depth,
+    };
     Checked {
         path,
         depth,
@@ -81,15 +92,19 @@ fn analyse(
     depth: Depth,
     cancel: &Cancel,
 ) -> Analysis {
-    analyst.analyse(&Request {
+    let request = Request {
         source: files,
         roots: std::slice::from_ref(path),
         depth: match depth {
             Depth::Cheap => Tier::Model,
-            Depth::Dear => Tier::Bands,
+            Depth::Rough | Depth::Dear => Tier::Bands,
         },
         cancel: &|| cancel.is_cancelled(),
-    })
+    };
+    match depth {
+        Depth::Rough => analyst.analyse_quickly(&request),
+        Depth::Cheap | Depth::Dear => analyst.analyse(&request),
+    }
 }
 
 /// For tests: work that takes this long unless it is stopped.

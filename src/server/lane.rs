@@ -101,9 +101,10 @@ impl Lane {
         }
     }
 
-    /// The worker is idle again.
-    pub(super) fn done(&mut self) {
-        self.running = None;
+    /// The worker is idle again; whether its work was stopped.
+    pub(super) fn done(&mut self) -> bool {
+        let running = self.running.take();
+        running.is_some_and(|running| running.cancel.is_cancelled())
     }
 
     /// When the user is to be told that work is going on.

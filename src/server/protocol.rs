@@ -120,18 +120,35 @@ impl LanguageServer for Backend {
             text_document,
             position,
         } = params.text_document_position_params;
-        self.look(&text_document.uri, Some(Depth::Dear), move |scene| {
-            views::hovered(scene, scene.offset(position))
-        })
-        .await
+        let uri = &text_document.uri;
+        let first = self.look(uri, Some(Depth::Rough), move |scene| {
+            let offset = scene.offset(position);
+            Some((views::hovered(scene, offset), views::waits(scene, offset)))
+        });
+        match first.await? {
+            Some((_, true)) => {
+                self.look(uri, Some(Depth::Dear), move |scene| {
+                    views::hovered(scene, scene.offset(position))
+                })
+                .await
+            }
+            first => Ok(first.and_then(|(hover, _)| hover)),
+        }
     }
 
     async fn inlay_hint(&self, params: InlayHintParams) -> Result<Option<Vec<InlayHint>>> {
         let uri = params.text_document.uri;
-        self.look(&uri, Some(Depth::Dear), move |scene| {
-            views::hinted(scene, scene.span(params.range))
-        })
-        .await
+        let found = self.look(&uri, Some(Depth::Rough), move |scene| {
+            Some((views::hinted(scene, scene.span(params.range)), scene.settled()))
+        });
+        let Some((hints, settled)) = found.await? else {
+            return Ok(None);
+        };
+        if !settled {
+            // They are asked for again when the finer values are there.
+            self.owner.tell(Message::Owe(path_of(&uri)));
+        }
+        Ok(hints)
     }
 
     async fn code_action(&self, params: CodeActionParams) -> Result<Option<CodeActionResponse>> {

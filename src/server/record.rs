@@ -50,6 +50,7 @@ pub(super) struct Record {
     pub(super) dirty: bool,
     /// The newest results, whatever they are of.
     pub(super) cheap: Option<Checked>,
+    pub(super) rough: Option<Checked>,
     pub(super) dear: Option<Checked>,
     pub(super) waiting: Vec<Want>,
     /// When the cheap findings are shown, if the dear ones do not come before.
@@ -63,14 +64,16 @@ pub(super) struct Record {
 impl Record {
     /// The newest result of at least this depth, if nothing has changed since.
     pub(super) fn known(&self, depth: Depth, generation: u64) -> Option<&Checked> {
-        let current = |checked: &&Checked| checked.generation == generation;
-        let dear = self.dear.as_ref().filter(current);
-        dear.or_else(|| {
-            self.cheap
-                .as_ref()
-                .filter(current)
-                .filter(|_| depth == Depth::Cheap)
-        })
+        let newest = [
+            (Depth::Dear, &self.dear),
+            (Depth::Rough, &self.rough),
+            (Depth::Cheap, &self.cheap),
+        ];
+        newest
+            .into_iter()
+            .filter(|(known, _)| *known >= depth)
+            .filter_map(|(_, checked)| checked.as_ref())
+            .find(|checked| checked.generation == generation)
     }
 }
 

@@ -36,6 +36,12 @@ impl Scene {
         self.view.analysis.as_deref()
     }
 
+    /// Whether the document's bands are fully known.
+    pub(super) fn settled(&self) -> bool {
+        let file = self.analysis().and_then(|analysis| analysis.file(&self.path()));
+        file.is_some_and(|file| file.depth >= Tier::Bands)
+    }
+
     /// What is known of all files of the workspace, bands aside.
     pub(super) fn workspace(&self) -> Analysis {
         let overtaken = &self.view.file.overtaken;

@@ -146,11 +146,7 @@ impl State {
                 self.freshen_all();
                 let _ = reply.send(Arc::clone(&self.files));
             }
-            Message::Owe(path) => {
-                if let Some(record) = self.records.get_mut(&path) {
-                    record.owes = true;
-                }
-            }
+            Message::Owe(path) => self.owe(&path),
             Message::Surveyed(uses) => {
                 if *self.files.uses != uses {
                     Arc::make_mut(&mut self.files).uses = Arc::new(uses);
@@ -160,6 +156,19 @@ impl State {
             Message::StopWork => self.dear.cancel(),
             Message::Checked(checked) => self.checked(checked),
             Message::End => {}
+        }
+    }
+
+    /// The client was told less than will be known: it is asked to ask anew when that is there.
+    fn owe(&mut self, path: &Path) {
+        let generation = self.generation;
+        let Some(record) = self.records.get_mut(path) else {
+            return;
+        };
+        if record.known(Depth::Dear, generation).is_some() {
+            self.refresh();
+        } else {
+            record.owes = true;
         }
     }
 
@@ -175,6 +184,7 @@ impl State {
             file,
             dirty: false,
             cheap: None,
+            rough: None,
             dear: None,
             waiting: Vec::new(),
             due: Some(Instant::now() + GRACE),
@@ -300,22 +310,7 @@ impl State {
             self.cheap.queue = self.in_order();
             self.dear.queue.clear();
         }
-        for depth in [Depth::Cheap, Depth::Dear] {
-            let (generation, files, abilities) = (
-                self.generation,
-                Arc::clone(&self.files),
-                Arc::clone(&self.abilities),
-            );
-            let job = move |path, cancel| Job {
-                path,
-                depth,
-                generation,
-                files,
-                abilities,
-                cancel,
-            };
-            self.lane(depth).pump(job);
-        }
+        self.employ();
         let now = Instant::now();
         let due = |record: &Record| record.due.is_some_and(|due| due <= now);
         let paths: Vec<PathBuf> = self
@@ -331,10 +326,39 @@ impl State {
             .show_progress(&self.abilities, &self.outgoing, &self.runtime);
     }
 
+    /// Gives idle workers their next jobs.
+    fn employ(&mut self) {
+        let (generation, files, abilities) = (
+            self.generation,
+            Arc::clone(&self.files),
+            Arc::clone(&self.abilities),
+        );
+        let job = |path, depth, cancel| Job {
+            path,
+            depth,
+            generation,
+            files: Arc::clone(&files),
+            abilities: Arc::clone(&abilities),
+            cancel,
+        };
+        self.cheap
+            .pump(|path, cancel| job(path, Depth::Cheap, cancel));
+        let records = &self.records;
+        self.dear.pump(|path, cancel| {
+            let record = records.get(&path);
+            let rough = record.and_then(|record| record.known(Depth::Rough, generation));
+            let depth = match rough {
+                Some(_) => Depth::Dear,
+                None => Depth::Rough,
+            };
+            job(path, depth, cancel)
+        });
+    }
+
     fn lane(&mut self, depth: Depth) -> &mut Lane {
         match depth {
             Depth::Cheap => &mut self.cheap,
-            Depth::Dear => &mut self.dear,
+            Depth::Rough | Depth::Dear => &mut self.dear,
         }
     }
 
@@ -347,8 +371,12 @@ impl State {
 
     /// Takes a worker's result, if nothing has changed since.
     fn checked(&mut self, checked: Checked) {
-        let (path, depth) = (checked.path.clone(), checked.depth);
-        self.lane(depth).done();
+        let (path, mut depth) = (checked.path.clone(), checked.depth);
+        let stopped = self.lane(depth).done();
+        if stopped && depth == Depth::Rough {
+            // Whoever stopped it does not want what would follow either.
+            depth = Depth::Dear;
+        }
         if checked.generation != self.generation {
             return;
         }
@@ -374,6 +402,15 @@ impl State {
                     self.dear.queue.push_back(path);
                 } else {
                     self.dear.queue.push_front(path);
+                }
+            }
+            Depth::Rough => {
+                record.rough = Some(checked);
+                // What is waited for, and the document that is edited, goes before the others.
+                if !record.waiting.is_empty() || self.focus.as_ref() == Some(&path) {
+                    self.dear.queue.push_front(path);
+                } else {
+                    self.dear.queue.push_back(path);
                 }
             }
             Depth::Dear => {

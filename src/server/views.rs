@@ -13,7 +13,7 @@ use super::scene::Scene;
 use crate::report::actions::{Action, ActionKind, Asked, actions};
 use crate::report::editor_format;
 use crate::report::hints::hints;
-use crate::report::hover::hover;
+use crate::report::hover::{self, hover};
 use crate::text::Span;
 
 /// What is to be said about a byte.
@@ -27,6 +27,12 @@ pub(super) fn hovered(scene: &Scene, offset: u32) -> Option<Hover> {
         contents: HoverContents::Markup(MarkupContent { kind, value }),
         range: Some(scene.range(found.span)),
     })
+}
+
+/// Whether more is to be said about a byte once the bands are fully known.
+pub(super) fn waits(scene: &Scene, offset: u32) -> bool {
+    let analysis = scene.analysis();
+    analysis.is_some_and(|analysis| hover::waits(analysis, &scene.path(), offset))
 }
 
 /// The notes within some bytes.

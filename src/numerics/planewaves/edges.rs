@@ -257,6 +257,26 @@ impl Waves<'_> {
         Ok(spots)
     }
 
+    /// The distance from a band to the next at one k, settled as an extremum there is.
+    pub(super) fn apart_at(
+        &self,
+        k: [f64; 3],
+        band: usize,
+        plan: &Plan,
+        budget: &Budget,
+    ) -> Result<Estimate, Error> {
+        let target = Target {
+            kind: Kind::Separation,
+            band,
+        };
+        let spot = Spot {
+            k,
+            value: 0.0,
+            seat: Seat::Pinned,
+        };
+        Ok(self.settle(target, spot, plan, budget)?.value)
+    }
+
     /// Raises the cut at one extremum until its value is known to the tolerance.
     fn settle(
         &self,

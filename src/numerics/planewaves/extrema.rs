@@ -170,6 +170,14 @@ impl Search<'_, '_> {
                 value,
                 seat: Seat::Smooth,
             });
+            // Levels that coincide cannot come nearer.
+            if self.target.kind == Kind::Separation && value <= 100.0 * ROUNDING * self.unit() {
+                return Ok(Spot {
+                    k,
+                    value,
+                    seat: Seat::Pinned,
+                });
+            }
             if search.simple(&levels) {
                 match search.newton(levels)? {
                     Ok(spot) => return Ok(spot),

@@ -4,8 +4,10 @@
 //! E′ + (E′ − E)/((M′/M)² − 1). The whole of that last term is the stated error, with what the cut-off left uncertain.
 
 use super::basis::Waves;
+use super::settle::{Prediction, UNTRIED};
 use super::states::{Filled, States};
 use super::{Budget, Error, Estimate};
+use rayon::prelude::*;
 
 /// A Fermi level.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -31,7 +33,7 @@ impl Waves<'_> {
         if !(levels > 0.0 && levels < 1e4 && tolerance > 0.0 && tolerance.is_finite()) {
             return Err(Error::NotFinite);
         }
-        let cut = self.cut_for_states(levels, tolerance, budget)?;
+        let (cut, share) = self.cut_for_states(levels, tolerance, budget)?;
         let sizes: &[usize] = match self.frame.dimension {
             1 => &[24, 48, 96, 192, 384, 768],
             2 => &[12, 24, 48, 96, 192],
@@ -40,7 +42,7 @@ impl Waves<'_> {
         let mut last: Option<(f64, Filled)> = None;
         let mut best: Option<Fermi> = None;
         for size in sizes {
-            let states = match self.enough_states(levels, *size, cut, budget) {
+            let states = match self.enough_states(levels, *size, cut, share, budget) {
                 Err(Error::BudgetSpent) if best.is_some() => break,
                 other => other?,
             };
@@ -89,30 +91,57 @@ impl Waves<'_> {
         }
     }
 
-    /// A cut at which the levels up to the filling are known to half the tolerance, or the largest that is affordable.
-    fn cut_for_states(&self, levels: f64, tolerance: f64, budget: &Budget) -> Result<f64, Error> {
+    /// A cut at which the levels up to the filling are known to half the tolerance, or the largest that is affordable,
+    /// and the share of what it leaves out that is uncertain: twice the worst by which predictions at some points fail
+    /// a larger cut's.
+    fn cut_for_states(
+        &self,
+        levels: f64,
+        tolerance: f64,
+        budget: &Budget,
+    ) -> Result<(f64, f64), Error> {
         let bands = levels.ceil() as usize + 2;
-        let probes =
-            [[0.0; 3], [0.5, 0.0, 0.0], [0.5; 3], [0.25, 0.125, 0.375]].map(|k| self.inside(k));
         let largest = (budget.max_basis as f64 / 1.3)
             .min([200.0_f64, 500.0, 400.0][self.frame.dimension - 1].max(2.5 * bands as f64));
         let mut cut = self.first_cut(bands, f64::INFINITY, budget)?;
+        let mut here = self.probed(bands, cut, budget)?;
         loop {
-            let mut worst: f64 = 0.0;
-            for k in probes {
-                let solved = self.solve_on(&self.basis(k, cut), k, bands, true, budget)?;
-                worst = self
-                    .predict(&solved, cut)?
-                    .iter()
-                    .map(|p| p.unjudged().error)
-                    .fold(worst, f64::max);
+            let larger = self.frame.cut_for(1.5 * self.frame.expected(cut));
+            if self.frame.expected(larger) > largest {
+                return Ok((cut, UNTRIED));
             }
-            let larger = self.frame.cut_for(1.4 * self.frame.expected(cut));
-            if worst <= 0.5 * tolerance || self.frame.expected(larger) > largest {
-                return Ok(cut);
+            let there = self.probed(bands, larger, budget)?;
+            let (mut worst, mut share) = (0.0_f64, 0.0_f64);
+            for (lower, upper) in here.iter().zip(&there) {
+                let miss = (lower.value - upper.value).abs() + upper.judged_by(Some(lower)).error;
+                worst = worst.max(2.0 * miss);
+                share = share.max(2.0 * miss / lower.left_out.max(lower.rounding));
             }
-            cut = larger;
+            if worst <= 0.5 * tolerance {
+                return Ok((cut, share.max(0.05)));
+            }
+            (cut, here) = (larger, there);
         }
+    }
+
+    /// Predictions for the lowest levels at some points of the zone, one after another.
+    fn probed(&self, bands: usize, cut: f64, budget: &Budget) -> Result<Vec<Prediction>, Error> {
+        let probes = [
+            [0.0; 3],
+            [0.5, 0.0, 0.0],
+            [0.5; 3],
+            [0.25, 0.125, 0.375],
+            [0.375, 0.25, -0.125],
+        ];
+        let solved: Vec<Vec<Prediction>> = probes
+            .par_iter()
+            .map(|k| {
+                let k = self.inside(*k);
+                let levels = self.solve_on(&self.basis(k, cut), k, bands, true, budget)?;
+                self.predict(&levels, cut)
+            })
+            .collect::<Result<_, Error>>()?;
+        Ok(solved.into_iter().flatten().collect())
     }
 
     /// States with so many bands that the filling ends below the top of the last.
@@ -121,11 +150,12 @@ impl Waves<'_> {
         levels: f64,
         size: usize,
         cut: f64,
+        share: f64,
         budget: &Budget,
     ) -> Result<States, Error> {
         let mut bands = levels.ceil() as usize + 1;
         for _ in 0..6 {
-            let states = self.states(bands, size, cut, budget)?;
+            let states = self.states_known(bands, size, (cut, share), budget)?;
             let level = states.fill(levels).level;
             // The first band left out may begin below the last one's top, not below its own bottom.
             let deepest = states

@@ -93,7 +93,7 @@ impl Waves<'_> {
         &self,
         mesh: &Mesh,
         bands: usize,
-        cut: f64,
+        (cut, share): (f64, f64),
         budget: &Budget,
     ) -> Result<(Vec<Vec<f64>>, Vec<f64>), Error> {
         let solved: Vec<(Vec<f64>, Vec<f64>)> = mesh
@@ -104,7 +104,7 @@ impl Waves<'_> {
                 let known: Vec<_> = self
                     .predict(&levels, cut)?
                     .iter()
-                    .map(|p| p.unjudged())
+                    .map(|p| p.known_to(share))
                     .collect();
                 let mut energies: Vec<f64> = known.iter().map(|e| e.value).collect();
                 energies.sort_by(f64::total_cmp);

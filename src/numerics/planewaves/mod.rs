@@ -55,7 +55,7 @@ pub use potential::{Budget, Decay, Potential};
 pub use samples::Samples;
 pub use settle::SettledLevels;
 pub use states::States;
-pub use zone::{Accuracy, Band, Extremum, Gap, GapKind, Zone, solve};
+pub use zone::{Accuracy, Band, Extremum, Gap, GapKind, Separation, Zone, solve};
 
 /// Why there is no answer.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]

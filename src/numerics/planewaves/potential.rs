@@ -2,7 +2,7 @@
 
 use super::Error;
 use nalgebra::Complex;
-use std::sync::atomic::{AtomicUsize, Ordering};
+use std::sync::atomic::{AtomicU64, AtomicUsize, Ordering};
 
 /// How the components end or fall off, as a function of |G|.
 #[derive(Clone, Copy)]
@@ -35,7 +35,11 @@ pub struct Budget<'a> {
     pub max_basis: usize,
     /// The largest number of eigenproblems and linear solves.
     pub max_eigensolves: usize,
+    /// The largest sum over all eigenproblems of the cube of their number of plane waves, to which their time is
+    /// proportional (about 3·10⁹ a second).
+    pub max_cost: f64,
     spent: AtomicUsize,
+    cost: AtomicU64,
 }
 
 impl<'a> Budget<'a> {
@@ -49,8 +53,16 @@ impl<'a> Budget<'a> {
             cancelled,
             max_basis,
             max_eigensolves,
+            max_cost: f64::INFINITY,
             spent: AtomicUsize::new(0),
+            cost: AtomicU64::new(0),
         }
+    }
+
+    /// The same budget with a bound on the cost of all problems together.
+    #[must_use]
+    pub fn within(self, max_cost: f64) -> Self {
+        Self { max_cost, ..self }
     }
 
     /// The eigenproblems solved so far.
@@ -64,6 +76,11 @@ impl<'a> Budget<'a> {
             return Err(Error::Cancelled);
         }
         let before = self.spent.fetch_add(1, Ordering::Relaxed);
+        let cube = (basis as u64).saturating_pow(3);
+        let cost = self.cost.fetch_add(cube, Ordering::Relaxed) as f64;
+        if cost > self.max_cost {
+            return Err(Error::BudgetSpent);
+        }
         if basis > self.max_basis || before >= self.max_eigensolves {
             return Err(Error::BudgetSpent);
         }

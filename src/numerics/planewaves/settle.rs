@@ -21,6 +21,9 @@ use faer::Mat;
 use nalgebra::Complex;
 use rustc_hash::FxHashMap;
 
+/// No larger cut tells how much of δ is uncertain.
+pub(super) const UNTRIED: f64 = f64::INFINITY;
+
 /// A level's prediction at one cut.
 #[derive(Clone, Copy, Debug, Default)]
 pub(super) struct Prediction {
@@ -37,9 +40,19 @@ pub(super) struct Prediction {
 impl Prediction {
     /// The estimate without another cut to judge by: half of δ, or more where the cut is low.
     pub fn unjudged(&self) -> Estimate {
+        self.known_to(UNTRIED)
+    }
+
+    /// The estimate where this share of δ is uncertain; [`UNTRIED`] where nothing tells.
+    pub fn known_to(&self, share: f64) -> Estimate {
+        let share = if share == UNTRIED {
+            self.share.max(0.5)
+        } else {
+            share
+        };
         Estimate {
             value: self.value,
-            error: self.share.max(0.5) * self.left_out + self.rounding,
+            error: share * self.left_out + self.rounding,
         }
     }
 

@@ -15,6 +15,7 @@
 
 use super::basis::Waves;
 use super::mesh::Mesh;
+use super::settle::UNTRIED;
 use super::{Budget, Error, Estimate};
 use rustc_hash::FxHashMap;
 
@@ -53,8 +54,19 @@ impl Waves<'_> {
         cut: f64,
         budget: &Budget,
     ) -> Result<States, Error> {
+        self.states_known(bands, most, (cut, UNTRIED), budget)
+    }
+
+    /// The same where the share of what the cut leaves out that is uncertain is known.
+    pub(super) fn states_known(
+        &self,
+        bands: usize,
+        most: usize,
+        (cut, share): (f64, f64),
+        budget: &Budget,
+    ) -> Result<States, Error> {
         let mesh = self.mesh(most);
-        let (energies, errors) = self.settled_on(&mesh, bands, cut, budget)?;
+        let (energies, errors) = self.settled_on(&mesh, bands, (cut, share), budget)?;
         let corners = self.simplices(&mesh);
         let mut shares: FxHashMap<Vec<usize>, f64> = FxHashMap::default();
         let total = (mesh.of.len() * corners.len()) as f64;

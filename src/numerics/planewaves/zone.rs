@@ -1,7 +1,7 @@
 //! Band edges, widths, masses and gaps over the whole zone.
 
 use super::basis::Waves;
-use super::edges::Found;
+use super::edges::{Found, Plan};
 use super::extrema::{Kind, Target};
 use super::slopes::{Tensor, principal};
 use super::{Budget, Error, Estimate, Lattice, Potential};
@@ -62,10 +62,15 @@ pub struct Gap {
     pub size: Estimate,
     /// Its kind.
     pub kind: GapKind,
-    /// The least distance between the two bands at one k; zero within its error where they touch.
-    pub direct: Estimate,
-    /// Where that is.
-    pub direct_k: [f64; 3],
+}
+
+/// The least distance between two neighbouring bands at one k.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Separation {
+    /// That distance; zero within its error where they touch.
+    pub size: Estimate,
+    /// Where it is.
+    pub k: [f64; 3],
 }
 
 /// The bands over the whole zone.
@@ -104,6 +109,52 @@ impl Waves<'_> {
     /// # Errors
     /// As [`solve`].
     pub fn zone(&self, bands: usize, accuracy: Accuracy, budget: &Budget) -> Result<Zone, Error> {
+        let (plan, energies, tolerance) = self.prepared(bands, accuracy, budget)?;
+        let targets: Vec<Target> = (0..=bands)
+            .flat_map(|band| [Kind::Bottom, Kind::Top].map(|kind| Target { kind, band }))
+            .filter(|target| target.band < bands || target.kind == Kind::Bottom)
+            .collect();
+        let found: Vec<Found> = targets
+            .par_iter()
+            .map(|target| self.extremum(*target, &plan, &energies, budget))
+            .collect::<Result<_, _>>()?;
+        self.assemble(bands, &found, &plan, tolerance, budget)
+    }
+
+    /// The least distance at one k between each of the lowest `bands` bands and the next.
+    ///
+    /// # Errors
+    /// As [`solve`].
+    pub fn separations(
+        &self,
+        bands: usize,
+        accuracy: Accuracy,
+        budget: &Budget,
+    ) -> Result<Vec<Separation>, Error> {
+        let (plan, energies, _) = self.prepared(bands, accuracy, budget)?;
+        (0..bands)
+            .into_par_iter()
+            .map(|band| {
+                let target = Target {
+                    kind: Kind::Separation,
+                    band,
+                };
+                let found = self.extremum(target, &plan, &energies, budget)?;
+                Ok(Separation {
+                    size: found.value,
+                    k: self.symmetry.canonical(&self.frame, found.spot.k),
+                })
+            })
+            .collect()
+    }
+
+    /// The plan and the levels on its mesh.
+    fn prepared(
+        &self,
+        bands: usize,
+        accuracy: Accuracy,
+        budget: &Budget,
+    ) -> Result<(Plan, Vec<Vec<f64>>, Option<f64>), Error> {
         let tolerance = match accuracy {
             Accuracy::Coarse => None,
             Accuracy::Settled(tolerance) => Some(tolerance),
@@ -113,26 +164,17 @@ impl Waves<'_> {
         }
         let plan = self.plan(bands, tolerance, budget)?;
         let energies = self.energies_on(&plan.mesh, plan.count, plan.cut, budget)?;
-        let targets: Vec<Target> = (0..=bands)
-            .flat_map(|band| {
-                [Kind::Bottom, Kind::Top, Kind::Separation].map(|kind| Target { kind, band })
-            })
-            .filter(|target| target.band < bands || target.kind == Kind::Bottom)
-            .collect();
-        let found: Vec<Found> = targets
-            .par_iter()
-            .map(|target| self.extremum(*target, &plan, &energies, budget))
-            .collect::<Result<_, _>>()?;
-        Ok(self.assemble(bands, &found, tolerance, budget))
+        Ok((plan, energies, tolerance))
     }
 
     fn assemble(
         &self,
         bands: usize,
         found: &[Found],
+        plan: &Plan,
         tolerance: Option<f64>,
         budget: &Budget,
-    ) -> Zone {
+    ) -> Result<Zone, Error> {
         let get =
             |kind: Kind, band: usize| found.iter().find(|f| f.target == Target { kind, band });
         let mut zone = Zone {
@@ -146,10 +188,9 @@ impl Waves<'_> {
             let parts = (
                 get(Kind::Bottom, band),
                 get(Kind::Top, band),
-                get(Kind::Separation, band),
                 get(Kind::Bottom, band + 1),
             );
-            let (Some(bottom), Some(top), Some(separation), Some(next)) = parts else {
+            let (Some(bottom), Some(top), Some(next)) = parts else {
                 continue;
             };
             let (low, high) = (self.extremum_of(bottom), self.extremum_of(top));
@@ -158,22 +199,24 @@ impl Waves<'_> {
                 top: high,
                 width: difference(high.energy, low.energy),
             });
-            zone.gaps.push(self.gap(top, next, separation));
+            zone.gaps.push(self.gap(top, next, plan, budget)?);
         }
-        zone
+        Ok(zone)
     }
 
-    fn gap(&self, top: &Found, next: &Found, separation: &Found) -> Gap {
+    fn gap(&self, top: &Found, next: &Found, plan: &Plan, budget: &Budget) -> Result<Gap, Error> {
         let (high, low) = (self.extremum_of(top), self.extremum_of(next));
         let mut size = difference(low.energy, high.energy);
         let same = (0..3).all(|i| (low.k[i] - high.k[i]).abs() < 1e-6);
-        let direct = separation.value;
         // Edges at one k that touch there: what is left out is left out of both alike.
-        if same && size.value.abs() <= size.error && direct.value.abs() <= direct.error {
-            size = Estimate {
-                value: size.value.clamp(-direct.error, direct.error),
-                error: direct.error,
-            };
+        if same && size.value.abs() <= size.error {
+            let direct = self.apart_at(top.spot.k, top.target.band, plan, budget)?;
+            if direct.value.abs() <= direct.error {
+                size = Estimate {
+                    value: size.value.clamp(-direct.error, direct.error),
+                    error: direct.error,
+                };
+            }
         }
         let kind = if size.value.abs() <= size.error {
             GapKind::Closed
@@ -184,12 +227,7 @@ impl Waves<'_> {
         } else {
             GapKind::Indirect
         };
-        Gap {
-            size,
-            kind,
-            direct,
-            direct_k: self.symmetry.canonical(&self.frame, separation.spot.k),
-        }
+        Ok(Gap { size, kind })
     }
 
     fn extremum_of(&self, found: &Found) -> Extremum {

@@ -89,6 +89,9 @@ fn description(view: &View<'_>, heading: Place) -> Option<String> {
 fn numbers(section: &SectionAnalysis, crystal: &Crystal, solution: &Solution, card: &mut Card) {
     let trade = Trade::of(crystal);
     let temperature = crystal.temperature.as_ref().map(|dual| dual.value);
+    if !solution.fine {
+        card.say("first values; finer ones are being worked out".to_owned());
+    }
     for (index, gap) in solution.gaps.iter().take(GAPS).enumerate() {
         let told = gap_told(gap, &trade, temperature);
         card.row([format!("gap {}", index + 1), told]);

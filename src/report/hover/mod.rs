@@ -18,6 +18,7 @@ use super::analyst::Analyst;
 use super::locate::Locator;
 use super::units::Trade;
 use crate::bands::Solution;
+use crate::rules::Tier;
 use crate::model::{Crystal, NameSort, Place, Reference};
 use crate::syntax::{Entry, SectionKind, Statement, StatementKind};
 use crate::text::Span;
@@ -54,6 +55,17 @@ pub fn hover(analyst: &Analyst, analysis: &Analysis, path: &Path, offset: u32) -
         span: span.shifted(entry.start),
         markdown: card.markdown(),
         plain: card.plain(),
+    })
+}
+
+/// Whether more is to be said at a byte of a file once its bands are fully known: everywhere in a crystal but on its
+/// heading, which tells first values with their error bounds.
+#[must_use]
+pub fn waits(analysis: &Analysis, path: &Path, offset: u32) -> bool {
+    let found = analysis.file(path).and_then(|file| file.section_at(offset));
+    found.is_some_and(|(entry, section)| {
+        let on_heading = entry.section.heading.touches(offset - entry.start);
+        section.crystal.is_some() && !section.settled(Tier::Bands) && !on_heading
     })
 }
 
