@@ -9,6 +9,7 @@ mod chain;
 mod field;
 mod filling;
 mod fingerprint;
+mod lattice_picture;
 mod layout;
 mod meet;
 mod picture;
@@ -34,6 +35,7 @@ use std::sync::Arc;
 use crate::model::{Crystal, CrystalRef};
 
 pub use assess::{Rebuild, class_word, gap_word};
+pub use lattice_picture::{LatticePicture, PathRun};
 pub use meet::Wanted;
 pub use picture::{EdgeWave, Picture, potential_line};
 pub use types::*;
@@ -158,6 +160,22 @@ impl Solver {
         }
         let solution = self.solve(crystal, cancelled)?;
         picture::picture(crystal, &solution, points, cancelled)
+    }
+
+    /// What a picture of a two- or three-dimensional crystal is drawn from.
+    ///
+    /// # Errors
+    /// [`Unsolved`] says why there is none.
+    pub fn lattice_picture(
+        &self,
+        crystal: &Crystal,
+        cancelled: &Cancelled<'_>,
+    ) -> Result<LatticePicture, Unsolved> {
+        match impossible(crystal) {
+            Some(unsolved) => Err(unsolved),
+            None if crystal.dimension == 1 => Err(Unsolved::Dimension(1)),
+            None => lattice_picture::lattice_picture(crystal, cancelled),
+        }
     }
 }
 

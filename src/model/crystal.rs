@@ -3,7 +3,7 @@
 use std::sync::Arc;
 
 use super::shape::centring::{Centring, LatticeKind, lattice_kind};
-use super::shape::zone_points::zone_points;
+use super::shape::zone_points::{zone_path, zone_points};
 use super::{Dimension, Dual, Measure, ParameterId, Place, Target};
 
 /// A crystal with all its names resolved.
@@ -86,6 +86,13 @@ impl Crystal {
             Some(kind) => zone_points(kind),
             None => vec![("centre", vec![0.0; self.dimension])],
         }
+    }
+
+    /// A path through its zone for pictures: unbroken runs of named points, in fractions of the primitive reciprocal
+    /// vectors.
+    #[must_use]
+    pub fn zone_path(&self) -> Vec<Vec<(String, Vec<f64>)>> {
+        zone_path(self.kind(), self.dimension)
     }
 }
 

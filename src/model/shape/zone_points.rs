@@ -8,6 +8,58 @@
 
 use super::centring::LatticeKind;
 
+/// The standard paths through the named points, each an unbroken run. Three dimensions: Setyawan and Curtarolo (from
+/// memory); two: common practice.
+fn runs(kind: &LatticeKind) -> &'static [&'static str] {
+    match (kind.word, kind.dimension) {
+        ("chain", _) => &["edge centre edge"],
+        ("square", _) => &["centre X M centre"],
+        ("rectangular", _) => &["centre X S Y centre"],
+        ("hexagonal", 2) => &["centre M K centre"],
+        ("hexagonal", _) => &["centre M K centre A L H A", "L M", "K H"],
+        ("cubic", _) => &["centre X M centre R X", "M R"],
+        ("fcc", _) => &["centre X W K centre L U W L K", "U X"],
+        ("bcc", _) => &["centre H N centre P H", "P N"],
+        ("tetragonal", _) => &["centre X M centre Z R A Z", "X R", "M A"],
+        ("orthorhombic", _) => &["centre X S Y centre Z U R T Z", "Y T", "U X", "S R"],
+        _ => &[],
+    }
+}
+
+/// A path through the zone that visits its named points, in unbroken runs of points with their names, in fractions of
+/// the primitive reciprocal vectors. Where no points are named, it goes along the reciprocal vectors.
+#[must_use]
+pub fn zone_path(kind: Option<&LatticeKind>, dimension: usize) -> Vec<Vec<(String, Vec<f64>)>> {
+    let named = kind
+        .map(|kind| (kind, runs(kind)))
+        .filter(|(_, runs)| !runs.is_empty());
+    let Some((kind, runs)) = named else {
+        return vec![unnamed_path(dimension)];
+    };
+    let stop = |name: &str| Some((name.to_owned(), zone_point(kind, name)?));
+    runs.iter()
+        .map(|run| run.split(' ').filter_map(stop).collect())
+        .collect()
+}
+
+/// Out along each reciprocal vector to its middle and back over the middle of all of them.
+fn unnamed_path(dimension: usize) -> Vec<(String, Vec<f64>)> {
+    let stop = |halves: &[usize]| {
+        let point: Vec<f64> = (0..dimension)
+            .map(|axis| if halves.contains(&axis) { HALF } else { 0.0 })
+            .collect();
+        let name = point.iter().map(|part| if *part > 0.0 { "½" } else { "0" });
+        (name.collect::<Vec<_>>().join(" "), point)
+    };
+    let centre = ("centre".to_owned(), vec![0.0; dimension]);
+    let mut path = vec![centre.clone()];
+    for axis in 0..dimension {
+        path.extend([stop(&[axis]), centre.clone()]);
+    }
+    path.push(stop(&(0..dimension).collect::<Vec<_>>()));
+    path
+}
+
 type Points = &'static [(&'static str, [f64; 3])];
 
 const HALF: f64 = 0.5;
@@ -101,4 +153,44 @@ pub fn zone_point(kind: &LatticeKind, name: &str) -> Option<Vec<f64>> {
     }
     let (_, conventional) = table(kind).iter().find(|(known, _)| *known == name)?;
     Some(to_primitive(kind, conventional))
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::model::shape::centring::lattice_kind;
+
+    #[test]
+    fn every_stop_of_every_path_is_a_named_point_and_none_is_left_out() {
+        for (word, solid) in [
+            ("square", false),
+            ("rectangular", false),
+            ("hexagonal", false),
+            ("hexagonal", true),
+            ("cubic", true),
+            ("fcc", true),
+            ("bcc", true),
+            ("tetragonal", true),
+            ("orthorhombic", true),
+        ] {
+            let kind = lattice_kind(word, solid).unwrap();
+            let path = zone_path(Some(kind), kind.dimension);
+            let stops: usize = runs(kind).iter().map(|run| run.split(' ').count()).sum();
+            assert_eq!(path.iter().map(Vec::len).sum::<usize>(), stops, "{word}");
+            for (name, point) in zone_points(kind) {
+                let visited = path
+                    .iter()
+                    .flatten()
+                    .any(|(stop, at)| stop == name && *at == point);
+                assert!(visited, "{word}: {name}");
+            }
+        }
+    }
+
+    #[test]
+    fn a_lattice_without_names_has_a_path_too() {
+        let path = zone_path(None, 2);
+        let names: Vec<&str> = path[0].iter().map(|(name, _)| name.as_str()).collect();
+        assert_eq!(names, ["centre", "½ 0", "centre", "0 ½", "centre", "½ ½"]);
+    }
 }

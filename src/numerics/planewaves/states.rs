@@ -15,6 +15,7 @@
 
 use super::basis::Waves;
 use super::mesh::Mesh;
+use super::path::SKETCH;
 use super::settle::UNTRIED;
 use super::{Budget, Error, Estimate};
 use rustc_hash::FxHashMap;
@@ -55,6 +56,20 @@ impl Waves<'_> {
         budget: &Budget,
     ) -> Result<States, Error> {
         self.states_known(bands, most, (cut, UNTRIED), budget)
+    }
+
+    /// The same at the accuracy of a picture.
+    ///
+    /// # Errors
+    /// `NotFinite`, `BudgetSpent`, `Cancelled`.
+    pub fn sketched_states(
+        &self,
+        bands: usize,
+        most: usize,
+        budget: &Budget,
+    ) -> Result<States, Error> {
+        let cut = self.first_cut(bands, SKETCH, budget)?;
+        self.states(bands, most, cut, budget)
     }
 
     /// The same where the share of what the cut leaves out that is uncertain is known.

@@ -1,55 +1,32 @@
-//! The picture of a one-dimensional crystal as SVG: on the left the potential over two cells with its bands and |ψ|²
-//! at their edges, on the right E(k), both on one energy axis.
+//! The picture of a one-dimensional crystal: on the left the potential over two cells with its bands and |ψ|² at
+//! their edges, on the right E(k), both on one energy axis.
 
 use svg::Document;
 use svg::node::element::path::Data;
-use svg::node::element::{Group, Line, Path, Rectangle, Text};
+use svg::node::element::{Group, Path};
 
-use super::analyst::Analyst;
-use super::show_text;
-use super::units::{self, Scale, Trade};
-use super::words;
+use super::parts::{
+    BAND, BOTTOM, FAINT, HEIGHT, INK, Panel, TOP, energy_axis, head, line_between, rectangle,
+    sheet, stroke, text, ticks,
+};
 use crate::bands::{Picture, Solution};
 use crate::model::{Crystal, Dimension};
+use crate::report::units::{self, Scale, Trade};
 
-const WIDTH: f64 = 960.0;
-const HEIGHT: f64 = 580.0;
-/// The panels: left edge, right edge.
-const CELLS: (f64, f64) = (84.0, 600.0);
-const ZONE: (f64, f64) = (640.0, 880.0);
-/// Their top and bottom.
-const TOP: f64 = 78.0;
-const BOTTOM: f64 = 490.0;
-/// Points along a line.
-const POINTS: usize = 96;
+/// The panels.
+const CELLS: Panel = (84.0, 600.0);
+const ZONE: Panel = (640.0, 880.0);
 /// The share of the panel's height that the highest |ψ|² takes.
 const WAVE_HEIGHT: f64 = 0.09;
 
-const INK: &str = "#22303c";
-const FAINT: &str = "#8796a5";
 const WALL: &str = "#dfe5ea";
 const WALL_EDGE: &str = "#5d6f80";
-const BAND: &str = "#f2b84b";
 const LOWER: &str = "#146c94";
 const UPPER: &str = "#b8405e";
 
-/// The picture of a crystal.
-///
-/// # Errors
-/// In words, where it has no bands to draw.
-pub fn draw(
-    analyst: &Analyst,
-    crystal: &Crystal,
-    cancel: &(dyn Fn() -> bool + Sync),
-) -> Result<String, String> {
-    let told = |why| words::unsolved(&why);
-    let solution = analyst.solver().solve(crystal, cancel).map_err(told)?;
-    let picture = analyst
-        .solver()
-        .picture(crystal, POINTS, cancel)
-        .map_err(told)?;
-    let canvas = Canvas::new(crystal, &solution, &picture).ok_or("there is nothing to draw")?;
-    Ok(canvas.document().to_string() + "\n")
+/// The picture; nothing where there is nothing to draw.
+pub(super) fn draw(crystal: &Crystal, solution: &Solution, picture: &Picture) -> Option<Document> {
+    Some(Canvas::new(crystal, solution, picture)?.document())
 }
 
 /// What is drawn, and on which axes.
@@ -112,66 +89,27 @@ impl<'a> Canvas<'a> {
     }
 
     fn document(&self) -> Document {
-        Document::new()
-            .set("viewBox", (0, 0, WIDTH, HEIGHT))
-            .set("width", WIDTH)
-            .set("height", HEIGHT)
-            .set("font-family", "system-ui, sans-serif")
-            .set("font-size", 14)
-            .add(
-                Rectangle::new()
-                    .set("width", WIDTH)
-                    .set("height", HEIGHT)
-                    .set("fill", "#ffffff"),
-            )
-            .add(self.clips())
-            .add(self.head())
+        sheet(&[("cells", CELLS), ("zone", ZONE)])
+            .add(head(self.crystal, &self.trade, &self.numbers(), CELLS.0))
             .add(self.bands())
             .add(self.potential())
             .add(self.waves())
             .add(self.dispersion())
             .add(self.frames())
-            .add(self.energy_axis())
+            .add(energy_axis(CELLS.0, self.window, &self.energy, |energy| {
+                self.y(energy)
+            }))
             .add(self.position_axis())
             .add(self.legend())
     }
 
-    fn clips(&self) -> svg::node::element::Definitions {
-        let clip = |name: &str, (left, right): (f64, f64)| {
-            let area = rectangle(left, TOP, right, BOTTOM);
-            svg::node::element::ClipPath::new()
-                .set("id", name)
-                .add(area)
-        };
-        svg::node::element::Definitions::new()
-            .add(clip("cells", CELLS))
-            .add(clip("zone", ZONE))
-    }
-
-    fn head(&self) -> Group {
-        let name = match self.crystal.title.is_empty() {
-            true => self.crystal.name.clone(),
-            false => self.crystal.title.clone(),
-        };
-        let gap = self
-            .solution
-            .gaps
-            .first()
-            .map(|gap| format!(" · gap 1 {}", self.trade.tell_energy(gap.size)));
-        let width = self
-            .solution
-            .bands
-            .first()
-            .map(|band| format!(" · width 1 {}", self.trade.tell_energy(band.width)));
-        let about = format!(
-            "{}{}{}",
-            show_text::cell(self.crystal, &self.trade),
-            gap.unwrap_or_default(),
-            width.unwrap_or_default()
-        );
-        Group::new()
-            .add(text(&name, CELLS.0, 32.0, "start", INK).set("font-size", 20))
-            .add(text(&about, CELLS.0, 56.0, "start", FAINT))
+    /// The lowest gap and width.
+    fn numbers(&self) -> Vec<String> {
+        let gap = self.solution.gaps.first();
+        let gap = gap.map(|gap| format!("gap 1 {}", self.trade.tell_energy(gap.size)));
+        let width = self.solution.bands.first();
+        let width = width.map(|band| format!("width 1 {}", self.trade.tell_energy(band.width)));
+        gap.into_iter().chain(width).collect()
     }
 
     /// The bands as stripes through both panels.
@@ -320,35 +258,6 @@ impl<'a> Canvas<'a> {
         group.add(text("wave number", middle, BOTTOM + 42.0, "middle", FAINT))
     }
 
-    fn energy_axis(&self) -> Group {
-        let scaled = (
-            self.window.0 / self.energy.factor,
-            self.window.1 / self.energy.factor,
-        );
-        let mut group = Group::new();
-        for tick in ticks(scaled.0, scaled.1, 7) {
-            let y = self.y(tick * self.energy.factor);
-            group = group
-                .add(line_between((CELLS.0 - 5.0, y), (CELLS.0, y), FAINT, 1.0))
-                .add(text(
-                    &units::digits(tick, 0.0),
-                    CELLS.0 - 9.0,
-                    y + 5.0,
-                    "end",
-                    INK,
-                ));
-        }
-        let middle = 0.5 * (TOP + BOTTOM);
-        let label = text(
-            &format!("energy in {}", self.energy.name),
-            0.0,
-            0.0,
-            "middle",
-            FAINT,
-        );
-        group.add(label.set("transform", format!("translate(24 {middle}) rotate(-90)")))
-    }
-
     fn position_axis(&self) -> Group {
         let length = 2.0 * self.picture.period;
         let scale = self.trade.scale(Dimension::LENGTH, length);
@@ -385,71 +294,5 @@ impl<'a> Canvas<'a> {
             x += 240.0;
         }
         group
-    }
-}
-
-fn rectangle(left: f64, top: f64, right: f64, bottom: f64) -> Rectangle {
-    Rectangle::new()
-        .set("x", left)
-        .set("y", top)
-        .set("width", right - left)
-        .set("height", bottom - top)
-}
-
-fn line_between(from: (f64, f64), to: (f64, f64), colour: &str, width: f64) -> Line {
-    Line::new()
-        .set("x1", from.0)
-        .set("y1", from.1)
-        .set("x2", to.0)
-        .set("y2", to.1)
-        .set("stroke", colour)
-        .set("stroke-width", width)
-}
-
-fn stroke(data: Data, colour: &str, width: f64) -> Path {
-    Path::new()
-        .set("d", data)
-        .set("fill", "none")
-        .set("stroke", colour)
-        .set("stroke-width", width)
-        .set("stroke-linejoin", "round")
-}
-
-fn text(content: &str, x: f64, y: f64, anchor: &str, colour: &str) -> Text {
-    Text::new(content)
-        .set("x", x)
-        .set("y", y)
-        .set("text-anchor", anchor)
-        .set("fill", colour)
-}
-
-/// Round values within a range, about `wanted` of them, steps of 1, 2 or 5 times a power of ten.
-fn ticks(from: f64, to: f64, wanted: usize) -> Vec<f64> {
-    let rough = (to - from) / wanted.max(1) as f64;
-    if !(rough.is_finite() && rough > 0.0) {
-        return Vec::new();
-    }
-    let power = 10f64.powf(rough.log10().floor());
-    let factor = [1.0, 2.0, 5.0, 10.0]
-        .into_iter()
-        .find(|factor| factor * power >= rough);
-    let step = factor.unwrap_or(10.0) * power;
-    let first = (from / step).ceil() as i64;
-    let last = (to / step).floor() as i64;
-    (first..=last)
-        .map(|count| (count as f64 * step * 1e9).round() / 1e9)
-        .collect()
-}
-
-#[cfg(test)]
-mod tests {
-    use super::*;
-
-    #[test]
-    fn ticks_are_round_and_inside() {
-        assert_eq!(ticks(-14.1, 370.0, 7), [0.0, 100.0, 200.0, 300.0]);
-        assert_eq!(ticks(0.0, 16.0, 6), [0.0, 5.0, 10.0, 15.0]);
-        assert!(ticks(0.0, f64::NAN, 6).is_empty());
-        assert!(ticks(3.0, 3.0, 6).is_empty());
     }
 }
