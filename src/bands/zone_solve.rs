@@ -147,7 +147,7 @@ pub(super) fn zone_solution(
         };
         let found = found.map_err(unsolved)?;
         zone.check(&found)?;
-        let names = ZoneNames::new(crystal);
+        let names = ZoneNames::new(crystal, &zone.waves);
         let bands: Vec<Band> = found
             .bands
             .iter()
@@ -215,12 +215,12 @@ impl Zone<'_> {
         )))
     }
 
-    fn extremum(&self, names: &ZoneNames, found: &planewaves::Extremum) -> Extremum {
+    fn extremum(&self, names: &ZoneNames<'_>, found: &planewaves::Extremum) -> Extremum {
         let k: Vec<f64> = found.k.iter().take(self.field.dimension).copied().collect();
         let mass = self.field.scale.mass;
         Extremum {
             energy: self.energy(found.energy),
-            point: names.name(&k),
+            point: names.name(found.k),
             k,
             mass: found.mass.map(|estimate| Measured {
                 value: estimate.value * mass,
