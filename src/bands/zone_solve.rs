@@ -11,7 +11,7 @@ use super::filling::{Filled, class};
 use super::solve::{MOST_BANDS, filled, gap_above};
 use super::zone_field::ZoneField;
 use super::zone_names::ZoneNames;
-use super::{Band, Cancelled, Extremum, Gap, GapKind, Measured, Solution, Unsolved};
+use super::{Band, Cancelled, Extremum, Gap, GapKind, MassAxis, Measured, Solution, Unsolved};
 
 /// How much work an answer may take.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
@@ -226,7 +226,30 @@ impl Zone<'_> {
                 value: estimate.value * mass,
                 uncertainty: estimate.error * mass,
             }),
+            axes: self.axes(found),
         }
+    }
+
+    /// The masses along the principal axes; each is known at least as well, relatively, as as many times the mean mass.
+    fn axes(&self, found: &planewaves::Extremum) -> Vec<MassAxis> {
+        let dimension = self.field.dimension;
+        let Some(mean) = found.mass else {
+            return Vec::new();
+        };
+        let share = dimension as f64 * (mean.error / mean.value).abs();
+        let principal = found.principal(dimension).into_iter();
+        principal
+            .map(|(inverse, along)| {
+                let mass = self.field.scale.mass / inverse;
+                MassAxis {
+                    mass: Measured {
+                        value: mass,
+                        uncertainty: mass.abs() * share,
+                    },
+                    along: along.iter().take(dimension).copied().collect(),
+                }
+            })
+            .collect()
     }
 
     fn gap(&self, found: &planewaves::Gap) -> Gap {

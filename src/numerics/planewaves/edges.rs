@@ -319,6 +319,11 @@ impl Waves<'_> {
             value.value -= polished;
             value.error += 0.5 * polished;
             let known = value.error;
+            let apart = target.simple(&levels.energies, 1e-5 * self.frame.unit());
+            if spot.seat == Seat::Smooth && !apart {
+                // Levels cross on this basis where they did not on that of the search.
+                spot.seat = Seat::Creased(0.0);
+            }
             if let Seat::Creased(rise) = spot.seat {
                 value.error += rise + misplaced;
             }
@@ -326,8 +331,8 @@ impl Waves<'_> {
             let room = self.frame.expected(next) * 1.25 + 20.0 <= budget.max_basis as f64;
             let enough = plan.tolerance.is_none_or(|tolerance| known <= tolerance);
             // A first cut without one below it is judged by δ alone; masses need two cuts.
-            let masses =
-                target.kind == Kind::Separation || tensors.len() >= 2 || tensors.is_empty();
+            let massless = target.kind == Kind::Separation || !apart;
+            let masses = massless || tensors.len() >= 2 || tensors.is_empty();
             if !room
                 || (enough && masses)
                 || (plan.tolerance.is_none() && lower.is_some())

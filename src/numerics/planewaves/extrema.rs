@@ -149,25 +149,18 @@ impl Search<'_, '_> {
     /// The extremum that a start leads to.
     pub fn run(&self, start: [f64; 3]) -> Result<Spot, Error> {
         let mut search = self.clone();
-        let mut best: Option<Spot> = None;
+        let mut last: Option<Spot> = None;
         let mut k = start;
         // A crossing may lie on the way, or the way may lead off this basis, so searches take turns, a few times.
         for _ in 0..8 {
             if search.drifted(k) {
                 search.basis = self.waves.basis(k, self.cut);
                 search.centre = k;
+                // Levels of another basis are not to be compared.
+                last = None;
             }
             let levels = search.solve(k, true)?;
             let value = self.target.value(&levels.energies);
-            if let Some(best) = best.filter(|best| value >= best.value) {
-                // Only the old basis promised more.
-                return Ok(best);
-            }
-            best = Some(Spot {
-                k,
-                value,
-                seat: Seat::Smooth,
-            });
             // Levels that coincide cannot come nearer.
             if self.target.kind == Kind::Separation && value <= 100.0 * ROUNDING * self.unit() {
                 return Ok(Spot {
@@ -188,12 +181,21 @@ impl Search<'_, '_> {
             let spot = search.creep(k)?;
             let ends = search.solve(spot.k, false)?;
             let done = spot.seat == Seat::Pinned || !search.simple(&ends);
-            if done && !search.drifted(spot.k) {
+            let stuck = last.is_some_and(|last| spot.value >= last.value - ROUNDING * self.unit());
+            last = Some(spot);
+            if (done || stuck) && !search.drifted(spot.k) {
                 return Ok(spot);
             }
             k = spot.k;
         }
-        best.ok_or(Error::NotFinite)
+        // It went on and on: what is left to go is not known.
+        let wandering = Seat::Creased(1e-2 * self.unit());
+        let value = self.target.value(&search.solve(k, false)?.energies);
+        Ok(Spot {
+            k,
+            value,
+            seat: wandering,
+        })
     }
 
     fn simple(&self, levels: &Levels) -> bool {
@@ -263,12 +265,13 @@ impl Search<'_, '_> {
     }
 
     /// Where a start is higher than some point around it at several scales, the search over creases from the lowest of
-    /// these; else the start, which is pinned. A point that symmetry does not favour is never taken to be pinned.
+    /// these; else the start, which is pinned. Only points that symmetry singles out are taken to be pinned: elsewhere
+    /// the way down may be narrower than any choice of directions.
     fn creep(&self, start: [f64; 3]) -> Result<Spot, Error> {
         // Well above the rounding of a level, or noise would lead the search about.
         let floor = 10.0 * ROUNDING * self.unit();
         let value = self.target.value(&self.solve(start, false)?.energies);
-        if self.waves.symmetry.little_group(start).len() == 1 {
+        if !self.waves.symmetry.singles_out(start) {
             return self.crease(start);
         }
         let directions = self.directions(start);
