@@ -133,6 +133,69 @@ fn separable_cosines_are_sums_of_one_dimensional_bands() {
     assert!(worst.0 < 1e-9);
 }
 
+/// Where bands overlap, edges lie on crossings at no point with a name: sorted sums of one-dimensional levels, extremal
+/// over the zone (`tests/reference/lattices_overlaps.py`).
+#[test]
+fn edges_on_crossings_of_overlapping_bands_are_found() {
+    let rows: Value =
+        serde_json::from_str(include_str!("reference/lattices_overlaps.json")).unwrap();
+    let mut worst = (0.0_f64, String::new());
+    for (name, row) in rows.as_object().unwrap() {
+        let parts: Vec<f64> = name.split(' ').map(|x| x.parse().unwrap()).collect();
+        let (d, s) = (parts[0] as usize, parts[1]);
+        let components = cosines(s, d);
+        let wanted: Vec<Vec<f64>> = row.as_array().unwrap().iter().map(numbers).collect();
+        let tolerance = if d == 2 { 1e-9 } else { 1e-6 };
+        let budget = endless();
+        let started = std::time::Instant::now();
+        let zone = solve(
+            &cubic(d),
+            finite(&components, 2.0),
+            wanted.len(),
+            Accuracy::Settled(tolerance),
+            &budget,
+        )
+        .unwrap();
+        let coarse = solve(
+            &cubic(d),
+            finite(&components, 2.0),
+            wanted.len(),
+            Accuracy::Coarse,
+            &budget,
+        )
+        .unwrap();
+        println!(
+            "{d}D s = {s}: {} solves of at most {} waves, {:.2} s",
+            zone.spent,
+            zone.basis,
+            started.elapsed().as_secs_f64()
+        );
+        for (band, wanted) in wanted.iter().enumerate() {
+            for (zone, what) in [(&zone, "settled"), (&coarse, "coarse")] {
+                let found = zone.bands[band];
+                for (found, wanted, edge) in [
+                    (found.bottom, wanted[0], "bottom"),
+                    (found.top, wanted[1], "top"),
+                ] {
+                    let label = format!(
+                        "{d}D s = {s} {edge} of band {} at {:?}, {what}",
+                        band + 1,
+                        found.k
+                    );
+                    println!("  {label}: {:?} for {wanted}", found.energy);
+                    assert_inside(found.energy, wanted, 1e-9, &label);
+                    let error = (found.energy.value - wanted).abs();
+                    if what == "settled" && error > worst.0 {
+                        worst = (error, label);
+                    }
+                }
+            }
+        }
+    }
+    println!("worst edge: {:.1e} Er, {}", worst.0, worst.1);
+    assert!(worst.0 < 1e-7);
+}
+
 fn hexagonal(v: f64) -> (Lattice, impl Fn([i32; 3]) -> Complex<f64> + Sync) {
     // |b| = √3; direct vectors at 120°, reciprocal ones at 60°.
     let a = 4.0 * PI / 3.0;
@@ -180,9 +243,7 @@ fn honeycomb_touches_at_its_zone_corner() {
                 apart.size.value.abs() <= apart.size.error && apart.size.error < 1e-10,
                 "v = {v}: {apart:?}"
             );
-            assert!(
-                (apart.k[0] - 1.0 / 3.0).abs() < 1e-9 && (apart.k[1] - 1.0 / 3.0).abs() < 1e-9
-            );
+            assert!((apart.k[0] - 1.0 / 3.0).abs() < 1e-9 && (apart.k[1] - 1.0 / 3.0).abs() < 1e-9);
             if v >= 1.0 {
                 assert_eq!(gap.kind, GapKind::Closed, "v = {v}: {gap:?}");
                 assert!(gap.size.error < 1e-10);

@@ -8,7 +8,7 @@ use crate::model::{
 };
 
 use super::filling::Filled;
-use super::probe::{Measures, Probe, Reading, Side};
+use super::probe::{Least, Measures, Probe, Reading, Search, Side};
 use super::quantity::{Crystals, Evaluation, Untested};
 use super::worst::Sample;
 use super::{
@@ -20,6 +20,10 @@ pub type Rebuild<'a> = dyn Fn(CrystalRef, &Setting) -> Option<Arc<Crystal>> + Sy
 
 /// Tolerances past this many are taken at their corners by sign alone.
 const MOST_TOLERANCES: usize = 24;
+
+/// Points of the box of tolerances that are looked at for one target, in two and three dimensions: each is a solve of the
+/// whole zone.
+const MOST_POINTS: [usize; 2] = [120, 40];
 
 /// What a crystal's statements ask for.
 pub(super) struct Assessor<'a> {
@@ -136,25 +140,31 @@ impl Assessor<'_> {
         target: &Target,
         assessment: &mut Assessment,
     ) -> Result<(), Untested> {
-        let exact = self.has_exact_slopes(target);
-        let mut least: Option<(Sample, Sample)> = None;
+        let search = self.search(target);
+        let mut least: Option<Least> = None;
+        let mut complete = true;
         for side in [Side::Lower, Side::Upper] {
-            let found = probe.least_margin(side, exact, f64::NEG_INFINITY)?;
-            let better = |best: &Sample| {
+            let found = probe.least_margin(side, search)?;
+            complete &= found.as_ref().is_none_or(|found| found.complete);
+            let better = |found: &Least| {
                 least
                     .as_ref()
-                    .is_none_or(|(_, least)| best.value < least.value)
+                    .is_none_or(|least| found.worst.value < least.worst.value)
             };
-            if found.as_ref().is_some_and(|(_, best)| better(best)) {
+            if found.as_ref().is_some_and(better) {
                 least = found;
             }
         }
-        let Some((centre, worst)) = least else {
+        let Some(Least { centre, worst, .. }) = least else {
             return Ok(());
         };
         let there = probe.at(&worst.point, false)?;
         assessment.worst = Some(there.value.value.value);
         note_corner(assessment, probe.draws, &centre, &worst);
+        if search.corners && assessment.reason.is_none() {
+            assessment.reason =
+                Some("the worst case is the worst of the tolerances' corners".into());
+        }
         if assessment.state == TargetState::Met {
             match state(there.value.value, limits(&there)) {
                 TargetState::Missed => assessment.state = TargetState::AtRisk,
@@ -163,10 +173,72 @@ impl Assessor<'_> {
                     assessment.reason =
                         Some("at the worst values of the tolerances the limit lies inside the uncertainty".into());
                 }
+                _ if !complete => leave_open(assessment),
                 _ => {}
             }
         }
         Ok(())
+    }
+
+    /// How the worst case of a target is searched for.
+    fn search(&self, target: &Target) -> Search {
+        let Wish::Compare { expression, .. } = &target.wish else {
+            return self.search_in(self.crystal.dimension, true);
+        };
+        let quantities = expression.quantities();
+        let nominal = Setting::default();
+        let dimensions = quantities.iter().filter_map(|quantity| {
+            self.at(quantity.of, &nominal)
+                .map(|crystal| crystal.dimension)
+        });
+        let dimension = dimensions.max().unwrap_or(self.crystal.dimension);
+        let smooth = !quantities.iter().any(|quantity| self.is_kinked(quantity));
+        let exact = self.has_exact_slopes(target);
+        Search {
+            exact,
+            corners: !exact && dimension > 1,
+            ..self.search_in(dimension, smooth)
+        }
+    }
+
+    fn search_in(&self, dimension: usize, smooth: bool) -> Search {
+        Search {
+            exact: true,
+            smooth,
+            floor: f64::NEG_INFINITY,
+            most: match dimension {
+                0 | 1 => usize::MAX,
+                2 => MOST_POINTS[0],
+                _ => MOST_POINTS[1],
+            },
+            corners: false,
+        }
+    }
+
+    /// Whether a change may split the levels that a quantity speaks of: slopes are then one-sided.
+    fn is_kinked(&self, quantity: &Quantity) -> bool {
+        let Some(crystal) = self.at(quantity.of, &Setting::default()) else {
+            return true;
+        };
+        if crystal.dimension < 2 {
+            return false;
+        }
+        let Ok(solution) = self.solver.solve(&crystal, self.cancelled) else {
+            return true;
+        };
+        let band = |number: usize| solution.bands.get(number.wrapping_sub(1));
+        // An extremum on a crossing has no mass.
+        let top = |number: usize| band(number).is_none_or(|band| band.top.mass.is_none());
+        let bottom = |number: usize| band(number).is_none_or(|band| band.bottom.mass.is_none());
+        match quantity.kind {
+            QuantityKind::Gap(number) => {
+                top(number) || number < solution.bands.len() && bottom(number + 1)
+            }
+            QuantityKind::Width(number) => top(number) || bottom(number),
+            QuantityKind::Top(number) => top(number),
+            QuantityKind::Bottom(number) => bottom(number),
+            _ => true,
+        }
     }
 
     /// Whether a target speaks only of quantities with exact derivatives.
@@ -304,16 +376,43 @@ impl Assessor<'_> {
             measures: Measures::Formula(&gap),
             draws: &draws,
         };
-        let Some((centre, worst)) = probe.least_margin(Side::Lower, true, 0.0)? else {
+        let dimension = self
+            .at(of, &Setting::default())
+            .map_or(self.crystal.dimension, |crystal| crystal.dimension);
+        let quantity = Quantity {
+            of,
+            place: assessment.place,
+            kind: QuantityKind::Gap(band),
+        };
+        let search = Search {
+            floor: 0.0,
+            ..self.search_in(dimension, !self.is_kinked(&quantity))
+        };
+        let Some(least) = probe.least_margin(Side::Lower, search)? else {
             return Ok(());
         };
+        let Least {
+            centre,
+            worst,
+            complete,
+        } = least;
         assessment.worst = Some(worst.value);
         note_corner(assessment, &draws, &centre, &worst);
         if worst.value <= 0.0 {
             assessment.state = TargetState::AtRisk;
+        } else if !complete {
+            leave_open(assessment);
         }
         Ok(())
     }
+}
+
+/// The worst case is not known: what holds where it was looked for may fail elsewhere.
+fn leave_open(assessment: &mut Assessment) {
+    assessment.state = TargetState::Undecided;
+    assessment.reason = Some(
+        "the search for the worst values of the tolerances was cut short: it is not exact".into(),
+    );
 }
 
 /// Writes down where the worst case lies and which tolerance spends most of the margin on the way there.

@@ -39,6 +39,31 @@ pub(super) struct Probe<'a> {
     pub draws: &'a [ParameterId],
 }
 
+/// The least margin over the box of tolerances.
+pub(super) struct Least {
+    /// At the nominal values.
+    pub centre: Sample,
+    /// At the worst ones found.
+    pub worst: Sample,
+    /// Whether the search came to its end.
+    pub complete: bool,
+}
+
+/// How a least margin is searched for.
+#[derive(Clone, Copy)]
+pub(super) struct Search {
+    /// Whether there are exact derivatives.
+    pub exact: bool,
+    /// Whether the margin is smooth at the nominal values.
+    pub smooth: bool,
+    /// A margin at or below this cannot be undercut.
+    pub floor: f64,
+    /// How many points of the box may be looked at.
+    pub most: usize,
+    /// Whether only corners are looked at: where each point is dear and its derivatives are not known.
+    pub corners: bool,
+}
+
 /// Value and limits at one point.
 pub(super) struct Reading {
     pub value: Leaf,
@@ -142,13 +167,12 @@ impl Probe<'_> {
         self.draws.iter().map(slope).collect()
     }
 
-    /// The least margin over the box, as (at the nominal values, at the worst); `None` without such a limit.
-    pub fn least_margin(
-        &self,
-        side: Side,
-        exact: bool,
-        floor: f64,
-    ) -> Result<Option<(Sample, Sample)>, Untested> {
+    /// The least margin over the box; `None` without such a limit.
+    pub fn least_margin(&self, side: Side, search: Search) -> Result<Option<Least>, Untested> {
+        if search.corners {
+            return self.least_corner(side, search.most);
+        }
+        let exact = search.exact;
         if self
             .margin(&vec![0.0; self.draws.len()], side, exact)?
             .is_none()
@@ -156,18 +180,102 @@ impl Probe<'_> {
             return Ok(None);
         }
         let mut failure = None;
-        let mut evaluate = |point: &[f64]| match self.margin(point, side, exact) {
-            Ok(found) => found,
-            Err(untested) => {
-                failure = Some(untested);
-                None
+        let mut seen: Vec<Sample> = Vec::new();
+        let mut evaluate = |point: &[f64]| {
+            if seen.len() >= search.most {
+                return None;
+            }
+            match self.margin(point, side, exact) {
+                Ok(Some((value, slopes))) => {
+                    seen.push(Sample {
+                        point: point.to_vec(),
+                        value,
+                        slopes: slopes.clone(),
+                    });
+                    Some((value, slopes))
+                }
+                Ok(None) => None,
+                Err(untested) => {
+                    failure = Some(untested);
+                    None
+                }
             }
         };
-        let found = worst::least(self.draws.len(), floor, &mut evaluate);
-        match failure {
-            Some(untested) => Err(untested),
-            None => Ok(found),
+        let found = worst::least(self.draws.len(), search.floor, search.smooth, &mut evaluate);
+        if let Some(untested) = failure {
+            return Err(untested);
         }
+        if let Some((centre, worst)) = found {
+            return Ok(Some(Least {
+                centre,
+                worst,
+                complete: true,
+            }));
+        }
+        let lowest = seen
+            .iter()
+            .filter(|sample| sample.value.is_finite())
+            .min_by(|a, b| a.value.total_cmp(&b.value));
+        Ok(seen.first().zip(lowest).map(|(centre, worst)| Least {
+            centre: centre.clone(),
+            worst: worst.clone(),
+            complete: false,
+        }))
+    }
+}
+
+impl Probe<'_> {
+    /// The least margin at the corners of the box (and its centre); slopes are half the mean differences along each axis.
+    fn least_corner(&self, side: Side, most: usize) -> Result<Option<Least>, Untested> {
+        let count = self.draws.len();
+        let value = |point: &[f64]| -> Result<Option<f64>, Untested> {
+            let reading = self.at(point, false)?;
+            Ok(margin_of(&reading, side).map(|(value, _)| value))
+        };
+        let Some(centre) = value(&vec![0.0; count])? else {
+            return Ok(None);
+        };
+        let complete = count < 12 && 1 << count <= most;
+        // Too many: the corners that differ from the nominal values in one tolerance.
+        let points: Vec<Vec<f64>> = match complete {
+            true => (0..1_usize << count)
+                .map(|bits| {
+                    let sign = |axis: usize| if bits >> axis & 1 == 1 { 1.0 } else { -1.0 };
+                    (0..count).map(sign).collect()
+                })
+                .collect(),
+            false => (0..2 * count.min(most / 2))
+                .map(|index| {
+                    let mut point = vec![0.0; count];
+                    if let Some(at) = point.get_mut(index / 2) {
+                        *at = if index % 2 == 0 { -1.0 } else { 1.0 };
+                    }
+                    point
+                })
+                .collect(),
+        };
+        let mut slopes = vec![0.0; count];
+        let mut worst = (vec![0.0; count], centre);
+        let share = 1.0 / if complete { points.len() as f64 } else { 2.0 };
+        for point in points {
+            let found = value(&point)?.unwrap_or(centre);
+            for (slope, at) in slopes.iter_mut().zip(&point) {
+                *slope += share * at * found;
+            }
+            if found < worst.1 {
+                worst = (point, found);
+            }
+        }
+        let sample = |point: Vec<f64>, value: f64| Sample {
+            point,
+            value,
+            slopes: slopes.clone(),
+        };
+        Ok(Some(Least {
+            centre: sample(vec![0.0; count], centre),
+            worst: sample(worst.0, worst.1),
+            complete,
+        }))
     }
 }
 

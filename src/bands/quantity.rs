@@ -85,6 +85,9 @@ impl Evaluation<'_> {
     fn quantity(&self, quantity: &Quantity) -> Result<Leaf, Untested> {
         let crystal =
             (self.crystals)(quantity.of).ok_or_else(|| because("its crystal cannot be read"))?;
+        if let (QuantityKind::Level(number, k), true) = (&quantity.kind, crystal.dimension > 1) {
+            return self.zone_level(&crystal, *number, k);
+        }
         let solution = self.solver.solve(&crystal, self.cancelled)?;
         let mut leaf = Leaf {
             value: self.value(&crystal, &solution, &quantity.kind)?,
@@ -94,6 +97,21 @@ impl Evaluation<'_> {
             leaf.slopes = self.slopes(&crystal, &solution, &quantity.kind)?;
         }
         Ok(leaf)
+    }
+
+    /// A level of a plane or solid crystal: its zone need not be solved for that.
+    fn zone_level(&self, crystal: &Crystal, number: usize, k: &[f64]) -> Result<Leaf, Untested> {
+        if !(1..=crystal.bands).contains(&number) {
+            return Err(too_few(number, crystal.bands));
+        }
+        let slopes = match self.with_slopes {
+            true => zone_slopes::level_slopes(crystal, number, k, self.cancelled)?,
+            false => Vec::new(),
+        };
+        Ok(Leaf {
+            value: zone_quantity::level(crystal, number, k, self.cancelled)?,
+            slopes,
+        })
     }
 
     fn value(
@@ -132,9 +150,6 @@ impl Evaluation<'_> {
     }
 
     fn level(&self, crystal: &Crystal, number: usize, k: &[f64]) -> Result<Measured, Untested> {
-        if crystal.dimension > 1 {
-            return zone_quantity::level(crystal, number, k, self.cancelled);
-        }
         let budget = budget(self.cancelled);
         let chain = Chain::new(crystal, &budget)?;
         let level = numerics::level(&chain.cell, number - 1, turn(k), &budget).map_err(unsolved)?;
@@ -167,10 +182,6 @@ impl Evaluation<'_> {
             QuantityKind::Width(number) => Feature::Width(*number),
             QuantityKind::Bottom(number) => Feature::Bottom(*number),
             QuantityKind::Top(number) => Feature::Top(*number),
-            QuantityKind::Level(number, k) if crystal.dimension > 1 => {
-                let slopes = zone_slopes::level_slopes(crystal, *number, k, self.cancelled)?;
-                return Ok(slopes);
-            }
             QuantityKind::Level(number, k) => {
                 return Ok(Chain::new(crystal, &budget)?.level_slopes(
                     *number,

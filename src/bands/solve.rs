@@ -65,6 +65,7 @@ fn extremum(chain: &Chain<'_>, edge: &BandEdge) -> Extremum {
         k: vec![k],
         point: Some(point.to_string()),
         mass: edge.mass.map(|mass| chain.mass(mass)),
+        axes: Vec::new(),
     }
 }
 

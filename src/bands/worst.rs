@@ -28,17 +28,19 @@ const DESCENTS: usize = 24;
 /// Starts for the search inside the box.
 const STARTS: usize = 4;
 
-/// Finds the least value over the box. A value at or below `floor` (zero for a gap, with its uncertainty) cannot be undercut.
+/// Finds the least value over the box. A value at or below `floor` (zero for a gap, with its uncertainty) cannot be
+/// undercut. Where the function is `smooth` at the nominal values, slopes there are trusted to name the corner.
 pub(super) fn least(
     dimensions: usize,
     floor: f64,
+    smooth: bool,
     evaluate: &mut Evaluate<'_>,
 ) -> Option<(Sample, Sample)> {
     let mut search = Search { evaluate, floor };
     let centre = search.at(vec![0.0; dimensions])?;
     let corner = search.at(corner_below(&centre.slopes))?;
-    if dimensions == 0 || same_signs(&centre.slopes, &corner.slopes) && corner.value <= centre.value
-    {
+    let trusted = smooth && same_signs(&centre.slopes, &corner.slopes);
+    if dimensions == 0 || trusted && corner.value <= centre.value {
         return Some((centre, corner));
     }
     let best = search.inside(&centre, corner)?;
@@ -309,7 +311,8 @@ mod tests {
             count += 1;
             Some(f(point))
         };
-        let value = least(dimensions, f64::NEG_INFINITY, &mut evaluate).map(|(_, best)| best.value);
+        let value =
+            least(dimensions, f64::NEG_INFINITY, true, &mut evaluate).map(|(_, best)| best.value);
         (value.expect("a least value"), count)
     }
 
@@ -343,6 +346,24 @@ mod tests {
         let (value, count) = search(1, |t| (f(t), slopes(t)));
         assert!((value - 0.1 * 0.7 / 3.0).abs() < 1e-9, "{value}");
         assert!(count < 60, "{count} evaluations");
+    }
+
+    /// At a kink the mean slope names one corner, and its own slope agrees, though the other corner lies lower.
+    #[test]
+    fn a_kink_at_the_nominal_values_is_not_trusted() {
+        let f = |t: &[f64]| if t[0] > 0.0 { -t[0] } else { 4.0 * t[0] };
+        let slopes = |t: &[f64]| match t[0].partial_cmp(&0.0) {
+            Some(std::cmp::Ordering::Greater) => vec![-1.0],
+            Some(std::cmp::Ordering::Less) => vec![4.0],
+            _ => vec![-0.1],
+        };
+        let least_by = |smooth: bool| {
+            let mut evaluate = |t: &[f64]| Some((f(t), slopes(t)));
+            let found = least(1, f64::NEG_INFINITY, smooth, &mut evaluate);
+            found.expect("a least value").1.value
+        };
+        assert_eq!(least_by(true), -1.0);
+        assert_eq!(least_by(false), -4.0);
     }
 
     #[test]

@@ -1,45 +1,31 @@
-//! Which points of the zone have a name, up to the lattice's symmetry and reciprocal vectors.
+//! Which points of the zone have a name, up to the crystal's symmetry and reciprocal vectors.
+//!
+//! A potential may have less symmetry than its lattice. Points that only the lattice holds equal are then different
+//! points, and one that merely looks like a named one has no name: whatever is called X has the levels of X.
 
 use crate::model::Crystal;
-use crate::model::shape::symmetry::{Operation, point_operations};
+use crate::numerics::planewaves::Waves;
 
-/// Fractions of the reciprocal vectors this close are one point.
-const SAME: f64 = 1e-5;
-
-/// The named points of one lattice with its operations.
-pub(super) struct ZoneNames {
-    points: Vec<(&'static str, Vec<f64>)>,
-    operations: Vec<Operation>,
+/// The named points of one crystal.
+pub(super) struct ZoneNames<'a> {
+    points: Vec<(&'static str, [f64; 3])>,
+    waves: &'a Waves<'a>,
 }
 
-impl ZoneNames {
-    pub fn new(crystal: &Crystal) -> Self {
+impl<'a> ZoneNames<'a> {
+    pub fn new(crystal: &Crystal, waves: &'a Waves<'a>) -> Self {
+        let kernel = |k: &Vec<f64>| std::array::from_fn(|i| k.get(i).copied().unwrap_or(0.0));
+        let points = crystal.zone_points();
         Self {
-            points: crystal.zone_points(),
-            operations: point_operations(&crystal.primitive_values()),
+            points: points.iter().map(|(name, k)| (*name, kernel(k))).collect(),
+            waves,
         }
     }
 
     /// The name of a point, in fractions of the primitive reciprocal vectors.
-    pub fn name(&self, k: &[f64]) -> Option<String> {
-        let images: Vec<Vec<f64>> = self.operations.iter().map(|m| image(m, k)).collect();
-        let found = self
-            .points
-            .iter()
-            .find(|(_, point)| same(point, k) || images.iter().any(|image| same(point, image)));
+    pub fn name(&self, k: [f64; 3]) -> Option<String> {
+        let mut points = self.points.iter();
+        let found = points.find(|(_, point)| self.waves.same_point(*point, k));
         found.map(|(name, _)| (*name).to_string())
     }
-}
-
-fn image(operation: &Operation, k: &[f64]) -> Vec<f64> {
-    let row = |row: &Vec<i64>| row.iter().zip(k).map(|(m, x)| *m as f64 * x).sum();
-    operation.iter().map(row).collect()
-}
-
-/// Whether two points differ by a reciprocal vector.
-fn same(a: &[f64], b: &[f64]) -> bool {
-    a.iter().zip(b).all(|(x, y)| {
-        let apart = x - y;
-        (apart - apart.round()).abs() < SAME
-    })
 }

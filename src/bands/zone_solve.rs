@@ -11,7 +11,7 @@ use super::filling::{Filled, class};
 use super::solve::{MOST_BANDS, filled, gap_above};
 use super::zone_field::ZoneField;
 use super::zone_names::ZoneNames;
-use super::{Band, Cancelled, Extremum, Gap, GapKind, Measured, Solution, Unsolved};
+use super::{Band, Cancelled, Extremum, Gap, GapKind, MassAxis, Measured, Solution, Unsolved};
 
 /// How much work an answer may take.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
@@ -147,7 +147,7 @@ pub(super) fn zone_solution(
         };
         let found = found.map_err(unsolved)?;
         zone.check(&found)?;
-        let names = ZoneNames::new(crystal);
+        let names = ZoneNames::new(crystal, &zone.waves);
         let bands: Vec<Band> = found
             .bands
             .iter()
@@ -215,18 +215,41 @@ impl Zone<'_> {
         )))
     }
 
-    fn extremum(&self, names: &ZoneNames, found: &planewaves::Extremum) -> Extremum {
+    fn extremum(&self, names: &ZoneNames<'_>, found: &planewaves::Extremum) -> Extremum {
         let k: Vec<f64> = found.k.iter().take(self.field.dimension).copied().collect();
         let mass = self.field.scale.mass;
         Extremum {
             energy: self.energy(found.energy),
-            point: names.name(&k),
+            point: names.name(found.k),
             k,
             mass: found.mass.map(|estimate| Measured {
                 value: estimate.value * mass,
                 uncertainty: estimate.error * mass,
             }),
+            axes: self.axes(found),
         }
+    }
+
+    /// The masses along the principal axes; each is known at least as well, relatively, as as many times the mean mass.
+    fn axes(&self, found: &planewaves::Extremum) -> Vec<MassAxis> {
+        let dimension = self.field.dimension;
+        let Some(mean) = found.mass else {
+            return Vec::new();
+        };
+        let share = dimension as f64 * (mean.error / mean.value).abs();
+        let principal = found.principal(dimension).into_iter();
+        principal
+            .map(|(inverse, along)| {
+                let mass = self.field.scale.mass / inverse;
+                MassAxis {
+                    mass: Measured {
+                        value: mass,
+                        uncertainty: mass.abs() * share,
+                    },
+                    along: along.iter().take(dimension).copied().collect(),
+                }
+            })
+            .collect()
     }
 
     fn gap(&self, found: &planewaves::Gap) -> Gap {

@@ -21,6 +21,9 @@ const SAMPLES: usize = COLUMNS;
 /// The picture of a one-dimensional crystal, or nothing.
 #[must_use]
 pub fn of_crystal(crystal: &Crystal, solution: &Solution) -> Vec<String> {
+    if crystal.dimension != 1 {
+        return Vec::new();
+    }
     let bands: Vec<(f64, f64)> = solution
         .bands
         .iter()

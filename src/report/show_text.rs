@@ -49,6 +49,7 @@ pub fn crystal(
     if let Some(solution) = section.solution() {
         text.push('\n');
         text += &bands(solution, &trade);
+        text += &axes(solution, &trade);
         text += &filling(crystal, solution, &trade);
     }
     text += &wishes(locator, section, crystal, paint);
@@ -178,6 +179,56 @@ fn bands(solution: &Solution, trade: &Trade) -> String {
         Right, Right, Left, Right, Left, Right, Right, Left, Right, Right,
     ];
     lay(&stands, &rows, 2)
+}
+
+/// The masses of extrema whose masses differ with the direction.
+fn axes(solution: &Solution, trade: &Trade) -> String {
+    let numbered = solution.bands.iter().enumerate();
+    let edges = numbered.flat_map(|(index, band)| {
+        [("bottom", &band.bottom), ("top", &band.top)].map(|(side, edge)| (index + 1, side, edge))
+    });
+    let rows: Vec<Vec<String>> = edges
+        .filter(|(_, _, edge)| is_anisotropic(edge))
+        .map(|(number, side, edge)| {
+            let told = edge.axes.iter().map(|axis| {
+                let mass = units::tell_in(axis.mass, &trade.mass());
+                format!("{mass} along {}", direction(&axis.along))
+            });
+            let told: Vec<String> = told.collect();
+            vec![format!("masses at {side} {number}"), told.join(", ")]
+        })
+        .collect();
+    match rows.is_empty() {
+        true => String::new(),
+        false => format!("\n{}", lay(&[Stand::Left; 2], &rows, 2)),
+    }
+}
+
+fn is_anisotropic(edge: &Extremum) -> bool {
+    let Some(first) = edge.axes.first() else {
+        return false;
+    };
+    edge.axes.iter().any(|axis| {
+        let apart = (axis.mass.value - first.mass.value).abs();
+        let known = axis.mass.uncertainty + first.mass.uncertainty;
+        apart > known.max(1e-3 * first.mass.value.abs())
+    })
+}
+
+/// A direction by its components, the largest being one.
+fn direction(along: &[f64]) -> String {
+    let largest =
+        along.iter().copied().fold(
+            0.0,
+            |most: f64, x| {
+                if x.abs() > most.abs() + 1e-9 { x } else { most }
+            },
+        );
+    let told = along.iter().map(|x| {
+        let part = (x / largest * 1e3).round() / 1e3;
+        units::digits(if part == 0.0 { 0.0 } else { part }, 0.0)
+    });
+    format!("({})", told.collect::<Vec<_>>().join(", "))
 }
 
 /// Where an extremum is: the point's name, or k.

@@ -341,6 +341,7 @@ fn solution(bottom: f64) -> Solution {
         k: vec![0.0],
         point: None,
         mass: None,
+        axes: Vec::new(),
     };
     let bands = [0.0, 1.01, 2.02, 3.03].map(|above| Band {
         bottom: edge(bottom + above),

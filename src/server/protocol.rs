@@ -139,7 +139,10 @@ impl LanguageServer for Backend {
     async fn inlay_hint(&self, params: InlayHintParams) -> Result<Option<Vec<InlayHint>>> {
         let uri = params.text_document.uri;
         let found = self.look(&uri, Some(Depth::Rough), move |scene| {
-            Some((views::hinted(scene, scene.span(params.range)), scene.settled()))
+            Some((
+                views::hinted(scene, scene.span(params.range)),
+                scene.settled(),
+            ))
         });
         let Some((hints, settled)) = found.await? else {
             return Ok(None);

@@ -38,7 +38,9 @@ impl Scene {
 
     /// Whether the document's bands are fully known.
     pub(super) fn settled(&self) -> bool {
-        let file = self.analysis().and_then(|analysis| analysis.file(&self.path()));
+        let file = self
+            .analysis()
+            .and_then(|analysis| analysis.file(&self.path()));
         file.is_some_and(|file| file.depth >= Tier::Bands)
     }
 

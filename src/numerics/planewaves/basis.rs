@@ -2,7 +2,7 @@
 
 use super::eigen::Scalar;
 use super::lattice::{Frame, add, dot, real};
-use super::symmetry::{Symmetry, find_symmetry};
+use super::symmetry::{Symmetry, find_symmetry, rotate_real};
 use super::{Decay, Error, Lattice, Potential};
 use faer::Mat;
 use nalgebra::Complex;
@@ -103,6 +103,17 @@ impl<'a> Waves<'a> {
     /// The number of operations that leave every band unchanged, k → −k included.
     pub fn operations(&self) -> usize {
         self.symmetry.operations.len()
+    }
+
+    /// Whether two wave vectors have the same levels by symmetry: equal up to an operation and a reciprocal vector.
+    pub fn same_point(&self, one: [f64; 3], other: [f64; 3]) -> bool {
+        self.symmetry.operations.iter().any(|m| {
+            let image = rotate_real(m, one);
+            (0..3).all(|i| {
+                let apart = image[i] - other[i];
+                (apart - apart.round()).abs() < 1e-5
+            })
+        })
     }
 
     /// The factor e^{−iG·τ} that takes a coefficient back from the gauge in which matrices are real.

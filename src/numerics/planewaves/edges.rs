@@ -37,6 +37,19 @@ pub(super) struct Plan {
     solved: Solved,
 }
 
+impl Plan {
+    /// A step of the mesh along each reciprocal vector.
+    fn spacing(&self, dimension: usize) -> [f64; 3] {
+        std::array::from_fn(|i| {
+            if i < dimension {
+                1.0 / self.mesh.size[i] as f64
+            } else {
+                0.0
+            }
+        })
+    }
+}
+
 /// A point solved at one cut.
 struct Point {
     pub basis: Basis,
@@ -84,6 +97,8 @@ impl Solved {
 
 /// Second derivatives are taken on bases up to this size.
 const LARGEST_FOR_MASSES: usize = 450;
+/// Creases are searched anew on bases up to this size.
+const LARGEST_FOR_CREASES: usize = 260;
 
 impl Waves<'_> {
     /// The first cut and mesh.
@@ -208,13 +223,7 @@ impl Waves<'_> {
         budget: &Budget,
     ) -> Result<Vec<Spot>, Error> {
         let unit = self.frame.unit();
-        let spacing = std::array::from_fn(|i| {
-            if i < self.frame.dimension {
-                1.0 / plan.mesh.size[i] as f64
-            } else {
-                0.0
-            }
-        });
+        let spacing = plan.spacing(self.frame.dimension);
         let mut spots: Vec<Spot> = Vec::new();
         let most = if plan.tolerance.is_some() { 6 } else { 3 };
         for (point, _, floor) in starts(&plan.mesh, energies, target, 1e-11 * unit)
@@ -287,38 +296,62 @@ impl Waves<'_> {
     ) -> Result<Found, Error> {
         let mut spot = spot;
         spot.k = self.symmetry.canonical(&self.frame, self.tidy(spot.k));
-        let mut lower: Option<Arc<Point>> = None;
+        let mut lower: Option<(Arc<Point>, f64)> = None;
         let mut count = self.frame.expected(plan.cut);
         let mut cut = plan.cut;
         let mut tensors: Vec<Tensor> = Vec::new();
+        // The cut at which a crease was searched last: it lies as well as the levels were known there.
+        let mut searched = plan.cut;
+        let mut misplaced = f64::INFINITY;
         loop {
             let point = plan.solved.at(self, spot.k, cut, plan.count, budget)?;
             let (levels, predictions) = (&point.levels, &point.predictions);
+            if cut == searched {
+                misplaced = left_out(target, predictions);
+            }
             let polished = self.polish(target, &mut spot, &point, plan, &mut tensors, budget)?;
             let mut value = self.judge(
                 target,
                 levels,
                 predictions,
-                lower.as_ref().map(|l| l.predictions.as_slice()),
+                lower.as_ref().map(|(l, _)| l.predictions.as_slice()),
             );
             value.value -= polished;
             value.error += 0.5 * polished;
+            let known = value.error;
+            let apart = target.simple(&levels.energies, 1e-5 * self.frame.unit());
+            if spot.seat == Seat::Smooth && !apart {
+                // Levels cross on this basis where they did not on that of the search.
+                spot.seat = Seat::Creased(0.0);
+            }
             if let Seat::Creased(rise) = spot.seat {
-                value.error += rise + predictions.first().map_or(0.0, |p| p.left_out);
+                value.error += rise + misplaced;
             }
             let next = self.frame.cut_for(1.6 * count);
             let room = self.frame.expected(next) * 1.25 + 20.0 <= budget.max_basis as f64;
-            let enough = plan
-                .tolerance
-                .is_none_or(|tolerance| value.error <= tolerance);
+            let enough = plan.tolerance.is_none_or(|tolerance| known <= tolerance);
             // A first cut without one below it is judged by δ alone; masses need two cuts.
-            let masses =
-                target.kind == Kind::Separation || tensors.len() >= 2 || tensors.is_empty();
+            let massless = target.kind == Kind::Separation || !apart;
+            let masses = massless || tensors.len() >= 2 || tensors.is_empty();
             if !room
                 || (enough && masses)
                 || (plan.tolerance.is_none() && lower.is_some())
                 || lower_is_rounding(predictions, plan, masses)
             {
+                let elsewhere = matches!(spot.seat, Seat::Creased(_))
+                    && plan.tolerance.is_some_and(|t| value.error > t)
+                    && cut > searched
+                    && levels.waves.len() <= LARGEST_FOR_CREASES;
+                if elsewhere && self.replace(target, &mut spot, cut, plan, budget)? {
+                    searched = cut;
+                    lower = match lower {
+                        Some((_, cut)) => {
+                            Some((plan.solved.at(self, spot.k, cut, plan.count, budget)?, cut))
+                        }
+                        None => None,
+                    };
+                    continue;
+                }
                 let tensor = self.mass_of(&tensors, levels, target, &value);
                 return Ok(Found {
                     spot,
@@ -328,8 +361,37 @@ impl Waves<'_> {
                     basis: levels.waves.len(),
                 });
             }
-            lower = Some(Arc::clone(&point));
+            lower = Some((Arc::clone(&point), cut));
             (cut, count) = (next, self.frame.expected(next));
+        }
+    }
+
+    /// Searches along a crease anew at a larger cut; false where the budget has no room for that.
+    fn replace(
+        &self,
+        target: Target,
+        spot: &mut Spot,
+        cut: f64,
+        plan: &Plan,
+        budget: &Budget,
+    ) -> Result<bool, Error> {
+        let search = Search {
+            waves: self,
+            target,
+            basis: self.basis(spot.k, cut),
+            centre: spot.k,
+            cut,
+            count: plan.count,
+            spacing: plan.spacing(self.frame.dimension).map(|x| 0.2 * x),
+            budget,
+        };
+        match search.crease(spot.k) {
+            Err(Error::BudgetSpent) => Ok(false),
+            Err(error) => Err(error),
+            Ok(found) => {
+                *spot = found;
+                Ok(true)
+            }
         }
     }
 
@@ -470,6 +532,16 @@ impl Waves<'_> {
             k
         }
     }
+}
+
+/// What a cut leaves out of the levels of a target.
+fn left_out(target: Target, predictions: &[Prediction]) -> f64 {
+    let of = |level: usize| predictions.get(level).map_or(f64::INFINITY, |p| p.left_out);
+    target
+        .levels()
+        .into_iter()
+        .map(|(level, _)| of(level))
+        .sum()
 }
 
 fn lower_is_rounding(predictions: &[Prediction], plan: &Plan, masses: bool) -> bool {

@@ -3,8 +3,8 @@
 //! Every point of a mesh that is no higher than its neighbours starts a search (`f` below is the energy, its negative
 //! for a top, or the separation of two bands). Where the levels involved are simple the search is Newton's, with the
 //! exact slopes of `slopes.rs`: steps along the principal axes by |curvature|, so that saddles are left. At crossings
-//! `f` has creases, and a pattern of shrinking steps in many directions is used instead. A symmetric point that is
-//! lower than every direction from it at several scales is taken as it is.
+//! `f` has creases, and the search of `crease.rs` is used instead. A symmetric point that is lower than every direction
+//! from it at several scales is taken as it is.
 //!
 //! Failure mode: an extremum whose basin lies wholly between mesh points is not seen.
 
@@ -97,8 +97,6 @@ pub(super) fn distance(energies: &[f64], level: usize) -> f64 {
 
 /// Levels closer than this share of the natural unit are searched as crossings.
 const APART: f64 = 1e-5;
-/// Rounds of the pattern search: forty halvings, and as many moves.
-const ROUNDS: usize = 80;
 /// Differences below this share of the natural unit are rounding.
 const ROUNDING: f64 = 1e-13;
 
@@ -120,7 +118,7 @@ pub(super) struct Search<'w, 'a> {
 }
 
 impl Search<'_, '_> {
-    fn unit(&self) -> f64 {
+    pub(super) fn unit(&self) -> f64 {
         self.waves.frame.unit()
     }
 
@@ -151,25 +149,18 @@ impl Search<'_, '_> {
     /// The extremum that a start leads to.
     pub fn run(&self, start: [f64; 3]) -> Result<Spot, Error> {
         let mut search = self.clone();
-        let mut best: Option<Spot> = None;
+        let mut last: Option<Spot> = None;
         let mut k = start;
         // A crossing may lie on the way, or the way may lead off this basis, so searches take turns, a few times.
         for _ in 0..8 {
             if search.drifted(k) {
                 search.basis = self.waves.basis(k, self.cut);
                 search.centre = k;
+                // Levels of another basis are not to be compared.
+                last = None;
             }
             let levels = search.solve(k, true)?;
             let value = self.target.value(&levels.energies);
-            if let Some(best) = best.filter(|best| value >= best.value) {
-                // Only the old basis promised more.
-                return Ok(best);
-            }
-            best = Some(Spot {
-                k,
-                value,
-                seat: Seat::Smooth,
-            });
             // Levels that coincide cannot come nearer.
             if self.target.kind == Kind::Separation && value <= 100.0 * ROUNDING * self.unit() {
                 return Ok(Spot {
@@ -190,12 +181,21 @@ impl Search<'_, '_> {
             let spot = search.creep(k)?;
             let ends = search.solve(spot.k, false)?;
             let done = spot.seat == Seat::Pinned || !search.simple(&ends);
-            if done && !search.drifted(spot.k) {
+            let stuck = last.is_some_and(|last| spot.value >= last.value - ROUNDING * self.unit());
+            last = Some(spot);
+            if (done || stuck) && !search.drifted(spot.k) {
                 return Ok(spot);
             }
             k = spot.k;
         }
-        best.ok_or(Error::NotFinite)
+        // It went on and on: what is left to go is not known.
+        let wandering = Seat::Creased(1e-2 * self.unit());
+        let value = self.target.value(&search.solve(k, false)?.energies);
+        Ok(Spot {
+            k,
+            value,
+            seat: wandering,
+        })
     }
 
     fn simple(&self, levels: &Levels) -> bool {
@@ -203,7 +203,7 @@ impl Search<'_, '_> {
     }
 
     /// Whether a wave vector is farther from the basis's centre than a step of the mesh and a half.
-    fn drifted(&self, k: [f64; 3]) -> bool {
+    pub(super) fn drifted(&self, k: [f64; 3]) -> bool {
         (0..3).any(|i| (k[i] - self.centre[i]).abs() > 1.5 * self.spacing[i] + 1e-12)
     }
 
@@ -264,66 +264,41 @@ impl Search<'_, '_> {
         Ok(Err(levels.k))
     }
 
-    /// The search by shrinking patterns.
+    /// Where a start is higher than some point around it at several scales, the search over creases from the lowest of
+    /// these; else the start, which is pinned. Only points that symmetry singles out are taken to be pinned: elsewhere
+    /// the way down may be narrower than any choice of directions.
     fn creep(&self, start: [f64; 3]) -> Result<Spot, Error> {
         // Well above the rounding of a level, or noise would lead the search about.
         let floor = 10.0 * ROUNDING * self.unit();
-        let mut k = start;
-        let mut value = self.target.value(&self.solve(k, false)?.energies);
-        let mut directions = self.directions(start, true);
-        let (mut step, mut moved, mut failures, mut rise) = (0.5, false, 0, f64::INFINITY);
-        let mut turn = 0;
-        for _ in 0..ROUNDS {
-            if step <= 1e-9 || self.drifted(k) {
-                break;
-            }
+        let value = self.target.value(&self.solve(start, false)?.energies);
+        if !self.waves.symmetry.singles_out(start) {
+            return self.crease(start);
+        }
+        let directions = self.directions(start);
+        for step in [0.5, 0.125, 0.031_25, 0.007_812_5] {
             let mut best = (value - floor, None);
-            rise = f64::INFINITY;
             for direction in &directions {
-                let next = std::array::from_fn(|i| k[i] + step * direction[i]);
+                let next = std::array::from_fn(|i| start[i] + step * direction[i]);
                 let found = self.target.value(&self.solve(next, false)?.energies);
-                rise = rise.min((found - value).abs());
                 if found < best.0 {
                     best = (found, Some(next));
                 }
             }
-            if let (found, Some(next)) = best {
-                (value, k, failures) = (found, next, 0);
-                moved = true;
-                directions = self.directions(k, false);
-            } else {
-                failures += 1;
-                step *= if moved { 0.5 } else { 0.25 };
-                // Up in every direction at four scales, 1/2 to 1/128 of a mesh step.
-                if !moved && failures == 4 {
-                    return Ok(Spot {
-                        k,
-                        value,
-                        seat: Seat::Pinned,
-                    });
-                }
-                if moved {
-                    turn += 1;
-                    directions = self.directions(k, false);
-                    directions.extend(self.turned(turn));
-                }
+            if let Some(lower) = best.1 {
+                return self.crease(lower);
             }
         }
         Ok(Spot {
-            k,
+            k: start,
             value,
-            seat: Seat::Creased(rise.min(self.unit())),
+            seat: Seat::Pinned,
         })
     }
 
-    /// Steps to all neighbours in the mesh; from a symmetric point, one of each set that symmetry makes equal.
-    fn directions(&self, k: [f64; 3], reduce: bool) -> Vec<[f64; 3]> {
+    /// Steps to all neighbours in the mesh, one of each set that symmetry makes equal.
+    fn directions(&self, k: [f64; 3]) -> Vec<[f64; 3]> {
         let d = self.waves.frame.dimension;
-        let group = if reduce {
-            self.waves.symmetry.little_group(k)
-        } else {
-            Vec::new()
-        };
+        let group = self.waves.symmetry.little_group(k);
         let mut all: Vec<[f64; 3]> = Vec::new();
         for place in 0..27_usize {
             let offset = [place / 9, place / 3 % 3, place % 3].map(|x| x as f64 - 1.0);
@@ -341,27 +316,6 @@ impl Search<'_, '_> {
             }
         }
         all
-    }
-
-    /// Directions that no axis favours, new ones each turn (golden-ratio sequence).
-    fn turned(&self, turn: usize) -> Vec<[f64; 3]> {
-        let d = self.waves.frame.dimension;
-        (0..2 * d)
-            .flat_map(|j| {
-                let seed = (turn * 2 * d + j) as f64;
-                let way: [f64; 3] = std::array::from_fn(|i| {
-                    if i < d {
-                        (2.0 * std::f64::consts::PI
-                            * (seed * [0.618_033_988_7, 0.754_877_666_2, 0.569_840_291][i]).fract())
-                        .cos()
-                    } else {
-                        0.0
-                    }
-                });
-                let step: [f64; 3] = std::array::from_fn(|i| way[i] * self.spacing[i]);
-                [step, step.map(|x| -x)]
-            })
-            .collect()
     }
 }
 

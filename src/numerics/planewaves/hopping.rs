@@ -40,7 +40,8 @@ impl Waves<'_> {
         let mut best: Option<Vec<Estimate>> = None;
         for size in sizes {
             let mesh = self.mesh_of(std::array::from_fn(|i| if i < d { *size } else { 1 }));
-            let (energies, errors) = match self.settled_on(&mesh, band + 2, (cut, UNTRIED), budget) {
+            let (energies, errors) = match self.settled_on(&mesh, band + 2, (cut, UNTRIED), budget)
+            {
                 Err(Error::BudgetSpent) if best.is_some() => break,
                 other => other?,
             };

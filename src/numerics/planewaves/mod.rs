@@ -25,6 +25,7 @@
 #![allow(clippy::indexing_slicing, clippy::needless_range_loop)]
 
 mod basis;
+mod crease;
 mod edges;
 mod eigen;
 mod extrema;

@@ -274,6 +274,13 @@ impl Symmetry {
         self.operations.iter().filter(keeps).copied().collect()
     }
 
+    /// Whether every way from k is turned by some operation that keeps it: slopes vanish there, where they exist.
+    pub fn singles_out(&self, k: [f64; 3]) -> bool {
+        let group = self.little_group(k);
+        // The mean of the operations takes each way to its part that all of them keep.
+        (0..3).all(|i| (0..3).all(|j| group.iter().map(|m| m[i][j]).sum::<i32>() == 0))
+    }
+
     /// The representative of all k that the crystal holds equal: in the first zone, without negative entries where
     /// there is one, then the largest by its entries in turn.
     pub fn canonical(&self, frame: &Frame, k: [f64; 3]) -> [f64; 3] {

@@ -31,6 +31,17 @@ pub struct Extremum {
     pub mass: Option<Estimate>,
 }
 
+impl Extremum {
+    /// The inverse masses along the principal axes (over that of a free particle) and these axes, Cartesian, by rising
+    /// inverse mass; empty at a crossing. For lattices that lie in the first `dimension` coordinates.
+    pub fn principal(&self, dimension: usize) -> Vec<(f64, [f64; 3])> {
+        let tensor = self.inverse_mass.as_ref();
+        let mut found = tensor.map_or(Vec::new(), |tensor| principal(tensor, dimension));
+        found.sort_by(|a, b| a.0.total_cmp(&b.0));
+        found
+    }
+}
+
 /// One band.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct Band {
