@@ -30,16 +30,13 @@ fn folder() -> Folder {
 }
 
 #[test]
-fn a_crystal_is_drawn_and_another_dimension_said_to_be_none() {
+fn a_chain_is_drawn_with_its_potential() {
     let folder = folder();
     let output = run(&folder, &["draw", "a.cren", "-o", "pictures"]);
     assert_eq!(output.status.code(), Some(0), "{}", stderr(&output));
-    assert_eq!(stdout(&output), "pictures/a-tern.svg\n");
-    assert!(stderr(&output).contains("a-floor"), "{}", stderr(&output));
-    assert!(
-        stderr(&output).contains("the crystal has 2"),
-        "{}",
-        stderr(&output)
+    assert_eq!(
+        stdout(&output),
+        "pictures/a-tern.svg\npictures/a-floor.svg\n"
     );
     let picture = folder.read("pictures/a-tern.svg");
     assert!(picture.starts_with("<svg") && picture.trim_end().ends_with("</svg>"));
@@ -63,13 +60,46 @@ fn a_crystal_is_drawn_and_another_dimension_said_to_be_none() {
 }
 
 #[test]
+fn a_lattice_is_drawn_along_its_path_with_the_density_of_states() {
+    let folder = folder();
+    folder.write(
+        "b.cren",
+        "crystal tiles\n  mass 1 me\n  lattice square 0.4 nm\n  filling 2\n  bands 3\n  cosine (1,0) = 6 eV\n  cosine (0,1) = 6 eV\n",
+    );
+    let output = run(&folder, &["draw", "b.cren", "-o", "pictures"]);
+    assert_eq!(output.status.code(), Some(0), "{}", stderr(&output));
+    let picture = folder.read("pictures/b-tiles.svg");
+    // One line through the path for each band asked for, the one open gap, the level in it, and the stops by name.
+    assert_eq!(picture.matches("class=\"band\"").count(), 3);
+    assert_eq!(picture.matches("data-gap=").count(), 1, "{picture}");
+    assert_eq!(picture.matches("class=\"fermi\"").count(), 1);
+    for wanted in [
+        "Γ",
+        "X",
+        "M",
+        "states per eV and cell",
+        "indirect",
+        "semiconductor",
+    ] {
+        assert!(picture.contains(wanted), "{wanted}");
+    }
+    assert!(!picture.contains("NaN") && !picture.contains("inf"));
+}
+
+#[test]
 fn where_nothing_is_drawn_the_work_failed() {
     let folder = folder();
-    let output = run(
-        &folder,
-        &["draw", "a.cren", "--only", "floor", "-o", "pictures"],
+    folder.write(
+        "c.cren",
+        "crystal open\n  mass 1 me\n  layer 3 nm at 2 nm\n",
     );
+    let output = run(&folder, &["draw", "c.cren", "-o", "pictures"]);
     assert_eq!(output.status.code(), Some(2));
+    assert!(
+        stderr(&output).contains("nothing was drawn"),
+        "{}",
+        stderr(&output)
+    );
 }
 
 #[test]
