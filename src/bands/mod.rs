@@ -23,6 +23,7 @@ mod worst;
 mod zone_cell;
 mod zone_field;
 mod zone_names;
+mod zone_picture;
 mod zone_quantity;
 mod zone_range;
 mod zone_shapes;
@@ -37,6 +38,7 @@ pub use assess::{Rebuild, class_word, gap_word};
 pub use meet::Wanted;
 pub use picture::{EdgeWave, Picture, potential_line};
 pub use types::*;
+pub use zone_picture::{DensityOfStates, PathPoint, PathStop, standard_path};
 
 use assess::Assessor;
 use cache::Cache;
@@ -158,6 +160,47 @@ impl Solver {
         }
         let solution = self.solve(crystal, cancelled)?;
         picture::picture(crystal, &solution, points, cancelled)
+    }
+}
+
+impl Solver {
+    /// The bands of a two- or three-dimensional crystal along straight lines between points of the zone (see
+    /// [`standard_path`]), `per_segment` steps each, at the accuracy of a picture.
+    ///
+    /// # Errors
+    /// [`Unsolved`] says why there are none.
+    pub fn path(
+        &self,
+        crystal: &Crystal,
+        corners: &[Vec<f64>],
+        per_segment: usize,
+        cancelled: &Cancelled<'_>,
+    ) -> Result<Vec<PathPoint>, Unsolved> {
+        plane_or_solid(crystal)?;
+        zone_picture::path(crystal, corners, per_segment, cancelled)
+    }
+
+    /// The density of states of a two- or three-dimensional crystal's bands at `points` + 1 energies, at the accuracy of
+    /// a picture (linear tetrahedra).
+    ///
+    /// # Errors
+    /// [`Unsolved`] says why there is none.
+    pub fn density_of_states(
+        &self,
+        crystal: &Crystal,
+        points: usize,
+        cancelled: &Cancelled<'_>,
+    ) -> Result<DensityOfStates, Unsolved> {
+        plane_or_solid(crystal)?;
+        zone_picture::density_of_states(crystal, points, cancelled)
+    }
+}
+
+fn plane_or_solid(crystal: &Crystal) -> Result<(), Unsolved> {
+    match impossible(crystal) {
+        Some(unsolved) => Err(unsolved),
+        None if crystal.dimension < 2 => Err(Unsolved::Dimension(crystal.dimension)),
+        None => Ok(()),
     }
 }
 

@@ -29,38 +29,46 @@ pub fn path(
     bands: usize,
     budget: &Budget,
 ) -> Result<Vec<PathPoint>, Error> {
-    let waves = Waves::new(lattice, potential)?;
-    if points
-        .iter()
-        .flatten()
-        .any(|x| !x.is_finite() || x.abs() > FARTHEST)
-        || per_segment == 0
-        || bands == 0
-    {
-        return Err(Error::NotFinite);
-    }
-    let stops = waves.stops(points, per_segment);
-    let cut = waves.first_cut(bands, 200.0, budget)?;
-    stops
-        .par_iter()
-        .map(|(k, distance)| {
-            let levels = waves.solve_on(&waves.basis(*k, cut), *k, bands, true, budget)?;
-            let mut energies: Vec<f64> = waves
-                .predict(&levels, cut)?
-                .iter()
-                .map(|p| p.value)
-                .collect();
-            energies.sort_by(f64::total_cmp);
-            Ok(PathPoint {
-                k: *k,
-                distance: *distance,
-                energies,
-            })
-        })
-        .collect()
+    Waves::new(lattice, potential)?.along(points, per_segment, bands, budget)
 }
 
 impl Waves<'_> {
+    /// See [`path`].
+    ///
+    /// # Errors
+    /// As [`path`].
+    pub fn along(
+        &self,
+        points: &[[f64; 3]],
+        per_segment: usize,
+        bands: usize,
+        budget: &Budget,
+    ) -> Result<Vec<PathPoint>, Error> {
+        let far = |x: &f64| !x.is_finite() || x.abs() > FARTHEST;
+        if points.iter().flatten().any(far) || per_segment == 0 || bands == 0 {
+            return Err(Error::NotFinite);
+        }
+        let stops = self.stops(points, per_segment);
+        let cut = self.first_cut(bands, 200.0, budget)?;
+        stops
+            .par_iter()
+            .map(|(k, distance)| {
+                let levels = self.solve_on(&self.basis(*k, cut), *k, bands, true, budget)?;
+                let mut energies: Vec<f64> = self
+                    .predict(&levels, cut)?
+                    .iter()
+                    .map(|p| p.value)
+                    .collect();
+                energies.sort_by(f64::total_cmp);
+                Ok(PathPoint {
+                    k: *k,
+                    distance: *distance,
+                    energies,
+                })
+            })
+            .collect()
+    }
+
     fn stops(&self, points: &[[f64; 3]], per_segment: usize) -> Vec<([f64; 3], f64)> {
         let mut stops = Vec::new();
         let mut distance = 0.0;

@@ -57,6 +57,16 @@ impl Waves<'_> {
         self.states_known(bands, most, (cut, UNTRIED), budget)
     }
 
+    /// States for a picture, as [`Waves::along`] has its levels.
+    ///
+    /// # Errors
+    /// `NotFinite`, `BudgetSpent`, `Cancelled`.
+    pub fn sketched_states(&self, bands: usize, budget: &Budget) -> Result<States, Error> {
+        let cut = self.first_cut(bands, 200.0, budget)?;
+        let most = [384, 48, 16][self.frame.dimension - 1];
+        self.states(bands, most, cut, budget)
+    }
+
     /// The same where the share of what the cut leaves out that is uncertain is known.
     pub(super) fn states_known(
         &self,
@@ -161,6 +171,11 @@ impl Waves<'_> {
 }
 
 impl States {
+    /// The lowest and the highest level.
+    pub fn range(&self) -> (f64, f64) {
+        self.range
+    }
+
     /// States per cell below an energy, one a level.
     pub fn number(&self, energy: f64) -> f64 {
         self.simplices
