@@ -500,12 +500,12 @@ fn a_chain_is_a_rectangle_that_is_constant_across() {
                 cosine (2,0) = 0.1 eV\n  bands 2\n  measure a = level 1 at X\n  measure b = level 2 at (0.5, 0)\n  \
                 measure c = level 1 at centre\n";
     let bench = Bench::new(text);
-    let row = bench.solve(0);
+    let chain = bench.solve(0);
     let (_, measures) = bench.assess(1);
     let wanted = [
-        row.bands[0].top.energy,
-        row.bands[1].bottom.energy,
-        row.bands[0].bottom.energy,
+        chain.bands[0].top.energy,
+        chain.bands[1].bottom.energy,
+        chain.bands[0].bottom.energy,
     ];
     let mut worst = 0.0_f64;
     for (measure, wanted) in measures.iter().zip(wanted) {

@@ -69,7 +69,8 @@ fn a_lattice_is_drawn_along_its_path_with_the_density_of_states() {
     let output = run(&folder, &["draw", "b.cren", "-o", "pictures"]);
     assert_eq!(output.status.code(), Some(0), "{}", stderr(&output));
     let picture = folder.read("pictures/b-tiles.svg");
-    // One line through the path for each band asked for, the one open gap, the level in it, and the stops by name.
+    // One line through the path for each band asked for, the open gap below the third, the level in it, and the stops by
+    // name.
     assert_eq!(picture.matches("class=\"band\"").count(), 3);
     assert_eq!(picture.matches("data-gap=").count(), 1, "{picture}");
     assert_eq!(picture.matches("class=\"fermi\"").count(), 1);
@@ -79,7 +80,7 @@ fn a_lattice_is_drawn_along_its_path_with_the_density_of_states() {
         "M",
         "states per eV and cell",
         "indirect",
-        "semiconductor",
+        "insulator",
     ] {
         assert!(picture.contains(wanted), "{wanted}");
     }

@@ -1,12 +1,12 @@
 //! What stands beside the pointer, as documents to be read.
-#![allow(missing_docs, clippy::unwrap_used)]
+#![allow(missing_docs, clippy::unwrap_used, clippy::indexing_slicing)]
 
 mod report;
 
 use std::path::Path;
 
-use crenate::report::hover::hover;
-use crenate::report::{Analyst, Tier};
+use crenate::report::hover::{hover, waits};
+use crenate::report::{Analyst, Request, Tier};
 use report::{Files, analysed, marked};
 
 const ELECTRONS: &str = "\
@@ -99,6 +99,36 @@ fn atoms() {
 #[test]
 fn two_dimensions() {
     insta::assert_snapshot!(told(PLANE));
+}
+
+/// A first answer says that it is one, with fewer digits; the fine one replaces it and stays.
+#[test]
+fn a_first_answer_is_told_as_such() {
+    let (text, marks) = marked(PLANE);
+    let files = Files::default().with("a.cren", &text);
+    let analyst = Analyst::default();
+    let path = Path::new("a.cren");
+    let request = Request {
+        source: &files,
+        roots: &[path.to_path_buf()],
+        depth: Tier::Bands,
+        cancel: &|| false,
+    };
+    let quick = analyst.analyse_quickly(&request);
+    let shown = hover(&analyst, &quick, path, marks[0]).unwrap().plain;
+    assert!(
+        shown.contains("first values") && shown.contains("gap 1"),
+        "{shown}"
+    );
+    assert!(waits(&quick, path, marks[1]) && !waits(&quick, path, marks[0]));
+    let fine = analyst.analyse(&request);
+    assert!(!waits(&fine, path, marks[1]));
+    let kept = analyst.analyse_quickly(&request);
+    let shown = hover(&analyst, &kept, path, marks[0]).unwrap().plain;
+    assert!(
+        !shown.contains("first values") && shown.contains("gap 1"),
+        "{shown}"
+    );
 }
 
 #[test]

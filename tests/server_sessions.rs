@@ -375,6 +375,52 @@ async fn a_request_waits_for_the_bands_only_so_long() {
     assert!(gaps(&late), "{late}");
 }
 
+/// A square of tubes, whose targets want more than a first answer.
+const TUBES: &str = "\
+crystal tubes
+  mass 10 u
+  carriers bosons
+  lattice square 500 nm
+  recoil 1000 nm
+  depth (1,0) = 8 Er
+  depth (0,1) = 8 Er
+  bands 2
+  require gap 1 <= 1 Er
+";
+
+#[tokio::test]
+async fn a_first_answer_comes_before_the_fine_one_and_an_edit_overtakes_both() {
+    let settings = Settings {
+        slow_bands: Some(Duration::from_millis(700)),
+        ..Settings::default()
+    };
+    let mut client = Client::with(able(), &[], settings).await;
+    client.open(A, 1, TUBES).await;
+    let heading = json!({"textDocument": {"uri": A}, "position": {"line": 0, "character": 9}});
+    let told = |reply: &Value| reply["result"]["contents"]["value"].to_string();
+    let first = told(&client.request("textDocument/hover", heading.clone()).await);
+    assert!(
+        first.contains("first values") && first.contains("gap 1"),
+        "{first}"
+    );
+    // The target's verdict needs the fine answer, and is waited for.
+    let target = json!({"textDocument": {"uri": A}, "position": {"line": 8, "character": 4}});
+    let verdict = told(&client.request("textDocument/hover", target).await);
+    assert!(verdict.contains("missed"), "{verdict}");
+    let fine = told(&client.request("textDocument/hover", heading.clone()).await);
+    assert!(
+        !fine.contains("first values") && fine.contains("gap 1"),
+        "{fine}"
+    );
+    // An edit makes both stale: what was asked for before it is not answered with old numbers.
+    client.change(A, 2, json!([replace(5, 16, 17, "9")])).await;
+    let stale = client.ask("textDocument/hover", heading.clone()).await;
+    client.change(A, 3, json!([replace(6, 16, 17, "9")])).await;
+    assert_eq!(client.reply(stale).await["error"]["code"], -32801);
+    let again = told(&client.request("textDocument/hover", heading).await);
+    assert!(again.contains("first values"), "{again}");
+}
+
 #[tokio::test]
 async fn a_fault_in_a_request_leaves_the_state_whole() {
     let settings = Settings {

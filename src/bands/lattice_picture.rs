@@ -11,8 +11,6 @@ use super::{Cancelled, Unsolved};
 
 /// Steps along the longest stretch between two stops, in two and three dimensions.
 const STEPS: [usize; 2] = [32, 20];
-/// Points of the mesh along the longest reciprocal vector.
-const MESH: [usize; 2] = [48, 18];
 /// Bands beyond those asked for, so that the window ends well above them.
 const FURTHER: [usize; 2] = [2, 4];
 /// Energies at which the density is taken.
@@ -36,8 +34,6 @@ pub struct PathRun {
     pub stops: Vec<(f64, String)>,
     /// For each band, points (how far along the run, energy).
     pub bands: Vec<Vec<(f64, f64)>>,
-    /// The wave vectors of those points, in fractions of the primitive reciprocal vectors.
-    pub waves: Vec<Vec<f64>>,
 }
 
 /// All lines of a crystal's picture.
@@ -59,18 +55,18 @@ pub(super) fn lattice_picture(
             runs: runs?,
             ..LatticePicture::default()
         };
-        let mesh = MESH[usize::from(field.dimension == 3)];
         let states = zone
             .waves
-            .sketched_states(count, mesh, &budget)
+            .sketched_states(count, &budget)
             .map_err(unsolved)?;
         picture.close();
-        picture.density = density(
-            zone,
-            &states,
-            f64::from(crystal.degeneracy),
-            picture.window(),
-        );
+        // Nothing fills the levels of bosons by twos.
+        let each = if crystal.bosons {
+            1
+        } else {
+            crystal.degeneracy
+        };
+        picture.density = density(zone, &states, f64::from(each), picture.window());
         Ok(picture)
     })
 }
@@ -126,7 +122,6 @@ fn run(
             .zip(stops.iter().map(|(name, _)| name.clone()))
             .collect(),
         bands: bands.collect(),
-        waves: found.iter().map(|point| point.k.to_vec()).collect(),
     })
 }
 

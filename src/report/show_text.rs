@@ -6,7 +6,7 @@ use super::locate::Locator;
 use super::paint::Paint;
 use super::units::{self, BOLTZMANN, Scale, Trade, exact};
 use super::words;
-use crate::bands::{Assessment, Extremum, MeasureValue, Measured, Solution};
+use crate::bands::{Assessment, Extremum, MassAxis, MeasureValue, Measured, Solution};
 use crate::model::{Crystal, Dimension};
 
 /// The crystals of a file, in order; `only` picks one.
@@ -190,11 +190,7 @@ fn axes(solution: &Solution, trade: &Trade) -> String {
     let rows: Vec<Vec<String>> = edges
         .filter(|(_, _, edge)| is_anisotropic(edge))
         .map(|(number, side, edge)| {
-            let told = edge.axes.iter().map(|axis| {
-                let mass = units::tell_in(axis.mass, &trade.mass());
-                format!("{mass} along {}", direction(&axis.along))
-            });
-            let told: Vec<String> = told.collect();
+            let told = by_direction(&edge.axes, trade);
             vec![format!("masses at {side} {number}"), told.join(", ")]
         })
         .collect();
@@ -205,14 +201,32 @@ fn axes(solution: &Solution, trade: &Trade) -> String {
 }
 
 fn is_anisotropic(edge: &Extremum) -> bool {
-    let Some(first) = edge.axes.first() else {
-        return false;
-    };
-    edge.axes.iter().any(|axis| {
-        let apart = (axis.mass.value - first.mass.value).abs();
-        let known = axis.mass.uncertainty + first.mass.uncertainty;
-        apart > known.max(1e-3 * first.mass.value.abs())
-    })
+    let first = edge.axes.first();
+    first.is_some_and(|first| edge.axes.iter().any(|axis| !same_mass(first, axis)))
+}
+
+/// Whether two masses are not told apart.
+fn same_mass(one: &MassAxis, other: &MassAxis) -> bool {
+    let apart = (one.mass.value - other.mass.value).abs();
+    let known = one.mass.uncertainty + other.mass.uncertainty;
+    apart <= known.max(1e-3 * one.mass.value.abs())
+}
+
+/// Each mass with its direction; of two that are equal no direction counts but that of the third.
+fn by_direction(axes: &[MassAxis], trade: &Trade) -> Vec<String> {
+    let told = |axis: &MassAxis| units::tell_in(axis.mass, &trade.mass());
+    let along = |axis: &MassAxis| format!("{} along {}", told(axis), direction(&axis.along));
+    if let [low, middle, high] = axes {
+        let alone = match (same_mass(low, middle), same_mass(middle, high)) {
+            (true, false) => Some((high, low)),
+            (false, true) => Some((low, high)),
+            _ => None,
+        };
+        if let Some((alone, others)) = alone {
+            return vec![along(alone), format!("{} across", told(others))];
+        }
+    }
+    axes.iter().map(along).collect()
 }
 
 /// A direction by its components, the largest being one.

@@ -5,9 +5,6 @@ use super::levels::FARTHEST;
 use super::{Budget, Error, Lattice, Potential};
 use rayon::prelude::*;
 
-/// Plane waves of a picture.
-pub(super) const SKETCH: f64 = 200.0;
-
 /// One point of a path.
 #[derive(Clone, Debug, PartialEq)]
 pub struct PathPoint {
@@ -36,10 +33,10 @@ pub fn path(
 }
 
 impl Waves<'_> {
-    /// The same where the plane waves are at hand.
+    /// See [`path`].
     ///
     /// # Errors
-    /// `NotFinite`, `BudgetSpent`, `Cancelled`.
+    /// As [`path`].
     pub fn along(
         &self,
         points: &[[f64; 3]],
@@ -47,17 +44,12 @@ impl Waves<'_> {
         bands: usize,
         budget: &Budget,
     ) -> Result<Vec<PathPoint>, Error> {
-        if points
-            .iter()
-            .flatten()
-            .any(|x| !x.is_finite() || x.abs() > FARTHEST)
-            || per_segment == 0
-            || bands == 0
-        {
+        let far = |x: &f64| !x.is_finite() || x.abs() > FARTHEST;
+        if points.iter().flatten().any(far) || per_segment == 0 || bands == 0 {
             return Err(Error::NotFinite);
         }
         let stops = self.stops(points, per_segment);
-        let cut = self.first_cut(bands, SKETCH, budget)?;
+        let cut = self.first_cut(bands, 200.0, budget)?;
         stops
             .par_iter()
             .map(|(k, distance)| {

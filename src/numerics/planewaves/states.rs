@@ -15,7 +15,6 @@
 
 use super::basis::Waves;
 use super::mesh::Mesh;
-use super::path::SKETCH;
 use super::settle::UNTRIED;
 use super::{Budget, Error, Estimate};
 use rustc_hash::FxHashMap;
@@ -58,17 +57,13 @@ impl Waves<'_> {
         self.states_known(bands, most, (cut, UNTRIED), budget)
     }
 
-    /// The same at the accuracy of a picture.
+    /// States for a picture, as [`Waves::along`] has its levels.
     ///
     /// # Errors
     /// `NotFinite`, `BudgetSpent`, `Cancelled`.
-    pub fn sketched_states(
-        &self,
-        bands: usize,
-        most: usize,
-        budget: &Budget,
-    ) -> Result<States, Error> {
-        let cut = self.first_cut(bands, SKETCH, budget)?;
+    pub fn sketched_states(&self, bands: usize, budget: &Budget) -> Result<States, Error> {
+        let cut = self.first_cut(bands, 200.0, budget)?;
+        let most = [384, 48, 16][self.frame.dimension - 1];
         self.states(bands, most, cut, budget)
     }
 
