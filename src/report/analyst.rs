@@ -82,8 +82,23 @@ impl Analyst {
     /// Analyses files. When cancelled, sections that were not reached stay at [`Tier::Model`].
     #[must_use]
     pub fn analyse(&self, request: &Request<'_>) -> Analysis {
-        let now = self.clock.fetch_add(1, Ordering::Relaxed) + 1;
         let world = World::gather(request.source, request.roots);
+        self.walk(Arc::new(world), request, None)
+    }
+
+    /// Analyses the same state of the same files further than `before` did, which saves looking at them again.
+    #[must_use]
+    pub fn deepen(&self, before: &Analysis, request: &Request<'_>) -> Analysis {
+        self.walk(Arc::clone(&before.world), request, Some(before))
+    }
+
+    fn walk(
+        &self,
+        world: Arc<World>,
+        request: &Request<'_>,
+        before: Option<&Analysis>,
+    ) -> Analysis {
+        let now = self.clock.fetch_add(1, Ordering::Relaxed) + 1;
         let mut seen = Vec::new();
         let mut files = Vec::new();
         for root in request.roots {
@@ -92,7 +107,9 @@ impl Analyst {
                 continue;
             }
             seen.push(id);
-            files.extend(self.file(&world, id, request, now).map(Arc::new));
+            let before = before.and_then(|before| before.file_by_id(id));
+            let file = self.file(&world, id, request, now, before.map(AsRef::as_ref));
+            files.extend(file.map(Arc::new));
         }
         self.forget(now);
         Analysis { world, files }
@@ -119,26 +136,49 @@ impl Analyst {
         id: FileId,
         request: &Request<'_>,
         now: u64,
+        before: Option<&FileAnalysis>,
     ) -> Option<FileAnalysis> {
         let file = world.file(id)?;
         let entries = &file.tree.entries;
+        let hashes: Vec<u64> = match before {
+            Some(before) => before.hashes.clone(),
+            None => entries
+                .iter()
+                .map(|entry| world.dependency_hash(id, entry.id))
+                .collect(),
+        };
         let tasks: Vec<Task<'_>> = entries
             .iter()
-            .map(|entry| Task {
+            .zip(&hashes)
+            .map(|(entry, hash)| Task {
                 world,
                 file: id,
                 entry,
-                hash: world.dependency_hash(id, entry.id),
+                hash: *hash,
             })
             .collect();
-        let sections = self.sections(&tasks, request, now);
+        let known = match before {
+            Some(before) => before
+                .sections
+                .iter()
+                .map(|section| Known::of(Some(Arc::clone(section)), request.depth))
+                .collect(),
+            None => self.known(&tasks, request.depth, now),
+        };
+        let sections = self.sections(&tasks, known, request, now);
         let depth = sections
             .iter()
             .map(|section| section.depth)
             .min()
             .unwrap_or(request.depth);
-        let used = self.used_by_others(world, file) || request.source.is_used(&file.path);
-        let findings = findings(file, &sections, used, depth);
+        let whole = match before {
+            Some(before) => before.whole.clone(),
+            None => {
+                let used = self.used_by_others(world, file) || request.source.is_used(&file.path);
+                of_whole(file, &sections, used)
+            }
+        };
+        let findings = findings(file, &sections, &whole, depth);
         Some(FileAnalysis {
             file: id,
             path: file.path.clone(),
@@ -146,6 +186,8 @@ impl Analyst {
             depth,
             sections,
             findings,
+            whole,
+            hashes,
         })
     }
 
@@ -159,10 +201,10 @@ impl Analyst {
     fn sections(
         &self,
         tasks: &[Task<'_>],
+        mut found: Vec<Known>,
         request: &Request<'_>,
         now: u64,
     ) -> Vec<Arc<SectionAnalysis>> {
-        let mut found = self.known(tasks, request.depth, now);
         let missing: Vec<usize> = (0..tasks.len())
             .filter(|index| found.get(*index).is_some_and(|known| !known.done))
             .collect();
@@ -209,12 +251,7 @@ impl Analyst {
         let sections: Vec<Option<Arc<SectionAnalysis>>> = tasks.iter().map(look).collect();
         sections
             .into_iter()
-            .map(|section| Known {
-                done: section
-                    .as_ref()
-                    .is_some_and(|section| section.settled(depth)),
-                section,
-            })
+            .map(|section| Known::of(section, depth))
             .collect()
     }
 
@@ -294,6 +331,16 @@ struct Known {
     done: bool,
 }
 
+impl Known {
+    fn of(section: Option<Arc<SectionAnalysis>>, depth: Tier) -> Self {
+        let settled = |section: &Arc<SectionAnalysis>| section.settled(depth);
+        Self {
+            done: section.as_ref().is_some_and(settled),
+            section,
+        }
+    }
+}
+
 /// A section's model and the findings that need no more.
 fn modelled(task: &Task<'_>, source: &dyn FileSource) -> SectionAnalysis {
     let nominal = Setting::nominal();
@@ -336,7 +383,7 @@ fn modelled(task: &Task<'_>, source: &dyn FileSource) -> SectionAnalysis {
 }
 
 /// Runs the rules of a section up to a tier.
-fn check(task: &Task<'_>, section: &SectionAnalysis, depth: Tier) -> Vec<Finding> {
+fn check(task: &Task<'_>, section: &SectionAnalysis, depth: Tier) -> Vec<Arc<Finding>> {
     let subject = Subject {
         world: task.world,
         file: task.file,
@@ -348,16 +395,16 @@ fn check(task: &Task<'_>, section: &SectionAnalysis, depth: Tier) -> Vec<Finding
         targets: &section.targets,
         measures: &section.measures,
     };
-    rules::section_findings(&subject, depth)
+    let findings = rules::section_findings(&subject, depth);
+    findings.into_iter().map(Arc::new).collect()
 }
 
-/// What is found in a file, waivers applied, in order of place.
-fn findings(
+/// What shows only in the whole file.
+fn of_whole(
     file: &WorldFile,
     sections: &[Arc<SectionAnalysis>],
     used_by_others: bool,
-    depth: Tier,
-) -> Vec<Finding> {
+) -> Vec<Arc<Finding>> {
     let references: Vec<&[Reference]> = sections
         .iter()
         .map(|section| section.references.as_slice())
@@ -368,10 +415,18 @@ fn findings(
         references: &references,
         used_by_others,
     };
-    let mut findings: Vec<Finding> = sections
-        .iter()
-        .flat_map(|section| section.findings.iter().cloned())
-        .collect();
-    findings.extend(rules::file_findings(&subject));
+    let findings = rules::file_findings(&subject);
+    findings.into_iter().map(Arc::new).collect()
+}
+
+/// What is found in a file, waivers applied, in order of place.
+fn findings(
+    file: &WorldFile,
+    sections: &[Arc<SectionAnalysis>],
+    whole: &[Arc<Finding>],
+    depth: Tier,
+) -> Vec<Arc<Finding>> {
+    let of_sections = sections.iter().flat_map(|section| &section.findings);
+    let findings = of_sections.chain(whole).cloned().collect();
     rules::apply_waivers(file.id, &file.tree, findings, depth)
 }

@@ -14,9 +14,9 @@ use std::sync::Arc;
 use std::sync::mpsc::{Receiver, RecvTimeoutError, Sender};
 use std::time::{Duration, Instant};
 
+use serde::Serialize;
 use tower_lsp::lsp_types::{
-    Diagnostic, PublishDiagnosticsParams, TextDocumentContentChangeEvent, Url, notification,
-    request,
+    Diagnostic, TextDocumentContentChangeEvent, Url, notification, request,
 };
 
 use super::abilities::Abilities;
@@ -31,6 +31,15 @@ use crate::text::Document;
 
 /// How long the cheap findings wait for the dear ones, so that a quick edit changes the picture once.
 const GRACE: Duration = Duration::from_millis(40);
+
+/// What `textDocument/publishDiagnostics` says.
+#[derive(Serialize)]
+struct Published<'a> {
+    uri: &'a Url,
+    diagnostics: &'a [Diagnostic],
+    #[serde(skip_serializing_if = "Option::is_none")]
+    version: Option<i32>,
+}
 
 /// What the owner's thread holds.
 pub(super) struct State {
@@ -224,7 +233,7 @@ impl State {
         files.open.remove(&path);
         files.disk.forget(&[path]);
         if !self.abilities.pulls {
-            self.show(uri, None, Vec::new());
+            self.show(&uri, None, &[]);
         }
         self.touched();
     }
@@ -306,7 +315,12 @@ impl State {
                 Arc::clone(&self.files),
                 Arc::clone(&self.abilities),
             );
-            let job = move |path, cancel| Job {
+            let records = &self.records;
+            let job = move |path: PathBuf, cancel| Job {
+                base: records
+                    .get(&path)
+                    .and_then(|record| record.known(Depth::Cheap, generation))
+                    .and_then(|checked| checked.analysis.clone()),
                 path,
                 depth,
                 generation,
@@ -314,7 +328,11 @@ impl State {
                 abilities,
                 cancel,
             };
-            self.lane(depth).pump(job);
+            let lane = match depth {
+                Depth::Cheap => &mut self.cheap,
+                Depth::Dear => &mut self.dear,
+            };
+            lane.pump(job);
         }
         let now = Instant::now();
         let due = |record: &Record| record.due.is_some_and(|due| due <= now);
@@ -377,8 +395,10 @@ impl State {
                 }
             }
             Depth::Dear => {
-                record.dear = Some(checked);
+                // What was known before is let go only once the new is on its way.
+                let before = record.dear.replace(checked);
                 self.publish(&path, Depth::Dear);
+                drop(before);
             }
         }
     }
@@ -396,21 +416,20 @@ impl State {
             record.due = None;
             return;
         };
-        let (version, diagnostics) = (record.file.version, checked.diagnostics.clone());
+        let version = record.file.version;
+        let diagnostics = checked.diagnostics(&self.files, &self.abilities);
         record.due = None;
-        let uri = record.file.uri.clone();
-        let before = record.shown.replace((version, diagnostics.clone()));
+        let file = Arc::clone(&record.file);
+        let before = record.shown.replace((version, Arc::clone(&diagnostics)));
         let owes = depth == Depth::Dear && std::mem::take(&mut record.owes);
         let elsewhere = depth == Depth::Dear && self.focus.as_deref() != Some(path);
-        let changed = before
-            .as_ref()
-            .is_some_and(|(_, before)| *before != diagnostics);
-        if !self.abilities.pulls
-            && before.is_none_or(|before| before != (version, diagnostics.clone()))
-        {
-            self.show(uri, Some(version), diagnostics);
+        let differs = |before: &Arc<[Diagnostic]>| *before != diagnostics;
+        let changed = elsewhere && before.as_ref().is_some_and(|(_, before)| differs(before));
+        let shown = |(of, before): &(i32, _)| *of == version && !differs(before);
+        if !self.abilities.pulls && !before.as_ref().is_some_and(shown) {
+            self.show(&file.uri, Some(version), &diagnostics);
         }
-        if owes || elsewhere && changed {
+        if owes || changed {
             self.refresh();
         }
     }
@@ -425,9 +444,9 @@ impl State {
         }
     }
 
-    fn show(&self, uri: Url, version: Option<i32>, diagnostics: Vec<Diagnostic>) {
+    fn show(&self, uri: &Url, version: Option<i32>, diagnostics: &[Diagnostic]) {
         self.outgoing
-            .notify::<notification::PublishDiagnostics>(PublishDiagnosticsParams {
+            .tell::<notification::PublishDiagnostics>(&Published {
                 uri,
                 diagnostics,
                 version,
