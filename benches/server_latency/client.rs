@@ -18,6 +18,8 @@ pub struct Client<'s> {
     input: ChildStdin,
     output: BufReader<ChildStdout>,
     version: i32,
+    /// How many characters each typed number has now.
+    lengths: Vec<usize>,
 }
 
 impl<'s> Client<'s> {
@@ -39,6 +41,7 @@ impl<'s> Client<'s> {
             input,
             output,
             version: 1,
+            lengths: vec![sample.fraction.len() + 1; sample.digits.len()],
         };
         client.greet();
         let start = Instant::now();
@@ -89,8 +92,9 @@ impl<'s> Client<'s> {
             && message["params"]["version"] == self.version
     }
 
-    /// Types the digit of this index; returns once all that is measured has come.
-    pub fn edit(&mut self, index: usize, wrong: bool) -> Times {
+    /// Types the digit of this index, or with `fresh` a whole number that never stood there; returns once all that is
+    /// measured has come.
+    pub fn edit(&mut self, index: usize, wrong: bool, fresh: bool) -> Times {
         let (line, character) = self.sample.digits[index];
         let digit = if wrong {
             self.sample.wrong
@@ -99,8 +103,13 @@ impl<'s> Client<'s> {
         };
         self.version += 1;
         let version = self.version;
-        let range = json!({"start": {"line": line, "character": character}, "end": {"line": line, "character": character + 1}});
-        let change = json!({"textDocument": {"uri": self.sample.uri, "version": version}, "contentChanges": [{"range": range, "text": digit}]});
+        let (mut text, mut length) = (digit.to_owned(), 1);
+        if fresh {
+            text = format!("{digit}{}{version:07}", self.sample.fraction);
+            length = std::mem::replace(&mut self.lengths[index], text.len());
+        }
+        let range = json!({"start": {"line": line, "character": character}, "end": {"line": line, "character": character + length}});
+        let change = json!({"textDocument": {"uri": self.sample.uri, "version": version}, "contentChanges": [{"range": range, "text": text}]});
         let start = Instant::now();
         self.notify("textDocument/didChange", &change);
         if let Some((above, character)) = self.sample.hover {

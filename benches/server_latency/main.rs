@@ -1,6 +1,6 @@
 //! How long an editor waits: one digit typed into a file of 5,000 lines and 300 definitions, on real pipes.
 //!
-//! `cargo bench --bench server_latency -- [EDITS] [--rush] [--beside] [--server COMMAND]`
+//! `cargo bench --bench server_latency -- [EDITS] [--rush] [--fresh] [--beside] [--server COMMAND]`
 //!
 //! For each of EDITS edits (200) the clock runs from before the change is written to the last byte of
 //! (a) the first findings of that version, (b) findings of that version that hold the new verdict on what the digit
@@ -9,6 +9,8 @@
 //!
 //! * `--rush`: no rest between the edits, and resident memory after 1,000, 10,000, 50,000 and 100,000 of them:
 //!   `-- 100000 --rush` shows whether memory stays flat.
+//! * `--fresh`: ours is given a number that never stood there with each edit, so that no result that is kept can serve:
+//!   `-- 100000 --rush --fresh` shows whether what is kept is bounded.
 //! * `--beside`: the same driver on two general-purpose servers and a Python file of as many lines and definitions, one
 //!   that lints (`ruff server`) and one that infers types (`basedpyright-langserver`), and how many times longer than
 //!   ours each takes. They are installed by pip into the target folder where they are not there yet.
@@ -57,13 +59,30 @@ fn main() {
     };
     let ours = [ours, "serve".to_owned()];
     let (sample, mut rows) = (samples::crystals(), Vec::new());
-    rows.extend(measured("crenate", &ours, &sample, edits, rest));
+    let pace = Pace {
+        edits,
+        rest,
+        fresh: given("--fresh"),
+    };
+    rows.extend(measured("crenate", &ours, &sample, pace));
     if given("--beside") {
         for (name, command, sample) in others::servers() {
-            rows.extend(measured(name, &command, &sample, edits, rest));
+            let pace = Pace {
+                fresh: false,
+                ..pace
+            };
+            rows.extend(measured(name, &command, &sample, pace));
         }
     }
     print_table(&rows);
+}
+
+/// How it is typed.
+#[derive(Clone, Copy)]
+struct Pace {
+    edits: usize,
+    rest: Duration,
+    fresh: bool,
 }
 
 /// What came of one measurement of one server.
@@ -80,13 +99,7 @@ impl Row {
     }
 }
 
-fn measured(
-    server: &'static str,
-    command: &[String],
-    sample: &Sample,
-    edits: usize,
-    rest: Duration,
-) -> Vec<Row> {
+fn measured(server: &'static str, command: &[String], sample: &Sample, pace: Pace) -> Vec<Row> {
     let (mut client, opened) = Client::open(command, sample);
     let lines = sample.text.lines().count();
     println!(
@@ -94,17 +107,17 @@ fn measured(
         client.memory()
     );
     let mut times = [const { Vec::new() }; 3];
-    for edit in 0..edits {
+    for edit in 0..pace.edits {
         // Every definition goes wrong once before the first is mended.
         let (index, wrong) = ((edit * 131) % DEFINITIONS, (edit / DEFINITIONS) % 2 == 0);
-        let measured: Times = client.edit(index, wrong);
+        let measured: Times = client.edit(index, wrong, pace.fresh);
         for (all, one) in times.iter_mut().zip(measured) {
             all.extend(one);
         }
         if TELL_MEMORY.contains(&(edit + 1)) {
             println!("{server}: {} edits, {} kB", edit + 1, client.memory());
         }
-        std::thread::sleep(rest);
+        std::thread::sleep(pace.rest);
     }
     println!("{server}: in the end {} kB", client.memory());
     let rows = times.into_iter().enumerate().map(|(what, mut sorted)| {

@@ -19,6 +19,8 @@ pub struct Sample {
     pub wrong: &'static str,
     /// See `wrong`.
     pub sound: &'static str,
+    /// What stands behind the digit in its number.
+    pub fraction: &'static str,
     /// The finding's code.
     pub code: &'static str,
     /// The finding starts at most so many lines below the digit.
@@ -65,6 +67,7 @@ pub fn crystals() -> Sample {
         digits,
         wrong: "9",
         sound: "2",
+        fraction: ".4",
         code: "target-missed",
         reach: 9,
         hover: Some((2, 9)),
@@ -101,6 +104,7 @@ fn python(text: String, digits: Vec<(usize, usize)>) -> Sample {
         digits,
         wrong: "9",
         sound: "1",
+        fraction: "",
         code: "",
         reach: 1,
         hover: None,
