@@ -124,8 +124,12 @@ impl FileAnalysis {
             .crystals(only)
             .map(|(section, _)| section.section)
             .collect();
-        let wanted =
-            |finding: &&Finding| only.is_empty() || sections.contains(&finding.place.section);
+        // One on a named value counts in the crystals that use it.
+        let wanted = |finding: &&Finding| {
+            let related = finding.related.iter().map(|(place, _)| place);
+            let mut places = related.chain([&finding.place]);
+            only.is_empty() || places.any(|place| sections.contains(&place.section))
+        };
         let findings = self.findings.iter().map(AsRef::as_ref);
         findings.filter(wanted).collect()
     }

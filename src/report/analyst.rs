@@ -22,8 +22,9 @@ use crate::model::{
 use crate::rules::{self, FileSubject, Finding, Subject, Tier};
 use crate::syntax::{Entry, SectionId, SectionKind};
 
-/// Sections kept beyond those of the analysis at hand.
+/// Sections kept beyond those of the analysis at hand: while one types, and where each file is looked at once.
 const SPARE_SECTIONS: usize = 4096;
+const SPARE_SECTIONS_ONCE: usize = 64;
 /// A section that this many analyses did not touch may go.
 const LONG_AGO: u64 = 16;
 /// Bands whose sensitivities are worked out.
@@ -50,7 +51,8 @@ pub struct Analyst {
     solver: Solver,
     kept: Mutex<FxHashMap<(FileId, SectionId), Kept>>,
     clock: AtomicU64,
-    used: FxHashSet<PathBuf>,
+    /// Files that others use; known where each file is looked at once.
+    used: Option<FxHashSet<PathBuf>>,
 }
 
 /// A section's result, and what it holds for.
@@ -70,11 +72,12 @@ struct Task<'a> {
 }
 
 impl Analyst {
-    /// An analyst that knows that others use these files (normalised), though those others may not be at hand.
+    /// An analyst that looks at each file once, and knows that others use these (normalised), though those others may
+    /// not be at hand. It keeps little, so that memory does not grow with the number of files.
     #[must_use]
     pub fn knowing_used(used: FxHashSet<PathBuf>) -> Self {
         Self {
-            used,
+            used: Some(used),
             ..Self::default()
         }
     }
@@ -194,7 +197,9 @@ impl Analyst {
     /// Whether a file that is known uses this one.
     fn used_by_others(&self, world: &World, file: &WorldFile) -> bool {
         let mut others = world.files().iter().filter(|other| other.id != file.id);
-        self.used.contains(&file.path) || others.any(|other| other.uses.contains(&file.id))
+        let known = self.used.as_ref();
+        known.is_some_and(|used| used.contains(&file.path))
+            || others.any(|other| other.uses.contains(&file.id))
     }
 
     /// The sections of the tasks, in order: kept ones where they still hold, the others made now.
@@ -318,7 +323,11 @@ impl Analyst {
     /// Lets go of sections that have not been asked for in a while.
     fn forget(&self, now: u64) {
         let mut kept = self.kept.lock().unwrap_or_else(PoisonError::into_inner);
-        if kept.len() <= SPARE_SECTIONS {
+        let spare = match self.used {
+            Some(_) => SPARE_SECTIONS_ONCE,
+            None => SPARE_SECTIONS,
+        };
+        if kept.len() <= spare {
             return;
         }
         kept.retain(|_, section| section.touched + LONG_AGO > now);

@@ -2,7 +2,7 @@
 
 use std::sync::Arc;
 
-use super::{Finding, Level, Rule, Tier, find, idle_waiver, unused_name};
+use super::{Finding, Level, Rule, Tier, find, gather, idle_waiver, unused_name};
 use crate::model::{FileId, NameSort, Place, Reference};
 use crate::syntax::{Entry, SectionId, StatementKind, Tree};
 use crate::text::Span;
@@ -126,7 +126,7 @@ pub fn apply_waivers(
             waiver.rule == "idle-waiver" && waiver.section.is_none_or(|entry| Some(entry.id) == own)
         })
     }));
-    in_order(tree, kept)
+    in_order(tree, gather::at_their_numbers(file, kept))
 }
 
 /// The waivers of a file that give a reason.
