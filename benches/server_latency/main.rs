@@ -103,8 +103,7 @@ fn measured(server: &'static str, command: &[String], sample: &Sample, pace: Pac
     let (mut client, opened) = Client::open(command, sample);
     let lines = sample.text.lines().count();
     println!(
-        "{server}: {lines} lines, {DEFINITIONS} definitions, all known {opened:.0?} after the opening, {} kB",
-        client.memory()
+        "{server}: {lines} lines, {DEFINITIONS} definitions, all known {opened:.0?} after the opening"
     );
     let mut times = [const { Vec::new() }; 3];
     for edit in 0..pace.edits {
@@ -114,12 +113,13 @@ fn measured(server: &'static str, command: &[String], sample: &Sample, pace: Pac
         for (all, one) in times.iter_mut().zip(measured) {
             all.extend(one);
         }
-        if TELL_MEMORY.contains(&(edit + 1)) {
+        let tell = TELL_MEMORY.contains(&(edit + 1)) || edit + 1 == pace.edits;
+        // A launcher's own memory would say nothing, so only ours is told.
+        if tell && sample.language == samples::OURS {
             println!("{server}: {} edits, {} kB", edit + 1, client.memory());
         }
         std::thread::sleep(pace.rest);
     }
-    println!("{server}: in the end {} kB", client.memory());
     let rows = times.into_iter().enumerate().map(|(what, mut sorted)| {
         sorted.sort_unstable();
         Row {

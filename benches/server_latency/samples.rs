@@ -2,6 +2,8 @@
 
 /// Lines of each file.
 pub const LINES: usize = 5000;
+/// What the editor calls our language.
+pub const OURS: &str = "crenate";
 /// Definitions in each file.
 pub const DEFINITIONS: usize = 300;
 
@@ -62,7 +64,7 @@ pub fn crystals() -> Sample {
     });
     Sample {
         uri: "file:///bench/large.cren",
-        language: "crenate",
+        language: OURS,
         text,
         digits,
         wrong: "9",
