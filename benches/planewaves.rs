@@ -11,6 +11,7 @@ use crenate::numerics::planewaves::{
     Accuracy, Budget, Decay, Lattice, Potential, Waves, shapes, solve,
 };
 use crenate::report::hover::hover;
+use crenate::report::analyst::Effort;
 use crenate::report::{Analyst, FileSource, ReadFailure, Request, Tier};
 use crenate::syntax::{Tree, read};
 use criterion::Criterion;
@@ -238,7 +239,7 @@ fn hover_cold(bench: &mut Criterion) {
                         cancel: &|| false,
                     };
                     let analysis = if quick {
-                        analyst.analyse_quickly(&request)
+                        analyst.analyse_with(&request, Effort::Quick)
                     } else {
                         analyst.analyse(&request)
                     };

@@ -6,6 +6,7 @@ mod report;
 use std::path::Path;
 
 use crenate::report::hover::{hover, waits};
+use crenate::report::analyst::Effort;
 use crenate::report::{Analyst, Request, Tier};
 use report::{Files, analysed, marked};
 
@@ -114,7 +115,7 @@ fn a_first_answer_is_told_as_such() {
         depth: Tier::Bands,
         cancel: &|| false,
     };
-    let quick = analyst.analyse_quickly(&request);
+    let quick = analyst.analyse_with(&request, Effort::Quick);
     let shown = hover(&analyst, &quick, path, marks[0]).unwrap().plain;
     assert!(
         shown.contains("first values") && shown.contains("gap 1"),
@@ -123,7 +124,7 @@ fn a_first_answer_is_told_as_such() {
     assert!(waits(&quick, path, marks[1]) && !waits(&quick, path, marks[0]));
     let fine = analyst.analyse(&request);
     assert!(!waits(&fine, path, marks[1]));
-    let kept = analyst.analyse_quickly(&request);
+    let kept = analyst.analyse_with(&request, Effort::Quick);
     let shown = hover(&analyst, &kept, path, marks[0]).unwrap().plain;
     assert!(
         !shown.contains("first values") && shown.contains("gap 1"),

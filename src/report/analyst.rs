@@ -22,8 +22,9 @@ use crate::model::{
 use crate::rules::{self, FileSubject, Finding, Subject, Tier};
 use crate::syntax::{Entry, SectionId, SectionKind};
 
-/// Sections kept beyond those of the analysis at hand.
+/// Sections kept beyond those of the analysis at hand: while one types, and where each file is looked at once.
 const SPARE_SECTIONS: usize = 4096;
+const SPARE_SECTIONS_ONCE: usize = 64;
 /// A section that this many analyses did not touch may go.
 const LONG_AGO: u64 = 16;
 /// Bands whose sensitivities are worked out.
@@ -50,7 +51,8 @@ pub struct Analyst {
     solver: Solver,
     kept: Mutex<FxHashMap<(FileId, SectionId), Kept>>,
     clock: AtomicU64,
-    used: FxHashSet<PathBuf>,
+    /// Files that others use; known where each file is looked at once.
+    used: Option<FxHashSet<PathBuf>>,
 }
 
 /// A section's result, and what it holds for.
@@ -62,9 +64,20 @@ struct Kept {
 
 /// How much work a crystal's bands may be.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
-enum Effort {
+pub enum Effort {
+    /// A crystal whose bands take long gets a quick answer with wider error bounds, without targets, measures and what
+    /// the rules say of bands; its section stays at [`Tier::Model`].
     Quick,
+    /// As much as is needed.
     Whole,
+}
+
+/// One analysis under way.
+struct Work<'a> {
+    request: &'a Request<'a>,
+    effort: Effort,
+    /// Counts analyses.
+    now: u64,
 }
 
 /// One section to look at.
@@ -77,11 +90,12 @@ struct Task<'a> {
 }
 
 impl Analyst {
-    /// An analyst that knows that others use these files (normalised), though those others may not be at hand.
+    /// An analyst that looks at each file once, and knows that others use these (normalised), though those others may
+    /// not be at hand. It keeps little, so that memory does not grow with the number of files.
     #[must_use]
     pub fn knowing_used(used: FxHashSet<PathBuf>) -> Self {
         Self {
-            used,
+            used: Some(used),
             ..Self::default()
         }
     }
@@ -92,27 +106,42 @@ impl Analyst {
         self.analyse_with(request, Effort::Whole)
     }
 
-    /// The same, but a crystal whose bands take long gets a quick answer with wider error bounds, without targets,
-    /// measures and what the rules say of bands; its section stays at [`Tier::Model`].
+    /// The same with this effort.
     #[must_use]
-    pub fn analyse_quickly(&self, request: &Request<'_>) -> Analysis {
-        self.analyse_with(request, Effort::Quick)
+    pub fn analyse_with(&self, request: &Request<'_>, effort: Effort) -> Analysis {
+        let world = World::gather(request.source, request.roots);
+        self.walk(Arc::new(world), &self.work(request, effort), None)
     }
 
-    fn analyse_with(&self, request: &Request<'_>, effort: Effort) -> Analysis {
-        let now = self.clock.fetch_add(1, Ordering::Relaxed) + 1;
-        let world = World::gather(request.source, request.roots);
+    /// Analyses the same state of the same files further than `before` did, which saves looking at them again.
+    #[must_use]
+    pub fn deepen(&self, before: &Analysis, request: &Request<'_>, effort: Effort) -> Analysis {
+        let world = Arc::clone(&before.world);
+        self.walk(world, &self.work(request, effort), Some(before))
+    }
+
+    fn work<'a>(&self, request: &'a Request<'a>, effort: Effort) -> Work<'a> {
+        Work {
+            request,
+            effort,
+            now: self.clock.fetch_add(1, Ordering::Relaxed) + 1,
+        }
+    }
+
+    fn walk(&self, world: Arc<World>, work: &Work<'_>, before: Option<&Analysis>) -> Analysis {
         let mut seen = Vec::new();
         let mut files = Vec::new();
-        for root in request.roots {
+        for root in work.request.roots {
             let id = FileId::of(&normalise(root));
             if seen.contains(&id) {
                 continue;
             }
             seen.push(id);
-            files.extend(self.file(&world, id, request, effort, now).map(Arc::new));
+            let before = before.and_then(|before| before.file_by_id(id));
+            let file = self.file(&world, id, work, before.map(AsRef::as_ref));
+            files.extend(file.map(Arc::new));
         }
-        self.forget(now);
+        self.forget(work.now);
         Analysis { world, files }
     }
 
@@ -135,29 +164,51 @@ impl Analyst {
         &self,
         world: &World,
         id: FileId,
-        request: &Request<'_>,
-        effort: Effort,
-        now: u64,
+        work: &Work<'_>,
+        before: Option<&FileAnalysis>,
     ) -> Option<FileAnalysis> {
+        let request = work.request;
         let file = world.file(id)?;
         let entries = &file.tree.entries;
+        let hashes: Vec<u64> = match before {
+            Some(before) => before.hashes.clone(),
+            None => entries
+                .iter()
+                .map(|entry| world.dependency_hash(id, entry.id))
+                .collect(),
+        };
         let tasks: Vec<Task<'_>> = entries
             .iter()
-            .map(|entry| Task {
+            .zip(&hashes)
+            .map(|(entry, hash)| Task {
                 world,
                 file: id,
                 entry,
-                hash: world.dependency_hash(id, entry.id),
+                hash: *hash,
             })
             .collect();
-        let sections = self.sections(&tasks, request, effort, now);
+        let known = match before {
+            Some(before) => before
+                .sections
+                .iter()
+                .map(|section| Known::of(Some(Arc::clone(section)), work))
+                .collect(),
+            None => self.known(&tasks, work),
+        };
+        let sections = self.sections(&tasks, known, work);
         let depth = sections
             .iter()
             .map(|section| section.depth)
             .min()
             .unwrap_or(request.depth);
-        let used = self.used_by_others(world, file) || request.source.is_used(&file.path);
-        let findings = findings(file, &sections, used, depth);
+        let whole = match before {
+            Some(before) => before.whole.clone(),
+            None => {
+                let used = self.used_by_others(world, file) || request.source.is_used(&file.path);
+                of_whole(file, &sections, used)
+            }
+        };
+        let findings = findings(file, &sections, &whole, depth);
         Some(FileAnalysis {
             file: id,
             path: file.path.clone(),
@@ -165,32 +216,32 @@ impl Analyst {
             depth,
             sections,
             findings,
+            whole,
+            hashes,
         })
     }
 
     /// Whether a file that is known uses this one.
     fn used_by_others(&self, world: &World, file: &WorldFile) -> bool {
         let mut others = world.files().iter().filter(|other| other.id != file.id);
-        self.used.contains(&file.path) || others.any(|other| other.uses.contains(&file.id))
+        let known = self.used.as_ref();
+        known.is_some_and(|used| used.contains(&file.path))
+            || others.any(|other| other.uses.contains(&file.id))
     }
 
     /// The sections of the tasks, in order: kept ones where they still hold, the others made now.
     fn sections(
         &self,
         tasks: &[Task<'_>],
-        request: &Request<'_>,
-        effort: Effort,
-        now: u64,
+        mut found: Vec<Known>,
+        work: &Work<'_>,
     ) -> Vec<Arc<SectionAnalysis>> {
-        let mut found = self.known(tasks, request.depth, effort, now);
         let missing: Vec<usize> = (0..tasks.len())
             .filter(|index| found.get(*index).is_some_and(|known| !known.done))
             .collect();
         let make = |index: &usize| {
             let known = found.get(*index).and_then(|known| known.section.clone());
-            tasks
-                .get(*index)
-                .map(|task| self.make(task, known, request, effort))
+            tasks.get(*index).map(|task| self.make(task, known, work))
         };
         let made: Vec<Option<Arc<SectionAnalysis>>> = match missing.len() >= WORTH_SHARING {
             true => missing.par_iter().map(make).collect(),
@@ -204,7 +255,7 @@ impl Analyst {
                 slot.section = Some(Arc::clone(&section));
                 let fresh = Kept {
                     hash: task.hash,
-                    touched: now,
+                    touched: work.now,
                     section,
                 };
                 kept.insert((task.file, task.entry.id), fresh);
@@ -217,25 +268,19 @@ impl Analyst {
     }
 
     /// What is kept of each task, and whether that is all that is asked for.
-    fn known(&self, tasks: &[Task<'_>], depth: Tier, effort: Effort, now: u64) -> Vec<Known> {
+    fn known(&self, tasks: &[Task<'_>], work: &Work<'_>) -> Vec<Known> {
         let mut kept = self.kept.lock().unwrap_or_else(PoisonError::into_inner);
         let look = |task: &Task<'_>| {
             let current = kept
                 .get_mut(&(task.file, task.entry.id))
                 .filter(|kept| kept.hash == task.hash)?;
-            current.touched = now;
+            current.touched = work.now;
             Some(Arc::clone(&current.section))
         };
         let sections: Vec<Option<Arc<SectionAnalysis>>> = tasks.iter().map(look).collect();
         sections
             .into_iter()
-            .map(|section| Known {
-                done: section.as_ref().is_some_and(|section| {
-                    let quick = effort == Effort::Quick && section.solution().is_some();
-                    section.settled(depth) || quick
-                }),
-                section,
-            })
+            .map(|section| Known::of(section, work))
             .collect()
     }
 
@@ -243,14 +288,14 @@ impl Analyst {
         &self,
         task: &Task<'_>,
         known: Option<Arc<SectionAnalysis>>,
-        request: &Request<'_>,
-        effort: Effort,
+        work: &Work<'_>,
     ) -> Arc<SectionAnalysis> {
+        let request = work.request;
         let model = known.unwrap_or_else(|| Arc::new(modelled(task, request.source)));
         if request.depth < Tier::Bands || (request.cancel)() {
             return model;
         }
-        if effort == Effort::Quick && self.takes_long(&model) {
+        if work.effort == Effort::Quick && self.takes_long(&model) {
             return self.sketched(&model, request).map_or(model, Arc::new);
         }
         match self.solved(task, &model, request) {
@@ -312,7 +357,11 @@ impl Analyst {
     /// Lets go of sections that have not been asked for in a while.
     fn forget(&self, now: u64) {
         let mut kept = self.kept.lock().unwrap_or_else(PoisonError::into_inner);
-        if kept.len() <= SPARE_SECTIONS {
+        let spare = match self.used {
+            Some(_) => SPARE_SECTIONS_ONCE,
+            None => SPARE_SECTIONS,
+        };
+        if kept.len() <= spare {
             return;
         }
         kept.retain(|_, section| section.touched + LONG_AGO > now);
@@ -323,6 +372,19 @@ impl Analyst {
 struct Known {
     section: Option<Arc<SectionAnalysis>>,
     done: bool,
+}
+
+impl Known {
+    fn of(section: Option<Arc<SectionAnalysis>>, work: &Work<'_>) -> Self {
+        let done = |section: &Arc<SectionAnalysis>| {
+            let quick = work.effort == Effort::Quick && section.solution().is_some();
+            section.settled(work.request.depth) || quick
+        };
+        Self {
+            done: section.as_ref().is_some_and(done),
+            section,
+        }
+    }
 }
 
 /// What a section's model gives, without bands and findings.
@@ -383,7 +445,7 @@ fn modelled(task: &Task<'_>, source: &dyn FileSource) -> SectionAnalysis {
 }
 
 /// Runs the rules of a section up to a tier.
-fn check(task: &Task<'_>, section: &SectionAnalysis, depth: Tier) -> Vec<Finding> {
+fn check(task: &Task<'_>, section: &SectionAnalysis, depth: Tier) -> Vec<Arc<Finding>> {
     let subject = Subject {
         world: task.world,
         file: task.file,
@@ -395,16 +457,16 @@ fn check(task: &Task<'_>, section: &SectionAnalysis, depth: Tier) -> Vec<Finding
         targets: &section.targets,
         measures: &section.measures,
     };
-    rules::section_findings(&subject, depth)
+    let findings = rules::section_findings(&subject, depth);
+    findings.into_iter().map(Arc::new).collect()
 }
 
-/// What is found in a file, waivers applied, in order of place.
-fn findings(
+/// What shows only in the whole file.
+fn of_whole(
     file: &WorldFile,
     sections: &[Arc<SectionAnalysis>],
     used_by_others: bool,
-    depth: Tier,
-) -> Vec<Finding> {
+) -> Vec<Arc<Finding>> {
     let references: Vec<&[Reference]> = sections
         .iter()
         .map(|section| section.references.as_slice())
@@ -415,10 +477,18 @@ fn findings(
         references: &references,
         used_by_others,
     };
-    let mut findings: Vec<Finding> = sections
-        .iter()
-        .flat_map(|section| section.findings.iter().cloned())
-        .collect();
-    findings.extend(rules::file_findings(&subject));
+    let findings = rules::file_findings(&subject);
+    findings.into_iter().map(Arc::new).collect()
+}
+
+/// What is found in a file, waivers applied, in order of place.
+fn findings(
+    file: &WorldFile,
+    sections: &[Arc<SectionAnalysis>],
+    whole: &[Arc<Finding>],
+    depth: Tier,
+) -> Vec<Arc<Finding>> {
+    let of_sections = sections.iter().flat_map(|section| &section.findings);
+    let findings = of_sections.chain(whole).cloned().collect();
     rules::apply_waivers(file.id, &file.tree, findings, depth)
 }
