@@ -464,9 +464,9 @@ fn budgets_and_cancelling_are_kept() {
         pieces: vec![flat(1.0, 0.0, 1.0), flat(1.0, 10.0, 1.0)],
     };
     let never = || false;
-    for max_sweeps in [0, 1, 7, 20] {
+    for max_work in [0, 1, 14, 40] {
         let budget = Budget {
-            max_sweeps,
+            max_work,
             cancelled: &never,
         };
         assert_eq!(solve(&cell, 4, &budget), Err(SolveError::BudgetSpent));
@@ -475,7 +475,7 @@ fn budgets_and_cancelling_are_kept() {
                 &cell,
                 1.5,
                 &Budget {
-                    max_sweeps: max_sweeps.min(4),
+                    max_work: max_work.min(8),
                     ..budget
                 }
             )
@@ -484,13 +484,13 @@ fn budgets_and_cancelling_are_kept() {
         );
     }
     let asked = AtomicUsize::new(0);
-    let after_ten = || asked.fetch_add(1, Ordering::Relaxed) >= 10;
+    let after_two = || asked.fetch_add(1, Ordering::Relaxed) >= 2;
     let budget = Budget {
-        max_sweeps: 1000,
-        cancelled: &after_ten,
+        max_work: 100_000,
+        cancelled: &after_two,
     };
     assert_eq!(solve(&cell, 4, &budget), Err(SolveError::Cancelled));
-    assert_eq!(asked.load(Ordering::Relaxed), 11);
+    assert_eq!(asked.load(Ordering::Relaxed), 3);
     // a sweep that alone would take too long is not begun
     let long = Piece::Ramp {
         length: 1e9,
@@ -504,7 +504,7 @@ fn budgets_and_cancelling_are_kept() {
     // a function that no mesh follows ends at the budget, not never
     let wild = |x: f64| (1e9 * x).sin();
     let small = Budget {
-        max_sweeps: 500,
+        max_work: 10_000,
         cancelled: &never,
     };
     assert_eq!(

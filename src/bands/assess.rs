@@ -123,8 +123,13 @@ impl Assessor<'_> {
         if assessment.state == TargetState::Undecided {
             assessment.reason = Some("the limit lies inside the value's uncertainty".into());
         }
-        if !draws.is_empty() {
-            self.worst(&probe, target, &mut assessment)?;
+        if draws.is_empty() {
+            return Ok(assessment);
+        }
+        match self.worst(&probe, target, &mut assessment) {
+            // What is missed already needs no worst case.
+            Err(Untested::Because(_)) if assessment.state == TargetState::Missed => {}
+            found => found?,
         }
         Ok(assessment)
     }

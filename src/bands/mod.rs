@@ -6,6 +6,7 @@
 mod assess;
 mod cache;
 mod chain;
+mod effort;
 mod field;
 mod filling;
 mod fingerprint;
@@ -32,7 +33,8 @@ pub use types::*;
 
 use assess::Assessor;
 use cache::Cache;
-use chain::{Chain, budget};
+use chain::Chain;
+use effort::budget;
 
 /// Asked again and again during long work; `true` stops it.
 pub type Cancelled<'a> = dyn Fn() -> bool + Sync + 'a;

@@ -10,7 +10,8 @@
 //!
 //! Failure: a change that does not settle stays in the bound.
 
-use super::cell::{Bounded, Budget, Cell, Meter, Ready, SolveError, prepare};
+use super::budget::{Budget, Meter};
+use super::cell::{Bounded, Cell, Ready, SolveError, prepare};
 use super::double::Double;
 use super::level::level_target;
 use super::scalar::{Scalar, power_of_two};

@@ -9,12 +9,13 @@
 //! conditioned even where the gap is closed. Edges and levels are roots of s D − 2 = −4 sin²(θ/2),
 //! θ = distance of ka from the edge.
 
-use super::cell::{Meter, Ready, SolveError};
+use super::budget::{Meter, SECOND};
+use super::cell::{Ready, SolveError};
 use super::scalar::{Dual, Scalar, power_of_two};
 use super::sweep::{Reading, product, read};
 
 /// Steps after which a search gives up.
-const PATIENCE: usize = 260;
+const PATIENCE: usize = 400;
 /// s D − 2 above which a gap is wide: its edges are found apart.
 const WIDE: f64 = 1e-4;
 /// D′ relative to its size in the bands at which the top of s D is as good as found.
@@ -27,6 +28,27 @@ const INSIDE: f64 = 0.02;
 /// An energy from both sides.
 fn less<T: Scalar>(a: T, b: T) -> bool {
     (a - b).leading() < 0.0
+}
+
+/// How the next energy on the way into a band is chosen; each kind after the one before has not halved the bracket.
+#[derive(Clone, Copy, PartialEq)]
+enum Step {
+    /// Newton's step on D from the nearer end.
+    Newton,
+    /// Twice Newton's step: a root of D near that end is then between close neighbours, though the band about it be
+    /// narrower than the arithmetic separates.
+    Past,
+    Halve,
+}
+
+impl Step {
+    fn next(self) -> Self {
+        match self {
+            Step::Newton => Step::Past,
+            Step::Past => Step::Halve,
+            Step::Halve => Step::Newton,
+        }
+    }
 }
 
 /// The ledger of one search.
@@ -197,7 +219,7 @@ impl<'a, T: Scalar> Finder<'a, T> {
     /// A reading inside band `band`. The ledger must surround it.
     pub fn inside(&mut self, band: usize) -> Result<Inside<T>, SolveError> {
         let (low, high) = (band as f64, (band + 1) as f64);
-        let mut halve = false;
+        let mut step = Step::Newton;
         for _ in 0..PATIENCE {
             let first = self.readings.partition_point(|r| r.states <= low);
             let last = self.readings.partition_point(|r| r.states < high);
@@ -230,7 +252,7 @@ impl<'a, T: Scalar> Finder<'a, T> {
                 };
                 return Ok(inner.map_or(Inside::Unresolved(nearest), |r| Inside::At(*r)));
             }
-            let next = self.propose_inside(first, last, low, halve);
+            let next = self.propose_inside(first, last, low, step);
             self.read(next)?;
             let first = self.readings.partition_point(|r| r.states <= low);
             let last = self.readings.partition_point(|r| r.states < high);
@@ -239,9 +261,36 @@ impl<'a, T: Scalar> Finder<'a, T> {
             } else {
                 (self.readings[last].energy - self.readings[first - 1].energy).leading()
             };
-            halve = !halve && remaining > 0.5 * width;
+            step = if remaining <= 0.5 * width {
+                Step::Newton
+            } else {
+                step.next()
+            };
         }
         Err(SolveError::NoBracket)
+    }
+
+    /// The energies next to and inside each of the lowest bands, for a search in a finer arithmetic.
+    pub fn seeds(&self, bands: usize) -> Vec<f64> {
+        let mut seeds = Vec::with_capacity(2 * bands);
+        for band in 0..=bands {
+            let first = self.readings.partition_point(|r| r.states <= band as f64);
+            let last = self
+                .readings
+                .partition_point(|r| r.states < (band + 1) as f64);
+            let around = self.readings.get(first.saturating_sub(1)..=last);
+            let energies = around.unwrap_or_default().iter();
+            seeds.extend(energies.map(|r| r.energy.leading()));
+        }
+        seeds
+    }
+
+    /// Reads at the energies that a coarser search left.
+    pub fn sow(&mut self, seeds: &[f64]) -> Result<(), SolveError> {
+        for energy in seeds {
+            self.read(T::constant(*energy))?;
+        }
+        Ok(())
     }
 
     /// The entry of first..last nearest to the middle of the band, if well inside.
@@ -253,7 +302,7 @@ impl<'a, T: Scalar> Finder<'a, T> {
     }
 
     /// Next energy to try on the way into a band.
-    fn propose_inside(&self, first: usize, last: usize, low: f64, halve: bool) -> T {
+    fn propose_inside(&self, first: usize, last: usize, low: f64, kind: Step) -> T {
         let (left, right) = (&self.readings[first - 1], &self.readings[last]);
         let middle = (left.energy + right.energy).times(0.5);
         if first < last {
@@ -262,7 +311,7 @@ impl<'a, T: Scalar> Finder<'a, T> {
                 first + self.readings[first..last].partition_point(|r| r.states < low + 0.5);
             return (self.readings[split - 1].energy + self.readings[split].energy).times(0.5);
         }
-        if halve {
+        if kind == Step::Halve {
             return middle;
         }
         let width = (right.energy - left.energy).leading();
@@ -274,7 +323,7 @@ impl<'a, T: Scalar> Finder<'a, T> {
             let size = step.leading() * direction;
             size.is_finite() && size > 0.0 && size < width
         };
-        let mut best: Option<(f64, T)> = None;
+        let mut best: Option<(f64, T, T)> = None;
         for (reading, adjacent, direction) in [
             (left, left.states == low, 1.0),
             (right, right.states == low + 1.0, -1.0),
@@ -282,13 +331,21 @@ impl<'a, T: Scalar> Finder<'a, T> {
             let step = step_from(reading);
             if adjacent && within(step, direction) {
                 let size = step.leading().abs();
-                if best.is_none_or(|(other, _)| size < other) {
-                    best = Some((size, reading.energy + step));
+                if best.is_none_or(|(other, ..)| size < other) {
+                    best = Some((size, step, reading.energy));
                 }
             }
         }
-        if let Some((_, energy)) = best {
-            return energy;
+        if let Some((size, step, energy)) = best {
+            let resolution = self.resolution(energy);
+            if (kind == Step::Newton && size > resolution) || size >= 0.25 * width {
+                return energy + step;
+            }
+            let past = step.leading().signum() * (2.0 * size).max(8.0 * resolution);
+            return energy + T::constant(past);
+        }
+        if kind == Step::Past {
+            return middle;
         }
         if left.states < low || right.states > low + 1.0 {
             let share = (low + 0.5 - left.states) / (right.states - left.states);
@@ -380,7 +437,8 @@ impl<'a, T: Scalar> Finder<'a, T> {
 
     /// D′/D″ at an energy, D″, and the power of two of D″.
     pub fn curvature(&self, energy: T) -> Result<(T, f64, i64), SolveError> {
-        self.meter.spend()?;
+        self.meter
+            .sweep::<T>(self.ready, energy.leading(), SECOND)?;
         let variable = Dual {
             value: Dual::variable(energy),
             slope: Dual::constant(1.0),

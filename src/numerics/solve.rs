@@ -1,6 +1,7 @@
 //! Bands, gaps and masses of a cell.
 
-use super::cell::{Bounded, Budget, Cell, Meter, Ready, SolveError, prepare};
+use super::budget::{BOUND, Budget, Meter};
+use super::cell::{Bounded, Cell, Ready, SolveError, prepare};
 use super::double::Double;
 use super::mesh::gauss_legendre;
 use super::scalar::{Scalar, power_of_two};
@@ -58,6 +59,8 @@ pub struct Bands {
     pub gaps: Vec<Gap>,
     /// Sweeps over the cell that were needed.
     pub sweeps: usize,
+    /// The work they were, as [`Budget`] counts it.
+    pub work: usize,
 }
 
 /// Widths below this share of the spacing of bands are taken from D′ where edges are in `f64`.
@@ -105,31 +108,38 @@ pub fn solve(cell: &Cell, bands: usize, budget: &Budget) -> Result<Bands, SolveE
     let ready = prepare(cell)?;
     let meter = Meter::new(budget);
     let raw = find(&ready, bands, &meter)?;
-    Ok(super::uncertainty::finish(&ready, &raw, meter.used()))
+    let top = raw.gaps.last().map_or(raw.bottom, |gap| gap.upper);
+    let edges = 2 * bands + 1;
+    meter.sweep::<f64>(&ready, top.energy.round(), BOUND * edges)?;
+    Ok(super::uncertainty::finish(&ready, &raw, &meter))
 }
 
 /// Finds all edges, in `f64` and where that cannot separate bands in double-double.
 pub(crate) fn find(ready: &Ready, bands: usize, meter: &Meter) -> Result<Raw, SolveError> {
-    if let Some(raw) = find_in::<f64>(ready, bands, meter)? {
-        return Ok(raw);
+    match find_in::<f64>(ready, bands, meter, &[])? {
+        Ok(raw) => Ok(raw),
+        Err(seeds) => {
+            find_in::<Double>(ready, bands, meter, &seeds)?.map_err(|_| SolveError::NoBracket)
+        }
     }
-    find_in::<Double>(ready, bands, meter)?.ok_or(SolveError::NoBracket)
 }
 
-/// `None` if a band is narrower than the arithmetic resolves.
+/// If a band is narrower than the arithmetic resolves, the energies around each band instead.
 fn find_in<T: Scalar>(
     ready: &Ready,
     bands: usize,
     meter: &Meter,
-) -> Result<Option<Raw>, SolveError> {
+    seeds: &[f64],
+) -> Result<Result<Raw, Vec<f64>>, SolveError> {
     let mut finder = Finder::<T>::new(ready, meter);
+    finder.sow(seeds)?;
     finder.surround(bands)?;
     let mut inside = Vec::with_capacity(bands + 1);
     for band in 0..=bands {
-        match finder.inside(band)?.accept() {
-            Some(reading) => inside.push(reading),
-            None => return Ok(None),
-        }
+        inside.extend(finder.inside(band)?.accept());
+    }
+    if inside.len() <= bands {
+        return Ok(Err(finder.seeds(bands)));
     }
     let polish = ready.layered;
     let (energy, reading) = finder.root(Target::edge(0, true), inside[0].energy)?;
@@ -145,7 +155,7 @@ fn find_in<T: Scalar>(
     for band in 0..bands {
         match find_gap(&mut finder, &inside, band, polish)? {
             Some(gap) => gaps.push(gap),
-            None => return Ok(None),
+            None => return Ok(Err(finder.seeds(bands))),
         }
     }
     let exact = polish || T::UNIT < f64::UNIT;
@@ -168,7 +178,7 @@ fn find_in<T: Scalar>(
         .iter()
         .map(|r| (r.energy.to_double(), r.discriminant(), r.slope()))
         .collect();
-    Ok(Some(Raw {
+    Ok(Ok(Raw {
         bottom,
         gaps,
         inside,

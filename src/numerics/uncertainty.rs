@@ -9,6 +9,7 @@
 //! * the mesh: |δV| of each smooth step times its share of |ψ|²;
 //! * the last rounding.
 
+use super::budget::Meter;
 use super::cell::{Bounded, Mass, Ready};
 use super::double::Double;
 use super::element::Element;
@@ -251,7 +252,7 @@ impl Gradient<Dual<f64>> {
 }
 
 /// Puts the bounds on.
-pub(crate) fn finish(ready: &Ready, raw: &Raw, sweeps: usize) -> Bands {
+pub(crate) fn finish(ready: &Ready, raw: &Raw, meter: &Meter) -> Bands {
     let count = raw.gaps.len();
     let bound = |edge: &RawEdge, gap: usize, near: Option<&Pair>| {
         edge_bound(ready, edge, gap, raw.exact, near)
@@ -295,7 +296,8 @@ pub(crate) fn finish(ready: &Ready, raw: &Raw, sweeps: usize) -> Bands {
     Bands {
         bands,
         gaps,
-        sweeps,
+        sweeps: meter.sweeps(),
+        work: meter.work(),
     }
 }
 
