@@ -320,16 +320,16 @@ fn derivatives_agree_with_differences() {
     }
 }
 
-/// Slopes of gap 1 and of the top of band 2 by what has this text, and the same from whole solves to the right of its value
+/// Slopes of gap 1 and of the top of band 2 by what has this name, and the same from whole solves to the right of its value
 /// (a spike on a face moves into the layer to its right): (−3 f₀ + 4 f₁ − f₂)/2h, extrapolated.
-fn slopes_to_the_right(text: &str, wanted: &str, step: f64) -> Vec<(f64, f64)> {
+fn slopes_to_the_right(text: &str, name: &str, step: f64) -> Vec<(f64, f64)> {
     let bench = Bench::new(text);
     let crystal = bench.build(0, &Setting::default()).crystal;
     let parameter = crystal
         .parameters
         .iter()
-        .find(|one| one.kind != ParameterKind::Draw && one.text == wanted)
-        .unwrap_or_else(|| panic!("no {wanted} among {:?}", crystal.parameters))
+        .find(|one| one.kind == ParameterKind::Name(name.into()))
+        .unwrap_or_else(|| panic!("no {name} among {:?}", crystal.parameters))
         .clone();
     let sensitivities = bench
         .solver
@@ -414,11 +414,15 @@ fn derivatives_near_a_closed_gap_agree_with_differences() {
             continue;
         }
         let draw = parameter.kind == ParameterKind::Draw;
-        let (base, step) = if draw {
-            (0.0, 1e-3)
-        } else {
-            (parameter.value, 1e-3 * parameter.value)
+        let slope = |feature: Feature| {
+            let of = sensitivities.iter().find(|one| one.feature == feature);
+            of.and_then(|one| one.slopes.iter().find(|(id, _)| *id == parameter.id))
+                .map_or(0.0, |(_, slope)| *slope)
         };
+        let base = if draw { 0.0 } else { parameter.value };
+        // the gap may change by no more than a hundredth of itself
+        let step = (1e-3 * if draw { 1.0 } else { base.abs() })
+            .min(0.01 * gap.value / slope(Feature::Gap(1)).abs());
         let at = |times: f64| {
             let mut setting = Setting::default();
             let place = if draw {
@@ -450,11 +454,7 @@ fn derivatives_near_a_closed_gap_agree_with_differences() {
         ] {
             let [a, b, c, d] = value;
             let difference = (8.0 * (c - b) - (d - a)) / 12.0;
-            let found = sensitivities
-                .iter()
-                .find(|one| one.feature == feature)
-                .and_then(|one| one.slopes.iter().find(|(id, _)| *id == parameter.id))
-                .map_or(0.0, |(_, slope)| slope * step);
+            let found = slope(feature) * step;
             let noise = 40.0 * gap.uncertainty + 1e-15 * b.abs();
             assert!(
                 (found - difference).abs() <= noise + 1e-6 * difference.abs(),

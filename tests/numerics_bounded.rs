@@ -165,10 +165,44 @@ fn texts() -> Vec<(&'static str, String, Option<bool>)> {
     ]
 }
 
+/// What spends all that is allowed, and so takes minutes without optimisation.
+const LONG: [&str; 15] = [
+    "a deep cosine over half a micrometre",
+    "20,000 layers",
+    "20,000 layers, 20 bands, a cosine over them",
+    "1,000 layers, 20 bands",
+    "2,000 layers, 400 bands",
+    "a cosine of a thousand oscillations",
+    "a cosine of ten thousand oscillations",
+    "a thousand cosines",
+    "a lattice of light a million recoils deep",
+    "a lattice of light of 1e12 recoils",
+    "an oscillation that no mesh follows",
+    "two thousand steps in a formula",
+    "a heavy particle on a cosine",
+    "two thousand bells",
+    "a filling deep in many bands",
+];
+
 #[test]
-fn nothing_runs_away() {
+fn what_is_quickly_solved_or_refused_is() {
+    check(false);
+}
+
+#[test]
+#[cfg_attr(debug_assertions, ignore = "takes minutes without optimisation")]
+fn what_takes_long_ends_in_time() {
+    check(true);
+}
+
+fn check(long: bool) {
     let mut failures = Vec::new();
+    let mut checked = 0;
     for (name, text, within_reach) in texts() {
+        if LONG.contains(&name) != long {
+            continue;
+        }
+        checked += 1;
         let begun = Instant::now();
         let bench = Bench::new(&text);
         let built = bench.build(0, &Setting::default());
@@ -210,10 +244,19 @@ fn nothing_runs_away() {
         }
     }
     assert!(failures.is_empty(), "{failures:#?}");
+    assert_eq!(
+        checked,
+        if long {
+            LONG.len()
+        } else {
+            texts().len() - LONG.len()
+        }
+    );
 }
 
 /// Targets too: far hops, and tolerances on cells so large that few corners can be solved.
 #[test]
+#[cfg_attr(debug_assertions, ignore = "takes minutes without optimisation")]
 fn no_target_runs_away() {
     let mut many = String::from("  mass 0.067 me\n");
     for i in 0..12 {

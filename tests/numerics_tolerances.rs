@@ -130,11 +130,12 @@ const MATERIALS: &str = "material basin\n  mass 0.067 me\n  edge 0 meV\n  rate 1
 #[test]
 fn one_tolerance_between_whose_ends_a_gap_closes() {
     let text = "crystal c\n  mass 0.067 me\n  bands 3\n  layer 4.5 nm ± 0.2 nm at 0 meV\n  layer 11.56 nm at 235 meV\n  \
-                require gap 2 >= 0.1 meV\n  require gap 1 >= 1 meV\n  require top 1 <= 1 eV\n  require width 2 >= 0 meV\n";
+                require gap 2 >= 0.01 meV\n  require gap 1 >= 1 meV\n  require top 1 <= 1 eV\n  require width 2 >= 0 meV\n";
     let targets = check("a gap that closes and reopens", text, 1, 401);
     assert_eq!(targets[0].state, TargetState::AtRisk, "{:?}", targets[0]);
     assert!(targets[0].worst.unwrap() / EV < 1e-9);
     assert!(targets[0].corner[0].1.abs() < 0.9, "{:?}", targets[0]);
+    assert_eq!(targets[0].driver, Some(targets[0].corner[0].0));
 }
 
 #[test]

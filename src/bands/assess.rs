@@ -321,9 +321,18 @@ fn note_corner(
         let way = worst.point.get(axis).copied().unwrap_or(0.0);
         -0.5 * (slope(centre) + slope(worst)) * way
     };
-    let most = (0..draws.len()).max_by(|a, b| spent(*a).total_cmp(&spent(*b)));
-    assessment.driver = most
-        .filter(|axis| spent(*axis) > 0.0)
+    // At a kink the slopes of its two sides cancel: then the one on the way there tells.
+    let begun = |axis: usize| {
+        let slope = centre.slopes.get(axis).copied().unwrap_or(0.0);
+        -slope * worst.point.get(axis).copied().unwrap_or(0.0)
+    };
+    let most = |spent: &dyn Fn(usize) -> f64| {
+        (0..draws.len())
+            .max_by(|a, b| spent(*a).total_cmp(&spent(*b)))
+            .filter(|axis| spent(*axis) > 0.0)
+    };
+    assessment.driver = most(&spent)
+        .or_else(|| most(&begun))
         .and_then(|axis| draws.get(axis).copied());
 }
 

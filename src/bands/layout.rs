@@ -47,6 +47,8 @@ pub(super) struct Stretch {
     pub knot: Option<usize>,
     /// The boxes that cover it, once for each image that does.
     pub boxes: Vec<usize>,
+    /// A place in it, or right of it where it has no length.
+    middle: f64,
     /// Whether it is the whole of its layer at the values as they are, though a delta bounds it.
     pub spans_layer: bool,
 }
@@ -87,13 +89,17 @@ pub(super) fn period(crystal: &Crystal) -> Option<f64> {
 /// Cuts a crystal into its stretches. A delta always has a cut of its own, right of any other at its place: between
 /// the two lies a stretch of no length, which grows as the delta moves to the right.
 pub(super) fn stretches(crystal: &Crystal, period: f64) -> Vec<Stretch> {
-    let mut stretches: Vec<Stretch> = cuts(crystal, period)
-        .windows(2)
-        .filter_map(|pair| match pair {
-            [from, to] => Some(stretch(crystal, period, *from, *to)),
-            _ => None,
-        })
-        .collect();
+    let mut stretches = Vec::new();
+    // From the right, so that a stretch of no length takes after its neighbour to the right.
+    let mut middle = period;
+    for pair in cuts(crystal, period).windows(2).rev() {
+        let [from, to] = pair else { continue };
+        if to.at > from.at {
+            middle = 0.5 * (from.at + to.at);
+        }
+        stretches.push(stretch(crystal, period, (*from, *to), middle));
+    }
+    stretches.reverse();
     number_layers(crystal, &mut stretches);
     stretches
 }
@@ -206,8 +212,8 @@ fn with_deltas(mut cuts: Vec<Cut>, deltas: impl Iterator<Item = Cut>, period: f6
     cuts
 }
 
-fn stretch(crystal: &Crystal, period: f64, from: Cut, to: Cut) -> Stretch {
-    let middle = 0.5 * (from.at + to.at);
+/// The stretch between two cuts, described at a place in it (or right of it, where it has no length).
+fn stretch(crystal: &Crystal, period: f64, (from, to): (Cut, Cut), middle: f64) -> Stretch {
     let piece = crystal
         .potential
         .profile
@@ -239,6 +245,7 @@ fn stretch(crystal: &Crystal, period: f64, from: Cut, to: Cut) -> Stretch {
         piece,
         knot,
         boxes,
+        middle,
         spans_layer: false,
     }
 }
@@ -262,16 +269,14 @@ fn boxes_over(crystal: &Crystal, period: f64, point: f64) -> Vec<usize> {
     over
 }
 
-/// Gives each stretch the layer that it lies in; one of no length lies in the layer to its right.
+/// Gives each stretch the layer that it lies in.
 fn number_layers(crystal: &Crystal, stretches: &mut [Stretch]) {
     let layers = &crystal.potential.layers;
     let (mut index, mut left) = (0, 0.0);
     let length = |index: usize| layers.get(index).map_or(0.0, |layer| layer.length.value);
     for stretch in stretches {
         let (from, to) = (stretch.from.at, stretch.to.at);
-        let middle = 0.5 * (from + to);
-        let beyond = |face: f64| middle > face || (from == to && middle >= face);
-        while index + 1 < layers.len() && beyond(left + length(index)) {
+        while index + 1 < layers.len() && stretch.middle > left + length(index) {
             left += length(index);
             index += 1;
         }

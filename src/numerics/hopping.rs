@@ -13,9 +13,10 @@
 use super::budget::{Budget, Meter};
 use super::cell::{Bounded, Cell, Ready, SolveError, prepare};
 use super::double::Double;
+use super::interior::Inside;
 use super::level::level_target;
 use super::scalar::{Scalar, power_of_two};
-use super::search::{Finder, Inside};
+use super::search::Finder;
 use super::sweep::Reading;
 use std::f64::consts::PI;
 

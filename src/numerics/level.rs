@@ -3,8 +3,9 @@
 use super::budget::{BOUND, Budget, Meter};
 use super::cell::{Bounded, Cell, Ready, SolveError, prepare};
 use super::double::Double;
+use super::interior::Inside;
 use super::scalar::Scalar;
-use super::search::{Finder, Inside, Target, is_positive};
+use super::search::{Finder, Target, is_positive};
 use super::solve::find;
 use super::sweep::read;
 use super::uncertainty::{a_priori, level_bound};

@@ -13,17 +13,20 @@
 //!
 //! **Order of reading.** `scalar` and `double` (the arithmetic), `entire` (the functions), `cell`
 //! and `budget` (what a caller hands in), `mesh` (smooth stretches), `element` (one transfer matrix), `sweep`
-//! (the product over a cell, and the zero count), `search` (brackets and roots), `solve`, `level`,
+//! (the product over a cell, and the zero count), `search` and `interior` (brackets and
+//! roots), `edges`, `solve`, `level`,
 //! `hopping`, `sensitivity`, `wave` (what a caller asks for).
 #![allow(clippy::indexing_slicing)]
 
 mod budget;
 mod cell;
 mod double;
+mod edges;
 mod element;
 mod entire;
 mod gradient;
 mod hopping;
+mod interior;
 mod level;
 mod mesh;
 mod pair;

@@ -12,13 +12,14 @@
 use super::budget::Meter;
 use super::cell::{Bounded, Mass, Ready};
 use super::double::Double;
+use super::edges::RawEdge;
 use super::element::Element;
 use super::gradient::{COARSE, Gradient, gradient};
 use super::pair::{Pair, pair};
 use super::scalar::{Dual, Scalar, power_of_two};
 use super::search::is_positive;
 use super::sensitivity::{PieceSensitivity, difference, ratio, width_slopes};
-use super::solve::{Band, BandEdge, Bands, Gap, NARROW_WIDTH, Raw, RawEdge, Wave};
+use super::solve::{Band, BandEdge, Bands, Gap, NARROW_WIDTH, Raw, Wave};
 
 const UNIT: f64 = f64::EPSILON / 2.0;
 
