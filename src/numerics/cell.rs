@@ -139,6 +139,26 @@ impl Ready {
         }
     }
 
+    /// Decay lengths of all walls together, ln of how far a product over the cell may grow on the way.
+    pub fn decay(&self, energy: f64) -> f64 {
+        let lengths = |element: &Element| match element {
+            Element::Delta { .. } => 0.0,
+            Element::Flat {
+                length,
+                potential,
+                mass,
+            } => {
+                let mass = mass.value + mass.slope * energy;
+                length * (mass * (potential - energy)).max(0.0).sqrt()
+            }
+            Element::Polynomial(p) => {
+                let mass = p.mass[0].value + p.mass[0].slope * energy;
+                p.length * (mass * (p.range[1] - energy)).max(0.0).sqrt()
+            }
+        };
+        self.elements.iter().map(lengths).sum()
+    }
+
     /// The work of a sweep at an energy, in the unit of [`budget`](super::budget).
     pub fn work(&self, energy: f64) -> usize {
         self.elements.len() + PART * self.parts(energy)

@@ -5,10 +5,16 @@
 //! not halve the bracket (so that a band narrower than the arithmetic separates comes between close neighbours in a
 //! dozen sweeps, not in as many as the arithmetic has bits), and by halving where that did not either.
 
+use super::budget::GRADIENT;
 use super::cell::SolveError;
+use super::gradient::{COARSE, gradient};
 use super::scalar::Scalar;
 use super::search::{Finder, PATIENCE, is_positive};
 use super::sweep::Reading;
+use super::uncertainty::units;
+
+/// Rounding of D that hides nothing.
+const TRUSTED: f64 = 1e-4;
 
 /// Noise of D above which a reading inside a band means nothing.
 const NOISY: f64 = 0.1;
@@ -106,6 +112,30 @@ impl<T: Scalar> Finder<'_, T> {
             };
         }
         Err(SolveError::NoBracket)
+    }
+
+    /// log₂ of the rounding of D at a reading, where it may be more than the last matrix shows; `None` elsewhere. Behind several
+    /// thick walls the product grows on the way to e^{Σκl} and comes back in a band: the rounding of the way stays, and
+    /// only the factors with the rest around each tell it.
+    pub fn doubt(&self, reading: &Reading<T>) -> Result<Option<f64>, SolveError> {
+        let energy = reading.energy.leading();
+        if self.ready.decay(energy) + T::UNIT.ln() < TRUSTED.ln() {
+            return Ok(None);
+        }
+        self.meter.sweep::<f64>(self.ready, energy, GRADIENT)?;
+        let around = gradient(self.ready, energy, &COARSE);
+        let doubt = (units(T::UNIT < f64::UNIT) * around.rounding).log2();
+        Ok(Some(doubt + around.exponent as f64))
+    }
+
+    /// Whether a finer arithmetic is not called for at a reading in a band.
+    pub fn trusts(&self, reading: &Reading<T>) -> Result<bool, SolveError> {
+        if T::UNIT < f64::UNIT {
+            return Ok(true);
+        }
+        Ok(self
+            .doubt(reading)?
+            .is_none_or(|doubt| doubt < TRUSTED.log2()))
     }
 
     /// The entry of first..last nearest to the middle of the band, if well inside.

@@ -194,6 +194,16 @@ impl<'a, T: Scalar> Finder<'a, T> {
         Ok(())
     }
 
+    /// Does s D rise above 2 here, beyond the doubt of `doubt` too?
+    fn rises(&self, reading: &Reading<T>, positive: bool) -> Result<bool, SolveError> {
+        if !reading.rises(positive, WIDE) {
+            return Ok(false);
+        }
+        let excess = reading.excess(positive).0.leading().log2() + reading.exponent as f64;
+        let doubt = self.doubt(reading)?.filter(|doubt| doubt.is_finite());
+        Ok(doubt.is_none_or(|doubt| excess > doubt + 2.0))
+    }
+
     /// A point in the gap between readings in neighbouring bands, or where s D is greatest.
     pub fn gap_point(
         &mut self,
@@ -205,7 +215,7 @@ impl<'a, T: Scalar> Finder<'a, T> {
         // entries already in the gap
         for r in &self.readings {
             let between = less(left.energy, r.energy) && less(r.energy, right.energy);
-            if between && r.rises(positive, WIDE) {
+            if between && self.rises(r, positive)? {
                 return Ok(GapPoint::Wide(r.energy));
             }
         }
@@ -230,7 +240,7 @@ impl<'a, T: Scalar> Finder<'a, T> {
                 left.energy + T::constant(width * share.clamp(least, 1.0 - least))
             };
             let reading = self.read(energy)?;
-            if reading.rises(positive, WIDE) {
+            if self.rises(&reading, positive)? {
                 return Ok(GapPoint::Wide(energy));
             }
             if reading.noise() > WIDE && T::UNIT == f64::UNIT {

@@ -115,7 +115,11 @@ fn find_in<T: Scalar>(
     finder.surround(bands)?;
     let mut inside = Vec::with_capacity(bands + 1);
     for band in 0..=bands {
-        inside.extend(finder.inside(band)?.accept());
+        if let Some(reading) = finder.inside(band)?.accept()
+            && finder.trusts(&reading)?
+        {
+            inside.push(reading);
+        }
     }
     if inside.len() <= bands {
         return Ok(Err(finder.seeds(bands)));

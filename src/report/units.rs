@@ -420,7 +420,7 @@ mod tests {
         assert_eq!(digits(132.418_39, 0.04), "132.4");
         assert_eq!(digits(0.2, 0.5), "0 ± 0.7");
         assert_eq!(digits(740_570.6, 1e-8), "7.406e5");
-        assert_eq!(digits(740_570.6, 1.5), "740600 ± 40");
+        assert_eq!(digits(740_570.6, 150.0), "740600 ± 200");
         assert_eq!(digits(-12.5, 0.0), "−12.5");
         assert_eq!(digits(60.0, 1e-13), "60.00");
         assert_eq!(digits(8.0, 0.0), "8");
