@@ -187,7 +187,7 @@ pub(crate) fn units(exact: bool) -> f64 {
     if exact {
         256.0 * Double::UNIT
     } else {
-        6.0 * UNIT
+        10.0 * UNIT
     }
 }
 
