@@ -452,7 +452,7 @@ fn mirrored(cell: &Cell) -> Cell {
 fn random_mixtures_do_not_depend_on_origin_or_direction() {
     let mut random = Random(0x7f4a_7c15_9e37_79b9);
     let mut sweeps = 0.0f64;
-    for trial in 0..trials(100) {
+    for trial in 0..trials(300) {
         let offset = [0.0, 1000.0, -1000.0][(3.0 * random.next()) as usize % 3];
         let thick = [4.0, 15.0, 60.0][(3.0 * random.next()) as usize % 3];
         let count = 2 + (random.next() * 5.0) as usize;

@@ -359,6 +359,13 @@ fn width(
         spread(ready, &difference(&top.1.slopes, &bottom.1.slopes))
     };
     let own = top.0.noise + bottom.0.noise + top.1.rounding + bottom.1.rounding;
+    // edges in `f64` are themselves rounded
+    let last = if raw.exact {
+        0.0
+    } else {
+        2.0 * UNIT * (top.0.energy.leading().abs() + bottom.0.energy.leading().abs())
+    };
+    let own = own + last;
     Bounded {
         value,
         error: bound_of(f64::EPSILON * inputs + mesh + own + 2.0 * UNIT * value),
