@@ -9,10 +9,8 @@
 #[path = "reference/mod.rs"]
 mod reference;
 
-use crenate::numerics::{
-    Bands, Budget, Cell, Mass, Mesh, Piece, SolveError, discriminant, fermi, level, solve,
-};
-use reference::{Tally, flat, number, rows, smooth_cell};
+use crenate::numerics::{Bands, Budget, Cell, Mass, Mesh, Piece, SolveError, fermi, level, solve};
+use reference::{flat, smooth_cell};
 use std::f64::consts::PI;
 use std::sync::atomic::{AtomicUsize, Ordering};
 
@@ -204,6 +202,28 @@ fn doubled_cells_of_narrow_bands_are_honest() {
     assert!((sum / whole - 1.0).abs() < 1e-6, "{sum} {whole}");
 }
 
+/// The rounding of the way through two thick walls stays in D though its matrix is small in a band: in `f64` the halves of a
+/// doubled cell's band came out a hundred times too wide, with a gap between them.
+#[test]
+fn the_rounding_of_the_way_through_two_walls_is_seen() {
+    for b in [1.2, 1.6, 2.0, 2.4] {
+        let pieces = vec![flat(1.0, 0.0, 1.0), flat(b, 100.0, 1.0)];
+        let doubled = Cell {
+            pieces: pieces.iter().chain(&pieces).cloned().collect(),
+        };
+        let found = bands(&doubled, 2);
+        let plain = bands(&Cell { pieces }, 1).bands[0];
+        assert!(found.gaps[0].closed, "{b}: {:?}", found.gaps[0]);
+        let sum = found.bands[0].width.value + found.bands[1].width.value;
+        assert!(
+            (sum / plain.width.value - 1.0).abs() < 1e-6,
+            "{b}: {sum:e} for {:?}",
+            plain.width
+        );
+        assert!(found.bands[0].width.error < 1e-6, "{b}: {found:?}");
+    }
+}
+
 #[test]
 fn walls_of_hundreds_of_decay_lengths_do_not_overflow() {
     // one well, ψ decaying over 1/√V: the bound level in closed form, k tan(k a/2) = κ
@@ -361,25 +381,6 @@ fn mass_contrast_of_a_thousand_is_no_trouble() {
 }
 
 #[test]
-fn ramps_meet_airy_functions() {
-    let mut tally = Tally::new("ramps");
-    for row in rows(include_str!("reference/ramps.csv")) {
-        let x: Vec<f64> = row.iter().map(|f| number(f)).collect();
-        let ramp = Piece::Ramp {
-            length: x[0],
-            potential: [x[1], x[2]],
-            mass: [Mass::constant(x[3]); 2],
-        };
-        let cell = Cell {
-            pieces: vec![ramp, flat(1.0, 0.0, 1.0)],
-        };
-        let found = discriminant(&cell, x[4], &Budget::default()).unwrap();
-        tally.check(&format!("{row:?}"), found, x[5], x[5].abs().max(2.0));
-    }
-    tally.finish(1e-12 / f64::EPSILON);
-}
-
-#[test]
 fn linear_masses_agree_with_many_thin_layers() {
     // second-order convergence of a staircase to the ramp
     let ramp = |length: f64| Piece::Ramp {
@@ -464,9 +465,9 @@ fn budgets_and_cancelling_are_kept() {
         pieces: vec![flat(1.0, 0.0, 1.0), flat(1.0, 10.0, 1.0)],
     };
     let never = || false;
-    for max_sweeps in [0, 1, 7, 20] {
+    for max_work in [0, 1, 14, 40] {
         let budget = Budget {
-            max_sweeps,
+            max_work,
             cancelled: &never,
         };
         assert_eq!(solve(&cell, 4, &budget), Err(SolveError::BudgetSpent));
@@ -475,7 +476,7 @@ fn budgets_and_cancelling_are_kept() {
                 &cell,
                 1.5,
                 &Budget {
-                    max_sweeps: max_sweeps.min(4),
+                    max_work: max_work.min(8),
                     ..budget
                 }
             )
@@ -484,13 +485,13 @@ fn budgets_and_cancelling_are_kept() {
         );
     }
     let asked = AtomicUsize::new(0);
-    let after_ten = || asked.fetch_add(1, Ordering::Relaxed) >= 10;
+    let after_two = || asked.fetch_add(1, Ordering::Relaxed) >= 2;
     let budget = Budget {
-        max_sweeps: 1000,
-        cancelled: &after_ten,
+        max_work: 100_000,
+        cancelled: &after_two,
     };
     assert_eq!(solve(&cell, 4, &budget), Err(SolveError::Cancelled));
-    assert_eq!(asked.load(Ordering::Relaxed), 11);
+    assert_eq!(asked.load(Ordering::Relaxed), 3);
     // a sweep that alone would take too long is not begun
     let long = Piece::Ramp {
         length: 1e9,
@@ -504,7 +505,7 @@ fn budgets_and_cancelling_are_kept() {
     // a function that no mesh follows ends at the budget, not never
     let wild = |x: f64| (1e9 * x).sin();
     let small = Budget {
-        max_sweeps: 500,
+        max_work: 10_000,
         cancelled: &never,
     };
     assert_eq!(

@@ -127,8 +127,13 @@ impl Assessor<'_> {
         if assessment.state == TargetState::Undecided {
             assessment.reason = Some("the limit lies inside the value's uncertainty".into());
         }
-        if !draws.is_empty() {
-            self.worst(&probe, target, &mut assessment)?;
+        if draws.is_empty() {
+            return Ok(assessment);
+        }
+        match self.worst(&probe, target, &mut assessment) {
+            // What is missed already needs no worst case.
+            Err(Untested::Because(_)) if assessment.state == TargetState::Missed => {}
+            found => found?,
         }
         Ok(assessment)
     }
@@ -433,9 +438,18 @@ fn note_corner(
         let way = worst.point.get(axis).copied().unwrap_or(0.0);
         -0.5 * (slope(centre) + slope(worst)) * way
     };
-    let most = (0..draws.len()).max_by(|a, b| spent(*a).total_cmp(&spent(*b)));
-    assessment.driver = most
-        .filter(|axis| spent(*axis) > 0.0)
+    // At a kink the slopes of its two sides cancel: then the one on the way there tells.
+    let begun = |axis: usize| {
+        let slope = centre.slopes.get(axis).copied().unwrap_or(0.0);
+        -slope * worst.point.get(axis).copied().unwrap_or(0.0)
+    };
+    let most = |spent: &dyn Fn(usize) -> f64| {
+        (0..draws.len())
+            .max_by(|a, b| spent(*a).total_cmp(&spent(*b)))
+            .filter(|axis| spent(*axis) > 0.0)
+    };
+    assessment.driver = most(&spent)
+        .or_else(|| most(&begun))
         .and_then(|axis| draws.get(axis).copied());
 }
 

@@ -3,13 +3,12 @@
 use crate::model::Crystal;
 use crate::numerics::{Bounded, Budget, Cell, Mass, Mesh, Piece, SolveError};
 
+use super::effort;
 use super::field::Field;
 use super::layout::{self, Stretch};
 use super::scale::Scale;
 use super::{Measured, Unsolved};
 
-/// What a crystal may cost: sweeps over its cell. A thousand layers at twenty bands need under ten thousand.
-const MOST_SWEEPS: usize = 100_000;
 /// Pieces of one cell past which a crystal is not solved.
 const MOST_PIECES: usize = 200_000;
 
@@ -22,6 +21,8 @@ pub(super) struct Chain<'a> {
     /// The nodes of all smooth stretches as shares of their stretch.
     pub nodes: Vec<f64>,
     pub stretches: Vec<Stretch>,
+    /// Samples of the potential that meshes may still take.
+    samples_left: usize,
 }
 
 /// Where a piece of the cell comes from.
@@ -39,21 +40,11 @@ pub(super) enum Origin {
     },
 }
 
-/// A budget of the standard size with this hook.
-pub(super) fn budget<'a>(cancelled: &'a (dyn Fn() -> bool + Sync)) -> Budget<'a> {
-    Budget {
-        max_sweeps: MOST_SWEEPS,
-        cancelled,
-    }
-}
-
 /// Why the numerics gave up, for the user.
 pub(super) fn unsolved(error: SolveError) -> Unsolved {
     match error {
         SolveError::Cancelled => Unsolved::Cancelled,
-        SolveError::BudgetSpent => {
-            Unsolved::NotConverged("the work allowed was spent before the bands settled".into())
-        }
+        SolveError::BudgetSpent => effort::spent(),
         SolveError::NoBracket => Unsolved::NotConverged("an edge could not be closed in on".into()),
         SolveError::NotFinite => {
             Unsolved::NotConverged("the potential, a length or a mass is not finite".into())
@@ -78,6 +69,7 @@ impl<'a> Chain<'a> {
             origins: Vec::new(),
             nodes: Vec::new(),
             stretches: Vec::new(),
+            samples_left: budget.max_work / effort::terms(crystal),
         };
         for (index, stretch) in stretches.iter().enumerate() {
             chain.add_stretch(index, stretch, budget)?;
@@ -97,16 +89,11 @@ impl<'a> Chain<'a> {
         stretch: &Stretch,
         budget: &Budget<'_>,
     ) -> Result<(), Unsolved> {
-        for delta in &stretch.deltas {
-            let strength = self
-                .field
-                .crystal
-                .potential
-                .deltas
-                .get(*delta)
-                .map_or(0.0, |delta| delta.strength.value);
+        if let Some(delta) = stretch.delta() {
+            let deltas = &self.field.crystal.potential.deltas;
+            let strength = deltas.get(delta).map_or(0.0, |delta| delta.strength.value);
             let strength = strength / (self.scale.energy * self.scale.length);
-            self.push(Piece::Delta { strength }, Origin::Delta(*delta));
+            self.push(Piece::Delta { strength }, Origin::Delta(delta));
         }
         let length = self.field.length::<f64>(stretch) / self.scale.length;
         let mass = self
@@ -116,7 +103,7 @@ impl<'a> Chain<'a> {
                 value: value / self.scale.mass,
                 slope: slope * self.scale.energy / self.scale.mass,
             });
-        if self.field.is_smooth(stretch) {
+        if self.field.is_smooth(stretch) && length > 0.0 {
             return self.add_smooth(index, stretch, mass, budget);
         }
         let potential = self
@@ -152,7 +139,12 @@ impl<'a> Chain<'a> {
         let energy = self.scale.energy;
         let potential = |at: f64| field.potential(stretch, &(from + at * field.period)) / energy;
         let share = length / self.scale.length;
-        let mesh = Mesh::build(share, &potential, 1.0, budget).map_err(unsolved)?;
+        let meshing = Budget {
+            max_work: self.samples_left,
+            ..*budget
+        };
+        let mesh = Mesh::build(share, &potential, 1.0, &meshing).map_err(unsolved)?;
+        self.samples_left = self.samples_left.saturating_sub(mesh.work());
         let samples: Vec<f64> = mesh
             .nodes()
             .iter()

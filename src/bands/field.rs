@@ -1,11 +1,16 @@
 //! Positions, potential and mass on the stretches of a one-dimensional crystal, as plain numbers or with their
 //! derivatives.
 
+use std::sync::OnceLock;
+
 use crate::model::shape::images::sum_of_images;
 use crate::model::shape::spline::CubicPiece;
 use crate::model::{Crystal, Dual, MassLaw, Scalar, SiteShape};
 
 use super::layout::{Cut, Mark, Stretch};
+
+/// Derivatives of faces kept: a few thousand layers each written on a line of its own.
+const MOST_SLOPES: usize = 10_000_000;
 
 /// A 1D crystal and its period in metre.
 pub(super) struct Field<'a> {
@@ -13,6 +18,10 @@ pub(super) struct Field<'a> {
     pub period: f64,
     /// The table between its samples.
     table: Vec<CubicPiece>,
+    /// The left face of each layer, then the right face of the last.
+    faces: Vec<f64>,
+    /// The same with their derivatives, from when derivatives are wanted.
+    moving_faces: OnceLock<Vec<Dual>>,
 }
 
 impl<'a> Field<'a> {
@@ -23,11 +32,38 @@ impl<'a> Field<'a> {
             .table
             .as_ref()
             .map_or_else(Vec::new, |table| table.pieces(period));
+        let layers = &crystal.potential.layers;
+        let mut faces = vec![0.0];
+        for layer in layers {
+            faces.push(faces.last().copied().unwrap_or(0.0) + layer.length.value);
+        }
         Self {
             crystal,
             period,
             table,
+            faces,
+            moving_faces: OnceLock::new(),
         }
+    }
+
+    /// From now on faces carry their derivatives; `false` where these are too many to keep.
+    pub fn follow_faces(&self) -> bool {
+        if self.moving_faces.get().is_some() {
+            return true;
+        }
+        let mut faces = vec![Dual::default()];
+        let mut kept = 0;
+        for layer in &self.crystal.potential.layers {
+            let next = faces
+                .last()
+                .map_or_else(Dual::default, |face| Scalar::plus(face, &layer.length));
+            kept += next.slopes.len();
+            if kept > MOST_SLOPES {
+                return false;
+            }
+            faces.push(next);
+        }
+        self.moving_faces.set(faces).is_ok()
     }
 
     /// The period.
@@ -49,10 +85,11 @@ impl<'a> Field<'a> {
 
     /// The left face of a layer: the sum of the lengths before it.
     fn face<S: Scalar>(&self, layers: usize) -> S {
-        let lengths = self.crystal.potential.layers.iter().take(layers);
-        lengths.fold(S::number(0.0), |sum, layer| {
-            sum.plus(&S::lift(&layer.length))
-        })
+        let fixed = || S::number(self.faces.get(layers).copied().unwrap_or(self.period));
+        match self.moving_faces.get() {
+            Some(faces) => faces.get(layers).map_or_else(fixed, S::lift),
+            None => fixed(),
+        }
     }
 
     /// The position of a cut.
@@ -63,10 +100,10 @@ impl<'a> Field<'a> {
             Mark::End => return self.period(),
             Mark::Face(layer) => return self.face(layer + 1),
             Mark::Knot(_) => return S::number(cut.at),
-            Mark::Delta(index) => potential
+            Mark::Delta(index, shift) => potential
                 .deltas
                 .get(index)
-                .map(|delta| (S::lift(&delta.at), 0)),
+                .map(|delta| (S::lift(&delta.at), shift)),
             Mark::PieceEnd(index, side, shift) => potential
                 .profile
                 .get(index)
@@ -97,8 +134,12 @@ impl<'a> Field<'a> {
         if let Some(layer) = self.whole_layer(stretch) {
             return S::lift(&layer.length);
         }
-        self.position::<S>(&stretch.to)
-            .minus(&self.position(&stretch.from))
+        let length = self
+            .position::<S>(&stretch.to)
+            .minus(&self.position(&stretch.from));
+        // A layer with a delta on its left face keeps its length to the last digit.
+        let value = stretch.layer_length(self.crystal);
+        length.chain(value.unwrap_or(length.value()), || 1.0)
     }
 
     fn whole_layer(&self, stretch: &Stretch) -> Option<&crate::model::Layer> {

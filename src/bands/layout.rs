@@ -15,8 +15,8 @@ pub(super) enum Mark {
     Start,
     /// The right face of a layer.
     Face(usize),
-    /// A delta.
-    Delta(usize),
+    /// A delta, moved by whole periods.
+    Delta(usize, i64),
     /// An end (0 left, 1 right) of a profile piece, moved by whole periods.
     PieceEnd(usize, usize, i64),
     /// A sample of the table.
@@ -47,8 +47,26 @@ pub(super) struct Stretch {
     pub knot: Option<usize>,
     /// The boxes that cover it, once for each image that does.
     pub boxes: Vec<usize>,
-    /// The deltas at its left end.
-    pub deltas: Vec<usize>,
+    /// A place in it, or right of it where it has no length.
+    middle: f64,
+    /// Whether it is the whole of its layer at the values as they are, though a delta bounds it.
+    pub spans_layer: bool,
+}
+
+impl Stretch {
+    /// The delta at its left end.
+    pub fn delta(&self) -> Option<usize> {
+        match self.from.mark {
+            Mark::Delta(index, _) => Some(index),
+            _ => None,
+        }
+    }
+
+    /// The length of its layer, where it is the whole of it.
+    pub fn layer_length(&self, crystal: &Crystal) -> Option<f64> {
+        let layer = self.layer.filter(|_| self.spans_layer)?;
+        Some(crystal.potential.layers.get(layer)?.length.value)
+    }
 }
 
 /// The period of a 1D crystal in metre: its layers' sum, else its lattice vector.
@@ -68,30 +86,26 @@ pub(super) fn period(crystal: &Crystal) -> Option<f64> {
     period.filter(|period| period.is_finite() && *period > 0.0)
 }
 
-/// Cuts a crystal into its stretches.
+/// Cuts a crystal into its stretches. A delta always has a cut of its own, right of any other at its place: between
+/// the two lies a stretch of no length, which grows as the delta moves to the right.
 pub(super) fn stretches(crystal: &Crystal, period: f64) -> Vec<Stretch> {
-    let (cuts, deltas) = cuts(crystal, period);
-    let mut stretches: Vec<Stretch> = cuts
-        .windows(2)
-        .filter_map(|pair| match pair {
-            [from, to] => Some(stretch(crystal, period, *from, *to)),
-            _ => None,
-        })
-        .collect();
-    number_layers(crystal, &mut stretches);
-    for (delta, at) in deltas {
-        let place = stretches.partition_point(|stretch| stretch.from.at < at - SAME * period);
-        // A delta at the right end of the cell is the same as one at its left end.
-        let place = if place == stretches.len() { 0 } else { place };
-        if let Some(stretch) = stretches.get_mut(place) {
-            stretch.deltas.push(delta);
+    let mut stretches = Vec::new();
+    // From the right, so that a stretch of no length takes after its neighbour to the right.
+    let mut middle = period;
+    for pair in cuts(crystal, period).windows(2).rev() {
+        let [from, to] = pair else { continue };
+        if to.at > from.at {
+            middle = 0.5 * (from.at + to.at);
         }
+        stretches.push(stretch(crystal, period, (*from, *to), middle));
     }
+    stretches.reverse();
+    number_layers(crystal, &mut stretches);
     stretches
 }
 
-/// All cuts in order, equal ones once, and the deltas with their positions in the cell.
-fn cuts(crystal: &Crystal, period: f64) -> (Vec<Cut>, Vec<(usize, f64)>) {
+/// All cuts in order, equal ones once, deltas apart.
+fn cuts(crystal: &Crystal, period: f64) -> Vec<Cut> {
     let potential = &crystal.potential;
     let mut cuts = vec![Cut {
         at: 0.0,
@@ -106,18 +120,12 @@ fn cuts(crystal: &Crystal, period: f64) -> (Vec<Cut>, Vec<(usize, f64)>) {
         });
     }
     let mut add = |at: f64, mark: &dyn Fn(i64) -> Mark| {
-        let shift = (at / period).floor();
-        let inside = at - shift * period;
+        let (inside, shift) = inside(at, period);
         cuts.push(Cut {
             at: inside,
-            mark: mark(-(shift as i64)),
+            mark: mark(shift),
         });
-        inside
     };
-    let mut deltas = Vec::new();
-    for (index, delta) in potential.deltas.iter().enumerate() {
-        deltas.push((index, add(delta.at.value, &|_| Mark::Delta(index))));
-    }
     for (index, piece) in potential
         .profile
         .iter()
@@ -147,7 +155,26 @@ fn cuts(crystal: &Crystal, period: f64) -> (Vec<Cut>, Vec<(usize, f64)>) {
         at: period,
         mark: Mark::End,
     });
-    (merged(cuts, period), deltas)
+    let deltas = potential.deltas.iter().enumerate();
+    let deltas = deltas.map(|(index, delta)| {
+        let (at, shift) = inside(delta.at.value, period);
+        Cut {
+            at,
+            mark: Mark::Delta(index, shift),
+        }
+    });
+    with_deltas(merged(cuts, period), deltas, period)
+}
+
+/// A position taken into the cell, and the periods added; what lies at the right end lies at the left one.
+fn inside(at: f64, period: f64) -> (f64, i64) {
+    let shift = (at / period).floor();
+    let inside = at - shift * period;
+    if inside >= period * (1.0 - SAME) {
+        (0.0, -(shift as i64) - 1)
+    } else {
+        (inside, -(shift as i64))
+    }
 }
 
 /// The cuts in order of position; of equal ones the first kept, the cell's ends before all.
@@ -167,8 +194,26 @@ fn merged(mut cuts: Vec<Cut>, period: f64) -> Vec<Cut> {
     cuts
 }
 
-fn stretch(crystal: &Crystal, period: f64, from: Cut, to: Cut) -> Stretch {
-    let middle = 0.5 * (from.at + to.at);
+/// Puts the deltas between the other cuts, each right of the cut that it lies on.
+fn with_deltas(mut cuts: Vec<Cut>, deltas: impl Iterator<Item = Cut>, period: f64) -> Vec<Cut> {
+    let others = cuts.len();
+    for delta in deltas {
+        let near = cuts.get(..others).and_then(|cuts| {
+            let after = cuts.partition_point(|cut| cut.at <= delta.at + SAME * period);
+            cuts.get(after.checked_sub(1)?)
+        });
+        let on = near.filter(|cut| delta.at - cut.at <= SAME * period);
+        cuts.push(Cut {
+            at: on.map_or(delta.at, |cut| cut.at),
+            ..delta
+        });
+    }
+    cuts.sort_by(|a, b| a.at.total_cmp(&b.at));
+    cuts
+}
+
+/// The stretch between two cuts, described at a place in it (or right of it, where it has no length).
+fn stretch(crystal: &Crystal, period: f64, (from, to): (Cut, Cut), middle: f64) -> Stretch {
     let piece = crystal
         .potential
         .profile
@@ -200,7 +245,8 @@ fn stretch(crystal: &Crystal, period: f64, from: Cut, to: Cut) -> Stretch {
         piece,
         knot,
         boxes,
-        deltas: Vec::new(),
+        middle,
+        spans_layer: false,
     }
 }
 
@@ -226,13 +272,16 @@ fn boxes_over(crystal: &Crystal, period: f64, point: f64) -> Vec<usize> {
 /// Gives each stretch the layer that it lies in.
 fn number_layers(crystal: &Crystal, stretches: &mut [Stretch]) {
     let layers = &crystal.potential.layers;
-    let (mut index, mut face) = (0, layers.first().map_or(0.0, |layer| layer.length.value));
+    let (mut index, mut left) = (0, 0.0);
+    let length = |index: usize| layers.get(index).map_or(0.0, |layer| layer.length.value);
     for stretch in stretches {
-        let middle = 0.5 * (stretch.from.at + stretch.to.at);
-        while middle > face && index + 1 < layers.len() {
+        let (from, to) = (stretch.from.at, stretch.to.at);
+        while index + 1 < layers.len() && stretch.middle > left + length(index) {
+            left += length(index);
             index += 1;
-            face += layers.get(index).map_or(0.0, |layer| layer.length.value);
         }
         stretch.layer = (index < layers.len()).then_some(index);
+        let ends = matches!(stretch.to.mark, Mark::Face(_) | Mark::End);
+        stretch.spans_layer = ends && from == left && to > from;
     }
 }

@@ -6,6 +6,7 @@
 mod assess;
 mod cache;
 mod chain;
+mod effort;
 mod field;
 mod filling;
 mod fingerprint;
@@ -42,7 +43,8 @@ pub use types::*;
 
 use assess::Assessor;
 use cache::Cache;
-use chain::{Chain, budget};
+use chain::Chain;
+use effort::budget;
 use zone_solve::{Effort, zone_solution};
 
 /// Asked again and again during long work; `true` stops it.

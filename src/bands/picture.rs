@@ -4,7 +4,8 @@
 use crate::model::Crystal;
 use crate::numerics::{self, Budget};
 
-use super::chain::{Chain, budget, unsolved};
+use super::chain::{Chain, unsolved};
+use super::effort::budget;
 use super::field::Field;
 use super::{Cancelled, Solution, Unsolved, layout};
 

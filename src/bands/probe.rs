@@ -2,12 +2,14 @@
 
 use std::cell::RefCell;
 use std::sync::Arc;
+use std::sync::atomic::{AtomicUsize, Ordering};
 
 use rustc_hash::FxHashMap;
 
 use crate::model::{Crystal, CrystalRef, Limits, ParameterId, Setting, TargetFormula, Wish};
 
 use super::assess::Assessor;
+use super::effort::MOST_QUESTIONS;
 use super::quantity::{Leaf, Untested, sum_slopes};
 use super::worst::{self, Sample};
 
@@ -169,6 +171,26 @@ impl Probe<'_> {
 
     /// The least margin over the box; `None` without such a limit.
     pub fn least_margin(&self, side: Side, search: Search) -> Result<Option<Least>, Untested> {
+        let asked = AtomicUsize::new(0);
+        let overtaken = self.assessor.cancelled;
+        let hook = || overtaken() || asked.fetch_add(1, Ordering::Relaxed) >= MOST_QUESTIONS;
+        let assessor = Assessor {
+            cancelled: &hook,
+            ..*self.assessor
+        };
+        let limited = Probe {
+            assessor: &assessor,
+            ..*self
+        };
+        match limited.search(side, search) {
+            Err(Untested::Cancelled) if !overtaken() => Err(Untested::Because(
+                "the work allowed was spent in the search for the worst case".into(),
+            )),
+            found => found,
+        }
+    }
+
+    fn search(&self, side: Side, search: Search) -> Result<Option<Least>, Untested> {
         if search.corners {
             return self.least_corner(side, search.most);
         }

@@ -5,7 +5,8 @@ use std::sync::Arc;
 use crate::model::{Crystal, CrystalRef, Dual, ParameterId, Quantity, QuantityKind, TargetFormula};
 use crate::numerics;
 
-use super::chain::{Chain, budget, unsolved};
+use super::chain::{Chain, unsolved};
+use super::effort::budget;
 use super::filling::Filled;
 use super::{
     Extremum, Feature, Measured, Solution, Solver, Unsolved, solve, zone_quantity, zone_slopes,

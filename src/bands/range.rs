@@ -6,10 +6,14 @@ use super::field::Field;
 use super::layout::{self, Stretch};
 use super::{PotentialRange, Unsolved};
 
-/// Panels that a smooth stretch is cut into, each with eight Gauss–Legendre nodes and a search for its extrema.
+/// Most panels that a smooth stretch is cut into, each with eight Gauss–Legendre nodes and a search for its extrema,
+/// and most in all: a cell of many stretches needs few in each.
 const PANELS: usize = 64;
-/// Steps of the golden-section search: the square root of rounding is reached, the value is then exact to rounding.
+const PANELS_IN_ALL: usize = 8192;
+/// Steps of the golden-section search: the square root of rounding is reached, the value is then exact to rounding;
+/// and with few panels.
 const STEPS: usize = 40;
+const FEWER_STEPS: usize = 20;
 
 /// Nodes and weights of the eight-point Gauss–Legendre rule on −1 … 1 (Abramowitz & Stegun, Table 25.4).
 const GAUSS: [(f64, f64); 4] = [
@@ -30,6 +34,7 @@ pub(super) fn potential_range(
         mean: 0.0,
         highest: f64::NEG_INFINITY,
     };
+    let panels = (PANELS_IN_ALL / stretches.len().max(1)).clamp(4, PANELS);
     for stretch in &stretches {
         if (budget.cancelled)() {
             return Err(Unsolved::Cancelled);
@@ -37,8 +42,8 @@ pub(super) fn potential_range(
         let ends = field.ends::<f64>(stretch);
         ends.iter().for_each(|end| widen(&mut range, *end));
         let share = field.length::<f64>(stretch) / field.period;
-        if field.is_smooth(stretch) {
-            range.mean += share * smooth_mean(field, stretch, &mut range);
+        if field.is_smooth(stretch) && share > 0.0 {
+            range.mean += share * smooth_mean(field, stretch, panels, &mut range);
         } else {
             range.mean += share * 0.5 * (ends[0] + ends[1]);
         }
@@ -55,14 +60,20 @@ fn widen(range: &mut PotentialRange, value: f64) {
 }
 
 /// The mean over a smooth stretch; its extrema widen the range.
-fn smooth_mean(field: &Field<'_>, stretch: &Stretch, range: &mut PotentialRange) -> f64 {
+fn smooth_mean(
+    field: &Field<'_>,
+    stretch: &Stretch,
+    panels: usize,
+    range: &mut PotentialRange,
+) -> f64 {
     let (from, length) = (stretch.from.at, field.length::<f64>(stretch));
     let value = |share: f64| field.potential(stretch, &(from + share * length));
-    let width = 1.0 / PANELS as f64;
+    let width = 1.0 / panels as f64;
+    let steps = if panels < PANELS { FEWER_STEPS } else { STEPS };
     let mut mean = 0.0;
-    let mut samples = Vec::with_capacity(PANELS + 1);
+    let mut samples = Vec::with_capacity(panels + 1);
     samples.push(value(0.0));
-    for panel in 0..PANELS {
+    for panel in 0..panels {
         let middle = (panel as f64 + 0.5) * width;
         for (node, weight) in GAUSS {
             let step = 0.5 * width * node;
@@ -74,29 +85,32 @@ fn smooth_mean(field: &Field<'_>, stretch: &Stretch, range: &mut PotentialRange)
         if let [left, middle, right] = triple {
             let (low, high) = (index as f64 * width, (index as f64 + 2.0) * width);
             if middle <= left && middle <= right {
-                widen(range, -highest_between(low, high, &|share| -value(share)));
+                widen(
+                    range,
+                    -highest_between(low, high, steps, &|share| -value(share)),
+                );
             }
             if middle >= left && middle >= right {
-                widen(range, highest_between(low, high, &value));
+                widen(range, highest_between(low, high, steps, &value));
             }
         }
     }
     for end in [(0.0, width), (1.0 - width, 1.0)] {
-        widen(range, highest_between(end.0, end.1, &value));
+        widen(range, highest_between(end.0, end.1, steps, &value));
         widen(
             range,
-            -highest_between(end.0, end.1, &|share| -value(share)),
+            -highest_between(end.0, end.1, steps, &|share| -value(share)),
         );
     }
     mean
 }
 
 /// The highest value between two points, by golden section.
-fn highest_between(mut low: f64, mut high: f64, value: &dyn Fn(f64) -> f64) -> f64 {
+fn highest_between(mut low: f64, mut high: f64, steps: usize, value: &dyn Fn(f64) -> f64) -> f64 {
     let golden = 0.5 * (5.0_f64.sqrt() - 1.0);
     let (mut left, mut right) = (high - golden * (high - low), low + golden * (high - low));
     let (mut at_left, mut at_right) = (value(left), value(right));
-    for _ in 0..STEPS {
+    for _ in 0..steps {
         if at_left >= at_right {
             high = right;
             (right, at_right) = (left, at_left);

@@ -6,6 +6,7 @@ use crate::numerics::{self, Budget, PieceSensitivity, Quantity};
 use rustc_hash::FxHashMap;
 
 use super::chain::{Chain, Origin, unsolved};
+use super::effort;
 use super::{Feature, Sensitivity, Unsolved};
 
 impl Chain<'_> {
@@ -61,6 +62,15 @@ impl Chain<'_> {
         quantities: &[Quantity],
         budget: &Budget<'_>,
     ) -> Result<Vec<Vec<(ParameterId, f64)>>, Unsolved> {
+        if !self.field.follow_faces() {
+            return Err(Unsolved::NotConverged(
+                "the cell has too many layers of its own for derivatives".into(),
+            ));
+        }
+        let terms = effort::terms(self.field.crystal);
+        if self.nodes.len().saturating_mul(terms * terms) > effort::MOST_PRODUCTS {
+            return Err(effort::spent());
+        }
         let by_piece = numerics::sensitivities(&self.cell, quantities, budget).map_err(unsolved)?;
         let mut sums: Vec<FxHashMap<ParameterId, f64>> =
             vec![FxHashMap::default(); quantities.len()];

@@ -1,7 +1,7 @@
 //! The least value of a function over the box of tolerances, −1 … 1 in each.
 //!
-//! The sign of each slope names a corner; where the slopes there still have these signs, the corner is the
-//! answer. Where they have not, the least value may lie inside: a gap that closes and reopens between two good
+//! The sign of each slope names a corner; where the slopes there, and at the corner across, still have these signs,
+//! the corner is the answer. Where they have not, the least value may lie inside: a gap that closes and reopens between two good
 //! corners has a kink, |a·t − b|, or the narrow hyperbola beside it. So the search goes along lines, closing in
 //! on the change of sign of the slope (tangents from both sides meet at the kink of a |…|), and on along the
 //! valley: the direction of steepest descent at a kink is minus the shortest vector between the slopes of its
@@ -39,9 +39,15 @@ pub(super) fn least(
     let mut search = Search { evaluate, floor };
     let centre = search.at(vec![0.0; dimensions])?;
     let corner = search.at(corner_below(&centre.slopes))?;
-    let trusted = smooth && same_signs(&centre.slopes, &corner.slopes);
-    if dimensions == 0 || trusted && corner.value <= centre.value {
+    if dimensions == 0 {
         return Some((centre, corner));
+    }
+    if smooth && same_signs(&centre.slopes, &corner.slopes) && corner.value <= centre.value {
+        // A roof beyond the centre would show here: an edge that two levels take turns to be.
+        let across = search.at(corner.point.iter().map(|at| -at).collect())?;
+        if same_signs(&centre.slopes, &across.slopes) && centre.value <= across.value {
+            return Some((centre, corner));
+        }
     }
     let best = search.inside(&centre, corner)?;
     Some((centre, best))
@@ -332,11 +338,11 @@ mod tests {
     }
 
     #[test]
-    fn a_monotone_function_takes_two_evaluations() {
+    fn a_monotone_function_takes_three_evaluations() {
         let (value, count) = search(3, |t| {
             (t[0] + 2.0 * t[1] - 0.5 * t[2], vec![1.0, 2.0, -0.5])
         });
-        assert_eq!((value, count), (-3.5, 2));
+        assert_eq!((value, count), (-3.5, 3));
     }
 
     #[test]
@@ -364,6 +370,23 @@ mod tests {
         };
         assert_eq!(least_by(true), -1.0);
         assert_eq!(least_by(false), -4.0);
+    }
+
+    #[test]
+    fn a_lower_corner_behind_a_roof_is_found() {
+        let f = |t: &[f64]| (1.0 + t[0]).min(2.6 - 3.0 * t[0]) + 0.1 * t[1];
+        let slopes = |t: &[f64]| {
+            vec![
+                if 1.0 + t[0] < 2.6 - 3.0 * t[0] {
+                    1.0
+                } else {
+                    -3.0
+                },
+                0.1,
+            ]
+        };
+        let (value, _) = search(2, |t| (f(t), slopes(t)));
+        assert!((value + 0.5).abs() < 1e-12, "{value}");
     }
 
     #[test]

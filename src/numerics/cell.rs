@@ -1,14 +1,14 @@
-//! What a caller hands in: a cell made of pieces, a budget; and the common answers: a value with
-//! its bound, an error.
+//! What a caller hands in: a cell made of pieces; and the common answers: a value with its bound, an
+//! error.
 //!
 //! Lengths, energies and masses are in the caller's units with ħ²/2 = 1; results scale exactly.
 //! Best with numbers of order one, valid while squares of wave numbers times lengths stay in range.
 
+use super::budget::PART;
 use super::double::Double;
 use super::element::{Element, Polynomial};
 use super::mesh::{remainder, samples_to_polynomial};
 use super::scalar::Scalar;
-use std::cell::Cell as Counter;
 
 /// A mass that may depend on energy: `value + slope * E` at energy E; slope 0 for the ordinary.
 /// The slope must not be negative (the count of levels below E would lose its order).
@@ -99,55 +99,6 @@ pub struct Bounded {
     pub error: f64,
 }
 
-/// How much work is allowed, and a hook that may stop it.
-#[derive(Clone, Copy)]
-pub struct Budget<'a> {
-    /// The greatest number of sweeps over the cell (for a mesh: of steps).
-    pub max_sweeps: usize,
-    /// Asked before every sweep; `true` stops with [`SolveError::Cancelled`].
-    pub cancelled: &'a (dyn Fn() -> bool + Sync),
-}
-
-impl Default for Budget<'_> {
-    fn default() -> Self {
-        Budget {
-            max_sweeps: 1_000_000,
-            cancelled: &|| false,
-        }
-    }
-}
-
-/// Counts sweeps against a budget.
-pub(crate) struct Meter<'a> {
-    budget: &'a Budget<'a>,
-    used: Counter<usize>,
-}
-
-impl<'a> Meter<'a> {
-    pub fn new(budget: &'a Budget<'a>) -> Self {
-        Meter {
-            budget,
-            used: Counter::new(0),
-        }
-    }
-
-    /// Books one sweep.
-    pub fn spend(&self) -> Result<(), SolveError> {
-        if (self.budget.cancelled)() {
-            return Err(SolveError::Cancelled);
-        }
-        if self.used.get() >= self.budget.max_sweeps {
-            return Err(SolveError::BudgetSpent);
-        }
-        self.used.set(self.used.get() + 1);
-        Ok(())
-    }
-
-    pub fn used(&self) -> usize {
-        self.used.get()
-    }
-}
-
 /// A cell checked and made ready for sweeps.
 pub(crate) struct Ready {
     pub elements: Vec<Element>,
@@ -186,6 +137,31 @@ impl Ready {
         } else {
             self.elements.iter().map(parts).sum()
         }
+    }
+
+    /// Decay lengths of all walls together, ln of how far a product over the cell may grow on the way.
+    pub fn decay(&self, energy: f64) -> f64 {
+        let lengths = |element: &Element| match element {
+            Element::Delta { .. } => 0.0,
+            Element::Flat {
+                length,
+                potential,
+                mass,
+            } => {
+                let mass = mass.value + mass.slope * energy;
+                length * (mass * (potential - energy)).max(0.0).sqrt()
+            }
+            Element::Polynomial(p) => {
+                let mass = p.mass[0].value + p.mass[0].slope * energy;
+                p.length * (mass * (p.range[1] - energy)).max(0.0).sqrt()
+            }
+        };
+        self.elements.iter().map(lengths).sum()
+    }
+
+    /// The work of a sweep at an energy, in the unit of [`budget`](super::budget).
+    pub fn work(&self, energy: f64) -> usize {
+        self.elements.len() + PART * self.parts(energy)
     }
 
     /// The scale of the potential.

@@ -10,11 +10,13 @@
 //!
 //! Failure: a change that does not settle stays in the bound.
 
-use super::cell::{Bounded, Budget, Cell, Meter, Ready, SolveError, prepare};
+use super::budget::{Budget, Meter};
+use super::cell::{Bounded, Cell, Ready, SolveError, prepare};
 use super::double::Double;
+use super::interior::Inside;
 use super::level::level_target;
 use super::scalar::{Scalar, power_of_two};
-use super::search::{Finder, Inside};
+use super::search::Finder;
 use super::sweep::Reading;
 use std::f64::consts::PI;
 

@@ -1,9 +1,11 @@
 //! Levels at given k, and their inverse: states, Fermi energy.
 
-use super::cell::{Bounded, Budget, Cell, Meter, Ready, SolveError, prepare};
+use super::budget::{BOUND, Budget, Meter};
+use super::cell::{Bounded, Cell, Ready, SolveError, prepare};
 use super::double::Double;
+use super::interior::Inside;
 use super::scalar::Scalar;
-use super::search::{Finder, Inside, Target, is_positive};
+use super::search::{Finder, Target, is_positive};
 use super::solve::find;
 use super::sweep::read;
 use super::uncertainty::{a_priori, level_bound};
@@ -152,7 +154,7 @@ pub(crate) fn at_share(
         Some(edge) => edge,
         None => inner_level(ready, band, share, meter)?,
     };
-    meter.spend()?;
+    meter.sweep::<f64>(ready, energy.round(), BOUND)?;
     Ok(Bounded {
         value: energy.round(),
         error: level_bound(ready, energy.round()),

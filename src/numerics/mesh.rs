@@ -12,7 +12,8 @@
 //!
 //! Legendre nodes and discrete orthogonality: DLMF 3.5(v), 18.3.
 
-use super::cell::{Budget, Mass, Meter, Piece, SolveError};
+use super::budget::{Budget, Meter};
+use super::cell::{Mass, Piece, SolveError};
 use super::double::Double;
 use super::scalar::Scalar;
 use std::sync::LazyLock;
@@ -172,6 +173,7 @@ pub struct Mesh {
     /// boundaries of the steps as fractions, 0 to 1
     boundaries: Vec<f64>,
     nodes: Vec<f64>,
+    work: usize,
 }
 
 impl Mesh {
@@ -201,7 +203,7 @@ impl Mesh {
             .map(|i| (i as f64 * first, first))
             .collect();
         while let Some((start, width)) = open.pop() {
-            meter.spend()?;
+            meter.spend(NODES + CHECKS.len())?;
             if width <= NARROWEST || fits(length, start, width, potential, scale.abs())? {
                 boundaries.push(start + width);
             } else {
@@ -218,7 +220,13 @@ impl Mesh {
             length,
             boundaries,
             nodes,
+            work: meter.work(),
         })
+    }
+
+    /// Samples of the potential that were taken to build it.
+    pub fn work(&self) -> usize {
+        self.work
     }
 
     /// Positions of all nodes as fractions of the length, ascending.

@@ -12,17 +12,21 @@
 //! the cell's masses.
 //!
 //! **Order of reading.** `scalar` and `double` (the arithmetic), `entire` (the functions), `cell`
-//! (what a caller hands in), `mesh` (smooth stretches), `element` (one transfer matrix), `sweep`
-//! (the product over a cell, and the zero count), `search` (brackets and roots), `solve`, `level`,
+//! and `budget` (what a caller hands in), `mesh` (smooth stretches), `element` (one transfer matrix), `sweep`
+//! (the product over a cell, and the zero count), `search` and `interior` (brackets and
+//! roots), `edges`, `solve`, `level`,
 //! `hopping`, `sensitivity`, `wave` (what a caller asks for).
 #![allow(clippy::indexing_slicing)]
 
+mod budget;
 mod cell;
 mod double;
+mod edges;
 mod element;
 mod entire;
 mod gradient;
 mod hopping;
+mod interior;
 mod level;
 mod mesh;
 mod pair;
@@ -36,7 +40,8 @@ mod wave;
 
 pub mod planewaves;
 
-pub use cell::{Bounded, Budget, Cell, Mass, Piece, SolveError};
+pub use budget::Budget;
+pub use cell::{Bounded, Cell, Mass, Piece, SolveError};
 pub use hopping::hopping;
 pub use level::{discriminant, dispersion, fermi, integrated_states, level};
 pub use mesh::Mesh;

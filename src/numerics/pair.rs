@@ -68,6 +68,8 @@ pub(crate) struct Pair {
     pub rates: Vec<PieceSensitivity>,
     /// greatest change of gap (and of the mean) by a relative change of one in every entry of every factor
     pub rounding: f64,
+    /// the only bound that holds: both edges are one energy in `f64`
+    pub alone: bool,
 }
 
 /// The response of the doublet near `energy`. Behind thick walls P⁻¹ … P cancels: then take `T` in double-double.
@@ -134,6 +136,7 @@ pub(crate) fn pair<T: Scalar>(ready: &Ready, energy: T, nodes: &Quadrature) -> P
         means: forms.iter().map(|f| f.map(energy, mean)).collect(),
         rates: forms.iter().map(|f| f.map(energy, rate)).collect(),
         rounding,
+        alone: false,
     }
 }
 

@@ -1,28 +1,22 @@
 //! Brackets by zero count, roots by safeguarded Newton steps. No grid of energies is ever scanned.
 //!
 //! Every sweep is kept in a ledger ordered by energy, where N(E) never falls. For each band a point
-//! inside it (n < N < n + 1) is sought between the last entry with N ≤ n and the first with
-//! N ≥ n + 1, by interpolation in N while other bands lie between, by Newton's step on D once the
-//! neighbouring gaps are reached, and by halving whenever a step did not halve the bracket. Between points in
-//! two neighbouring bands s D has one maximum and no other stationary point; either a point
-//! with s D > 2 turns up on the way to it, or the maximum itself is found as the simple root of D′, well
+//! inside it (n < N < n + 1) is sought (`interior`). Between points in two neighbouring bands s D has one
+//! maximum and no other stationary point; either a point with s D > 2 turns up on the way to it, or the maximum itself is found as the simple root of D′, well
 //! conditioned even where the gap is closed. Edges and levels are roots of s D − 2 = −4 sin²(θ/2),
 //! θ = distance of ka from the edge.
 
-use super::cell::{Meter, Ready, SolveError};
+use super::budget::{Meter, SECOND};
+use super::cell::{Ready, SolveError};
 use super::scalar::{Dual, Scalar, power_of_two};
 use super::sweep::{Reading, product, read};
 
 /// Steps after which a search gives up.
-const PATIENCE: usize = 260;
+pub(super) const PATIENCE: usize = 400;
 /// s D − 2 above which a gap is wide: its edges are found apart.
 const WIDE: f64 = 1e-4;
 /// D′ relative to its size in the bands at which the top of s D is as good as found.
 const SETTLED: f64 = 1e-5;
-/// Noise of D above which a reading inside a band means nothing.
-const NOISY: f64 = 0.1;
-/// A band point is taken when N is at least this far from whole.
-const INSIDE: f64 = 0.02;
 
 /// An energy from both sides.
 fn less<T: Scalar>(a: T, b: T) -> bool {
@@ -33,24 +27,7 @@ fn less<T: Scalar>(a: T, b: T) -> bool {
 pub(crate) struct Finder<'a, T> {
     pub ready: &'a Ready,
     pub meter: &'a Meter<'a>,
-    readings: Vec<Reading<T>>,
-}
-
-/// A reading inside a band, or, of a band narrower than the arithmetic can separate or hidden in its noise,
-/// the reading nearest to it.
-pub(crate) enum Inside<T> {
-    At(Reading<T>),
-    Unresolved(Reading<T>),
-}
-
-impl<T: Scalar> Inside<T> {
-    /// The reading; `None` for an unresolved band in an arithmetic that has a finer one.
-    pub fn accept(self) -> Option<Reading<T>> {
-        match self {
-            Inside::At(reading) => Some(reading),
-            Inside::Unresolved(reading) => (T::UNIT < f64::UNIT).then_some(reading),
-        }
-    }
+    pub(super) readings: Vec<Reading<T>>,
 }
 
 /// Where s D is greatest between two bands, or a point of a wide gap.
@@ -194,122 +171,37 @@ impl<'a, T: Scalar> Finder<'a, T> {
         Err(SolveError::NoBracket)
     }
 
-    /// A reading inside band `band`. The ledger must surround it.
-    pub fn inside(&mut self, band: usize) -> Result<Inside<T>, SolveError> {
-        let (low, high) = (band as f64, (band + 1) as f64);
-        let mut halve = false;
-        for _ in 0..PATIENCE {
-            let first = self.readings.partition_point(|r| r.states <= low);
-            let last = self.readings.partition_point(|r| r.states < high);
-            if let Some(found) = self.best_inside(first, last, low) {
-                return Ok(if found.noise() < NOISY {
-                    Inside::At(found)
-                } else {
-                    Inside::Unresolved(found)
-                });
-            }
-            if first == 0 || last >= self.readings.len() {
-                return Err(SolveError::NoBracket);
-            }
-            let (left, right) = (self.readings[first - 1], self.readings[last]);
-            let width = (right.energy - left.energy).leading();
-            let resolution = self
-                .resolution(left.energy)
-                .max(self.resolution(right.energy));
-            if width <= 2.0 * resolution {
-                // a point too near an edge is better than none
-                let inner = self
-                    .readings
-                    .get(first)
-                    .filter(|r| first < last && r.noise() < NOISY);
-                let size = |r: &Reading<T>| r.discriminant().abs();
-                let nearest = if size(&left) < size(&right) {
-                    left
-                } else {
-                    right
-                };
-                return Ok(inner.map_or(Inside::Unresolved(nearest), |r| Inside::At(*r)));
-            }
-            let next = self.propose_inside(first, last, low, halve);
-            self.read(next)?;
-            let first = self.readings.partition_point(|r| r.states <= low);
-            let last = self.readings.partition_point(|r| r.states < high);
-            let remaining = if first == 0 || last >= self.readings.len() {
-                width
-            } else {
-                (self.readings[last].energy - self.readings[first - 1].energy).leading()
-            };
-            halve = !halve && remaining > 0.5 * width;
+    /// The energies next to and inside each of the lowest bands, for a search in a finer arithmetic.
+    pub fn seeds(&self, bands: usize) -> Vec<f64> {
+        let mut seeds = Vec::with_capacity(2 * bands);
+        for band in 0..=bands {
+            let first = self.readings.partition_point(|r| r.states <= band as f64);
+            let last = self
+                .readings
+                .partition_point(|r| r.states < (band + 1) as f64);
+            let around = self.readings.get(first.saturating_sub(1)..=last);
+            let energies = around.unwrap_or_default().iter();
+            seeds.extend(energies.map(|r| r.energy.leading()));
         }
-        Err(SolveError::NoBracket)
+        seeds
     }
 
-    /// The entry of first..last nearest to the middle of the band, if well inside.
-    fn best_inside(&self, first: usize, last: usize, low: f64) -> Option<Reading<T>> {
-        let distance = |r: &Reading<T>| (r.states - low - 0.5).abs();
-        let inside = self.readings.get(first..last)?.iter();
-        let best = inside.min_by(|a, b| distance(a).total_cmp(&distance(b)))?;
-        (distance(best) <= 0.5 - INSIDE).then_some(*best)
+    /// Reads at the energies that a coarser search left.
+    pub fn sow(&mut self, seeds: &[f64]) -> Result<(), SolveError> {
+        for energy in seeds {
+            self.read(T::constant(*energy))?;
+        }
+        Ok(())
     }
 
-    /// Next energy to try on the way into a band.
-    fn propose_inside(&self, first: usize, last: usize, low: f64, halve: bool) -> T {
-        let (left, right) = (&self.readings[first - 1], &self.readings[last]);
-        let middle = (left.energy + right.energy).times(0.5);
-        if first < last {
-            // some entry just inside an edge: between the two on either side of the band's middle
-            let split =
-                first + self.readings[first..last].partition_point(|r| r.states < low + 0.5);
-            return (self.readings[split - 1].energy + self.readings[split].energy).times(0.5);
+    /// Does s D rise above 2 here, beyond the doubt of `doubt` too?
+    fn rises(&self, reading: &Reading<T>, positive: bool) -> Result<bool, SolveError> {
+        if !reading.rises(positive, WIDE) {
+            return Ok(false);
         }
-        if halve {
-            return middle;
-        }
-        let width = (right.energy - left.energy).leading();
-        let step_from = |r: &Reading<T>| {
-            let trace = r.trace();
-            -(trace.value / trace.slope)
-        };
-        let within = |step: T, direction: f64| {
-            let size = step.leading() * direction;
-            size.is_finite() && size > 0.0 && size < width
-        };
-        let mut best: Option<(f64, T)> = None;
-        for (reading, adjacent, direction) in [
-            (left, left.states == low, 1.0),
-            (right, right.states == low + 1.0, -1.0),
-        ] {
-            let step = step_from(reading);
-            if adjacent && within(step, direction) {
-                let size = step.leading().abs();
-                if best.is_none_or(|(other, _)| size < other) {
-                    best = Some((size, reading.energy + step));
-                }
-            }
-        }
-        if let Some((_, energy)) = best {
-            return energy;
-        }
-        if left.states < low || right.states > low + 1.0 {
-            let share = (low + 0.5 - left.states) / (right.states - left.states);
-            return left.energy + T::constant(width * share.clamp(0.1, 0.9));
-        }
-        middle
-    }
-
-    /// A reading inside band `band`, with points in the gaps on both sides in the ledger, so that between those
-    /// D is monotone.
-    pub fn isolate(&mut self, band: usize) -> Result<Inside<T>, SolveError> {
-        self.surround(band + 1)?;
-        let found = self.inside(band)?;
-        let (Inside::At(middle) | Inside::Unresolved(middle)) = found;
-        let (Inside::At(above) | Inside::Unresolved(above)) = self.inside(band + 1)?;
-        self.gap_point(middle, above, is_positive(band + 1))?;
-        if band > 0 {
-            let (Inside::At(below) | Inside::Unresolved(below)) = self.inside(band - 1)?;
-            self.gap_point(below, middle, is_positive(band))?;
-        }
-        Ok(found)
+        let excess = reading.excess(positive).0.leading().log2() + reading.exponent as f64;
+        let doubt = self.doubt(reading)?.filter(|doubt| doubt.is_finite());
+        Ok(doubt.is_none_or(|doubt| excess > doubt + 2.0))
     }
 
     /// A point in the gap between readings in neighbouring bands, or where s D is greatest.
@@ -323,7 +215,7 @@ impl<'a, T: Scalar> Finder<'a, T> {
         // entries already in the gap
         for r in &self.readings {
             let between = less(left.energy, r.energy) && less(r.energy, right.energy);
-            if between && r.rises(positive, WIDE) {
+            if between && self.rises(r, positive)? {
                 return Ok(GapPoint::Wide(r.energy));
             }
         }
@@ -348,7 +240,7 @@ impl<'a, T: Scalar> Finder<'a, T> {
                 left.energy + T::constant(width * share.clamp(least, 1.0 - least))
             };
             let reading = self.read(energy)?;
-            if reading.rises(positive, WIDE) {
+            if self.rises(&reading, positive)? {
                 return Ok(GapPoint::Wide(energy));
             }
             if reading.noise() > WIDE && T::UNIT == f64::UNIT {
@@ -380,7 +272,8 @@ impl<'a, T: Scalar> Finder<'a, T> {
 
     /// D′/D″ at an energy, D″, and the power of two of D″.
     pub fn curvature(&self, energy: T) -> Result<(T, f64, i64), SolveError> {
-        self.meter.spend()?;
+        self.meter
+            .sweep::<T>(self.ready, energy.leading(), SECOND)?;
         let variable = Dual {
             value: Dual::variable(energy),
             slope: Dual::constant(1.0),

@@ -8,7 +8,8 @@
 //! rate |dgap/dp| = 2 √(b² − q_E q_p)/|q_E| whichever way p moves; q, b are the quadratic form N₁₁² + N₁₂N₂₁ and
 //! its polar form on N = M⁻¹ ∂M (first-order degenerate perturbation theory, see `pair`). That rate is reported, ≥ 0.
 
-use super::cell::{Budget, Cell, Mass, Meter, Ready, SolveError, prepare};
+use super::budget::{BOUND, Budget, GRADIENT, Meter};
+use super::cell::{Cell, Mass, Ready, SolveError, prepare};
 use super::double::Double;
 use super::gradient::{FINE, Gradient, PieceSlope, Quadrature, gradient};
 use super::pair::{Pair, pair};
@@ -75,6 +76,8 @@ pub fn sensitivities(
     };
     let bands = quantities.iter().map(band).max().unwrap_or(0);
     let raw = find(&ready, bands, &meter)?;
+    let top = raw.gaps.last().map_or(raw.bottom, |gap| gap.upper);
+    meter.sweep::<f64>(&ready, top.energy.round(), BOUND * bands)?;
     let closed = (0..bands).map(|gap| is_closed(&ready, &raw, gap)).collect();
     let known = vec![[None, None]; bands + 1];
     let mut work = Work {
@@ -104,7 +107,7 @@ impl Work<'_> {
             Quantity::Bottom(band) => self.edge(band, true),
             Quantity::Top(band) => self.edge(band + 1, false),
             Quantity::Gap(gap) if self.closed[gap] => {
-                meter.spend()?;
+                self.spend_doublet(gap)?;
                 Ok(self.doublet(gap).rates)
             }
             Quantity::Gap(gap) => Ok(difference(
@@ -114,7 +117,7 @@ impl Work<'_> {
             Quantity::Width(band) => {
                 let (middle, _, slope) = raw.inside[band];
                 if 4.0 / slope.abs() < NARROW_WIDTH * ready.kinetic_scale() {
-                    meter.spend()?;
+                    meter.sweep::<f64>(ready, middle.round(), 2 * GRADIENT)?;
                     return Ok(width_slopes(ready, middle.round(), &FINE));
                 }
                 Ok(difference(
@@ -139,6 +142,15 @@ impl Work<'_> {
         }
     }
 
+    fn spend_doublet(&self, gap: usize) -> Result<(), SolveError> {
+        let energy = self.raw.gaps[gap].lower.energy.round();
+        if self.raw.exact {
+            self.meter.sweep::<Double>(self.ready, energy, GRADIENT)
+        } else {
+            self.meter.sweep::<f64>(self.ready, energy, GRADIENT)
+        }
+    }
+
     /// The edge at the lower or upper end of the gap where N = `states`.
     fn edge(&mut self, states: usize, upper: bool) -> Result<Vec<PieceSensitivity>, SolveError> {
         if let Some(known) = &self.known[states][usize::from(upper)] {
@@ -156,7 +168,7 @@ impl Work<'_> {
         }
         let gap = raw.gaps[states - 1];
         if self.closed[states - 1] {
-            meter.spend()?;
+            self.spend_doublet(states - 1)?;
             return Ok(self.doublet(states - 1).means);
         }
         let energy = if upper {
@@ -181,11 +193,12 @@ fn edge_slopes(
     narrow: bool,
     meter: &Meter,
 ) -> Result<Vec<PieceSensitivity>, SolveError> {
-    meter.spend()?;
     if narrow {
+        meter.sweep::<Double>(ready, energy.round(), GRADIENT)?;
         let found = gradient(ready, energy, &FINE);
         return Ok(ratio(&found, |p| -(p / found.energy_slope).leading()));
     }
+    meter.sweep::<f64>(ready, energy.round(), GRADIENT)?;
     let found = gradient(ready, energy.round(), &FINE);
     Ok(ratio(&found, |p| -p / found.energy_slope))
 }

@@ -1,9 +1,11 @@
 //! Bands, gaps and masses of a cell.
 
-use super::cell::{Bounded, Budget, Cell, Meter, Ready, SolveError, prepare};
+use super::budget::{BOUND, Budget, Meter};
+use super::cell::{Bounded, Cell, Ready, SolveError, prepare};
 use super::double::Double;
+use super::edges::{RawEdge, RawGap, narrow_pair, settle};
 use super::mesh::gauss_legendre;
-use super::scalar::{Scalar, power_of_two};
+use super::scalar::Scalar;
 use super::search::{Finder, GapPoint, Target, is_positive};
 use super::sweep::{Reading, read};
 use std::sync::LazyLock;
@@ -58,34 +60,14 @@ pub struct Bands {
     pub gaps: Vec<Gap>,
     /// Sweeps over the cell that were needed.
     pub sweeps: usize,
+    /// The work they were, as [`Budget`] counts it.
+    pub work: usize,
 }
 
 /// Widths below this share of the spacing of bands are taken from D′ where edges are in `f64`.
 pub(crate) const NARROW_WIDTH: f64 = 1e-3;
 
 static FOUR_NODES: LazyLock<Vec<(f64, f64)>> = LazyLock::new(|| gauss_legendre(4));
-
-/// An edge as found.
-#[derive(Clone, Copy)]
-pub(crate) struct RawEdge {
-    pub energy: Double,
-    /// D′, possibly beyond the range of `f64`, at `energy` − `offset`
-    pub slope: f64,
-    pub offset: f64,
-    /// what the rounding of the arithmetic leaves open of the energy
-    pub noise: f64,
-}
-
-/// A gap as found: its lower and upper edge, or closed.
-#[derive(Clone, Copy)]
-pub(crate) struct RawGap {
-    pub lower: RawEdge,
-    pub upper: RawEdge,
-    /// half-gap noise where narrow: 0 for a wide gap
-    pub noise: f64,
-    /// found as a stationary point of D
-    pub narrow: bool,
-}
 
 /// Everything found before bounds are put on.
 pub(crate) struct Raw {
@@ -105,31 +87,42 @@ pub fn solve(cell: &Cell, bands: usize, budget: &Budget) -> Result<Bands, SolveE
     let ready = prepare(cell)?;
     let meter = Meter::new(budget);
     let raw = find(&ready, bands, &meter)?;
-    Ok(super::uncertainty::finish(&ready, &raw, meter.used()))
+    let top = raw.gaps.last().map_or(raw.bottom, |gap| gap.upper);
+    let edges = 2 * bands + 1;
+    meter.sweep::<f64>(&ready, top.energy.round(), BOUND * edges)?;
+    Ok(super::uncertainty::finish(&ready, &raw, &meter))
 }
 
 /// Finds all edges, in `f64` and where that cannot separate bands in double-double.
 pub(crate) fn find(ready: &Ready, bands: usize, meter: &Meter) -> Result<Raw, SolveError> {
-    if let Some(raw) = find_in::<f64>(ready, bands, meter)? {
-        return Ok(raw);
+    match find_in::<f64>(ready, bands, meter, &[])? {
+        Ok(raw) => Ok(raw),
+        Err(seeds) => {
+            find_in::<Double>(ready, bands, meter, &seeds)?.map_err(|_| SolveError::NoBracket)
+        }
     }
-    find_in::<Double>(ready, bands, meter)?.ok_or(SolveError::NoBracket)
 }
 
-/// `None` if a band is narrower than the arithmetic resolves.
+/// If a band is narrower than the arithmetic resolves, the energies around each band instead.
 fn find_in<T: Scalar>(
     ready: &Ready,
     bands: usize,
     meter: &Meter,
-) -> Result<Option<Raw>, SolveError> {
+    seeds: &[f64],
+) -> Result<Result<Raw, Vec<f64>>, SolveError> {
     let mut finder = Finder::<T>::new(ready, meter);
+    finder.sow(seeds)?;
     finder.surround(bands)?;
     let mut inside = Vec::with_capacity(bands + 1);
     for band in 0..=bands {
-        match finder.inside(band)?.accept() {
-            Some(reading) => inside.push(reading),
-            None => return Ok(None),
+        if let Some(reading) = finder.inside(band)?.accept()
+            && finder.trusts(&reading)?
+        {
+            inside.push(reading);
         }
+    }
+    if inside.len() <= bands {
+        return Ok(Err(finder.seeds(bands)));
     }
     let polish = ready.layered;
     let (energy, reading) = finder.root(Target::edge(0, true), inside[0].energy)?;
@@ -145,7 +138,7 @@ fn find_in<T: Scalar>(
     for band in 0..bands {
         match find_gap(&mut finder, &inside, band, polish)? {
             Some(gap) => gaps.push(gap),
-            None => return Ok(None),
+            None => return Ok(Err(finder.seeds(bands))),
         }
     }
     let exact = polish || T::UNIT < f64::UNIT;
@@ -168,7 +161,7 @@ fn find_in<T: Scalar>(
         .iter()
         .map(|r| (r.energy.to_double(), r.discriminant(), r.slope()))
         .collect();
-    Ok(Some(Raw {
+    Ok(Ok(Raw {
         bottom,
         gaps,
         inside,
@@ -247,128 +240,4 @@ fn find_gap<T: Scalar>(
             }
         }
     }
-}
-
-/// One Newton step in double-double on an edge found in `f64`.
-fn settle<T: Scalar>(
-    ready: &Ready,
-    meter: &Meter,
-    target: Target<T>,
-    energy: T,
-    reading: &Reading<T>,
-    polish: bool,
-) -> Result<RawEdge, SolveError> {
-    if !polish || T::UNIT < f64::UNIT {
-        return Ok(raw_edge(&target, energy, reading));
-    }
-    let fine = Target {
-        states: target.states,
-        ..Target::<Double>::edge(0, target.upper)
-    };
-    let fine = Target {
-        positive: target.positive,
-        ..fine
-    };
-    let start = energy.to_double();
-    let reading = read(ready, start, meter)?;
-    let (residual, slope, _) = fine.residual(&reading);
-    let step = -(residual / slope);
-    Ok(RawEdge {
-        offset: step.leading(),
-        ..raw_edge(&fine, start + step, &reading)
-    })
-}
-
-/// An edge from the reading at or next to it; the noise of each factor adds up.
-fn raw_edge<T: Scalar>(target: &Target<T>, energy: T, reading: &Reading<T>) -> RawEdge {
-    let (_, slope, noise) = target.residual(reading);
-    let noise = noise / slope.leading().abs() * reading.weight;
-    RawEdge {
-        energy: energy.to_double(),
-        slope: reading.slope(),
-        offset: 0.0,
-        noise: if noise.is_finite() { noise } else { 0.0 },
-    }
-}
-
-/// Both edges of a gap so narrow that s D − 2 hardly rises above 0 in it, from the place where
-/// s D is greatest: E* ± √(2 (s D* − 2)/|D″|), then Newton on each.
-fn narrow_pair<T: Scalar>(
-    ready: &Ready,
-    meter: &Meter,
-    centre: T,
-    positive: bool,
-) -> Result<RawGap, SolveError> {
-    let finder = Finder::<T>::new(ready, meter);
-    let mut centre = centre;
-    let (mut curvature, mut exponent) = (0.0, 0);
-    for _ in 0..6 {
-        let (step, second, power) = finder.curvature(centre)?;
-        (curvature, exponent) = (second, power);
-        if !step.leading().is_finite() {
-            break;
-        }
-        centre = centre - step;
-        if step.leading().abs()
-            <= 1e-2 * finder.resolution(centre).sqrt() * ready.kinetic_scale().sqrt()
-        {
-            // the next step would be below the arithmetic's resolution
-            break;
-        }
-    }
-    let reading = read(ready, centre, meter)?;
-    let (excess, noise) = reading.excess(positive);
-    let over_curvature = 2.0 * power_of_two(reading.exponent - exponent) / curvature.abs();
-    // the half-gap's noise: rounding of the height, and of the place
-    let half_noise = (reading.weight * noise * over_curvature).sqrt() + finder.resolution(centre);
-    let half = (excess.leading().max(0.0) * over_curvature).sqrt();
-    let middle = RawEdge {
-        energy: centre.to_double(),
-        slope: 0.0,
-        offset: 0.0,
-        noise: half_noise,
-    };
-    if half <= half_noise {
-        return Ok(RawGap {
-            lower: middle,
-            upper: middle,
-            noise: 2.0 * half_noise,
-            narrow: true,
-        });
-    }
-    let mut edges = [middle; 2];
-    for (edge, upper) in edges.iter_mut().zip([false, true]) {
-        let mut energy = centre + T::constant(if upper { half } else { -half });
-        let target = Target {
-            positive,
-            ..Target::<T>::edge(0, upper)
-        };
-        let mut last = read(ready, energy, meter)?;
-        let mut offset = 0.0;
-        for _ in 0..4 {
-            let (residual, slope, _) = target.residual(&last);
-            let step = -(residual / slope);
-            let size = step.leading().abs();
-            if size.is_nan() || size >= 0.5 * half {
-                break;
-            }
-            energy = energy + step;
-            // Newton's next step would be about size²/half
-            if size * size <= 0.1 * half * finder.resolution(energy) {
-                offset = step.leading();
-                break;
-            }
-            last = read(ready, energy, meter)?;
-        }
-        *edge = raw_edge(&target, energy, &last);
-        edge.offset = offset;
-        edge.noise += finder.resolution(energy);
-    }
-    let noise = edges[0].noise + edges[1].noise;
-    Ok(RawGap {
-        lower: edges[0],
-        upper: edges[1],
-        noise,
-        narrow: true,
-    })
 }

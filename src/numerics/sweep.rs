@@ -11,7 +11,8 @@
 //!   odd for D ≤ −2. Where rounding shifts c by one (a Dirichlet eigenvalue at an edge), the two
 //!   readings agree, so N is continuous whatever c was.
 
-use super::cell::{Meter, Ready, SolveError};
+use super::budget::Meter;
+use super::cell::{Ready, SolveError};
 use super::element::{Matrix, factors};
 use super::scalar::{Dual, Scalar, power_of_two};
 use std::f64::consts::PI;
@@ -31,8 +32,6 @@ pub(crate) struct Reading<T> {
     pub states: f64,
 }
 
-/// Most parts of polynomial elements in one sweep: a bound on its time.
-const MOST_PARTS: usize = 200_000;
 /// Largest magnitude before the product is brought back into range.
 const LARGE: f64 = 1e60;
 
@@ -120,12 +119,9 @@ pub(crate) fn read<T: Scalar>(
     energy: T,
     meter: &Meter,
 ) -> Result<Reading<T>, SolveError> {
-    meter.spend()?;
+    meter.sweep::<T>(ready, energy.leading(), 1)?;
     if energy.leading() <= ready.least_energy {
         return Err(SolveError::MassOutOfRange);
-    }
-    if ready.parts(energy.leading()) > MOST_PARTS {
-        return Err(SolveError::BudgetSpent);
     }
     let Product {
         matrix,

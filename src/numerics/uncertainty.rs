@@ -9,18 +9,22 @@
 //! * the mesh: |δV| of each smooth step times its share of |ψ|²;
 //! * the last rounding.
 
+use super::budget::Meter;
 use super::cell::{Bounded, Mass, Ready};
 use super::double::Double;
+use super::edges::RawEdge;
 use super::element::Element;
 use super::gradient::{COARSE, Gradient, gradient};
 use super::pair::{Pair, pair};
 use super::scalar::{Dual, Scalar, power_of_two};
 use super::search::is_positive;
 use super::sensitivity::{PieceSensitivity, difference, ratio, width_slopes};
-use super::solve::{Band, BandEdge, Bands, Gap, NARROW_WIDTH, Raw, RawEdge, Wave};
+use super::solve::{Band, BandEdge, Bands, Gap, NARROW_WIDTH, Raw, Wave};
 
 const UNIT: f64 = f64::EPSILON / 2.0;
 
+/// Two edges closer than this share of the scale are one to a gradient in `f64`.
+const SAME_IN_SINGLE: f64 = 1e-14;
 /// A gap above this share of the scale is open without further question.
 const OPEN: f64 = 1e-6;
 /// Rounding carried by 1/D′ above which a level is taken for one of a doublet, relative to the spacing of bands.
@@ -143,14 +147,19 @@ fn gap_bound(
 fn doublet(ready: &Ready, raw: &Raw, band: usize) -> Option<Pair> {
     let gap = raw.gaps[band];
     let middle = (gap.lower.energy + gap.upper.energy).times(0.5);
-    if !gap.narrow {
+    let size = (gap.upper.energy - gap.lower.energy).leading();
+    let unresolved =
+        raw.exact && size < SAME_IN_SINGLE * (middle.leading().abs() + ready.kinetic_scale());
+    if !gap.narrow && !unresolved {
         return None;
     }
-    Some(if raw.exact {
+    let mut found = if raw.exact {
         pair(ready, middle, &COARSE)
     } else {
         pair(ready, middle.round(), &COARSE)
-    })
+    };
+    found.alone = unresolved;
+    Some(found)
 }
 
 /// Is the gap above `band` indistinguishable from zero?
@@ -174,12 +183,17 @@ pub(crate) fn is_closed(ready: &Ready, raw: &Raw, band: usize) -> bool {
 
 /// Relative rounding of an entry of a factor: of the `f64` sweep, or of the double-double one whose series and
 /// doublings lose up to eight bits in a thick wall.
-fn units(exact: bool) -> f64 {
+pub(crate) fn units(exact: bool) -> f64 {
     if exact {
         256.0 * Double::UNIT
     } else {
-        6.0 * UNIT
+        10.0 * UNIT
     }
+}
+
+/// No bound at all where none could be had.
+fn bound_of(error: f64) -> f64 {
+    if error.is_nan() { f64::INFINITY } else { error }
 }
 
 /// What is known about an edge besides its energy.
@@ -212,7 +226,7 @@ fn edge_bound(
     let mut error = energy.abs() * UNIT + f64::EPSILON * inputs + mesh + rounding;
     if let Some(found) = near {
         let (near, own) = pair_error(ready, energy, found, exact);
-        if near < error || error.is_nan() {
+        if near < error || error.is_nan() || found.alone {
             (error, rounding) = (near, own);
         }
     }
@@ -227,17 +241,18 @@ fn edge_bound(
     });
     let (mass_inputs, mass_mesh) = spread(ready, &along);
     let drift = rounding.min(error) + raw.noise;
+    // D′ is rounded like D, at the edge's place and by itself
     let own = if exact { 4.0 } else { found.rounding_count() };
     let mass_error = f64::EPSILON * (mass_inputs + 2.0 * mass.abs())
         + mass_mesh
-        + curvature.abs() * drift
+        + curvature.abs() * drift * if exact { 1.0 } else { 2.0 }
         + UNIT * own * mass.abs();
     EdgeBound {
         error,
         rounding,
         mass: Bounded {
             value: mass,
-            error: mass_error,
+            error: bound_of(mass_error),
         },
         slopes,
     }
@@ -251,7 +266,7 @@ impl Gradient<Dual<f64>> {
 }
 
 /// Puts the bounds on.
-pub(crate) fn finish(ready: &Ready, raw: &Raw, sweeps: usize) -> Bands {
+pub(crate) fn finish(ready: &Ready, raw: &Raw, meter: &Meter) -> Bands {
     let count = raw.gaps.len();
     let bound = |edge: &RawEdge, gap: usize, near: Option<&Pair>| {
         edge_bound(ready, edge, gap, raw.exact, near)
@@ -271,7 +286,7 @@ pub(crate) fn finish(ready: &Ready, raw: &Raw, sweeps: usize) -> Bands {
         gaps.push(Gap {
             size: Bounded {
                 value: if closed { 0.0 } else { size },
-                error,
+                error: bound_of(error),
             },
             closed,
         });
@@ -295,7 +310,8 @@ pub(crate) fn finish(ready: &Ready, raw: &Raw, sweeps: usize) -> Bands {
     Bands {
         bands,
         gaps,
-        sweeps,
+        sweeps: meter.sweeps(),
+        work: meter.work(),
     }
 }
 
@@ -309,7 +325,7 @@ fn edge(raw: &RawEdge, bound: &EdgeBound, gap: usize, closed: bool) -> BandEdge 
     BandEdge {
         energy: Bounded {
             value: raw.energy.round(),
-            error: bound.error,
+            error: bound_of(bound.error),
         },
         at,
         mass,
@@ -333,7 +349,7 @@ fn width(
         let own = UNIT * (8.0 + 6.0 * ready.elements.len() as f64) * value;
         return Bounded {
             value,
-            error: f64::EPSILON * inputs + mesh + own,
+            error: bound_of(f64::EPSILON * inputs + mesh + own),
         };
     }
     let value = difference_of_edges;
@@ -343,8 +359,15 @@ fn width(
         spread(ready, &difference(&top.1.slopes, &bottom.1.slopes))
     };
     let own = top.0.noise + bottom.0.noise + top.1.rounding + bottom.1.rounding;
+    // edges in `f64` are themselves rounded
+    let last = if raw.exact {
+        0.0
+    } else {
+        2.0 * UNIT * (top.0.energy.leading().abs() + bottom.0.energy.leading().abs())
+    };
+    let own = own + last;
     Bounded {
         value,
-        error: f64::EPSILON * inputs + mesh + own + 2.0 * UNIT * value,
+        error: bound_of(f64::EPSILON * inputs + mesh + own + 2.0 * UNIT * value),
     }
 }

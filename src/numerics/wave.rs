@@ -4,7 +4,9 @@
 //! *Hill's Equation*): it is ∂D/∂V(x) of `gradient`, and needs no complex arithmetic. Where two bands touch M_x₁₂ vanishes
 //! everywhere, and its derivative by energy takes its place: the limit from inside the band.
 
-use super::cell::{Budget, Cell, Meter, Ready, SolveError, prepare};
+use super::budget::{Budget, GRADIENT, Meter};
+use super::cell::{Cell, Ready, SolveError, prepare};
+use super::double::Double;
 use super::element::{Element, Matrix, Series, factors, part_series};
 use super::gradient::{cyclic_factors, inverse, values};
 use super::level::level_energy;
@@ -22,7 +24,7 @@ pub fn wave_function(
     let ready = prepare(cell)?;
     let meter = Meter::new(budget);
     let energy = level_energy(&ready, band, ka, &meter)?;
-    meter.spend()?;
+    meter.sweep::<Double>(&ready, energy.leading(), GRADIENT)?;
     let points = points.max(2);
     let list = cyclic_factors(&ready, Dual::variable(energy));
     let exponent = list

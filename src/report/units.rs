@@ -253,15 +253,22 @@ pub fn digits(value: f64, uncertainty: f64) -> String {
         }
         .to_owned();
     }
-    if uncertainty <= 0.0 || !uncertainty.is_finite() {
+    if !uncertainty.is_finite() {
+        return "unknown".to_owned();
+    }
+    if uncertainty <= 0.0 {
         return exact_digits(value);
     }
     if value.abs() <= uncertainty {
-        return format!("0 ± {}", one_digit_up(uncertainty));
+        return format!("0 ± {}", one_digit_up(uncertainty + value.abs()));
     }
     let finest = place_when_shown(value) - (USUAL - 1);
     if uncertainty <= 0.5 * 10f64.powi(finest) {
-        return rounded(value, finest);
+        // Zeros to fill up to the point would pass for digits.
+        return match usize::try_from(USUAL - 1) {
+            Ok(decimals) if finest > 0 => with_minus(&format!("{value:.decimals$e}")),
+            _ => rounded(value, finest),
+        };
     }
     let last = finest.max(place(uncertainty));
     let step = 10f64.powi(last);
@@ -411,7 +418,9 @@ mod tests {
         assert_eq!(digits(132.418_39, 17.0), "130 ± 20");
         assert_eq!(digits(132.418_39, 0.07), "132.4 ± 0.09");
         assert_eq!(digits(132.418_39, 0.04), "132.4");
-        assert_eq!(digits(0.2, 0.5), "0 ± 0.5");
+        assert_eq!(digits(0.2, 0.5), "0 ± 0.7");
+        assert_eq!(digits(740_570.6, 1e-8), "7.406e5");
+        assert_eq!(digits(740_570.6, 150.0), "740600 ± 200");
         assert_eq!(digits(-12.5, 0.0), "−12.5");
         assert_eq!(digits(60.0, 1e-13), "60.00");
         assert_eq!(digits(8.0, 0.0), "8");

@@ -74,6 +74,15 @@ impl Bench {
     }
 
     pub fn assess(&self, index: usize) -> (Vec<Assessment>, Vec<MeasureValue>) {
+        self.assess_with(index, &|| false)
+    }
+
+    /// With a hook that is asked during the work.
+    pub fn assess_with(
+        &self,
+        index: usize,
+        cancelled: &(dyn Fn() -> bool + Sync),
+    ) -> (Vec<Assessment>, Vec<MeasureValue>) {
         let built = self.build(index, &Setting::default());
         assert!(!built.crystal.broken, "{:#?}", built.troubles);
         let rebuild = |of: CrystalRef, setting: &Setting| {
@@ -84,7 +93,7 @@ impl Bench {
             self.crystal_ref(index),
             &Arc::new(built.crystal),
             &rebuild,
-            &|| false,
+            cancelled,
         );
         assessed.expect("assessed targets")
     }

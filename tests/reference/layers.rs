@@ -1,20 +1,10 @@
 //! Layered cells and delta combs against rows computed from the closed form
 //! (Kronig & Penney, Proc. R. Soc. A 130, 499 (1931); BenDaniel & Duke, Phys. Rev. 152, 683 (1966)).
-#![allow(
-    clippy::indexing_slicing,
-    clippy::print_stdout,
-    clippy::unwrap_used,
-    missing_docs
-)]
-
-#[path = "reference/mod.rs"]
-mod reference;
-
+use super::reference::{Tally, layered_cell, number, optional, rows};
 use crenate::numerics::{Bands, Bounded, Budget, solve};
-use reference::{Tally, layered_cell, number, optional, rows};
 
-const LAYERS: &str = include_str!("reference/kronig_penney.csv");
-const COMBS: &str = include_str!("reference/delta_combs.csv");
+const LAYERS: &str = include_str!("kronig_penney.csv");
+const COMBS: &str = include_str!("delta_combs.csv");
 
 /// Every cell of a file with its solution and its band rows.
 fn solved(text: &str) -> Vec<(String, f64, Bands, Vec<Vec<&str>>)> {
@@ -35,7 +25,7 @@ fn solved(text: &str) -> Vec<(String, f64, Bands, Vec<Vec<&str>>)> {
         .collect()
 }
 
-fn check_file(name: &str, text: &str) {
+fn check_file(name: &str, text: &str) -> [Tally; 4] {
     let mut edges = Tally::new(&format!("{name} edges"));
     let mut widths = Tally::new(&format!("{name} widths"));
     let mut gaps = Tally::new(&format!("{name} gaps"));
@@ -76,18 +66,17 @@ fn check_file(name: &str, text: &str) {
             }
         }
     }
-    edges.finish(1e-13 / f64::EPSILON);
-    widths.finish(1e-12 / f64::EPSILON);
-    gaps.finish(1e-12 / f64::EPSILON);
-    masses.finish(1e-11 / f64::EPSILON);
+    [
+        edges.within(1e-13 / f64::EPSILON),
+        widths.within(1e-12 / f64::EPSILON),
+        gaps.within(1e-12 / f64::EPSILON),
+        masses.within(1e-11 / f64::EPSILON),
+    ]
 }
 
-#[test]
-fn kronig_penney_rows_are_met() {
-    check_file("kronig_penney", LAYERS);
-}
-
-#[test]
-fn delta_comb_rows_are_met() {
-    check_file("delta_combs", COMBS);
+/// The tallies of both files.
+pub fn tallies() -> Vec<Tally> {
+    let mut all = check_file("kronig_penney", LAYERS).to_vec();
+    all.extend(check_file("delta_combs", COMBS));
+    all
 }

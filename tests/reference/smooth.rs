@@ -1,18 +1,8 @@
 //! Smooth cells: characteristic values of Mathieu's equation (Abramowitz & Stegun, NBS 1964, Table 20.1;
 //! DLMF ch. 28), the optical lattice (Bloch, Dalibard & Zwerger, Rev. Mod. Phys. 80, 885 (2008)), Lamé's
 //! finite-gap potentials (Ince, Proc. R. Soc. Edinburgh 60, 47 (1940); DLMF ch. 29), chains of wells.
-#![allow(
-    clippy::indexing_slicing,
-    clippy::print_stdout,
-    clippy::unwrap_used,
-    missing_docs
-)]
-
-#[path = "reference/mod.rs"]
-mod reference;
-
+use super::reference::{Tally, number, rows, smooth_cell, sn_squared};
 use crenate::numerics::{Bands, Budget, Cell, fermi, solve};
-use reference::{Tally, number, rows, smooth_cell, sn_squared};
 use std::f64::consts::PI;
 
 /// Gaps below this many eps of the scale may be reported closed.
@@ -65,10 +55,12 @@ impl Tallies {
         }
     }
 
-    fn finish(&self) {
-        self.edges.finish(1e-12 / f64::EPSILON);
-        self.widths.finish(1e-11 / f64::EPSILON);
-        self.gaps.finish(1e-12 / f64::EPSILON);
+    fn finish(self) -> Vec<Tally> {
+        vec![
+            self.edges.within(1e-12 / f64::EPSILON),
+            self.widths.within(1e-11 / f64::EPSILON),
+            self.gaps.within(1e-12 / f64::EPSILON),
+        ]
     }
 }
 
@@ -88,41 +80,33 @@ fn solved(cell: &Cell, bands: usize) -> Bands {
     solve(cell, bands, &Budget::default()).unwrap()
 }
 
-#[test]
-fn mathieu_characteristic_values_are_met() {
+fn mathieu_characteristic_values() -> Vec<Tally> {
     let mut tallies = Tallies::new("mathieu");
-    for (q, bands) in groups(include_str!("reference/mathieu.csv")) {
+    for (q, bands) in groups(include_str!("mathieu.csv")) {
         let amplitude = 2.0 * number(&q);
         let cell = smooth_cell(PI, &|x| amplitude * (2.0 * x).cos(), amplitude);
         let found = solved(&cell, bands.len());
-        println!(
-            "q {q}: {} steps, {} sweeps",
-            cell.pieces.len(),
-            found.sweeps
-        );
         tallies.check(&format!("q {q}"), &found, &bands, 3);
     }
-    tallies.finish();
+    tallies.finish()
 }
 
 fn lattice_cell(depth: f64) -> Cell {
     smooth_cell(PI, &|x| depth * x.cos().powi(2), depth)
 }
 
-#[test]
-fn optical_lattice_bands_are_met() {
+fn optical_lattice_bands() -> Vec<Tally> {
     let mut tallies = Tallies::new("optical lattice");
-    for (s, bands) in groups(include_str!("reference/optical_lattice.csv")) {
+    for (s, bands) in groups(include_str!("optical_lattice.csv")) {
         let found = solved(&lattice_cell(number(&s)), bands.len());
         tallies.check(&format!("s {s}"), &found, &bands, 3);
     }
-    tallies.finish();
+    tallies.finish()
 }
 
-#[test]
-fn optical_lattice_fillings_are_met() {
+fn optical_lattice_fillings() -> Vec<Tally> {
     let mut tally = Tally::new("optical lattice fillings");
-    for row in rows(include_str!("reference/optical_lattice.csv"))
+    for row in rows(include_str!("optical_lattice.csv"))
         .iter()
         .filter(|r| r[0] == "fill")
     {
@@ -139,13 +123,12 @@ fn optical_lattice_fillings_are_met() {
             number(row[3]),
         );
     }
-    tally.finish(1e-12 / f64::EPSILON);
+    vec![tally.within(1e-12 / f64::EPSILON)]
 }
 
-#[test]
-fn chains_of_wells_are_met() {
+fn chains_of_wells() -> Vec<Tally> {
     let mut tallies = Tallies::new("smooth wells");
-    for (label, bands) in groups(include_str!("reference/smooth_wells.csv")) {
+    for (label, bands) in groups(include_str!("smooth_wells.csv")) {
         let parts: Vec<&str> = label.split(':').collect();
         let [v, w, d] = [1, 2, 3].map(|i| number(parts[i]));
         let gauss = parts[0] == "gauss";
@@ -165,13 +148,12 @@ fn chains_of_wells_are_met() {
         let found = solved(&smooth_cell(d, &chain, v.abs()), bands.len());
         tallies.check(&label, &found, &bands, 3);
     }
-    tallies.finish();
+    tallies.finish()
 }
 
-#[test]
-fn lame_potentials_have_exactly_l_gaps() {
+fn lame_potentials() -> Vec<Tally> {
     let mut edges = Tally::new("lame edges");
-    for row in rows(include_str!("reference/lame.csv")) {
+    for row in rows(include_str!("lame.csv")) {
         let (l, m, period) = (number(row[1]), number(row[2]), number(row[3]));
         let strength = l * (l + 1.0) * m;
         let cell = smooth_cell(period, &|x| strength * sn_squared(x, m), strength);
@@ -203,5 +185,19 @@ fn lame_potentials_have_exactly_l_gaps() {
             assert!(found.gaps[n].closed, "{label}: gap {n} {:?}", found.gaps[n]);
         }
     }
-    edges.finish(1e-12 / f64::EPSILON);
+    vec![edges.within(1e-12 / f64::EPSILON)]
+}
+
+/// The tallies of all smooth files.
+pub fn tallies() -> Vec<Tally> {
+    [
+        mathieu_characteristic_values,
+        optical_lattice_bands,
+        optical_lattice_fillings,
+        chains_of_wells,
+        lame_potentials,
+    ]
+    .iter()
+    .flat_map(|check| check())
+    .collect()
 }
