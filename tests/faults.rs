@@ -183,16 +183,18 @@ fn moved_targets(models: &Models) -> Vec<Fault> {
 }
 
 fn moved(analysis: &Analysis, file: &FileAnalysis, line: &lines::Line) -> Vec<String> {
-    for (wish, other) in [
-        ("semiconductor", "metal"),
-        ("insulator", "metal"),
-        ("require   metal", "require   insulator"),
-        ("direct", "indirect"),
-        ("direct", "closed"),
-    ] {
-        if line.text.trim_end().ends_with(wish) {
-            return vec![line.text.replace(wish, other)];
-        }
+    let (before, last) = line.text.trim_end().rsplit_once(' ').unwrap_or_default();
+    let others: &[&str] = match last {
+        "semiconductor" | "insulator" => &["metal"],
+        "metal" | "semimetal" => &["insulator"],
+        "direct" => &["indirect", "closed"],
+        "indirect" => &["direct", "closed"],
+        "closed" => &["direct"],
+        _ => &[],
+    };
+    if !others.is_empty() {
+        let moved = others.iter();
+        return moved.map(|other| format!("{before} {other}")).collect();
     }
     let mut targets = file.sections.iter().flat_map(|section| &section.targets);
     let target = targets.find(|target| {

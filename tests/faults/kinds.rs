@@ -929,12 +929,11 @@ fn atoms(models: &Models) -> Vec<Fault> {
         }
         let all = statements(text);
         let lines = family(text, line);
-        let other = all
-            .iter()
-            .find(|other| {
-                other.word == "atom" && other.heading == line.heading && other.index != line.index
-            })
-            .unwrap();
+        let Some(other) = all.iter().find(|other| {
+            other.word == "atom" && other.heading == line.heading && other.index != line.index
+        }) else {
+            return;
+        };
         let (head, own) = line.text.split_once(" at ").unwrap();
         let (_, position) = other.text.split_once(" at ").unwrap();
         let moved = position.replacen("0.5", "1.5", 1).replacen("(0,", "(1,", 1);
