@@ -400,3 +400,28 @@ fn the_examples_are_clean() {
         .unwrap();
     assert_eq!(output.status.code(), Some(0), "{}", stdout(&output));
 }
+
+#[test]
+fn a_slip_in_a_named_value_is_said_once_where_it_stands() {
+    let folder = Folder::new();
+    let crystal = |name: &str| {
+        format!(
+            "crystal {name}\n  carriers  bosons\n  mass      87 u\n  recoil    light\n  lattice   chain light/2\n  depth     1 = 4 Er\n"
+        )
+    };
+    let text = format!(
+        "let light = 840 pm\n\n{}\n{}",
+        crystal("one"),
+        crystal("two")
+    );
+    folder.write("light.cren", &text);
+    for only in [vec![], vec!["--only", "two"]] {
+        let arguments = [vec!["lint", "--format", "json"], only, vec!["light.cren"]].concat();
+        let output = run(&folder, &arguments);
+        let findings = findings(&stdout(&output));
+        assert_eq!(findings.len(), 1, "{findings:#?}");
+        assert_eq!(findings[0]["rule"], "unit-slip");
+        assert_eq!(findings[0]["line"], 1);
+        assert_eq!(findings[0]["related"].as_array().unwrap().len(), 2);
+    }
+}

@@ -80,7 +80,7 @@ fn line_text(models: &Models, (file, line): (&str, usize)) -> String {
 
 fn found(models: &Models, analysis: &Analysis, class: &Class, fault: &Fault) -> Option<Outcome> {
     let all = || analysis.files.iter().flat_map(|file| &file.findings);
-    let here = |finding: &&Finding| {
+    let here = |finding: &Finding| {
         let (file, line) = place(analysis, finding);
         let right = match &fault.lines {
             Lines::These(lines) => file == models.files[fault.file].0 && lines.contains(&line),
@@ -88,7 +88,7 @@ fn found(models: &Models, analysis: &Analysis, class: &Class, fault: &Fault) -> 
         };
         right && class.rules.contains(&finding.rule)
     };
-    if all().any(|finding| here(&finding)) {
+    if all().any(|finding| here(finding)) {
         return Some(Outcome::Here);
     }
     let by_target = class.by_target

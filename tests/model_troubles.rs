@@ -596,3 +596,31 @@ fn names_that_are_ambiguous_break_their_users() {
         1e-14,
     );
 }
+
+#[test]
+fn tolerances_that_reach_zero() {
+    let reason = |text: &str| match only_trouble(text) {
+        (TroubleKind::BadValue { what }, at) => (what, at),
+        (other, _) => panic!("{text}: {other:?}"),
+    };
+    let (what, at) =
+        reason("crystal a\n  mass 0.1 me\n  layer 5 nm ± 6 nm at 0\n  layer 2 nm at 1 eV\n");
+    assert_eq!(at, "5 nm ± 6 nm");
+    assert_eq!(
+        what,
+        "a thickness is positive, and `5 nm ± 6 nm` reaches zero within its tolerance"
+    );
+    // A percentage without its sign.
+    let (what, _) = reason("material basin\n  mass 0.1 me\n  edge 0\n  rate 1 ± 1.5\n");
+    assert!(what.starts_with("a rate is positive"), "{what}");
+    let (what, _) = reason(&chain("  cosine 1 = 1 meV").replace("0.1 me", "0.1 me ± 0.1 me"));
+    assert!(what.starts_with("a mass is positive"), "{what}");
+    // Two tolerances that reach it together.
+    let (what, _) = reason(
+        "let well = 2 nm ± 60 %\ncrystal a\n  mass 0.1 me\n  layer well - 0.5 nm ± 0.4 nm at 0\n  layer 2 nm at 1 eV\n",
+    );
+    assert!(what.starts_with("a thickness is positive"), "{what}");
+    assert_silent(
+        "crystal a\n  mass 0.1 me ± 99 %\n  layer 5 nm ± 4.9 nm at 0 ± 1 eV\n  layer 2 nm at 1 eV\n",
+    );
+}

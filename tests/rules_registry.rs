@@ -112,11 +112,12 @@ fn apply(file: &FileAnalysis, fix: &Fix) -> String {
 fn of_rule<'f>(file: &'f FileAnalysis, rule: &Rule) -> Vec<&'f Finding> {
     file.findings
         .iter()
-        .filter(|finding| finding.rule == rule.name)
+        .map(AsRef::as_ref)
+        .filter(|finding: &&Finding| finding.rule == rule.name)
         .collect()
 }
 
-fn told(findings: &[Finding]) -> String {
+fn told(findings: &[Arc<Finding>]) -> String {
     findings.iter().fold(String::new(), |mut text, finding| {
         let _ = writeln!(
             text,
@@ -215,7 +216,7 @@ fn what_to_write_instead_is_silent() {
             .findings
             .iter()
             .filter(|finding| finding.level >= Level::Warning || finding.rule == rule.name);
-        let loud: Vec<Finding> = loud.cloned().collect();
+        let loud: Vec<Arc<Finding>> = loud.cloned().collect();
         if !loud.is_empty() {
             let _ = writeln!(
                 wrong,

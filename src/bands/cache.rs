@@ -7,7 +7,7 @@ use rustc_hash::FxHashMap;
 use super::{Solution, Unsolved};
 
 /// Entries kept; when there are more, those not asked for lately go.
-const MOST: usize = 8192;
+const MOST: usize = 2048;
 
 /// What was found for a crystal.
 pub(super) type Answer = Result<Arc<Solution>, Unsolved>;

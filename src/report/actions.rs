@@ -90,7 +90,8 @@ fn touched<'a>(
     file: &'a FileAnalysis,
     range: Span,
 ) -> impl Iterator<Item = &'a Finding> {
-    file.findings.iter().filter(move |finding| {
+    let findings = file.findings.iter().map(AsRef::as_ref);
+    findings.filter(move |finding: &&Finding| {
         let span = analysis.absolute(&finding.place);
         span.is_some_and(|(_, span)| span.start <= range.end && range.start <= span.end)
     })

@@ -13,7 +13,7 @@ use crate::text::Span;
 #[derive(Default)]
 pub struct Analysis {
     /// The files and what they use.
-    pub world: World,
+    pub world: Arc<World>,
     /// The analysed roots in the order given; a root that cannot be read is left out.
     pub files: Vec<Arc<FileAnalysis>>,
 }
@@ -29,7 +29,11 @@ pub struct FileAnalysis {
     /// One for each of the tree's entries, in order.
     pub sections: Vec<Arc<SectionAnalysis>>,
     /// All findings of the file in order of place, waivers applied.
-    pub findings: Vec<Finding>,
+    pub findings: Vec<Arc<Finding>>,
+    /// Those among them that show only in the whole file, before waivers.
+    pub(super) whole: Vec<Arc<Finding>>,
+    /// What each section's result was found to depend on.
+    pub(super) hashes: Vec<u64>,
     /// How far the analysis went: the least of its sections.
     pub depth: Tier,
 }
@@ -53,7 +57,7 @@ pub struct SectionAnalysis {
     /// Its measures, once the bands are known.
     pub measures: Vec<MeasureValue>,
     /// What the rules found in it, waivers not yet applied.
-    pub findings: Vec<Finding>,
+    pub findings: Vec<Arc<Finding>>,
     /// How far its analysis went.
     pub depth: Tier,
 }
@@ -120,9 +124,14 @@ impl FileAnalysis {
             .crystals(only)
             .map(|(section, _)| section.section)
             .collect();
-        let wanted =
-            |finding: &&Finding| only.is_empty() || sections.contains(&finding.place.section);
-        self.findings.iter().filter(wanted).collect()
+        // One on a named value counts in the crystals that use it.
+        let wanted = |finding: &&Finding| {
+            let related = finding.related.iter().map(|(place, _)| place);
+            let mut places = related.chain([&finding.place]);
+            only.is_empty() || places.any(|place| sections.contains(&place.section))
+        };
+        let findings = self.findings.iter().map(AsRef::as_ref);
+        findings.filter(wanted).collect()
     }
 
     /// The section that holds an absolute byte, with what came of it.

@@ -22,8 +22,9 @@ use crate::model::{
 use crate::rules::{self, FileSubject, Finding, Subject, Tier};
 use crate::syntax::{Entry, SectionId, SectionKind};
 
-/// Sections kept beyond those of the analysis at hand.
+/// Sections kept beyond those of the analysis at hand: while one types, and where each file is looked at once.
 const SPARE_SECTIONS: usize = 4096;
+const SPARE_SECTIONS_ONCE: usize = 64;
 /// A section that this many analyses did not touch may go.
 const LONG_AGO: u64 = 16;
 /// Bands whose sensitivities are worked out.
@@ -50,7 +51,8 @@ pub struct Analyst {
     solver: Solver,
     kept: Mutex<FxHashMap<(FileId, SectionId), Kept>>,
     clock: AtomicU64,
-    used: FxHashSet<PathBuf>,
+    /// Files that others use; known where each file is looked at once.
+    used: Option<FxHashSet<PathBuf>>,
 }
 
 /// A section's result, and what it holds for.
@@ -77,11 +79,12 @@ struct Task<'a> {
 }
 
 impl Analyst {
-    /// An analyst that knows that others use these files (normalised), though those others may not be at hand.
+    /// An analyst that looks at each file once, and knows that others use these (normalised), though those others may
+    /// not be at hand. It keeps little, so that memory does not grow with the number of files.
     #[must_use]
     pub fn knowing_used(used: FxHashSet<PathBuf>) -> Self {
         Self {
-            used,
+            used: Some(used),
             ..Self::default()
         }
     }
@@ -89,19 +92,48 @@ impl Analyst {
     /// Analyses files. When cancelled, sections that were not reached stay at [`Tier::Model`].
     #[must_use]
     pub fn analyse(&self, request: &Request<'_>) -> Analysis {
-        self.analyse_with(request, Effort::Whole)
+        let world = World::gather(request.source, request.roots);
+        self.walk(Arc::new(world), request, Effort::Whole, None)
     }
 
     /// The same, but a crystal whose bands take long gets a quick answer with wider error bounds, without targets,
     /// measures and what the rules say of bands; its section stays at [`Tier::Model`].
     #[must_use]
     pub fn analyse_quickly(&self, request: &Request<'_>) -> Analysis {
-        self.analyse_with(request, Effort::Quick)
+        let world = World::gather(request.source, request.roots);
+        self.walk(Arc::new(world), request, Effort::Quick, None)
     }
 
-    fn analyse_with(&self, request: &Request<'_>, effort: Effort) -> Analysis {
+    /// Analyses the same state of the same files further than `before` did, which saves looking at them again.
+    #[must_use]
+    pub fn deepen(&self, before: &Analysis, request: &Request<'_>) -> Analysis {
+        self.walk(
+            Arc::clone(&before.world),
+            request,
+            Effort::Whole,
+            Some(before),
+        )
+    }
+
+    /// [`Analyst::deepen`], as far as [`Analyst::analyse_quickly`] goes.
+    #[must_use]
+    pub fn deepen_quickly(&self, before: &Analysis, request: &Request<'_>) -> Analysis {
+        self.walk(
+            Arc::clone(&before.world),
+            request,
+            Effort::Quick,
+            Some(before),
+        )
+    }
+
+    fn walk(
+        &self,
+        world: Arc<World>,
+        request: &Request<'_>,
+        effort: Effort,
+        before: Option<&Analysis>,
+    ) -> Analysis {
         let now = self.clock.fetch_add(1, Ordering::Relaxed) + 1;
-        let world = World::gather(request.source, request.roots);
         let mut seen = Vec::new();
         let mut files = Vec::new();
         for root in request.roots {
@@ -110,7 +142,10 @@ impl Analyst {
                 continue;
             }
             seen.push(id);
-            files.extend(self.file(&world, id, request, effort, now).map(Arc::new));
+            let before = before.and_then(|before| before.file_by_id(id));
+            let before = before.map(AsRef::as_ref);
+            let file = self.file(&world, id, (request, effort), now, before);
+            files.extend(file.map(Arc::new));
         }
         self.forget(now);
         Analysis { world, files }
@@ -135,29 +170,51 @@ impl Analyst {
         &self,
         world: &World,
         id: FileId,
-        request: &Request<'_>,
-        effort: Effort,
+        (request, effort): (&Request<'_>, Effort),
         now: u64,
+        before: Option<&FileAnalysis>,
     ) -> Option<FileAnalysis> {
         let file = world.file(id)?;
         let entries = &file.tree.entries;
+        let hashes: Vec<u64> = match before {
+            Some(before) => before.hashes.clone(),
+            None => entries
+                .iter()
+                .map(|entry| world.dependency_hash(id, entry.id))
+                .collect(),
+        };
         let tasks: Vec<Task<'_>> = entries
             .iter()
-            .map(|entry| Task {
+            .zip(&hashes)
+            .map(|(entry, hash)| Task {
                 world,
                 file: id,
                 entry,
-                hash: world.dependency_hash(id, entry.id),
+                hash: *hash,
             })
             .collect();
-        let sections = self.sections(&tasks, request, effort, now);
+        let known = match before {
+            Some(before) => before
+                .sections
+                .iter()
+                .map(|section| Known::of(Some(Arc::clone(section)), request.depth, effort))
+                .collect(),
+            None => self.known(&tasks, request.depth, effort, now),
+        };
+        let sections = self.sections(&tasks, known, (request, effort), now);
         let depth = sections
             .iter()
             .map(|section| section.depth)
             .min()
             .unwrap_or(request.depth);
-        let used = self.used_by_others(world, file) || request.source.is_used(&file.path);
-        let findings = findings(file, &sections, used, depth);
+        let whole = match before {
+            Some(before) => before.whole.clone(),
+            None => {
+                let used = self.used_by_others(world, file) || request.source.is_used(&file.path);
+                of_whole(file, &sections, used)
+            }
+        };
+        let findings = findings(file, &sections, &whole, depth);
         Some(FileAnalysis {
             file: id,
             path: file.path.clone(),
@@ -165,24 +222,27 @@ impl Analyst {
             depth,
             sections,
             findings,
+            whole,
+            hashes,
         })
     }
 
     /// Whether a file that is known uses this one.
     fn used_by_others(&self, world: &World, file: &WorldFile) -> bool {
         let mut others = world.files().iter().filter(|other| other.id != file.id);
-        self.used.contains(&file.path) || others.any(|other| other.uses.contains(&file.id))
+        let known = self.used.as_ref();
+        known.is_some_and(|used| used.contains(&file.path))
+            || others.any(|other| other.uses.contains(&file.id))
     }
 
     /// The sections of the tasks, in order: kept ones where they still hold, the others made now.
     fn sections(
         &self,
         tasks: &[Task<'_>],
-        request: &Request<'_>,
-        effort: Effort,
+        mut found: Vec<Known>,
+        (request, effort): (&Request<'_>, Effort),
         now: u64,
     ) -> Vec<Arc<SectionAnalysis>> {
-        let mut found = self.known(tasks, request.depth, effort, now);
         let missing: Vec<usize> = (0..tasks.len())
             .filter(|index| found.get(*index).is_some_and(|known| !known.done))
             .collect();
@@ -229,13 +289,7 @@ impl Analyst {
         let sections: Vec<Option<Arc<SectionAnalysis>>> = tasks.iter().map(look).collect();
         sections
             .into_iter()
-            .map(|section| Known {
-                done: section.as_ref().is_some_and(|section| {
-                    let quick = effort == Effort::Quick && section.solution().is_some();
-                    section.settled(depth) || quick
-                }),
-                section,
-            })
+            .map(|section| Known::of(section, depth, effort))
             .collect()
     }
 
@@ -312,7 +366,11 @@ impl Analyst {
     /// Lets go of sections that have not been asked for in a while.
     fn forget(&self, now: u64) {
         let mut kept = self.kept.lock().unwrap_or_else(PoisonError::into_inner);
-        if kept.len() <= SPARE_SECTIONS {
+        let spare = match self.used {
+            Some(_) => SPARE_SECTIONS_ONCE,
+            None => SPARE_SECTIONS,
+        };
+        if kept.len() <= spare {
             return;
         }
         kept.retain(|_, section| section.touched + LONG_AGO > now);
@@ -338,6 +396,19 @@ fn bare(model: &SectionAnalysis, depth: Tier) -> SectionAnalysis {
         measures: Vec::new(),
         findings: Vec::new(),
         depth,
+    }
+}
+
+impl Known {
+    fn of(section: Option<Arc<SectionAnalysis>>, depth: Tier, effort: Effort) -> Self {
+        let settled = |section: &Arc<SectionAnalysis>| {
+            let quick = effort == Effort::Quick && section.solution().is_some();
+            section.settled(depth) || quick
+        };
+        Self {
+            done: section.as_ref().is_some_and(settled),
+            section,
+        }
     }
 }
 
@@ -383,7 +454,7 @@ fn modelled(task: &Task<'_>, source: &dyn FileSource) -> SectionAnalysis {
 }
 
 /// Runs the rules of a section up to a tier.
-fn check(task: &Task<'_>, section: &SectionAnalysis, depth: Tier) -> Vec<Finding> {
+fn check(task: &Task<'_>, section: &SectionAnalysis, depth: Tier) -> Vec<Arc<Finding>> {
     let subject = Subject {
         world: task.world,
         file: task.file,
@@ -395,16 +466,16 @@ fn check(task: &Task<'_>, section: &SectionAnalysis, depth: Tier) -> Vec<Finding
         targets: &section.targets,
         measures: &section.measures,
     };
-    rules::section_findings(&subject, depth)
+    let findings = rules::section_findings(&subject, depth);
+    findings.into_iter().map(Arc::new).collect()
 }
 
-/// What is found in a file, waivers applied, in order of place.
-fn findings(
+/// What shows only in the whole file.
+fn of_whole(
     file: &WorldFile,
     sections: &[Arc<SectionAnalysis>],
     used_by_others: bool,
-    depth: Tier,
-) -> Vec<Finding> {
+) -> Vec<Arc<Finding>> {
     let references: Vec<&[Reference]> = sections
         .iter()
         .map(|section| section.references.as_slice())
@@ -415,10 +486,18 @@ fn findings(
         references: &references,
         used_by_others,
     };
-    let mut findings: Vec<Finding> = sections
-        .iter()
-        .flat_map(|section| section.findings.iter().cloned())
-        .collect();
-    findings.extend(rules::file_findings(&subject));
+    let findings = rules::file_findings(&subject);
+    findings.into_iter().map(Arc::new).collect()
+}
+
+/// What is found in a file, waivers applied, in order of place.
+fn findings(
+    file: &WorldFile,
+    sections: &[Arc<SectionAnalysis>],
+    whole: &[Arc<Finding>],
+    depth: Tier,
+) -> Vec<Arc<Finding>> {
+    let of_sections = sections.iter().flat_map(|section| &section.findings);
+    let findings = of_sections.chain(whole).cloned().collect();
     rules::apply_waivers(file.id, &file.tree, findings, depth)
 }

@@ -13,7 +13,7 @@ use crate::syntax::{self, StatementKind, Tree};
 /// The name under which standard input is read.
 pub const STANDARD_INPUT: &str = "-";
 /// Trees are kept until their texts add up to this many bytes; so memory does not grow with the number of files.
-const KEPT_BYTES: usize = 16 << 20;
+const KEPT_BYTES: usize = 1 << 20;
 /// Files and tables beyond this are not read.
 const LARGEST_FILE: u64 = 256 << 20;
 

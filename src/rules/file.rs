@@ -1,6 +1,8 @@
 //! Rules that see a whole file, and the waivers.
 
-use super::{Finding, Level, Rule, Tier, find, idle_waiver, unused_name};
+use std::sync::Arc;
+
+use super::{Finding, Level, Rule, Tier, find, gather, idle_waiver, unused_name};
 use crate::model::{FileId, NameSort, Place, Reference};
 use crate::syntax::{Entry, SectionId, StatementKind, Tree};
 use crate::text::Span;
@@ -99,16 +101,16 @@ struct Waiver<'a> {
 pub fn apply_waivers(
     file: FileId,
     tree: &Tree,
-    findings: Vec<Finding>,
+    findings: Vec<Arc<Finding>>,
     depth: Tier,
-) -> Vec<Finding> {
+) -> Vec<Arc<Finding>> {
     let mut waivers = waivers(file, tree);
     let errors: Vec<Place> = findings
         .iter()
         .filter(|finding| finding.level == Level::Error)
         .map(|finding| finding.place)
         .collect();
-    let mut kept: Vec<Finding> = Vec::new();
+    let mut kept: Vec<Arc<Finding>> = Vec::with_capacity(findings.len());
     for finding in findings {
         if !silenced(&finding, &mut waivers) {
             kept.push(finding);
@@ -116,7 +118,7 @@ pub fn apply_waivers(
     }
     let idle = waivers.iter().filter(|waiver| !waiver.used);
     let idle: Vec<_> = idle
-        .filter_map(|waiver| idle_finding(waiver, &errors, depth))
+        .filter_map(|waiver| idle_finding(waiver, &errors, depth).map(Arc::new))
         .collect();
     kept.extend(idle.into_iter().filter(|finding| {
         let own = Some(finding.place.section);
@@ -124,7 +126,7 @@ pub fn apply_waivers(
             waiver.rule == "idle-waiver" && waiver.section.is_none_or(|entry| Some(entry.id) == own)
         })
     }));
-    in_order(tree, kept)
+    in_order(tree, gather::at_their_numbers(file, kept))
 }
 
 /// The waivers of a file that give a reason.
@@ -209,18 +211,18 @@ fn idle_finding(waiver: &Waiver<'_>, errors: &[Place], depth: Tier) -> Option<Fi
 }
 
 /// By place, and each finding once.
-fn in_order(tree: &Tree, mut findings: Vec<Finding>) -> Vec<Finding> {
+fn in_order(tree: &Tree, mut findings: Vec<Arc<Finding>>) -> Vec<Arc<Finding>> {
     let entries = tree.entries.iter().enumerate();
     let positions: FxHashMap<SectionId, usize> =
         entries.map(|(index, entry)| (entry.id, index)).collect();
-    let order = |finding: &Finding| {
+    let order = |finding: &Arc<Finding>| {
         let position = positions.get(&finding.place.section);
         (position.copied().unwrap_or(usize::MAX), finding.place.span)
     };
     findings.sort_by_cached_key(order);
-    let mut kept: Vec<Finding> = Vec::new();
+    let mut kept: Vec<Arc<Finding>> = Vec::with_capacity(findings.len());
     for finding in findings {
-        let twin = |other: &Finding| {
+        let twin = |other: &Arc<Finding>| {
             (other.rule, other.place, &other.message)
                 == (finding.rule, finding.place, &finding.message)
         };

@@ -234,9 +234,10 @@ pub fn after_waivers(text: &str) -> Vec<(&'static str, String)> {
             Tier::Model,
         ));
     }
+    let findings = findings.into_iter().map(std::sync::Arc::new).collect();
     let kept = apply_waivers(fixture.file, &fixture.tree, findings, Tier::Model);
     kept.into_iter()
-        .map(|finding| (finding.rule, finding.message))
+        .map(|finding| (finding.rule, finding.message.clone()))
         .collect()
 }
 

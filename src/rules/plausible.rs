@@ -69,7 +69,7 @@ const HEAVIEST_IN_LIGHT: f64 = 1.5 * ELECTRON_MASS;
 const HEAVIEST_POLARITON: f64 = 1e-3 * ELECTRON_MASS;
 /// The lightest mass that anything is described with.
 const LIGHTEST: f64 = 1e-6 * ELECTRON_MASS;
-const LIGHTEST_ATOM: f64 = 0.5 * ATOMIC_MASS;
+const LIGHTEST_ATOM: f64 = 0.9 * ATOMIC_MASS;
 const HEAVIEST_MOLECULE: f64 = 1e4 * ATOMIC_MASS;
 /// Layers are no thinner than this.
 pub const THINNEST: f64 = 0.09e-9;

@@ -1,7 +1,8 @@
 //! # What it finds
 //! A quantity of the right dimension and an implausible size for what it is, where another unit would make it
 //! plausible: eV for meV, um for nm, nm for angstrom, `u` for `me`. Electrons and atoms are told apart. Also layers
-//! whose edges hardly differ, samples of a table in another unit than it says, and a bare lattice angle above π or a
+//! whose edges hardly differ, one energy a few hundred times smaller than the others and in a unit of its own, a cell so
+//! long that its potential dwarfs the kinetic energy, samples of a table in another unit than it says, and a bare lattice angle above π or a
 //! bare phase above 2π, which are likely degrees.
 //!
 //! # Why it matters
@@ -33,8 +34,9 @@ use super::plausible::{self, Kind, Setting};
 use super::stated::{self, Stated};
 use super::subject::parameter;
 use super::words::Trade;
-use super::{Finding, Fix, Level, Replacement, Rule, Subject, Tier, literal, words};
-use crate::model::constants::ELECTRONVOLT;
+use super::{
+    Finding, Fix, Level, Replacement, Rule, Subject, Tier, gather, literal, slip_beside, words,
+};
 use crate::model::{Crystal, Parameter, ParameterKind, Place, Wave, unit};
 use crate::syntax::{StatementKind, Value};
 
@@ -53,7 +55,7 @@ fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
     findings.extend(sizes(subject));
     findings.extend(lattice_angles(subject));
     if let Some(crystal) = subject.crystal {
-        findings.extend(weak_layers(subject, crystal));
+        findings.extend(slip_beside::findings(subject, crystal));
         findings.extend(table(subject, crystal));
         let waves = crystal.potential.waves.iter();
         findings.extend(waves.filter_map(|wave| phase(subject, crystal, wave)));
@@ -125,7 +127,7 @@ fn slip(stated: &Stated, setting: &Setting) -> Option<Finding> {
         .fix(fix);
     Some(match number.place == stated.place {
         true => finding,
-        false => finding.related(number.place, "the number comes from here"),
+        false => finding.related(number.place, gather::NUMBER),
     })
 }
 
@@ -151,62 +153,12 @@ pub fn likely_unit(stated: &Stated, setting: &Setting) -> Option<&'static str> {
 }
 
 /// The number as written, with another unit.
-fn rewritten(number: &Parameter, unit: &str) -> Option<String> {
+pub(super) fn rewritten(number: &Parameter, unit: &str) -> Option<String> {
     let digits = match &number.unit {
         Some((written, _)) => number.text.strip_suffix(written.as_str())?.trim_end(),
         None => number.text.as_str(),
     };
     Some(format!("{digits} {unit}"))
-}
-
-/// Layers of materials whose edges differ by less than this are hardly layers.
-const WEAK: f64 = 1e-3 * ELECTRONVOLT;
-/// Nor are those whose edges differ by less than this part of the kinetic scale of the cell.
-const WEAK_RATIO: f64 = 1e-2;
-
-/// Materials whose edges hardly differ, where a thousandfold edge would be usual: meV for eV.
-fn weak_layers(subject: &Subject<'_>, crystal: &Crystal) -> Option<Finding> {
-    let edges = || {
-        let layers = crystal
-            .potential
-            .layers
-            .iter()
-            .filter(|layer| layer.materials.is_some());
-        layers.flat_map(|layer| layer.edge.iter().map(move |edge| (layer, edge)))
-    };
-    let lowest = edges()
-        .map(|(_, edge)| edge.value)
-        .fold(f64::INFINITY, f64::min);
-    let highest = edges()
-        .map(|(_, edge)| edge.value)
-        .fold(f64::NEG_INFINITY, f64::max);
-    let setting = stated::setting(crystal);
-    let contrast = highest - lowest;
-    let weak = contrast > 0.0 && contrast < WEAK && contrast < WEAK_RATIO * setting.kinetic()?;
-    if !weak || !setting.moves_electrons() {
-        return None;
-    }
-    let (layer, edge) =
-        edges().max_by(|(_, one), (_, other)| one.value.abs().total_cmp(&other.value.abs()))?;
-    let number = stated::number_behind(crystal, edge)?;
-    let (written, size) = number.unit.as_ref()?;
-    let stronger = ["meV", "eV"].into_iter().find(|name| {
-        let unit = unit::find(name).map_or(0.0, |unit| unit.size);
-        *name != written.as_str() && (0.01..=5.0).contains(&(contrast * unit / size / ELECTRONVOLT))
-    })?;
-    let instead = rewritten(number, stronger)?;
-    let place = subject.where_to_speak(layer.place, &[edge])?;
-    let message = format!(
-        "the edges of these layers differ by only {}",
-        words::energy(crystal, contrast)
-    );
-    let edit = Replacement::new(number.place, instead.clone());
-    Some(
-        Finding::new(&RULE, place, message)
-            .help(format!("is `{instead}` meant for the edge?"))
-            .related(number.place, "the edge is stated here")
-            .fix(Fix::guess(format!("write `{instead}`"), edit)),
-    )
 }
 
 /// Samples in another unit of energy than the table says.
@@ -317,7 +269,7 @@ fn phase(subject: &Subject<'_>, crystal: &Crystal, wave: &Wave) -> Option<Findin
             place: subject.place(value.span),
             ..finding
         }
-        .related(number.place, "the number comes from here"),
+        .related(number.place, gather::NUMBER),
     })
 }
 

@@ -1,5 +1,6 @@
 //! The user's cache folder, where what an editor is to open as a file is written.
 
+use std::io::Write;
 use std::path::{Path, PathBuf};
 use std::{env, fs, io};
 
@@ -15,11 +16,12 @@ pub(super) fn folder() -> Option<PathBuf> {
     cache.is_absolute().then(|| cache.join("crenate"))
 }
 
-/// Writes a file whole or not at all, as another server may write the same one.
+/// Writes a file whole or not at all, as another request or server may write the same one at the same time.
 pub(super) fn write(path: &Path, text: &str) -> io::Result<()> {
     let folder = path.parent().ok_or(io::ErrorKind::InvalidInput)?;
     fs::create_dir_all(folder)?;
-    let draft = folder.join(format!(".draft-{}", std::process::id()));
-    fs::write(&draft, text)?;
-    fs::rename(&draft, path)
+    let mut draft = tempfile::NamedTempFile::new_in(folder)?;
+    draft.write_all(text.as_bytes())?;
+    draft.persist(path).map_err(|error| error.error)?;
+    Ok(())
 }

@@ -1,8 +1,8 @@
 //! What the workers do: analyse one document and word its findings for the client.
 
 use std::panic::{AssertUnwindSafe, catch_unwind};
-use std::path::PathBuf;
-use std::sync::Arc;
+use std::path::{Path, PathBuf};
+use std::sync::{Arc, OnceLock};
 use std::time::{Duration, Instant};
 
 use tower_lsp::lsp_types::Diagnostic;
@@ -33,6 +33,8 @@ pub(super) struct Job {
     pub(super) files: Arc<Files>,
     pub(super) abilities: Arc<Abilities>,
     pub(super) cancel: Cancel,
+    /// What is known of the same state of the files already, to less depth.
+    pub(super) base: Option<Arc<Analysis>>,
 }
 
 /// What came of a [`Job`].
@@ -42,7 +44,28 @@ pub(super) struct Checked {
     pub(super) generation: u64,
     /// `None` where the analysis met a fault of ours.
     pub(super) analysis: Option<Arc<Analysis>>,
-    pub(super) diagnostics: Vec<Diagnostic>,
+    /// Its findings for the client, once they were asked for.
+    worded: OnceLock<Arc<[Diagnostic]>>,
+}
+
+impl Checked {
+    /// Its findings for the client. Only dear ones are worded ahead: cheap ones are rarely shown.
+    pub(super) fn diagnostics(&self, files: &Files, abilities: &Abilities) -> Arc<[Diagnostic]> {
+        let word = || word(self.analysis.as_deref(), files, &self.path, abilities);
+        Arc::clone(self.worded.get_or_init(word))
+    }
+}
+
+fn word(
+    analysis: Option<&Analysis>,
+    files: &Files,
+    path: &Path,
+    abilities: &Abilities,
+) -> Arc<[Diagnostic]> {
+    let work = || analysis.map(|analysis| findings::of_file(analysis, files, path, abilities));
+    let worded = catch_unwind(AssertUnwindSafe(work))
+        .inspect_err(|_| log!("a fault while wording {}", path.display()));
+    Arc::from(worded.ok().flatten().unwrap_or_default())
 }
 
 /// Does the job. A fault in it costs its result and nothing else.
@@ -54,20 +77,25 @@ pub(super) fn check(analyst: &Analyst, job: Job, slow: Option<Duration>) -> Chec
         files,
         abilities,
         cancel,
+        base,
     } = job;
     let work = || {
         if let (Some(slow), true) = (slow, depth > Depth::Cheap) {
             dawdle(slow, &cancel);
         }
-        let analysis = analyse(analyst, &files, &path, depth, &cancel);
-        let diagnostics = findings::of_file(&analysis, &files, &path, &abilities);
-        (analysis, diagnostics)
+        Arc::new(analyse(
+            analyst,
+            &files,
+            &path,
+            depth,
+            &cancel,
+            base.as_deref(),
+        ))
     };
-    let done = catch_unwind(AssertUnwindSafe(work))
+    let analysis = catch_unwind(AssertUnwindSafe(work))
         .inspect_err(|_| log!("a fault while analysing {}", path.display()))
         .ok();
-    let (analysis, diagnostics) = done.unzip();
-    let whole = |analysis: &Analysis| {
+    let whole = |analysis: &Arc<Analysis>| {
         let file = analysis.file(&path);
         file.is_some_and(|file| file.depth >= Tier::Bands)
     };
@@ -76,13 +104,17 @@ pub(super) fn check(analyst: &Analyst, job: Job, slow: Option<Duration>) -> Chec
         Depth::Rough if analysis.as_ref().is_none_or(whole) => Depth::Dear,
         depth => depth,
     };
-    Checked {
+    let checked = Checked {
         path,
         depth,
         generation,
-        analysis: analysis.map(Arc::new),
-        diagnostics: diagnostics.unwrap_or_default(),
+        analysis,
+        worded: OnceLock::new(),
+    };
+    if depth == Depth::Dear {
+        checked.diagnostics(&files, &abilities);
     }
+    checked
 }
 
 fn analyse(
@@ -91,6 +123,7 @@ fn analyse(
     path: &PathBuf,
     depth: Depth,
     cancel: &Cancel,
+    base: Option<&Analysis>,
 ) -> Analysis {
     let request = Request {
         source: files,
@@ -101,9 +134,11 @@ fn analyse(
         },
         cancel: &|| cancel.is_cancelled(),
     };
-    match depth {
-        Depth::Rough => analyst.analyse_quickly(&request),
-        Depth::Cheap | Depth::Dear => analyst.analyse(&request),
+    match (base, depth) {
+        (Some(base), Depth::Rough) => analyst.deepen_quickly(base, &request),
+        (Some(base), _) => analyst.deepen(base, &request),
+        (None, Depth::Rough) => analyst.analyse_quickly(&request),
+        (None, _) => analyst.analyse(&request),
     }
 }
 

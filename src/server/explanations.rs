@@ -4,8 +4,9 @@
 //! without a network is a file. So the explanations are written, once a
 //! session, into the user's cache folder, and the link names a file there.
 
+use std::collections::HashMap;
 use std::path::PathBuf;
-use std::sync::OnceLock;
+use std::sync::{Mutex, OnceLock, PoisonError};
 use std::{fs, io};
 
 use tower_lsp::lsp_types::Url;
@@ -15,7 +16,7 @@ use super::log::log;
 use crate::report::editor_rules;
 
 /// The page of a rule, where the pages could be written.
-pub(super) fn page(rule: &str) -> Option<Url> {
+pub(super) fn page(rule: &'static str) -> Option<Url> {
     static FOLDER: OnceLock<Option<PathBuf>> = OnceLock::new();
     let folder = FOLDER.get_or_init(|| {
         let written = folder().map(|folder| write(&folder).map(|()| folder));
@@ -25,7 +26,12 @@ pub(super) fn page(rule: &str) -> Option<Url> {
                 .ok()
         })
     });
-    Url::from_file_path(folder.as_ref()?.join(format!("{rule}.md"))).ok()
+    let folder = folder.as_ref()?;
+    static PAGES: Mutex<Option<HashMap<&'static str, Option<Url>>>> = Mutex::new(None);
+    let mut pages = PAGES.lock().unwrap_or_else(PoisonError::into_inner);
+    let page = || Url::from_file_path(folder.join(format!("{rule}.md"))).ok();
+    let known = pages.get_or_insert_default().entry(rule);
+    known.or_insert_with(page).clone()
 }
 
 fn folder() -> Option<PathBuf> {

@@ -5,12 +5,13 @@ use std::path::Path;
 
 use tower_lsp::lsp_types::{
     CodeDescription, Diagnostic, DiagnosticRelatedInformation, DiagnosticSeverity, DiagnosticTag,
-    Location, NumberOrString, Url,
+    Location, NumberOrString, Range, Url,
 };
 
 use super::abilities::Abilities;
-use super::files::Files;
+use super::files::{Files, OpenFile};
 use super::{explanations, positions};
+use crate::report::editor_text::FileId;
 use crate::report::{Analysis, Finding, Level};
 use crate::text::{LineIndex, Span};
 
@@ -38,12 +39,13 @@ pub(super) fn diagnostic(
     locations: &mut Locations<'_>,
     abilities: &Abilities,
 ) -> Option<Diagnostic> {
-    let range = locations.of(&finding.place)?.range;
+    let range = locations.range(&finding.place)?;
     let message = match &finding.help {
         Some(help) => format!("{}\n{help}", finding.message),
         None => finding.message.clone(),
     };
-    let related = finding.related.iter().filter_map(|(place, message)| {
+    let told = finding.related.iter().filter(|_| abilities.finding_related);
+    let related = told.filter_map(|(place, message)| {
         let location = locations.of(place)?;
         Some(DiagnosticRelatedInformation {
             location,
@@ -58,7 +60,7 @@ pub(super) fn diagnostic(
         code_description: link(finding.rule, abilities),
         source: Some(SOURCE.to_owned()),
         message,
-        related_information: (abilities.finding_related && !related.is_empty()).then_some(related),
+        related_information: (!related.is_empty()).then_some(related),
         tags: (abilities.finding_unnecessary && finding.unused)
             .then(|| vec![DiagnosticTag::UNNECESSARY]),
         data: None,
@@ -73,8 +75,11 @@ fn severity(level: Level) -> DiagnosticSeverity {
     }
 }
 
-fn link(rule: &str, abilities: &Abilities) -> Option<CodeDescription> {
-    let href = explanations::page(rule).filter(|_| abilities.finding_link)?;
+fn link(rule: &'static str, abilities: &Abilities) -> Option<CodeDescription> {
+    if !abilities.finding_link {
+        return None;
+    }
+    let href = explanations::page(rule)?;
     Some(CodeDescription { href })
 }
 
@@ -84,6 +89,8 @@ pub(super) struct Locations<'a> {
     files: &'a Files,
     abilities: &'a Abilities,
     lines: HashMap<Url, LineIndex>,
+    /// The open document that was asked for last: most places are in one.
+    last: Option<(FileId, &'a OpenFile)>,
 }
 
 impl<'a> Locations<'a> {
@@ -94,6 +101,24 @@ impl<'a> Locations<'a> {
             files,
             abilities,
             lines: HashMap::new(),
+            last: None,
+        }
+    }
+
+    /// Where in its file a place is; `None` where it is gone.
+    pub(super) fn range(&mut self, place: &crate::report::editor_text::Place) -> Option<Range> {
+        let (path, span) = self.analysis.absolute(place)?;
+        if self.last.is_none_or(|(id, _)| id != place.file) {
+            let open = self.files.open.get(path);
+            self.last = open.map(|open| (place.file, open.as_ref()));
+        }
+        match self.last {
+            Some((_, file)) => Some(positions::range(
+                file.lines(),
+                span,
+                self.abilities.encoding(),
+            )),
+            None => self.span(path, span).map(|location| location.range),
         }
     }
 

@@ -13,6 +13,9 @@ use tokio::io::{AsyncWrite, AsyncWriteExt};
 use tokio::sync::{mpsc, oneshot};
 use tower_lsp::lsp_types::{notification, request};
 
+/// From so many bytes on, messages are not gathered any more before they are written.
+const WRITTEN_AT_ONCE: usize = 1 << 20;
+
 /// Something for the writer.
 enum Parcel {
     /// A message, its header not yet written.
@@ -26,6 +29,14 @@ enum Parcel {
 pub(super) struct Outgoing {
     sender: mpsc::UnboundedSender<Parcel>,
     asked: Arc<Asked>,
+}
+
+/// A notification as it is written.
+#[derive(Serialize)]
+struct Notice<'p, P> {
+    jsonrpc: &'static str,
+    method: &'static str,
+    params: &'p P,
 }
 
 /// Our questions that the client has not answered.
@@ -56,7 +67,16 @@ impl Outgoing {
 
     /// Sends a notification.
     pub(super) fn notify<N: notification::Notification>(&self, params: N::Params) {
-        self.send(&json!({"jsonrpc": "2.0", "method": N::METHOD, "params": params}));
+        self.tell::<N>(&params);
+    }
+
+    /// Sends a notification whose parameters are lent: findings may be many.
+    pub(super) fn tell<N: notification::Notification>(&self, params: &impl Serialize) {
+        self.send(&Notice {
+            jsonrpc: "2.0",
+            method: N::METHOD,
+            params,
+        });
     }
 
     /// Asks the client; `None` where it answers with an error or with something odd.
@@ -107,18 +127,31 @@ pub(super) async fn write_all<W: AsyncWrite + Unpin>(
     mut parcels: Parcels,
     mut output: W,
 ) -> std::io::Result<()> {
+    // Each write may cost a change of threads, so all that waits is written at once.
+    let mut waiting = Vec::new();
     while let Some(parcel) = parcels.0.recv().await {
         let mut next = Some(parcel);
+        let mut last = false;
         while let Some(parcel) = next {
             let Parcel::Message(bytes) = parcel else {
-                return output.flush().await;
+                last = true;
+                break;
             };
             let header = format!("Content-Length: {}\r\n\r\n", bytes.len());
-            output.write_all(header.as_bytes()).await?;
-            output.write_all(&bytes).await?;
-            next = parcels.0.try_recv().ok();
+            waiting.extend_from_slice(header.as_bytes());
+            waiting.extend_from_slice(&bytes);
+            next = match waiting.len() < WRITTEN_AT_ONCE {
+                true => parcels.0.try_recv().ok(),
+                false => None,
+            };
         }
+        output.write_all(&waiting).await?;
         output.flush().await?;
+        waiting.clear();
+        waiting.shrink_to(WRITTEN_AT_ONCE);
+        if last {
+            return Ok(());
+        }
     }
     Ok(())
 }

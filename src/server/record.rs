@@ -56,7 +56,7 @@ pub(super) struct Record {
     /// When the cheap findings are shown, if the dear ones do not come before.
     pub(super) due: Option<Instant>,
     /// What the client shows.
-    pub(super) shown: Option<(i32, Vec<Diagnostic>)>,
+    pub(super) shown: Option<(i32, Arc<[Diagnostic]>)>,
     /// Whether the client was answered before the bands were known.
     pub(super) owes: bool,
 }

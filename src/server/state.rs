@@ -14,9 +14,9 @@ use std::sync::Arc;
 use std::sync::mpsc::{Receiver, RecvTimeoutError, Sender};
 use std::time::{Duration, Instant};
 
+use serde::Serialize;
 use tower_lsp::lsp_types::{
-    Diagnostic, PublishDiagnosticsParams, TextDocumentContentChangeEvent, Url, notification,
-    request,
+    Diagnostic, TextDocumentContentChangeEvent, Url, notification, request,
 };
 
 use super::abilities::Abilities;
@@ -31,6 +31,15 @@ use crate::text::Document;
 
 /// How long the cheap findings wait for the dear ones, so that a quick edit changes the picture once.
 const GRACE: Duration = Duration::from_millis(40);
+
+/// What `textDocument/publishDiagnostics` says.
+#[derive(Serialize)]
+struct Published<'a> {
+    uri: &'a Url,
+    diagnostics: &'a [Diagnostic],
+    #[serde(skip_serializing_if = "Option::is_none")]
+    version: Option<i32>,
+}
 
 /// What the owner's thread holds.
 pub(super) struct State {
@@ -234,7 +243,7 @@ impl State {
         files.open.remove(&path);
         files.disk.forget(&[path]);
         if !self.abilities.pulls {
-            self.show(uri, None, Vec::new());
+            self.show(&uri, None, &[]);
         }
         self.touched();
     }
@@ -328,26 +337,25 @@ impl State {
 
     /// Gives idle workers their next jobs.
     fn employ(&mut self) {
-        let (generation, files, abilities) = (
-            self.generation,
-            Arc::clone(&self.files),
-            Arc::clone(&self.abilities),
-        );
-        let job = |path, depth, cancel| Job {
+        let generation = self.generation;
+        let (records, files, abilities) = (&self.records, &self.files, &self.abilities);
+        let known = |path: &Path, depth| {
+            let record = records.get(path);
+            record.and_then(|record| record.known(depth, generation))
+        };
+        let job = |path: PathBuf, depth, cancel| Job {
+            base: known(&path, Depth::Cheap).and_then(|checked| checked.analysis.clone()),
             path,
             depth,
             generation,
-            files: Arc::clone(&files),
-            abilities: Arc::clone(&abilities),
+            files: Arc::clone(files),
+            abilities: Arc::clone(abilities),
             cancel,
         };
         self.cheap
             .pump(|path, cancel| job(path, Depth::Cheap, cancel));
-        let records = &self.records;
         self.dear.pump(|path, cancel| {
-            let record = records.get(&path);
-            let rough = record.and_then(|record| record.known(Depth::Rough, generation));
-            let depth = match rough {
+            let depth = match known(&path, Depth::Rough) {
                 Some(_) => Depth::Dear,
                 None => Depth::Rough,
             };
@@ -414,8 +422,10 @@ impl State {
                 }
             }
             Depth::Dear => {
-                record.dear = Some(checked);
+                // What was known before is let go only once the new is on its way.
+                let before = record.dear.replace(checked);
                 self.publish(&path, Depth::Dear);
+                drop(before);
             }
         }
     }
@@ -433,21 +443,20 @@ impl State {
             record.due = None;
             return;
         };
-        let (version, diagnostics) = (record.file.version, checked.diagnostics.clone());
+        let version = record.file.version;
+        let diagnostics = checked.diagnostics(&self.files, &self.abilities);
         record.due = None;
-        let uri = record.file.uri.clone();
-        let before = record.shown.replace((version, diagnostics.clone()));
+        let file = Arc::clone(&record.file);
+        let before = record.shown.replace((version, Arc::clone(&diagnostics)));
         let owes = depth == Depth::Dear && std::mem::take(&mut record.owes);
         let elsewhere = depth == Depth::Dear && self.focus.as_deref() != Some(path);
-        let changed = before
-            .as_ref()
-            .is_some_and(|(_, before)| *before != diagnostics);
-        if !self.abilities.pulls
-            && before.is_none_or(|before| before != (version, diagnostics.clone()))
-        {
-            self.show(uri, Some(version), diagnostics);
+        let differs = |before: &Arc<[Diagnostic]>| *before != diagnostics;
+        let changed = elsewhere && before.as_ref().is_some_and(|(_, before)| differs(before));
+        let shown = |(of, before): &(i32, _)| *of == version && !differs(before);
+        if !self.abilities.pulls && !before.as_ref().is_some_and(shown) {
+            self.show(&file.uri, Some(version), &diagnostics);
         }
-        if owes || elsewhere && changed {
+        if owes || changed {
             self.refresh();
         }
     }
@@ -462,9 +471,9 @@ impl State {
         }
     }
 
-    fn show(&self, uri: Url, version: Option<i32>, diagnostics: Vec<Diagnostic>) {
+    fn show(&self, uri: &Url, version: Option<i32>, diagnostics: &[Diagnostic]) {
         self.outgoing
-            .notify::<notification::PublishDiagnostics>(PublishDiagnosticsParams {
+            .tell::<notification::PublishDiagnostics>(&Published {
                 uri,
                 diagnostics,
                 version,

@@ -8,6 +8,7 @@
 mod build;
 mod grammar;
 mod locate;
+mod mentions;
 mod read;
 mod section;
 mod split;

@@ -9,6 +9,7 @@ use rustc_hash::FxHasher;
 
 use super::build::{self, Builder, Failure};
 use super::grammar::{LineParser, Rule, line_rule};
+use super::mentions::mentions;
 use super::split::{SplitLine, is_blank, logical_lines, span};
 use super::tokens::{
     Token, TokenKind, instead_of, is_name_start, stray_joiner, tokens, word_length,
@@ -42,6 +43,7 @@ pub(super) fn read_section(kind: SectionKind, text: &str, hash: u64) -> Section 
         statements: Vec::new(),
         lines: Vec::new(),
         problems: Vec::new(),
+        mentions: Vec::new(),
     };
     for (number, split) in logical_lines(text).into_iter().enumerate() {
         section.lines.push(split.line);
@@ -52,6 +54,7 @@ pub(super) fn read_section(kind: SectionKind, text: &str, hash: u64) -> Section 
             section.problems.push(problem);
         }
     }
+    section.mentions = mentions(&section);
     section
 }
 

@@ -73,7 +73,7 @@ fn heading_kind(rest: &str, first_of_text: bool) -> Option<SectionKind> {
 /// Where the physical line from `start` ends: before and behind its terminator (LF, CRLF or CR).
 fn physical_end(bytes: &[u8], start: usize) -> (usize, usize) {
     let rest = bytes.get(start..).unwrap_or_default();
-    let Some(length) = rest.iter().position(|&byte| byte == b'\n' || byte == b'\r') else {
+    let Some(length) = memchr::memchr2(b'\n', b'\r', rest) else {
         return (bytes.len(), bytes.len());
     };
     let end = start + length;

@@ -64,6 +64,8 @@ pub struct Section {
     pub lines: Vec<Line>,
     /// What could not be read.
     pub problems: Vec<Problem>,
+    /// The crystals that its measures and targets speak of (the `of NAME` of a quantity), in order.
+    pub mentions: Vec<Word>,
 }
 
 /// A logical line: a physical line and those that continue it, terminator included.

@@ -128,17 +128,18 @@ impl LineIndex {
 fn line_spans(bytes: &[u8], length: u32) -> Vec<Span> {
     let mut lines = Vec::new();
     let mut start = 0;
-    let mut before_is_cr = false;
-    for (offset, byte) in (0..length).zip(bytes) {
-        match byte {
-            b'\n' if before_is_cr => start = offset + 1,
-            b'\n' | b'\r' => {
-                lines.push(Span::new(start, offset));
-                start = offset + 1;
-            }
-            _ => {}
+    for offset in memchr::memchr2_iter(b'\n', b'\r', bytes) {
+        let Some(offset) = u32::try_from(offset).ok().filter(|&at| at < length) else {
+            break;
+        };
+        let ends_pair = offset > 0
+            && offset == start
+            && bytes.get(offset as usize) == Some(&b'\n')
+            && bytes.get(offset as usize - 1) == Some(&b'\r');
+        if !ends_pair {
+            lines.push(Span::new(start, offset));
         }
-        before_is_cr = *byte == b'\r';
+        start = offset + 1;
     }
     lines.push(Span::new(start, length));
     lines

@@ -7,6 +7,9 @@
     clippy::missing_panics_doc
 )]
 
+pub mod pipes;
+pub mod random;
+
 use std::collections::VecDeque;
 use std::path::Path;
 use std::time::Duration;

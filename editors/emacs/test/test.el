@@ -60,6 +60,11 @@
 (flymake-mode 1)
 
 (test-wait "the finding" (lambda () (test-found "wal")))
+(let* ((diagnostic (seq-find (lambda (found) (string-match-p "wal" (flymake-diagnostic-text found)))
+                             (flymake-diagnostics)))
+       (place (cons (line-number-at-pos (flymake-diagnostic-beg diagnostic))
+                    (buffer-substring (flymake-diagnostic-beg diagnostic) (flymake-diagnostic-end diagnostic)))))
+  (unless (equal place '(11 . "wal")) (test-fail "it is found at %S" place)))
 (goto-char (point-min))
 (search-forward "of wal")
 (let* ((actions (eglot-code-actions (1- (point)) (point) "quickfix"))
@@ -68,7 +73,7 @@
   (eglot--apply-workspace-edit (plist-get fix :edit)))
 (test-wait "the fix" (lambda () (save-excursion (goto-char (point-min)) (search-forward "of wall" nil t))))
 (test-send)
-(test-wait "the finding to go" (lambda () (not (test-found "called"))))
+(test-wait "the finding to go" (lambda () (null (test-findings))))
 
 ;; The values are those of neovim/test/expected.py: the closed form of two layers a cell.
 (test-near "the gap" (test-gap) 127.3371)

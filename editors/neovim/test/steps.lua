@@ -70,4 +70,12 @@ function steps.gap(text)
   return size and tonumber(size)
 end
 
+-- Ends the editor where a gap in meV is not as expected.
+function steps.near(what, value, expected, within)
+  if not value or math.abs(value - expected) > within then
+    steps.fail(('%s is %s meV and should be %s'):format(what, value, expected))
+  end
+  io.stderr:write(('  %s: %s meV\n'):format(what, value))
+end
+
 return steps

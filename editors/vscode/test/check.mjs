@@ -33,7 +33,7 @@ async function shown(page) {
           dispersion: count("path.dispersion"),
           bands: count("g.band"),
           potential: count("path.potential"),
-          head: svg.querySelector("text")?.textContent.trim(),
+          texts: [...svg.querySelectorAll("text")].map((text) => text.textContent.trim()),
           stale: picture.classList.contains("stale"),
           trouble: document.getElementById("trouble").textContent,
         };
@@ -46,16 +46,16 @@ async function shown(page) {
   return null;
 }
 
-/// Waits for the probe's step, then for the panel to be as wanted, and tells the probe.
-async function look(page, step, wanted) {
+/// Waits for the probe's step, then for what is asked of the page to be as wanted, and tells the probe.
+async function look(page, step, wanted, ask = shown) {
   await until(`the probe's step ${step}`, () => {
     const failed = fs.existsSync(seenPath) ? fs.readFileSync(seenPath, "utf8") : "";
     assert.ok(!failed.includes('"error"'), failed);
     return fs.existsSync(`${seenPath}.step`) && fs.readFileSync(`${seenPath}.step`, "utf8") === step;
   });
   let last = null;
-  await until(`the panel when ${step}`, async () => {
-    last = await shown(page);
+  await until(`the page when ${step}`, async () => {
+    last = await ask(page);
     return last !== null && wanted(last);
   }).catch((error) => {
     throw new Error(`${error.message}: ${JSON.stringify(last)}`);
@@ -65,17 +65,32 @@ async function look(page, step, wanted) {
   return last;
 }
 
+/// The problems view, and the lines that are drawn under the text.
+async function problems(page) {
+  const texts = (selector) => page.locator(selector).allTextContents();
+  return { rows: await texts(".markers-panel .monaco-list-row"), drawn: await page.locator(".view-overlays .squiggly-error").count() };
+}
+
+/// The size of the lowest gap in meV, as the picture's second line tells it.
+const told = (panel) => Number(/gap 1 ([\d.]+)\s*meV/.exec(panel.texts[1])?.[1]);
+
 const browser = await chromium.launch({ executablePath: "/usr/bin/chromium", args: ["--no-sandbox"] });
 try {
   const page = await browser.newPage();
-  await page.setViewportSize({ width: 1440, height: 810 });
+  await page.setViewportSize({ width: 1760, height: 990 });
   await page.goto(address);
+  await look(page, "found", (found) => found.drawn > 0 && found.rows.some((row) => row.includes("unknown-name")), problems);
   // Four bands are solved where none says how many, and each is one line of E(k); two of them and the walls are drawn.
   const opened = await look(page, "opened", (panel) => panel.dispersion === 4 && !panel.stale);
-  assert.equal(opened.head, "tern");
+  assert.equal(opened.texts[0], "tern");
   assert.equal(opened.potential, 1);
   assert.equal(opened.bands, 2);
-  await look(page, "typed", (panel) => panel.dispersion === 6 && !panel.stale);
+  assert.ok(Math.abs(told(opened) - 82.8358) < 0.06, opened.texts[1]);
+  await look(page, "more", (panel) => panel.dispersion === 6 && !panel.stale);
+  // The well is made narrower: another gap, and the second band now rises over the walls.
+  const typed = await look(page, "typed", (panel) => !panel.stale && Math.abs(told(panel) - 127.3371) < 0.06);
+  assert.equal(typed.dispersion, 6);
+  assert.equal(typed.potential, 1);
   await look(page, "broken", (panel) => panel.stale && panel.trouble !== "");
   await until("the probe", () => fs.existsSync(seenPath) && fs.readFileSync(seenPath, "utf8").endsWith("}"));
   await page.screenshot({ path: picture });

@@ -1,7 +1,7 @@
 //! Checks that several builds share: names that are taken, masses.
 
 use super::SectionRef;
-use crate::model::evaluate::{Context, Evaluator};
+use crate::model::evaluate::{Context, Evaluator, past_zero};
 use crate::model::words::holder_of;
 use crate::model::world::lets_of;
 use crate::model::{Dimension, Dual, Place, Trouble, TroubleKind};
@@ -100,11 +100,13 @@ pub(super) fn mass<'w>(
     context: &Context<'_, 'w>,
 ) -> Option<Dual> {
     let mass = evaluator.quantity_of(value, Dimension::MASS, context)?;
-    if mass.value > 0.0 {
-        return Some(mass);
+    if mass.value <= 0.0 || mass.value.is_nan() {
+        let kind = TroubleKind::OddMass { mass: mass.value };
+        return evaluator.fail(kind, context.place(value.span));
     }
-    evaluator.fail(
-        TroubleKind::OddMass { mass: mass.value },
-        context.place(value.span),
-    )
+    if !evaluator.stays_positive(&mass) {
+        let text = context.spot.text(value.span);
+        return evaluator.bad(context.place(value.span), past_zero("a mass", text));
+    }
+    Some(mass)
 }

@@ -226,7 +226,9 @@ impl<'w> CrystalBuild<'_, 'w> {
         let file = world.file(found.file);
         let ambiguous = file.is_some_and(|file| file.repeats(SectionKind::Material, &word.text));
         self.evaluator.broken |= built.broken || ambiguous;
-        self.evaluator.parameters.append(&mut built.parameters);
+        for parameter in built.parameters.drain(..) {
+            self.evaluator.note_parameter(parameter);
+        }
         let built = Rc::new(built);
         self.materials.insert(found.key(), Rc::clone(&built));
         Some(built)

@@ -10,12 +10,12 @@ mod quantity;
 mod term;
 mod value;
 
-use rustc_hash::FxHashMap;
+use rustc_hash::{FxHashMap, FxHashSet};
 
 use super::world::Scope;
 use super::{
-    Dimension, Dual, FileId, NameSort, Parameter, ParameterId, Place, Reference, SectionRef,
-    Setting, Trouble, TroubleKind, World,
+    Dimension, Dual, FileId, NameSort, Parameter, ParameterId, ParameterKind, Place, Reference,
+    SectionRef, Setting, Trouble, TroubleKind, World,
 };
 use crate::syntax::{Expression, SectionId, Word};
 use crate::text::Span;
@@ -23,7 +23,7 @@ use crate::text::Span;
 pub(crate) use expression::is_bare;
 pub(crate) use quantity::MOST_BANDS;
 pub(crate) use term::Term;
-pub(crate) use value::is_relative;
+pub(crate) use value::{is_relative, past_zero};
 
 /// How deep lets and brackets may nest together.
 const DEEPEST: usize = 600;
@@ -37,6 +37,8 @@ pub(crate) struct Evaluator<'w> {
     pub(crate) troubles: Vec<Trouble>,
     pub(crate) references: Vec<Reference>,
     pub(crate) parameters: Vec<Parameter>,
+    /// Those of them that are tolerances.
+    draws: FxHashSet<ParameterId>,
     pub(crate) broken: bool,
     pub(crate) units: LocalUnits,
     pub(crate) measures: Vec<MeasureEntry<'w>>,
@@ -166,6 +168,7 @@ impl<'w> Evaluator<'w> {
             troubles: Vec::new(),
             references: Vec::new(),
             parameters: Vec::with_capacity(32),
+            draws: FxHashSet::default(),
             broken: !home.section.problems.is_empty(),
             units: LocalUnits::default(),
             measures: Vec::new(),
@@ -229,6 +232,9 @@ impl<'w> Evaluator<'w> {
 
     pub(crate) fn note_parameter(&mut self, parameter: Parameter) -> ParameterId {
         let id = parameter.id;
+        if parameter.kind == ParameterKind::Draw {
+            self.draws.insert(id);
+        }
         self.parameters.push(parameter);
         id
     }

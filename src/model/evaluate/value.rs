@@ -125,14 +125,25 @@ impl<'w> Evaluator<'w> {
         context: &Context<'_, 'w>,
     ) -> Option<Dual> {
         let found = self.quantity_of(value, wanted, context)?;
-        if found.value > 0.0 {
-            return Some(found);
-        }
         let text = context.spot.text(value.span);
-        self.bad(
-            context.place(value.span),
-            format!("{what} is positive, and `{text}` is not"),
-        )
+        if found.value <= 0.0 || found.value.is_nan() {
+            let reason = format!("{what} is positive, and `{text}` is not");
+            return self.bad(context.place(value.span), reason);
+        }
+        if !self.stays_positive(&found) {
+            return self.bad(context.place(value.span), past_zero(what, text));
+        }
+        Some(found)
+    }
+
+    /// Whether a positive number is positive over its tolerances too, to first order in them.
+    pub(crate) fn stays_positive(&self, found: &Dual) -> bool {
+        let slopes = found
+            .slopes
+            .iter()
+            .filter(|(id, _)| self.draws.contains(id));
+        let fall: f64 = slopes.map(|(_, slope)| slope.abs()).sum();
+        !self.setting.draws.is_empty() || fall < found.value
     }
 
     /// A length, or a bare number; says which.
@@ -196,4 +207,9 @@ fn magnitude(value: &Dual) -> Dual {
     } else {
         value.clone()
     }
+}
+
+/// Why a positive number whose tolerance reaches zero is none.
+pub(crate) fn past_zero(what: &str, text: &str) -> String {
+    format!("{what} is positive, and `{text}` reaches zero within its tolerance")
 }

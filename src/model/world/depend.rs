@@ -9,10 +9,7 @@ use super::path::beside;
 use super::{SectionRef, World, WorldFile};
 use crate::model::FileId;
 use crate::model::hash::{hash_bytes, mix};
-use crate::syntax::{
-    BandQuantity, Expression, ExpressionKind, Relation, Requirement, SectionId, SectionKind,
-    StatementKind, Value, Word,
-};
+use crate::syntax::{SectionId, SectionKind, StatementKind};
 
 impl World {
     /// A hash of all that a section's result may depend on.
@@ -48,16 +45,12 @@ impl World {
         if from.section.kind != SectionKind::Crystal {
             return;
         }
-        let mut names: Vec<&Word> = from.section.like.iter().collect();
         for statement in &from.section.statements {
-            match &statement.kind {
-                StatementKind::Measure { expression, .. } => mentioned(expression, &mut names),
-                StatementKind::Require(requirement) => in_requirement(requirement, &mut names),
-                StatementKind::Table { file, .. } => hashes.push(self.table_part(from, &file.text)),
-                _ => {}
+            if let StatementKind::Table { file, .. } = &statement.kind {
+                hashes.push(self.table_part(from, &file.text));
             }
         }
-        for name in names {
+        for name in from.section.like.iter().chain(&from.section.mentions) {
             match self.crystal(from.file, &name.text) {
                 Some(found) if reached.iter().any(|seen| seen.key() == found.key()) => {}
                 Some(found) => reached.push(found),
@@ -119,60 +112,4 @@ fn own_scope(file: &WorldFile) -> u64 {
     // A file that appears or vanishes changes what its users know.
     hashes.extend(file.uses.iter().map(|id| id.0));
     mix(&hashes)
-}
-
-/// The crystals that an expression speaks of.
-fn mentioned<'e>(expression: &'e Expression, names: &mut Vec<&'e Word>) {
-    match &expression.kind {
-        ExpressionKind::Number { .. } | ExpressionKind::Name(_) => {}
-        ExpressionKind::Negative(inner) => mentioned(inner, names),
-        ExpressionKind::Binary { left, right, .. } => {
-            mentioned(left, names);
-            mentioned(right, names);
-        }
-        ExpressionKind::Call { arguments, .. } => {
-            for argument in arguments {
-                mentioned(argument, names);
-            }
-        }
-        ExpressionKind::Quantity(quantity) => in_quantity(quantity, names),
-    }
-}
-
-fn in_quantity<'e>(quantity: &'e BandQuantity, names: &mut Vec<&'e Word>) {
-    names.extend(quantity.of.iter());
-}
-
-fn in_value<'e>(value: &'e Value, names: &mut Vec<&'e Word>) {
-    mentioned(&value.expression, names);
-    if let Some(tolerance) = &value.tolerance {
-        mentioned(tolerance, names);
-    }
-}
-
-fn in_requirement<'e>(requirement: &'e Requirement, names: &mut Vec<&'e Word>) {
-    match requirement {
-        Requirement::Compare {
-            expression,
-            relation,
-        } => {
-            mentioned(expression, names);
-            for value in values_of(relation) {
-                in_value(value, names);
-            }
-        }
-        Requirement::Class(_) => {}
-        Requirement::GapIs { quantity, .. } => in_quantity(quantity, names),
-    }
-}
-
-fn values_of(relation: &Relation) -> Vec<&Value> {
-    match relation {
-        Relation::AtLeast(value)
-        | Relation::AtMost(value)
-        | Relation::Above(value)
-        | Relation::Below(value) => vec![value],
-        Relation::Near { value, within } => vec![value, within],
-        Relation::Between(low, high) => vec![low, high],
-    }
 }

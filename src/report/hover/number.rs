@@ -240,15 +240,12 @@ fn moved(
         .monolayer
         .as_ref()
         .filter(|_| parameter.dimension == Dimension::LENGTH);
-    match monolayer {
-        Some(monolayer) => parts.push(format!("{} per ML", change(slope * monolayer.value, trade))),
-        None if parameter.dimension != Dimension::NUMBER => {
-            parts.push(format!(
-                "{} per %",
-                change(slope * parameter.value * 0.01, trade)
-            ));
-        }
-        None => {}
+    if let Some(monolayer) = monolayer {
+        parts.push(format!("{} per ML", change(slope * monolayer.value, trade)));
+    }
+    if parameter.dimension != Dimension::NUMBER {
+        let percent = change(slope * parameter.value * 0.01, trade);
+        parts.push(format!("{percent} per %"));
     }
     let spread = draw.and_then(|draw| self::slope(sensitivity, draw.id));
     if let Some(spread) = spread.filter(|spread| *spread != 0.0) {
