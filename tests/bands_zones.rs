@@ -1,5 +1,10 @@
 //! Two- and three-dimensional crystals from text to bands, against tables, closed forms and one another.
-#![allow(clippy::indexing_slicing, clippy::unwrap_used, missing_docs)]
+#![allow(
+    clippy::indexing_slicing,
+    clippy::unwrap_used,
+    clippy::print_stdout,
+    missing_docs
+)]
 
 #[path = "bands/mod.rs"]
 mod bench;
