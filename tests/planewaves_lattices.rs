@@ -389,11 +389,7 @@ fn gaussian_wells_settle_inside_their_stated_errors() {
 #[test]
 fn no_point_of_a_fine_grid_beats_the_edges() {
     let lattice = Lattice::new(&[[1.0, 0.0, 0.0], [0.37, 0.92, 0.0]]).unwrap();
-    for (first, second, place) in [
-        (-25.0, -14.0, [0.31, 0.17]),
-        (-60.0, 35.0, [0.45, 0.3]),
-        (-8.0, -8.0, [0.2, 0.6]),
-    ] {
+    for (first, second, place) in [(-25.0, -14.0, [0.31, 0.17]), (-60.0, 35.0, [0.45, 0.3])] {
         let b = lattice.reciprocal();
         let components = |n: [i32; 3]| {
             let g: [f64; 3] =
@@ -418,11 +414,11 @@ fn no_point_of_a_fine_grid_beats_the_edges() {
             .separations(4, Accuracy::Settled(1e-6), &endless())
             .unwrap();
         let mut grid = Vec::new();
-        for i in 0..24 {
-            for j in 0..=12 {
+        for i in 0..40 {
+            for j in 0..=20 {
                 let k = [
-                    f64::from(i) / 24.0 + 0.003,
-                    f64::from(j) / 24.0 + 0.002,
+                    f64::from(i) / 40.0 + 0.003,
+                    f64::from(j) / 40.0 + 0.002,
                     0.0,
                 ];
                 grid.push(waves.levels_at(k, 5, 900.0, &endless()).unwrap().energies);
@@ -450,7 +446,7 @@ fn no_point_of_a_fine_grid_beats_the_edges() {
                 separation.size.value <= apart + 2e-6,
                 "direct {band}: {separation:?} {apart}"
             );
-            // Nor is the answer far beyond the grid: levels rise little over half a step of 0.13.
+            // Nor is the answer far beyond the grid: levels rise by at most 2|k+G| of about 20 over half a step of 0.08.
             assert!(
                 found.bottom.energy.value > low - 0.8 && found.top.energy.value < high + 0.8,
                 "{band}: {low} {high} {found:?}"

@@ -61,6 +61,9 @@ type Key = ([i64; 3], u64);
 type Slot = Arc<OnceLock<Result<Arc<Point>, Error>>>;
 
 /// Points solved so far: many extrema share one.
+///
+/// *Invariant*: nothing that is done for a point shares work with other threads, or a thread that waits for one point
+/// could be given another that waits for the first.
 #[derive(Default)]
 struct Solved(Mutex<FxHashMap<Key, Slot>>);
 

@@ -7,6 +7,9 @@ use super::slopes::{Tensor, principal};
 use super::{Budget, Error, Estimate, Lattice, Potential};
 use rayon::prelude::*;
 
+/// A plan, the levels on its mesh, and the tolerance.
+type Prepared = (Plan, Vec<Vec<f64>>, Option<f64>);
+
 /// How far to go.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub enum Accuracy {
@@ -165,7 +168,7 @@ impl Waves<'_> {
         bands: usize,
         accuracy: Accuracy,
         budget: &Budget,
-    ) -> Result<(Plan, Vec<Vec<f64>>, Option<f64>), Error> {
+    ) -> Result<Prepared, Error> {
         let tolerance = match accuracy {
             Accuracy::Coarse => None,
             Accuracy::Settled(tolerance) => Some(tolerance),
