@@ -10,8 +10,8 @@
 use crenate::numerics::planewaves::{
     Accuracy, Budget, Decay, Lattice, Potential, Waves, shapes, solve,
 };
-use crenate::report::hover::hover;
 use crenate::report::analyst::Effort;
+use crenate::report::hover::hover;
 use crenate::report::{Analyst, FileSource, ReadFailure, Request, Tier};
 use crenate::syntax::{Tree, read};
 use criterion::Criterion;

@@ -5,8 +5,8 @@ mod report;
 
 use std::path::Path;
 
-use crenate::report::hover::{hover, waits};
 use crenate::report::analyst::Effort;
+use crenate::report::hover::{hover, waits};
 use crenate::report::{Analyst, Request, Tier};
 use report::{Files, analysed, marked};
 

@@ -60,7 +60,11 @@ async fn the_hover_speaks_of_whatever_it_is_on() {
             9,
             &["127.3", "µm", "mass", "mean", "per cell", "━"][..],
         ),
-        ("5.4 nm", 0, &["Å", "ML", "gap 1", "per nm", "per ML", "per %"]),
+        (
+            "5.4 nm",
+            0,
+            &["Å", "ML", "gap 1", "per nm", "per ML", "per %"],
+        ),
         ("2.6 nm", 0, &["per ML", "over its tolerance"]),
         ("layer 5.4", 1, &["19.08 ML", "0.067 me", "basin"]),
         ("of basin", 4, &["material", "used by tern"]),

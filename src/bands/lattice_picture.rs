@@ -16,6 +16,11 @@ const FURTHER: [usize; 2] = [2, 4];
 /// Energies at which the density is taken.
 const ENERGIES: usize = 240;
 
+/// The one for the dimension of a field.
+fn of([flat, solid]: [usize; 2], field: &ZoneField<'_>) -> usize {
+    if field.dimension == 2 { flat } else { solid }
+}
+
 /// The lines of a lattice's picture, energies in joule.
 #[derive(Clone, Debug, Default, PartialEq)]
 pub struct LatticePicture {
@@ -43,7 +48,7 @@ pub(super) fn lattice_picture(
 ) -> Result<LatticePicture, Unsolved> {
     let field = ZoneField::new(crystal)?;
     // The last one only tells up to where no band is missing.
-    let count = crystal.bands.clamp(1, MOST_BANDS) + FURTHER[usize::from(field.dimension == 3)] + 1;
+    let count = crystal.bands.clamp(1, MOST_BANDS) + of(FURTHER, &field) + 1;
     with_zone(&field, |zone| {
         let budget = zone_budget(&field, count, Effort::Coarse, cancelled);
         let runs = crystal.zone_path();
@@ -103,7 +108,7 @@ fn run(
     count: usize,
     budget: &crate::numerics::planewaves::Budget<'_>,
 ) -> Result<PathRun, Unsolved> {
-    let steps = STEPS[usize::from(zone.field.dimension == 3)];
+    let steps = of(STEPS, zone.field);
     let points: Vec<[f64; 3]> = stops.iter().map(|(_, point)| filled_up(point)).collect();
     let found = zone
         .waves

@@ -173,7 +173,7 @@ mod tests {
             ("tetragonal", true),
             ("orthorhombic", true),
         ] {
-            let kind = lattice_kind(word, solid).unwrap();
+            let kind = lattice_kind(word, solid).expect("a kind of lattice");
             let path = zone_path(Some(kind), kind.dimension);
             let stops: usize = runs(kind).iter().map(|run| run.split(' ').count()).sum();
             assert_eq!(path.iter().map(Vec::len).sum::<usize>(), stops, "{word}");
@@ -190,7 +190,11 @@ mod tests {
     #[test]
     fn a_lattice_without_names_has_a_path_too() {
         let path = zone_path(None, 2);
-        let names: Vec<&str> = path[0].iter().map(|(name, _)| name.as_str()).collect();
+        let names: Vec<&str> = path
+            .iter()
+            .flatten()
+            .map(|(name, _)| name.as_str())
+            .collect();
         assert_eq!(names, ["centre", "½ 0", "centre", "0 ½", "centre", "½ ½"]);
     }
 }
