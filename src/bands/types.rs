@@ -20,8 +20,8 @@ pub struct Extremum {
     pub k: Vec<f64>,
     /// The name of that point, where it has one.
     pub point: Option<String>,
-    /// Mass in kg, signed: negative at a top; `None` where there is none (a crossing). In two and three dimensions the
-    /// density-of-states mass of this one extremum.
+    /// Mass in kg, signed: negative at a top; `None` where there is none (a crossing) or its sign is not known. In two
+    /// and three dimensions the density-of-states mass of this one extremum.
     pub mass: Option<Measured>,
     /// The masses along the principal axes of the tensor, in two and three dimensions; empty where there is no mass.
     pub axes: Vec<MassAxis>,

@@ -18,6 +18,7 @@
 //! `hopping`, `sensitivity`, `wave` (what a caller asks for).
 #![allow(clippy::indexing_slicing)]
 
+mod borrow;
 mod budget;
 mod cell;
 mod double;

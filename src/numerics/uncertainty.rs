@@ -9,6 +9,7 @@
 //! * the mesh: |δV| of each smooth step times its share of |ψ|²;
 //! * the last rounding.
 
+use super::borrow::borrow;
 use super::budget::Meter;
 use super::cell::{Bounded, Mass, Ready};
 use super::double::Double;
@@ -307,6 +308,7 @@ pub(crate) fn finish(ready: &Ready, raw: &Raw, meter: &Meter) -> Bands {
         below = next;
         touching = closed;
     }
+    borrow(&mut bands, &mut gaps);
     Bands {
         bands,
         gaps,
@@ -321,7 +323,9 @@ fn edge(raw: &RawEdge, bound: &EdgeBound, gap: usize, closed: bool) -> BandEdge 
     } else {
         Wave::Edge
     };
-    let mass = (!closed && bound.mass.value.is_finite()).then_some(bound.mass);
+    // A mass whose sign is open tells nothing.
+    let known = bound.mass.error < bound.mass.value.abs() && bound.mass.value.is_finite();
+    let mass = (!closed && known).then_some(bound.mass);
     BandEdge {
         energy: Bounded {
             value: raw.energy.round(),
