@@ -111,14 +111,8 @@ pub(crate) fn cyclic_factors<T: Scalar>(ready: &Ready, energy: T) -> Vec<Factor<
 
 /// Entry by entry, derivatives too: products of such bound what rounding gathers.
 fn magnitudes<T: Scalar>(s: &Scaled<T>) -> Scaled<T> {
-    let m = &s.matrix;
     Scaled {
-        matrix: Matrix {
-            a: m.a.absolute(),
-            b: m.b.absolute(),
-            c: m.c.absolute(),
-            d: m.d.absolute(),
-        },
+        matrix: s.matrix.absolute(),
         exponent: s.exponent,
     }
 }
@@ -148,6 +142,8 @@ pub(crate) struct Gradient<T> {
     /// Σ tr |S_j||M_j||P_j| over factors: change of D by a relative change of one in every entry, of a factor or of
     /// a product on the way; over duals with the same of D′
     pub rounding: T,
+    /// Σ tr |K_j||M_j|: the same of factors alone, the least of it
+    pub rounding_of_factors: f64,
     pub exponent: i64,
 }
 
@@ -176,6 +172,7 @@ pub(crate) fn gradient<T: Scalar>(ready: &Ready, energy: T, nodes: &Quadrature) 
         energy,
         energy_slope: zero,
         rounding: zero,
+        rounding_of_factors: 0.0,
         exponent,
     };
     for factor in &list {
@@ -183,6 +180,7 @@ pub(crate) fn gradient<T: Scalar>(ready: &Ready, energy: T, nodes: &Quadrature) 
         let around = factor.rest.matrix.shifted(shift);
         let shift = factor.way.exponent + factor.scaled.exponent - exponent;
         let size = magnitudes(&factor.scaled).matrix;
+        result.rounding_of_factors += trace_of(&size, &around.absolute()).leading();
         result.rounding = result.rounding + trace_of(&size, &factor.way.matrix.shifted(shift));
         match &ready.elements[factor.element] {
             Element::Delta { .. } => {
