@@ -20,6 +20,7 @@ use super::scalar::{Dual, Scalar, power_of_two};
 use super::search::is_positive;
 use super::sensitivity::{PieceSensitivity, difference, ratio, sum, width_slopes};
 use super::solve::{Band, BandEdge, Bands, Gap, NARROW_WIDTH, Raw, Wave};
+use super::sweep::product;
 
 const UNIT: f64 = f64::EPSILON / 2.0;
 
@@ -33,6 +34,8 @@ const FAR: f64 = 1e-7;
 const HIDDEN: f64 = 1e-3;
 /// Means by both ways agree to this share, where both hold.
 const CONFIRMED: f64 = 1e-2;
+/// D follows its parabola to this share there.
+const PARABOLIC: f64 = 0.1;
 /// Rounding carried by 1/D′ above which a level is taken for one of a doublet, relative to the spacing of bands.
 const NEAR_EDGE: f64 = 1e-10;
 
@@ -187,8 +190,18 @@ pub(crate) fn confirmed(ready: &Ready, energy: f64, found: Pair) -> Pair {
         let at = gradient(ready, Dual::variable(e), &COARSE);
         let slope = at.energy_slope;
         let means = ratio(&at, |p: Dual<f64>| -0.5 * p.value / slope.value);
-        (means, at.rounding.value / slope.slope.abs())
+        // D − 2s by the parabola, as swept: else there is no doublet here
+        let whole = product(ready, Double::new(e));
+        let two = Double::new(-2.0 * slope.slope.signum()).shifted(-whole.exponent);
+        let height = (whole.matrix.a + whole.matrix.d - two).leading();
+        let parabola = 0.5 * slope.slope * step * step;
+        let share = height * power_of_two(whole.exponent - at.exponent) / parabola;
+        let found = (share - 1.0).abs() < PARABOLIC;
+        (means, at.rounding.value / slope.slope.abs(), found)
     });
+    if !(below.2 && above.2) {
+        return found;
+    }
     let means = sum(&below.0, &above.0);
     let size = spread(ready, &means).0;
     let apart = spread(ready, &difference(&found.means, &means)).0;
