@@ -665,10 +665,11 @@ fn contradictions(found: &Bands, other: &Bands) -> Vec<String> {
             ("mass of the top", a.top.mass, b.top.mass),
         ];
         for (what, x, y) in pairs {
-            if let (Some(x), Some(y)) = (x, y)
-                && !((x.value - y.value).abs() <= x.error + y.error)
-            {
-                list.push(format!("{what} {n}: {x:?} and {y:?}"));
+            if let (Some(x), Some(y)) = (x, y) {
+                let agree = (x.value - y.value).abs() <= x.error + y.error;
+                if !agree {
+                    list.push(format!("{what} {n}: {x:?} and {y:?}"));
+                }
             }
         }
     }
