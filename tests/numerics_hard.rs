@@ -591,3 +591,129 @@ fn meshes_follow_kinks_jumps_and_steep_walls() {
         assert!((x - y).abs() < 1e-10, "{x} {y}");
     }
 }
+
+/// Marsaglia's xorshift (J. Stat. Softw. 8, 14 (2003)); uniform in [0, 1).
+struct Random(u64);
+
+impl Random {
+    fn next(&mut self) -> f64 {
+        self.0 ^= self.0 << 13;
+        self.0 ^= self.0 >> 7;
+        self.0 ^= self.0 << 17;
+        (self.0 >> 11) as f64 / (1u64 << 53) as f64
+    }
+}
+
+/// A piece of any kind: masses up to a thousand apart, walls up to hundreds of decay lengths, spikes of both signs.
+fn any_piece(random: &mut Random, offset: f64, thick: f64) -> Piece {
+    let mass = 10f64.powf(3.0 * random.next() - 1.5);
+    let length = if random.next() < 0.1 {
+        thick
+    } else {
+        0.05 + random.next()
+    };
+    let potential = offset + 10f64.powf(3.0 * random.next()) * (random.next() - 0.3);
+    match (4.0 * random.next()) as usize {
+        0 => Piece::Delta {
+            strength: 10f64.powf(2.0 * random.next() - 1.0) * (random.next() - 0.4),
+        },
+        1 => Piece::Ramp {
+            length: length.min(3.0),
+            potential: [potential, offset + 30.0 * random.next()],
+            mass: [
+                Mass::constant(mass),
+                Mass::constant(mass * (0.3 + random.next())),
+            ],
+        },
+        _ => flat(length, potential, mass),
+    }
+}
+
+fn mirrored(pieces: &[Piece]) -> Vec<Piece> {
+    let mut pieces = pieces.to_vec();
+    pieces.reverse();
+    for piece in &mut pieces {
+        if let Piece::Ramp {
+            potential, mass, ..
+        } = piece
+        {
+            potential.reverse();
+            mass.reverse();
+        }
+    }
+    pieces
+}
+
+/// Trials of a random test, times what the environment's `TRIALS` asks for in a longer hunt.
+fn trials(committed: usize) -> usize {
+    let times = std::env::var("TRIALS")
+        .ok()
+        .and_then(|times| times.parse().ok());
+    committed * times.unwrap_or(1)
+}
+
+/// What two solutions of one spectrum, or a fold, contradict each other in.
+fn contradictions(found: &Bands, other: &Bands) -> Vec<String> {
+    let mut list = Vec::new();
+    for (n, (a, b)) in found.bands.iter().zip(&other.bands).enumerate() {
+        let pairs = [
+            ("bottom", Some(a.bottom.energy), Some(b.bottom.energy)),
+            ("top", Some(a.top.energy), Some(b.top.energy)),
+            ("width", Some(a.width), Some(b.width)),
+            ("gap", Some(found.gaps[n].size), Some(other.gaps[n].size)),
+            ("mass of the bottom", a.bottom.mass, b.bottom.mass),
+            ("mass of the top", a.top.mass, b.top.mass),
+        ];
+        for (what, x, y) in pairs {
+            if let (Some(x), Some(y)) = (x, y) {
+                let agree = (x.value - y.value).abs() <= x.error + y.error;
+                if !agree {
+                    list.push(format!("{what} {n}: {x:?} and {y:?}"));
+                }
+            }
+        }
+    }
+    list
+}
+
+/// A random mixture written twice in one cell has the same spectrum from any origin and in either direction, and each
+/// of its bands in two halves that touch: found so within the bounds, walls of hundreds of decay lengths or not.
+#[test]
+fn doubled_random_mixtures_fold_and_do_not_depend_on_origin_or_direction() {
+    let mut random = Random(0x7f4a_7c15_9e37_79b9);
+    let mut doubled = 0;
+    let mut wrong = Vec::new();
+    for trial in 0..trials(400) {
+        let offset = [0.0, 1000.0, -1000.0][(3.0 * random.next()) as usize % 3];
+        let thick = [4.0, 15.0, 60.0][(3.0 * random.next()) as usize % 3];
+        let count = 2 + (random.next() * 5.0) as usize;
+        let mut pieces: Vec<Piece> = (0..count)
+            .map(|_| any_piece(&mut random, offset, thick))
+            .collect();
+        pieces.push(flat(0.5 + random.next(), offset, 1.0));
+        let repeated = random.next() < 0.25;
+        if repeated {
+            pieces = [pieces.clone(), pieces].concat();
+        }
+        let mut turned = pieces.clone();
+        turned.rotate_left(1 + (random.next() * 2.0) as usize);
+        if !repeated {
+            continue;
+        }
+        doubled += 1;
+        let mirror = mirrored(&pieces);
+        let found = bands(&Cell { pieces }, 5);
+        for (n, gap) in found.gaps.iter().enumerate().step_by(2) {
+            if !(gap.closed && gap.size.value == 0.0) {
+                wrong.push(format!("{trial}: open at the fold, gap {n}: {gap:?}"));
+            }
+        }
+        for (name, other) in [("turned", turned), ("mirrored", mirror)] {
+            let other = bands(&Cell { pieces: other }, 5);
+            let found = contradictions(&found, &other);
+            wrong.extend(found.iter().map(|what| format!("{trial} {name}: {what}")));
+        }
+    }
+    println!("{doubled} doubled cells");
+    assert!(doubled > 50 && wrong.is_empty(), "{wrong:#?}");
+}

@@ -158,6 +158,9 @@ impl Scalar for Double {
     fn magnitude(self) -> f64 {
         self.high.abs()
     }
+    fn absolute(self) -> Self {
+        if self.high < 0.0 { -self } else { self }
+    }
     #[inline(always)]
     fn times(self, factor: f64) -> Self {
         let (p, e) = two_product(self.high, factor);

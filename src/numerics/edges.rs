@@ -1,6 +1,6 @@
 //! Edges: the last steps on each, and the pair around a narrow gap.
 //!
-//! An edge found in `f64` takes one Newton step in double-double. Around a gap so narrow that s D − 2 hardly rises in it both
+//! An edge found in `f64` takes a Newton step in double-double, or more where thick walls left it far off. Around a gap so narrow that s D − 2 hardly rises in it both
 //! edges come from the place where s D is greatest, E* ± √(2 (s D* − 2)/|D″|), then by Newton on each.
 
 use super::budget::Meter;
@@ -9,6 +9,12 @@ use super::double::Double;
 use super::scalar::{Scalar, power_of_two};
 use super::search::{Finder, Target};
 use super::sweep::{Reading, read};
+
+/// |s D − 2| below which one Newton step leaves nothing of an edge, nor of D′ there: its square, even over the
+/// 1e-4 that D rises in the narrowest gap between edges found apart, is below a unit.
+const LINEAR: f64 = 1e-12;
+/// Newton's steps on an edge from `f64`: each doubles the digits.
+const MOST_STEPS: usize = 4;
 
 /// An edge as found.
 #[derive(Clone, Copy)]
@@ -32,7 +38,7 @@ pub(crate) struct RawGap {
     pub narrow: bool,
 }
 
-/// One Newton step in double-double on an edge found in `f64`.
+/// Newton's steps in double-double on an edge found in `f64`; where walls are thin, one.
 pub(crate) fn settle<T: Scalar>(
     ready: &Ready,
     meter: &Meter,
@@ -52,24 +58,37 @@ pub(crate) fn settle<T: Scalar>(
         positive: target.positive,
         ..fine
     };
-    let start = energy.to_double();
+    let mut start = energy.to_double();
+    for _ in 0..MOST_STEPS {
+        let reading = read(ready, start, meter)?;
+        let (residual, slope, _) = fine.residual(&reading);
+        let step = -(residual / slope);
+        let height = residual.leading().abs() * power_of_two(reading.exponent);
+        // a step that is no number ends here too
+        if height.is_nan() || height <= LINEAR || !step.leading().is_finite() {
+            return Ok(RawEdge {
+                offset: step.leading(),
+                ..raw_edge(&fine, start + step, &reading)
+            });
+        }
+        start = start + step;
+    }
     let reading = read(ready, start, meter)?;
-    let (residual, slope, _) = fine.residual(&reading);
-    let step = -(residual / slope);
-    Ok(RawEdge {
-        offset: step.leading(),
-        ..raw_edge(&fine, start + step, &reading)
-    })
+    Ok(raw_edge(&fine, start, &reading))
 }
 
 /// An edge from the reading at or next to it; the noise of each factor adds up.
 fn raw_edge<T: Scalar>(target: &Target<T>, energy: T, reading: &Reading<T>) -> RawEdge {
-    let (_, slope, noise) = target.residual(reading);
+    let (residual, slope, noise) = target.residual(reading);
     let noise = noise / slope.leading().abs() * reading.weight;
+    // what a step below the resolution of energies leaves of D′ still shows in a narrow band
+    let step = -(residual / slope).leading();
+    let moved = (energy - reading.energy).leading();
+    let near = step.abs() <= 256.0 * T::UNIT * energy.leading().abs();
     RawEdge {
         energy: energy.to_double(),
         slope: reading.slope(),
-        offset: 0.0,
+        offset: if near { step } else { moved },
         noise: if noise.is_finite() { noise } else { 0.0 },
     }
 }

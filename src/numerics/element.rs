@@ -61,6 +61,16 @@ impl<T: Scalar> Matrix<T> {
         }
     }
 
+    /// Entry by entry, derivatives too.
+    pub fn absolute(&self) -> Matrix<T> {
+        Matrix {
+            a: self.a.absolute(),
+            b: self.b.absolute(),
+            c: self.c.absolute(),
+            d: self.d.absolute(),
+        }
+    }
+
     pub fn magnitude(&self) -> f64 {
         self.a
             .magnitude()

@@ -70,6 +70,8 @@ pub(crate) struct Factor<T> {
     pub scaled: Scaled<T>,
     /// K: the rest of the cell, cyclically
     pub rest: Scaled<T>,
+    /// |P||S|: what it is made of without its cancellation
+    pub way: Scaled<T>,
 }
 
 /// All factors of a cell at an energy, each with the rest of the cell around it.
@@ -92,6 +94,7 @@ pub(crate) fn cyclic_factors<T: Scalar>(ready: &Ready, energy: T) -> Vec<Factor<
                 part: (part, parts),
                 scaled,
                 rest: before,
+                way: magnitudes(&before),
             });
             before = scaled.product(&before);
             part += 1;
@@ -100,9 +103,18 @@ pub(crate) fn cyclic_factors<T: Scalar>(ready: &Ready, energy: T) -> Vec<Factor<
     let mut after = Scaled::identity();
     for factor in list.iter_mut().rev() {
         factor.rest = factor.rest.product(&after);
+        factor.way = factor.way.product(&magnitudes(&after));
         after = after.product(&factor.scaled);
     }
     list
+}
+
+/// Entry by entry, derivatives too: products of such bound what rounding gathers.
+fn magnitudes<T: Scalar>(s: &Scaled<T>) -> Scaled<T> {
+    Scaled {
+        matrix: s.matrix.absolute(),
+        exponent: s.exponent,
+    }
 }
 
 /// tr(X Y)
@@ -127,8 +139,11 @@ pub(crate) struct Gradient<T> {
     pub energy: T,
     /// D′
     pub energy_slope: T,
-    /// Σ |K||M_j| over factors: change of D by a relative change of one in every entry
-    pub rounding: f64,
+    /// Σ tr |S_j||M_j||P_j| over factors: change of D by a relative change of one in every entry, of a factor or of
+    /// a product on the way; over duals with the same of D′
+    pub rounding: T,
+    /// Σ tr |K_j||M_j|: the same of factors alone, the least of it
+    pub rounding_of_factors: f64,
     pub exponent: i64,
 }
 
@@ -156,13 +171,17 @@ pub(crate) fn gradient<T: Scalar>(ready: &Ready, energy: T, nodes: &Quadrature) 
         pieces: Vec::with_capacity(ready.elements.len()),
         energy,
         energy_slope: zero,
-        rounding: 0.0,
+        rounding: zero,
+        rounding_of_factors: 0.0,
         exponent,
     };
     for factor in &list {
         let shift = factor.rest.exponent + factor.scaled.exponent - exponent;
         let around = factor.rest.matrix.shifted(shift);
-        result.rounding += absolute(&factor.scaled.matrix, &around);
+        let shift = factor.way.exponent + factor.scaled.exponent - exponent;
+        let size = magnitudes(&factor.scaled).matrix;
+        result.rounding_of_factors += trace_of(&size, &around.absolute()).leading();
+        result.rounding = result.rounding + trace_of(&size, &factor.way.matrix.shifted(shift));
         match &ready.elements[factor.element] {
             Element::Delta { .. } => {
                 result.pieces.push(PieceSlope {
@@ -203,12 +222,6 @@ pub(crate) fn gradient<T: Scalar>(ready: &Ready, energy: T, nodes: &Quadrature) 
         }
     }
     result
-}
-
-/// Σ |M_ab| |K_ba|
-fn absolute<T: Scalar>(m: &Matrix<T>, k: &Matrix<T>) -> f64 {
-    let size = |x: T| x.leading().abs();
-    size(m.a) * size(k.a) + size(m.b) * size(k.c) + size(m.c) * size(k.b) + size(m.d) * size(k.d)
 }
 
 /// Constant layer: ∂M by V, m, l at fixed E.

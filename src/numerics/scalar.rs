@@ -26,6 +26,8 @@ pub(crate) trait Scalar:
     fn to_double(self) -> super::double::Double;
     /// Largest magnitude among all parts, derivatives included.
     fn magnitude(self) -> f64;
+    /// The magnitude of each part by itself, derivatives included.
+    fn absolute(self) -> Self;
     /// Product with an `f64`.
     fn times(self, factor: f64) -> Self;
     /// A `Double` rounded to a real.
@@ -96,6 +98,9 @@ impl Scalar for f64 {
         super::double::Double::new(self)
     }
     fn magnitude(self) -> f64 {
+        self.abs()
+    }
+    fn absolute(self) -> Self {
         self.abs()
     }
     fn times(self, factor: f64) -> Self {
@@ -221,6 +226,12 @@ impl<S: Scalar> Scalar for Dual<S> {
     }
     fn magnitude(self) -> f64 {
         self.value.magnitude().max(self.slope.magnitude())
+    }
+    fn absolute(self) -> Self {
+        Dual {
+            value: self.value.absolute(),
+            slope: self.slope.absolute(),
+        }
     }
     fn times(self, factor: f64) -> Self {
         Dual {

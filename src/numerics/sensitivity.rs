@@ -239,23 +239,33 @@ pub(crate) fn ratio<T: Scalar>(
 
 /// Entry by entry.
 pub(crate) fn difference(a: &[PieceSensitivity], b: &[PieceSensitivity]) -> Vec<PieceSensitivity> {
+    combined(a, b, |x, y| x - y)
+}
+
+/// Entry by entry.
+pub(crate) fn sum(a: &[PieceSensitivity], b: &[PieceSensitivity]) -> Vec<PieceSensitivity> {
+    combined(a, b, |x, y| x + y)
+}
+
+fn combined(
+    a: &[PieceSensitivity],
+    b: &[PieceSensitivity],
+    join: impl Fn(f64, f64) -> f64,
+) -> Vec<PieceSensitivity> {
     let mass = |x: Mass, y: Mass| Mass {
-        value: x.value - y.value,
-        slope: x.slope - y.slope,
+        value: join(x.value, y.value),
+        slope: join(x.slope, y.slope),
     };
     let piece = |(x, y): (&PieceSensitivity, &PieceSensitivity)| PieceSensitivity {
-        length: x.length - y.length,
-        potential: [
-            x.potential[0] - y.potential[0],
-            x.potential[1] - y.potential[1],
-        ],
-        mass: [mass(x.mass[0], y.mass[0]), mass(x.mass[1], y.mass[1])],
-        strength: x.strength - y.strength,
+        length: join(x.length, y.length),
+        potential: [0, 1].map(|end| join(x.potential[end], y.potential[end])),
+        mass: [0, 1].map(|end| mass(x.mass[end], y.mass[end])),
+        strength: join(x.strength, y.strength),
         samples: x
             .samples
             .iter()
             .zip(&y.samples)
-            .map(|(p, q)| p - q)
+            .map(|(p, q)| join(*p, *q))
             .collect(),
     };
     a.iter().zip(b).map(piece).collect()

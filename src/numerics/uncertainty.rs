@@ -4,7 +4,7 @@
 //! * inputs: every number handed in is known to one unit in the last place, relative 2⁻⁵²; its effect is
 //!   |p ∂/∂p| from the exact gradient;
 //! * rounding of the sweep, for what was not finished in double-double: an entry of a factor M_j is wrong by a few units, which
-//!   moves D by tr(δM_j K_j) ≤ units · Σ |M_j||K_j|, carried to the energy by 1/|D′|; near a closing gap, where D′
+//!   moves D by at most units · Σ tr |S_j||M_j||P_j|, carried to the energy by 1/|D′|; near a closing gap, where D′
 //!   vanishes, through the doublet instead (`pair`);
 //! * the mesh: |δV| of each smooth step times its share of |ψ|²;
 //! * the last rounding.
@@ -19,8 +19,9 @@ use super::gradient::{COARSE, Gradient, gradient};
 use super::pair::{Pair, pair};
 use super::scalar::{Dual, Scalar, power_of_two};
 use super::search::is_positive;
-use super::sensitivity::{PieceSensitivity, difference, ratio, width_slopes};
+use super::sensitivity::{PieceSensitivity, difference, ratio, sum, width_slopes};
 use super::solve::{Band, BandEdge, Bands, Gap, NARROW_WIDTH, Raw, Wave};
+use super::sweep::product;
 
 const UNIT: f64 = f64::EPSILON / 2.0;
 
@@ -28,6 +29,14 @@ const UNIT: f64 = f64::EPSILON / 2.0;
 const SAME_IN_SINGLE: f64 = 1e-14;
 /// A gap above this share of the scale is open without further question.
 const OPEN: f64 = 1e-6;
+/// How far off, in spacings of bands, a doublet is looked at as one double level.
+const FAR: f64 = 1e-7;
+/// A gap this share of that distance hides from there.
+const HIDDEN: f64 = 1e-3;
+/// Means by both ways agree to this share, where both hold.
+const CONFIRMED: f64 = 1e-2;
+/// D follows its parabola to this share there.
+const PARABOLIC: f64 = 0.1;
 /// Rounding carried by 1/D′ above which a level is taken for one of a doublet, relative to the spacing of bands.
 const NEAR_EDGE: f64 = 1e-10;
 
@@ -160,7 +169,53 @@ fn doublet(ready: &Ready, raw: &Raw, band: usize) -> Option<Pair> {
         pair(ready, middle.round(), &COARSE)
     };
     found.alone = unresolved;
+    let far = far(ready, middle.round());
+    if raw.exact && size < HIDDEN * far {
+        found = confirmed(ready, middle.round(), found);
+    }
     Some(found)
+}
+
+/// How far from a doublet it is one double level.
+fn far(ready: &Ready, energy: f64) -> f64 {
+    FAR * ready.kinetic_scale() + 1e-10 * energy.abs()
+}
+
+/// A doublet's response, or bounds on it where it was lost. Behind walls so thick that P⁻¹ … P has cancelled beyond the
+/// arithmetic q_E is rounding, and everything divided by it too small. From afar D = 2s + (E − E₁)(E − E₂) D″/2 with
+/// E − E₁ ≈ E − E₂, so that −∂D/∂p/D′ is the mean of both levels' dE/dp, whatever became of the doublet; no
+/// level alone moves by more than twice that by a perturbation of one sign; and D wrong by δD parts the levels by at most 2√(2 δD/|D″|).
+pub(crate) fn confirmed(ready: &Ready, energy: f64, found: Pair) -> Pair {
+    let step = far(ready, energy);
+    let [below, above] = [energy - step, energy + step].map(|e| {
+        let at = gradient(ready, Dual::variable(e), &COARSE);
+        let slope = at.energy_slope;
+        let means = ratio(&at, |p: Dual<f64>| -0.5 * p.value / slope.value);
+        // D − 2s by the parabola, as swept: else there is no doublet here
+        let whole = product(ready, Double::new(e));
+        let two = Double::new(-2.0 * slope.slope.signum()).shifted(-whole.exponent);
+        let height = (whole.matrix.a + whole.matrix.d - two).leading();
+        let parabola = 0.5 * slope.slope * step * step;
+        let share = height * power_of_two(whole.exponent - at.exponent) / parabola;
+        let found = (share - 1.0).abs() < PARABOLIC;
+        (means, at.rounding.value / slope.slope.abs(), found)
+    });
+    if !(below.2 && above.2) {
+        return found;
+    }
+    let means = sum(&below.0, &above.0);
+    let size = spread(ready, &means).0;
+    let apart = spread(ready, &difference(&found.means, &means)).0;
+    if apart <= CONFIRMED * size || !size.is_finite() {
+        return found;
+    }
+    let open = 2.0 * (2.0 * units(true) * below.1.max(above.1)).sqrt();
+    Pair {
+        rates: sum(&means, &means),
+        means,
+        rounding: open / units(true),
+        alone: found.alone,
+    }
 }
 
 /// Is the gap above `band` indistinguishable from zero?
@@ -223,7 +278,7 @@ fn edge_bound(
     } else {
         raw.slope * power_of_two(-found.exponent)
     };
-    let mut rounding = units(exact) * found.rounding / found_slope.abs();
+    let mut rounding = units(exact) * found.rounding.value / found_slope.abs();
     let mut error = energy.abs() * UNIT + f64::EPSILON * inputs + mesh + rounding;
     if let Some(found) = near {
         let (near, own) = pair_error(ready, energy, found, exact);
@@ -247,6 +302,7 @@ fn edge_bound(
     let mass_error = f64::EPSILON * (mass_inputs + 2.0 * mass.abs())
         + mass_mesh
         + curvature.abs() * drift * if exact { 1.0 } else { 2.0 }
+        + units(exact) * found.rounding.slope * scale
         + UNIT * own * mass.abs();
     EdgeBound {
         error,
