@@ -23,8 +23,8 @@ pub(crate) fn borrow(bands: &mut [Band], gaps: &mut [Gap]) {
         return;
     }
     for (index, band) in bands.iter_mut().enumerate() {
-        take(&mut band.bottom.energy, between(&edges, 2 * index));
-        take(&mut band.top.energy, between(&edges, 2 * index + 1));
+        place(&mut band.bottom.energy, &edges, 2 * index);
+        place(&mut band.top.energy, &edges, 2 * index + 1);
         let known = apart(&band.width, &band.bottom.energy, &band.top.energy);
         take(&mut band.width, known);
     }
@@ -37,20 +37,19 @@ pub(crate) fn borrow(bands: &mut [Band], gaps: &mut [Gap]) {
     }
 }
 
-/// The bound on an edge by the known ones below and above.
-fn between(edges: &[Bounded], index: usize) -> f64 {
+/// Puts an edge without a bound between the known ones below and above, if it is not there already.
+fn place(edge: &mut Bounded, edges: &[Bounded], index: usize) {
     let known = |edge: &&Bounded| edge.error.is_finite();
     let below = edges[..index].iter().rev().find(known);
     let above = edges[index + 1..].iter().find(known);
-    let value = edges[index].value;
-    match (below, above) {
-        (Some(below), Some(above)) => {
-            let down = value - (below.value - below.error);
-            let up = above.value + above.error - value;
-            down.abs().max(up.abs())
-        }
-        _ => f64::INFINITY,
+    let (Some(below), Some(above), false) = (below, above, known(&&*edge)) else {
+        return;
+    };
+    let (lowest, highest) = (below.value - below.error, above.value + above.error);
+    if !(lowest..=highest).contains(&edge.value) {
+        edge.value = 0.5 * (lowest + highest);
     }
+    edge.error = (edge.value - lowest).max(highest - edge.value);
 }
 
 /// The bound on a distance by the edges that it lies between.
