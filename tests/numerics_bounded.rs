@@ -190,7 +190,6 @@ fn what_is_quickly_solved_or_refused_is() {
 }
 
 #[test]
-#[cfg_attr(debug_assertions, ignore = "takes minutes without optimisation")]
 fn what_takes_long_ends_in_time() {
     check(true);
 }
@@ -256,7 +255,6 @@ fn check(long: bool) {
 
 /// Targets too: far hops, and tolerances on cells so large that few corners can be solved.
 #[test]
-#[cfg_attr(debug_assertions, ignore = "takes minutes without optimisation")]
 fn no_target_runs_away() {
     let mut many = String::from("  mass 0.067 me\n");
     for i in 0..12 {

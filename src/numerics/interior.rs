@@ -114,23 +114,17 @@ impl<T: Scalar> Finder<'_, T> {
         Err(SolveError::NoBracket)
     }
 
-    /// log₂ of the rounding of D at a reading, where it may be more than the last matrix shows; `None` elsewhere. Behind several
-    /// thick walls the product grows on the way to e^{Σκl} and comes back in a band: the rounding of the way stays, and
-    /// only the factors with the rest around each tell it.
-    /// `whole`: of all products on the way at their worst, or else of the factors alone.
-    pub fn doubt(&self, reading: &Reading<T>, whole: bool) -> Result<Option<f64>, SolveError> {
+    /// log₂ of the rounding of D at a reading, where it may be more than the last matrix shows; `None` elsewhere. Behind
+    /// several thick walls the product grows on the way to e^{Σκl} and comes back in a band: the rounding of the way
+    /// stays, and only the factors with the rest around each tell it.
+    pub fn doubt(&self, reading: &Reading<T>) -> Result<Option<f64>, SolveError> {
         let energy = reading.energy.leading();
         if self.ready.decay(energy) + T::UNIT.ln() < TRUSTED.ln() {
             return Ok(None);
         }
         self.meter.sweep::<f64>(self.ready, energy, GRADIENT)?;
         let around = gradient(self.ready, energy, &COARSE);
-        let rounding = if whole {
-            around.rounding
-        } else {
-            around.rounding_of_factors
-        };
-        let doubt = (units(T::UNIT < f64::UNIT) * rounding).log2();
+        let doubt = (units(T::UNIT < f64::UNIT) * around.rounding_of_factors).log2();
         Ok(Some(doubt + around.exponent as f64))
     }
 
@@ -140,7 +134,7 @@ impl<T: Scalar> Finder<'_, T> {
             return Ok(true);
         }
         Ok(self
-            .doubt(reading, false)?
+            .doubt(reading)?
             .is_none_or(|doubt| doubt < TRUSTED.log2()))
     }
 

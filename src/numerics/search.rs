@@ -200,9 +200,7 @@ impl<'a, T: Scalar> Finder<'a, T> {
             return Ok(false);
         }
         let excess = reading.excess(positive).0.leading().log2() + reading.exponent as f64;
-        let doubt = self
-            .doubt(reading, false)?
-            .filter(|doubt| doubt.is_finite());
+        let doubt = self.doubt(reading)?.filter(|doubt| doubt.is_finite());
         Ok(doubt.is_none_or(|doubt| excess > doubt + 2.0))
     }
 
