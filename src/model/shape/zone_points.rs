@@ -1,10 +1,12 @@
 //! Names of the points of the zone.
 //!
 //! Three dimensions: Setyawan and Curtarolo, Comput. Mater. Sci. 49, 299 (2010),
-//! tables 2 to 7 and 11 (from memory; checked by the length of their wave vectors),
-//! written here in fractions of the *conventional* reciprocal vectors, so that one
-//! table serves each family. Two dimensions: common practice. Kinds whose points depend
-//! on their ratios have only their centre here.
+//! from memory; checked by the length of their wave vectors, and by what twice or four
+//! times they are. They are written here in fractions of the *conventional* reciprocal
+//! vectors, so that one table serves each family. Points that move with the ratios of a
+//! cell are left out; `Z` of `body-tetragonal` is the paper's where c > a, and its `M`
+//! elsewhere. The unique axis of `monoclinic` is the second here, the first there.
+//! Two dimensions: common practice; `oblique` and `centred-rectangular` have no names.
 
 use super::centring::LatticeKind;
 
@@ -22,6 +24,13 @@ fn runs(kind: &LatticeKind) -> &'static [&'static str] {
         ("bcc", _) => &["centre H N centre P H", "P N"],
         ("tetragonal", _) => &["centre X M centre Z R A Z", "X R", "M A"],
         ("orthorhombic", _) => &["centre X S Y centre Z U R T Z", "Y T", "U X", "S R"],
+        ("body-tetragonal", _) => &["centre X P N centre Z"],
+        ("rhombohedral", _) => &["L centre Z F centre"],
+        ("base-orthorhombic", _) => &["centre S R Z centre Y T"],
+        ("body-orthorhombic", _) => &["Z centre S W R centre T W"],
+        ("face-orthorhombic", _) => &["centre Y T Z centre L"],
+        ("monoclinic", _) => &["centre X A Z centre Y C E D"],
+        ("triclinic", _) => &["X centre Y", "L centre Z", "N centre M", "R centre"],
         _ => &[],
     }
 }
@@ -114,6 +123,56 @@ const HEXAGONAL: Points = &[
     ("H", [THIRD, THIRD, HALF]),
 ];
 
+const BODY_TETRAGONAL: Points = &[
+    ("N", [HALF, 0.0, HALF]),
+    ("P", [HALF, HALF, HALF]),
+    ("X", [HALF, HALF, 0.0]),
+    ("Z", [0.0, 0.0, 1.0]),
+];
+const RHOMBOHEDRAL: Points = &[
+    ("F", [HALF, HALF, 0.0]),
+    ("L", [HALF, 0.0, 0.0]),
+    ("Z", [HALF, HALF, HALF]),
+];
+const BASE_ORTHORHOMBIC: Points = &[
+    ("R", [HALF, HALF, HALF]),
+    ("S", [HALF, HALF, 0.0]),
+    ("T", [0.0, 1.0, HALF]),
+    ("Y", [0.0, 1.0, 0.0]),
+    ("Z", [0.0, 0.0, HALF]),
+];
+const BODY_ORTHORHOMBIC: Points = &[
+    ("R", [HALF, 0.0, HALF]),
+    ("S", [0.0, HALF, HALF]),
+    ("T", [HALF, HALF, 0.0]),
+    ("W", [HALF, HALF, HALF]),
+    ("Z", [0.0, 0.0, 1.0]),
+];
+const FACE_ORTHORHOMBIC: Points = &[
+    ("L", [HALF, HALF, HALF]),
+    ("T", [1.0, 0.0, 0.0]),
+    ("Y", [0.0, 1.0, 0.0]),
+    ("Z", [0.0, 0.0, 1.0]),
+];
+const MONOCLINIC: Points = &[
+    ("A", [HALF, HALF, 0.0]),
+    ("C", [HALF, 0.0, HALF]),
+    ("D", [0.0, HALF, HALF]),
+    ("E", [HALF, HALF, HALF]),
+    ("X", [HALF, 0.0, 0.0]),
+    ("Y", [0.0, 0.0, HALF]),
+    ("Z", [0.0, HALF, 0.0]),
+];
+const TRICLINIC: Points = &[
+    ("X", [HALF, 0.0, 0.0]),
+    ("Y", [0.0, HALF, 0.0]),
+    ("Z", [0.0, 0.0, HALF]),
+    ("L", [HALF, HALF, 0.0]),
+    ("M", [0.0, HALF, HALF]),
+    ("N", [HALF, 0.0, HALF]),
+    ("R", [HALF, HALF, HALF]),
+];
+
 fn table(kind: &LatticeKind) -> Points {
     match (kind.word, kind.dimension) {
         ("chain", _) => CHAIN,
@@ -126,6 +185,13 @@ fn table(kind: &LatticeKind) -> Points {
         ("bcc", _) => BCC,
         ("tetragonal", _) => TETRAGONAL,
         ("orthorhombic", _) => ORTHORHOMBIC,
+        ("body-tetragonal", _) => BODY_TETRAGONAL,
+        ("rhombohedral", _) => RHOMBOHEDRAL,
+        ("base-orthorhombic", _) => BASE_ORTHORHOMBIC,
+        ("body-orthorhombic", _) => BODY_ORTHORHOMBIC,
+        ("face-orthorhombic", _) => FACE_ORTHORHOMBIC,
+        ("monoclinic", _) => MONOCLINIC,
+        ("triclinic", _) => TRICLINIC,
         _ => &[],
     }
 }
@@ -172,6 +238,13 @@ mod tests {
             ("bcc", true),
             ("tetragonal", true),
             ("orthorhombic", true),
+            ("body-tetragonal", true),
+            ("rhombohedral", true),
+            ("base-orthorhombic", true),
+            ("body-orthorhombic", true),
+            ("face-orthorhombic", true),
+            ("monoclinic", true),
+            ("triclinic", true),
         ] {
             let kind = lattice_kind(word, solid).expect("a kind of lattice");
             let path = zone_path(Some(kind), kind.dimension);
@@ -196,5 +269,34 @@ mod tests {
             .map(|(name, _)| name.as_str())
             .collect();
         assert_eq!(names, ["centre", "½ 0", "centre", "0 ½", "centre", "½ ½"]);
+    }
+
+    /// Time reversal leaves these points in place: twice each is a reciprocal vector. P and W are corners, four times.
+    #[test]
+    fn points_that_do_not_move_with_the_ratios_are_middles_or_corners() {
+        for word in [
+            "body-tetragonal",
+            "rhombohedral",
+            "base-orthorhombic",
+            "body-orthorhombic",
+            "face-orthorhombic",
+            "monoclinic",
+            "triclinic",
+        ] {
+            let points = zone_points(lattice_kind(word, true).expect("a kind of lattice"));
+            for (index, (name, point)) in points.iter().enumerate() {
+                let times = if matches!(*name, "P" | "W") { 4.0 } else { 2.0 };
+                let whole = |part: &f64| (times * part - (times * part).round()).abs() < 1e-12;
+                assert!(point.iter().all(whole), "{word} {name}: {point:?}");
+                let same = |other: &Vec<f64>| {
+                    point.iter().zip(other).all(|(one, other)| {
+                        let apart = one - other;
+                        (apart - apart.round()).abs() < 1e-12
+                    })
+                };
+                let twin = points.iter().skip(index + 1).find(|(_, other)| same(other));
+                assert_eq!(twin, None, "{word} {name}");
+            }
+        }
     }
 }
