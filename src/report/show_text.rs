@@ -97,6 +97,7 @@ pub fn cell(crystal: &Crystal, trade: &Trade) -> String {
         .map(|length| trade.tell_exact(*length, Dimension::LENGTH))
         .collect();
     match (crystal.dimension, crystal.lattice_kind.as_deref()) {
+        (_, Some(kind)) if told.is_empty() => kind.to_owned(),
         (1, _) => format!("period {}", told.join("")),
         (_, Some(kind)) => format!("{kind}, {}", told.join(" by ")),
         (0, None) => "no lattice".to_owned(),

@@ -46,7 +46,8 @@ fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
     let Some(crystal) = subject.crystal.filter(|crystal| crystal.dimension >= 2) else {
         return;
     };
-    if crystal.potential.waves.iter().all(|wave| wave.star) {
+    // Without a lattice nothing is equivalent.
+    if crystal.vectors.is_empty() || crystal.potential.waves.iter().all(|wave| wave.star) {
         return;
     }
     let operations = point_operations(&crystal.primitive_values());

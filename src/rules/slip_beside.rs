@@ -52,7 +52,7 @@ fn small_parts(crystal: &Crystal, stated: &[Stated]) -> Vec<Finding> {
         let message = format!(
             "`{}` is {} times smaller than the largest energy of this potential",
             number.text,
-            words::number(times, 2)
+            roughly(times)
         );
         let finding = meant_instead(stated.place, number, unit, message)?;
         Some(finding.related(
@@ -61,6 +61,12 @@ fn small_parts(crystal: &Crystal, stated: &[Stated]) -> Vec<Finding> {
         ))
     };
     odd.filter_map(slip).collect()
+}
+
+/// A large ratio to two digits.
+fn roughly(times: f64) -> String {
+    let step = 10f64.powf(times.abs().log10().floor() - 1.0);
+    words::number((times / step).round() * step, 2)
 }
 
 fn unit_of(stated: &Stated) -> Option<&str> {
@@ -118,7 +124,7 @@ fn long_cell(crystal: &Crystal, stated: &[Stated]) -> Option<Finding> {
     let message = format!(
         "in a cell of `{}` this potential is {} times the kinetic energy at the zone's edge",
         number.text,
-        words::number(depth.times, 2)
+        roughly(depth.times)
     );
     meant_instead(length.place, number, meant, message)
 }
