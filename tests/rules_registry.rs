@@ -304,7 +304,7 @@ fn messages_read_well() {
     }
 }
 
-/// Bounds of rounding are some ulp of what they belong to, not always the same: only their order is held.
+/// Bounds of rounding are some ulp of what they belong to, not always the same: their digits are left out.
 fn without_bounds(text: &str) -> String {
     let words = text.split(' ').map(|word| match word.split_once("e-1") {
         Some((digits, _)) if digits.parse::<f64>().is_ok() => "…e-1…",
