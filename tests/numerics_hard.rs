@@ -10,6 +10,7 @@
 mod reference;
 
 use crenate::numerics::{Bands, Budget, Cell, Mass, Mesh, Piece, SolveError, fermi, level, solve};
+use reference::mixtures::{Random, any_piece, mirrored, trials};
 use reference::{flat, smooth_cell};
 use std::f64::consts::PI;
 use std::sync::atomic::{AtomicUsize, Ordering};
@@ -590,66 +591,6 @@ fn meshes_follow_kinks_jumps_and_steep_walls() {
     {
         assert!((x - y).abs() < 1e-10, "{x} {y}");
     }
-}
-
-/// Marsaglia's xorshift (J. Stat. Softw. 8, 14 (2003)); uniform in [0, 1).
-struct Random(u64);
-
-impl Random {
-    fn next(&mut self) -> f64 {
-        self.0 ^= self.0 << 13;
-        self.0 ^= self.0 >> 7;
-        self.0 ^= self.0 << 17;
-        (self.0 >> 11) as f64 / (1u64 << 53) as f64
-    }
-}
-
-/// A piece of any kind: masses up to a thousand apart, walls up to hundreds of decay lengths, spikes of both signs.
-fn any_piece(random: &mut Random, offset: f64, thick: f64) -> Piece {
-    let mass = 10f64.powf(3.0 * random.next() - 1.5);
-    let length = if random.next() < 0.1 {
-        thick
-    } else {
-        0.05 + random.next()
-    };
-    let potential = offset + 10f64.powf(3.0 * random.next()) * (random.next() - 0.3);
-    match (4.0 * random.next()) as usize {
-        0 => Piece::Delta {
-            strength: 10f64.powf(2.0 * random.next() - 1.0) * (random.next() - 0.4),
-        },
-        1 => Piece::Ramp {
-            length: length.min(3.0),
-            potential: [potential, offset + 30.0 * random.next()],
-            mass: [
-                Mass::constant(mass),
-                Mass::constant(mass * (0.3 + random.next())),
-            ],
-        },
-        _ => flat(length, potential, mass),
-    }
-}
-
-fn mirrored(pieces: &[Piece]) -> Vec<Piece> {
-    let mut pieces = pieces.to_vec();
-    pieces.reverse();
-    for piece in &mut pieces {
-        if let Piece::Ramp {
-            potential, mass, ..
-        } = piece
-        {
-            potential.reverse();
-            mass.reverse();
-        }
-    }
-    pieces
-}
-
-/// Trials of a random test, times what the environment's `TRIALS` asks for in a longer hunt.
-fn trials(committed: usize) -> usize {
-    let times = std::env::var("TRIALS")
-        .ok()
-        .and_then(|times| times.parse().ok());
-    committed * times.unwrap_or(1)
 }
 
 /// What two solutions of one spectrum, or a fold, contradict each other in.

@@ -14,6 +14,7 @@ use crenate::numerics::{
     Budget, Cell, Mass, Piece, PieceSensitivity, Quantity, level, sensitivities, solve,
 };
 use nalgebra::{DMatrix, SymmetricEigen};
+use reference::mixtures::{Random, any_piece, mirrored, trials};
 use reference::{flat, number, random_cells, rows, smooth_cell};
 use std::f64::consts::PI;
 
@@ -259,18 +260,6 @@ fn a_closed_gap_opens_at_the_reported_rate() {
     );
 }
 
-/// A small generator (Marsaglia's xorshift, J. Stat. Softw. 8, 14 (2003)); uniform in [0, 1).
-struct Random(u64);
-
-impl Random {
-    fn next(&mut self) -> f64 {
-        self.0 ^= self.0 << 13;
-        self.0 ^= self.0 >> 7;
-        self.0 ^= self.0 << 17;
-        (self.0 >> 11) as f64 / (1u64 << 53) as f64
-    }
-}
-
 /// Levels of V = Σ c_j cos 2jx at k = 0 or the zone's edge in plane waves.
 fn plane_waves(coefficients: &[f64], edge: bool) -> Vec<f64> {
     let size = 24i32;
@@ -290,14 +279,6 @@ fn plane_waves(coefficients: &[f64], edge: bool) -> Vec<f64> {
         .collect();
     values.sort_by(f64::total_cmp);
     values
-}
-
-/// Trials of a random test, times what the environment's `TRIALS` asks for in a longer hunt.
-fn trials(committed: usize) -> usize {
-    let times = std::env::var("TRIALS")
-        .ok()
-        .and_then(|times| times.parse().ok());
-    committed * times.unwrap_or(1)
 }
 
 #[test]
@@ -406,46 +387,6 @@ fn random_layers_have_no_band_missed() {
     }
 }
 
-/// A piece of any kind: masses up to a thousand apart, walls up to hundreds of decay lengths, spikes of both signs.
-fn any_piece(random: &mut Random, offset: f64, thick: f64) -> Piece {
-    let mass = 10f64.powf(3.0 * random.next() - 1.5);
-    let length = if random.next() < 0.1 {
-        thick
-    } else {
-        0.05 + random.next()
-    };
-    let potential = offset + 10f64.powf(3.0 * random.next()) * (random.next() - 0.3);
-    match (4.0 * random.next()) as usize {
-        0 => Piece::Delta {
-            strength: 10f64.powf(2.0 * random.next() - 1.0) * (random.next() - 0.4),
-        },
-        1 => Piece::Ramp {
-            length: length.min(3.0),
-            potential: [potential, offset + 30.0 * random.next()],
-            mass: [
-                Mass::constant(mass),
-                Mass::constant(mass * (0.3 + random.next())),
-            ],
-        },
-        _ => flat(length, potential, mass),
-    }
-}
-
-fn mirrored(cell: &Cell) -> Cell {
-    let mut pieces = cell.pieces.clone();
-    pieces.reverse();
-    for piece in &mut pieces {
-        if let Piece::Ramp {
-            potential, mass, ..
-        } = piece
-        {
-            potential.reverse();
-            mass.reverse();
-        }
-    }
-    Cell { pieces }
-}
-
 /// A spectrum does not depend on where its cell begins, nor on the direction: found so within the bounds, in a bounded
 /// number of sweeps, for every kind of piece, all above or all below zero.
 #[test]
@@ -473,7 +414,12 @@ fn random_mixtures_do_not_depend_on_origin_or_direction() {
         sweeps = sweeps.max(found.sweeps as f64 / 5.0);
         for (name, other) in [
             ("turned", solved(&turned)),
-            ("mirrored", solved(&mirrored(&cell))),
+            (
+                "mirrored",
+                solved(&Cell {
+                    pieces: mirrored(&cell.pieces),
+                }),
+            ),
         ] {
             for (n, (a, b)) in found.bands.iter().zip(&other.bands).enumerate() {
                 let pairs = [

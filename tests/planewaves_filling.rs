@@ -7,7 +7,7 @@
 )]
 
 use crenate::numerics::planewaves::{
-    Accuracy, Budget, Decay, Error, Lattice, Potential, Waves, path, shapes,
+    Accuracy, Budget, Decay, Error, Lattice, Potential, Waves, shapes,
 };
 use nalgebra::Complex;
 use serde_json::Value;
@@ -321,21 +321,13 @@ fn paths_join_their_points() {
     let components = cosines(4.0, 2);
     let lattice = cubic(2, PI);
     let corners = [[0.0; 3], [0.5, 0.0, 0.0], [0.5, 0.5, 0.0], [0.0; 3]];
-    let found = path(
-        &lattice,
-        finite(&components, 2.0),
-        &corners,
-        20,
-        3,
-        &endless(),
-    )
-    .unwrap();
+    let waves = Waves::new(&lattice, finite(&components, 2.0)).unwrap();
+    let found = waves.along(&corners, 20, 3, &endless()).unwrap();
     assert_eq!(found.len(), 61);
     assert!((found[60].distance - (2.0 + 2f64.sqrt())).abs() < 1e-12);
     for (one, other) in found[0].energies.iter().zip(&found[60].energies) {
         assert!((one - other).abs() < 1e-9);
     }
-    let waves = Waves::new(&lattice, finite(&components, 2.0)).unwrap();
     let exact = waves
         .settled_at([0.5, 0.25, 0.0], 3, 1e-9, &endless())
         .unwrap();
@@ -343,14 +335,7 @@ fn paths_join_their_points() {
         assert!((found - exact.value).abs() < 4e-3, "{found} {exact:?}");
     }
     assert_eq!(
-        path(
-            &lattice,
-            finite(&components, 2.0),
-            &corners,
-            0,
-            3,
-            &endless()
-        ),
+        waves.along(&corners, 0, 3, &endless()),
         Err(Error::NotFinite)
     );
 }

@@ -7,6 +7,8 @@
     missing_docs
 )]
 
+pub mod mixtures;
+
 use crenate::numerics::{Bounded, Budget, Cell, Mass, Mesh, Piece};
 
 /// The comma-separated fields of every line but comments.

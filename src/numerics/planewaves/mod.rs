@@ -51,7 +51,7 @@ pub use basis::Waves;
 pub use fermi::Fermi;
 pub use lattice::Lattice;
 pub use levels::Levels;
-pub use path::{PathPoint, path};
+pub use path::PathPoint;
 pub use potential::{Budget, Decay, Potential};
 pub use samples::Samples;
 pub use settle::SettledLevels;

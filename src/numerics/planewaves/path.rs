@@ -2,7 +2,7 @@
 
 use super::basis::Waves;
 use super::levels::FARTHEST;
-use super::{Budget, Error, Lattice, Potential};
+use super::{Budget, Error};
 use rayon::prelude::*;
 
 /// One point of a path.
@@ -16,27 +16,12 @@ pub struct PathPoint {
     pub energies: Vec<f64>,
 }
 
-/// The lowest `bands` levels along the straight lines between these points, `per_segment` steps each, at the accuracy
-/// of a picture (about a thousandth of the largest |bᵢ|²).
-///
-/// # Errors
-/// `FlatLattice`, `NotFinite`, `BudgetSpent`, `Cancelled`.
-pub fn path(
-    lattice: &Lattice,
-    potential: Potential,
-    points: &[[f64; 3]],
-    per_segment: usize,
-    bands: usize,
-    budget: &Budget,
-) -> Result<Vec<PathPoint>, Error> {
-    Waves::new(lattice, potential)?.along(points, per_segment, bands, budget)
-}
-
 impl Waves<'_> {
-    /// See [`path`].
+    /// The lowest `bands` levels along the straight lines between these points, `per_segment` steps each, at the
+    /// accuracy of a picture (about a thousandth of the largest |bᵢ|²).
     ///
     /// # Errors
-    /// As [`path`].
+    /// `NotFinite`, `BudgetSpent`, `Cancelled`.
     pub fn along(
         &self,
         points: &[[f64; 3]],

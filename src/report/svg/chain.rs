@@ -6,12 +6,12 @@ use svg::node::element::path::Data;
 use svg::node::element::{Group, Path};
 
 use super::parts::{
-    BAND, BOTTOM, FAINT, HEIGHT, INK, Panel, TOP, energy_axis, head, line_between, rectangle,
-    sheet, stroke, text, ticks,
+    BAND, BOTTOM, EnergyAxis, FAINT, HEIGHT, INK, Panel, TOP, head, line_between, rectangle, sheet,
+    stroke, text, ticks,
 };
 use crate::bands::{Picture, Solution};
 use crate::model::{Crystal, Dimension};
-use crate::report::units::{self, Scale, Trade};
+use crate::report::units::{self, Trade};
 
 /// The panels.
 const CELLS: Panel = (84.0, 600.0);
@@ -35,9 +35,7 @@ struct Canvas<'a> {
     solution: &'a Solution,
     picture: &'a Picture,
     trade: Trade,
-    energy: Scale,
-    /// The energies at the bottom and the top of the panels, in joule.
-    window: (f64, f64),
+    energy: EnergyAxis,
 }
 
 impl<'a> Canvas<'a> {
@@ -67,20 +65,18 @@ impl<'a> Canvas<'a> {
         };
         let margin = 0.06 * (highest - lowest);
         let window = (lowest - margin, highest + 2.2 * margin);
-        let usable = window.1 > window.0 && picture.period > 0.0;
-        usable.then(|| Self {
+        let energy = EnergyAxis::new(&trade, window).filter(|_| picture.period > 0.0)?;
+        Some(Self {
             crystal,
             solution,
             picture,
             trade,
-            energy: trade.energy(window.0.abs().max(window.1.abs()) / 4.0),
-            window,
+            energy,
         })
     }
 
     fn y(&self, energy: f64) -> f64 {
-        let share = (energy - self.window.0) / (self.window.1 - self.window.0);
-        BOTTOM - share.clamp(-0.5, 1.5) * (BOTTOM - TOP)
+        self.energy.y(energy)
     }
 
     /// Two cells fill the left panel.
@@ -96,9 +92,7 @@ impl<'a> Canvas<'a> {
             .add(self.waves())
             .add(self.dispersion())
             .add(self.frames())
-            .add(energy_axis(CELLS.0, self.window, &self.energy, |energy| {
-                self.y(energy)
-            }))
+            .add(self.energy.marks(CELLS.0))
             .add(self.position_axis())
             .add(self.legend())
     }
@@ -186,7 +180,7 @@ impl<'a> Canvas<'a> {
 
     /// |ψ|² at the edges, standing on their energies.
     fn waves(&self) -> Group {
-        let inside = |energy: f64| energy > self.window.0 && energy < self.window.1;
+        let inside = |energy: f64| energy > self.energy.window.0 && energy < self.energy.window.1;
         let shown = || self.picture.waves.iter().filter(|wave| inside(wave.energy));
         let heights = shown().flat_map(|wave| wave.density.iter().map(|(_, density)| *density));
         let highest = heights.fold(0.0, f64::max);

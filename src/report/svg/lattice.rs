@@ -6,14 +6,14 @@ use svg::node::element::path::Data;
 use svg::node::element::{Circle, Group, Path};
 
 use super::parts::{
-    BAND, BOTTOM, FAINT, INK, Panel, TOP, energy_axis, head, line_between, rectangle, sheet,
-    stroke, text, ticks,
+    BAND, BOTTOM, EnergyAxis, FAINT, INK, Panel, TOP, head, line_between, rectangle, sheet, stroke,
+    text, ticks,
 };
 use crate::bands::{
     Band, Extremum, Gap, GapKind, LatticePicture, PathRun, Solution, class_word, gap_word,
 };
 use crate::model::Crystal;
-use crate::report::units::{self, Scale, Trade};
+use crate::report::units::{self, Trade};
 
 /// The panels.
 const PATH: Panel = (84.0, 690.0);
@@ -41,9 +41,7 @@ struct Canvas<'a> {
     solution: &'a Solution,
     picture: &'a LatticePicture,
     trade: Trade,
-    energy: Scale,
-    /// The energies at the bottom and the top of the panels, in joule.
-    window: (f64, f64),
+    energy: EnergyAxis,
     /// Where each run of the path begins and ends.
     runs: Vec<Panel>,
 }
@@ -60,25 +58,23 @@ impl<'a> Canvas<'a> {
             lowest - 0.04 * (picture.complete - lowest),
             picture.complete,
         );
-        let usable = window.1 > window.0 && window.1.is_finite() && !picture.runs.is_empty();
-        usable.then(|| Self {
+        let energy = EnergyAxis::new(&trade, window).filter(|_| !picture.runs.is_empty())?;
+        Some(Self {
             crystal,
             solution,
             picture,
             trade,
-            energy: trade.energy(window.0.abs().max(window.1.abs()) / 4.0),
-            window,
+            energy,
             runs: side_by_side(&picture.runs),
         })
     }
 
     fn y(&self, energy: f64) -> f64 {
-        let share = (energy - self.window.0) / (self.window.1 - self.window.0);
-        BOTTOM - share.clamp(-0.5, 1.5) * (BOTTOM - TOP)
+        self.energy.y(energy)
     }
 
     fn shown(&self, energy: f64) -> bool {
-        energy >= self.window.0 && energy <= self.window.1
+        energy >= self.energy.window.0 && energy <= self.energy.window.1
     }
 
     /// The runs of the path with their places on the sheet.
@@ -106,9 +102,7 @@ impl<'a> Canvas<'a> {
             .add(self.edges())
             .add(self.fermi())
             .add(self.frames())
-            .add(energy_axis(PATH.0, self.window, &self.energy, |energy| {
-                self.y(energy)
-            }))
+            .add(self.energy.marks(PATH.0))
             .add(self.density_axis())
     }
 
@@ -239,7 +233,7 @@ impl<'a> Canvas<'a> {
         if !stops.is_empty() {
             return stops;
         }
-        let near = ON_THE_PATH * (self.window.1 - self.window.0);
+        let near = ON_THE_PATH * (self.energy.window.1 - self.energy.window.0);
         let off = |point: &(f64, f64)| (point.1 - edge.energy.value).abs();
         let nearest = self.placed().filter_map(|(run, place)| {
             let points = run.bands.get(band)?.iter();
@@ -302,7 +296,7 @@ impl<'a> Canvas<'a> {
 
     fn density_axis(&self) -> Group {
         let middle = 0.5 * (STATES.0 + STATES.1);
-        let per = &self.energy;
+        let per = &self.energy.scale;
         let highest = self.highest_density() * per.factor;
         let mut group = Group::new();
         for tick in ticks(0.0, highest, 2) {

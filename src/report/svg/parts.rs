@@ -54,30 +54,46 @@ pub(super) fn head(crystal: &Crystal, trade: &Trade, numbers: &[String], left: f
         .add(text(&about, left, 56.0, "start", FAINT))
 }
 
-/// The axis of energies left of a panel that begins at `left`; `y` places an energy in joule.
-pub(super) fn energy_axis(
-    left: f64,
-    window: (f64, f64),
-    scale: &Scale,
-    y: impl Fn(f64) -> f64,
-) -> Group {
-    let mut group = Group::new();
-    for tick in ticks(window.0 / scale.factor, window.1 / scale.factor, 7) {
-        let y = y(tick * scale.factor);
-        let label = units::digits(tick, 0.0);
-        group = group
-            .add(line_between((left - 5.0, y), (left, y), FAINT, 1.0))
-            .add(text(&label, left - 9.0, y + 5.0, "end", INK));
+/// The axis of energies that the panels share.
+pub(super) struct EnergyAxis {
+    /// The energies at the bottom and the top of the panels, in joule.
+    pub window: (f64, f64),
+    /// The unit it is marked in.
+    pub scale: Scale,
+}
+
+impl EnergyAxis {
+    /// Over a window of energies; `None` where it is empty or endless.
+    pub fn new(trade: &Trade, window: (f64, f64)) -> Option<Self> {
+        let usable = window.1 > window.0 && window.0.is_finite() && window.1.is_finite();
+        usable.then(|| Self {
+            window,
+            scale: trade.energy(window.0.abs().max(window.1.abs()) / 4.0),
+        })
     }
-    let middle = 0.5 * (TOP + BOTTOM);
-    let label = text(
-        &format!("energy in {}", scale.name),
-        0.0,
-        0.0,
-        "middle",
-        FAINT,
-    );
-    group.add(label.set("transform", format!("translate(24 {middle}) rotate(-90)")))
+
+    /// Where an energy in joule stands.
+    pub fn y(&self, energy: f64) -> f64 {
+        let share = (energy - self.window.0) / (self.window.1 - self.window.0);
+        BOTTOM - share.clamp(-0.5, 1.5) * (BOTTOM - TOP)
+    }
+
+    /// Its marks left of a panel that begins at `left`.
+    pub fn marks(&self, left: f64) -> Group {
+        let factor = self.scale.factor;
+        let mut group = Group::new();
+        for tick in ticks(self.window.0 / factor, self.window.1 / factor, 7) {
+            let y = self.y(tick * factor);
+            let label = units::digits(tick, 0.0);
+            group = group
+                .add(line_between((left - 5.0, y), (left, y), FAINT, 1.0))
+                .add(text(&label, left - 9.0, y + 5.0, "end", INK));
+        }
+        let middle = 0.5 * (TOP + BOTTOM);
+        let label = format!("energy in {}", self.scale.name);
+        let label = text(&label, 0.0, 0.0, "middle", FAINT);
+        group.add(label.set("transform", format!("translate(24 {middle}) rotate(-90)")))
+    }
 }
 
 pub(super) fn rectangle(left: f64, top: f64, right: f64, bottom: f64) -> Rectangle {
