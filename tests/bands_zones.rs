@@ -9,8 +9,6 @@
 #[path = "bands/mod.rs"]
 mod bench;
 
-use std::sync::Arc;
-
 use bench::{Bench, EV, RYDBERG, row};
 use crenate::bands::{Class, Feature, GapKind, Measured, Solution, TargetState, Unsolved};
 use crenate::model::{ParameterId, ParameterKind, Setting};

@@ -1,4 +1,5 @@
 //! Text in memory → solved crystals.
+#![allow(dead_code, clippy::print_stdout)]
 
 use std::path::{Path, PathBuf};
 use std::sync::Arc;

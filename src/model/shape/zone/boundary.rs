@@ -38,32 +38,25 @@ pub(super) fn keep_those_on_it(
 /// Primitive reciprocal vectors without their 2π; `None` where the vectors make no cell.
 fn reciprocal(kind: &LatticeKind, conventional: &[Vec<f64>]) -> Option<Vec<Vec<f64>>> {
     let dimension = kind.dimension;
-    let cell = DMatrix::from_fn(dimension, dimension, |row, column| {
-        let vector = conventional.get(row);
-        vector
-            .and_then(|vector| vector.get(column))
-            .copied()
-            .unwrap_or(0.0)
-    });
+    let entries: Vec<f64> = conventional.iter().flatten().copied().collect();
+    let whole = entries.len() == dimension * dimension && entries.iter().all(|x| x.is_finite());
+    let cell = whole.then(|| DMatrix::from_row_slice(dimension, dimension, &entries))?;
+    // The columns of the inverse are the conventional reciprocal vectors.
     let inverse = cell.try_inverse()?;
-    // Conventional rows; the i-th primitive one is Σ Cⁱⁿᵛⱼᵢ b_j.
-    let own = |axis: usize| -> Vec<f64> {
+    let conventional: Vec<Vec<f64>> = inverse
+        .column_iter()
+        .map(|column| column.iter().copied().collect())
+        .collect();
+    let primitive = |axis: usize| {
         let unit: Vec<f64> = (0..dimension)
             .map(|at| f64::from(u8::from(at == axis)))
             .collect();
-        let indices = kind.centring.fractions_to_conventional(&unit);
-        (0..dimension)
-            .map(|row| {
-                let parts = indices.iter().enumerate();
-                parts
-                    .map(|(column, index)| index * inverse[(row, column)])
-                    .sum()
-            })
-            .collect()
+        along(
+            &conventional,
+            &kind.centring.fractions_to_conventional(&unit),
+        )
     };
-    let vectors: Vec<Vec<f64>> = (0..dimension).map(own).collect();
-    let whole = vectors.iter().flatten().all(|entry| entry.is_finite());
-    whole.then_some(vectors)
+    Some((0..dimension).map(primitive).collect())
 }
 
 fn along(vectors: &[Vec<f64>], fractions: &[f64]) -> Vec<f64> {
@@ -76,7 +69,7 @@ fn along(vectors: &[Vec<f64>], fractions: &[f64]) -> Vec<f64> {
     (0..vectors.len()).map(entry).collect()
 }
 
-/// The reciprocal vectors near the origin, without it.
+/// The reciprocal vectors near the origin.
 fn around(vectors: &[Vec<f64>]) -> Vec<Vec<f64>> {
     let side = 2 * REACH + 1;
     let dimension = vectors.len();
@@ -91,41 +84,21 @@ fn around(vectors: &[Vec<f64>]) -> Vec<Vec<f64>> {
             .collect()
     };
     (0..count)
-        .map(steps)
-        .filter(|steps| steps.iter().any(|step| *step != 0.0))
-        .map(|steps| along(vectors, &steps))
+        .map(|index| along(vectors, &steps(index)))
         .collect()
 }
 
-/// Whether a point, brought into the first zone, is as near to another reciprocal vector as to the origin.
+/// Whether two reciprocal vectors, of which the origin may be one, are the nearest to a point.
 fn is_on_boundary(point: &[f64], vectors: &[Vec<f64>], waves: &[Vec<f64>]) -> bool {
-    let far = |k: &[f64], wave: &[f64]| -> f64 {
-        let apart = k.iter().zip(wave).map(|(k, wave)| (k - wave).powi(2));
-        apart.sum()
-    };
     let place = along(vectors, point);
-    let shortest = vectors
-        .iter()
-        .map(|vector| dot(vector, vector))
-        .fold(f64::INFINITY, f64::min);
-    let own = dot(&place, &place);
-    let nearest = waves
-        .iter()
-        .map(|wave| far(&place, wave))
-        .fold(f64::INFINITY, f64::min);
-    (nearest - own).abs() <= SAME * shortest
-        || nearest < own && ties(&place, waves, nearest, SAME * shortest)
-}
-
-/// Whether two reciprocal vectors or more are this near.
-fn ties(place: &[f64], waves: &[Vec<f64>], nearest: f64, same: f64) -> bool {
-    let near = waves.iter().filter(|wave| {
-        let apart: f64 = place
-            .iter()
-            .zip(wave.iter())
-            .map(|(k, wave)| (k - wave).powi(2))
-            .sum();
-        apart <= nearest + same
-    });
+    let far = |wave: &Vec<f64>| -> f64 {
+        let apart = place.iter().zip(wave).map(|(k, wave)| k - wave);
+        apart.map(|step| step * step).sum()
+    };
+    let distances: Vec<f64> = waves.iter().map(far).collect();
+    let nearest = distances.iter().copied().fold(f64::INFINITY, f64::min);
+    let lengths = vectors.iter().map(|vector| dot(vector, vector));
+    let same = SAME * lengths.fold(f64::INFINITY, f64::min);
+    let near = distances.iter().filter(|far| **far <= nearest + same);
     near.count() > 1
 }

@@ -2,7 +2,7 @@
 //!
 //! Written in fractions of the *conventional* reciprocal vectors, so that one table serves each family.
 
-use super::Labels;
+use super::{Labels, Runs};
 use crate::model::shape::centring::LatticeKind;
 
 type Points = &'static [(&'static str, [f64; 3])];
@@ -61,7 +61,7 @@ const HEXAGONAL: Points = &[
 
 /// The points and the path; `None` for kinds whose points depend on their sizes.
 pub(super) fn labels(kind: &LatticeKind) -> Option<Labels> {
-    let (points, runs): (Points, &'static [&'static str]) = match (kind.word, kind.dimension) {
+    let (points, runs): (Points, Runs) = match (kind.word, kind.dimension) {
         ("chain", _) => (CHAIN, &["edge centre edge"]),
         ("square", _) => (SQUARE, &["centre X M centre"]),
         ("rectangular", _) => (RECTANGULAR, &["centre X S Y centre"]),

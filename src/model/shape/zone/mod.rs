@@ -22,8 +22,23 @@ pub type NamedPoints = Vec<(&'static str, Vec<f64>)>;
 /// The named points of a lattice and the path through them.
 struct Labels {
     points: NamedPoints,
-    /// Unbroken runs, each the names of its stops.
-    runs: &'static [&'static str],
+    runs: Runs,
+}
+
+/// Unbroken runs of a path, each the names of its stops.
+type Runs = &'static [&'static str];
+/// Names with fractions of the paper's primitive reciprocal vectors.
+type Paper = Vec<(&'static str, [f64; 3])>;
+
+impl Labels {
+    /// Brings points to the fractions of our primitive reciprocal vectors.
+    fn placed((points, runs): (Paper, Runs), own: impl Fn([f64; 3]) -> Vec<f64>) -> Self {
+        let points = points.into_iter();
+        Self {
+            points: points.map(|(name, point)| (name, own(point))).collect(),
+            runs,
+        }
+    }
 }
 
 /// Whether the points of this kind of lattice, or their names, depend on its lengths and angles.

@@ -2,15 +2,11 @@
 //!
 //! Formulas and labels as in the paper, in fractions of its primitive reciprocal vectors, for a ≤ b ≤ c.
 
-use super::{Labels, slanted};
+use super::{Labels, Paper, Runs, slanted};
 use crate::model::shape::centring::{Centring, LatticeKind};
 
 /// Ratios this close to where one shape of zone turns into another count as there.
 pub(super) const SAME: f64 = 1e-9;
-
-/// Names with fractions of the paper's primitive reciprocal vectors.
-pub(super) type Paper = Vec<(&'static str, [f64; 3])>;
-pub(super) type Runs = &'static [&'static str];
 
 const HALF: f64 = 0.5;
 const QUARTER: f64 = 0.25;
@@ -39,7 +35,7 @@ pub(super) fn labels(kind: &LatticeKind, conventional: &[Vec<f64>]) -> Option<La
         let axis = order.get(axis).copied().unwrap_or(axis);
         value(&lengths, axis)
     });
-    let (points, runs) = match kind.word {
+    let labels = match kind.word {
         "centred-rectangular" => centred_rectangular(sizes),
         "body-tetragonal" => body_tetragonal(sizes),
         "base-orthorhombic" => base_orthorhombic(sizes),
@@ -47,12 +43,9 @@ pub(super) fn labels(kind: &LatticeKind, conventional: &[Vec<f64>]) -> Option<La
         "face-orthorhombic" => face_orthorhombic(sizes),
         _ => return None,
     };
-    let own = |point: [f64; 3]| on_own_axes(point, kind, &order);
-    let points = points
-        .into_iter()
-        .map(|(name, point)| (name, own(point)))
-        .collect();
-    Some(Labels { points, runs })
+    Some(Labels::placed(labels, |point| {
+        on_own_axes(point, kind, &order)
+    }))
 }
 
 fn value(lengths: &[f64], axis: usize) -> f64 {

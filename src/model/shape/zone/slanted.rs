@@ -1,7 +1,7 @@
 //! Points of zones whose cells have an angle of their own.
 
-use super::Labels;
-use super::sized::{Paper, Runs, SAME, dot, length};
+use super::sized::{SAME, dot, length};
+use super::{Labels, Paper, Runs};
 use crate::model::shape::centring::LatticeKind;
 
 const HALF: f64 = 0.5;
@@ -9,54 +9,45 @@ const HALF: f64 = 0.5;
 const MOST_STEPS: usize = 128;
 
 pub(super) fn labels(kind: &LatticeKind, conventional: &[Vec<f64>]) -> Option<Labels> {
-    let (points, runs, own): (Paper, Runs, Box<dyn Fn([f64; 3]) -> Vec<f64>>) =
-        match (kind.word, conventional) {
-            ("oblique", [first, second]) => {
-                let plane = Reduced::of(first, second)?;
-                let (points, runs) = oblique(&plane);
-                let own = move |[_, second, third]: [f64; 3]| plane.own(second, third).to_vec();
-                (points, runs, Box::new(own))
-            }
-            ("rhombohedral", [first, second, _]) => {
-                let cosine = dot(first, second) / (length(first) * length(second));
-                let (points, runs) = rhombohedral(cosine);
-                (points, runs, Box::new(|point| point.to_vec()))
-            }
-            // The paper's unique axis is its first, ours the second.
-            ("monoclinic", [first, _, third]) => {
-                let plane = Reduced::of(first, third)?;
-                let (points, runs) = monoclinic(&plane);
-                let own = move |[unique, second, third]: [f64; 3]| {
-                    let [second, third] = plane.own(second, third);
-                    vec![second, unique, third]
-                };
-                (points, runs, Box::new(own))
-            }
-            ("base-monoclinic", [first, second, third]) => {
-                let (sign, shift) = least_slant(first, third);
-                let axis = third
-                    .iter()
-                    .zip(first)
-                    .map(|(third, first)| sign * third + shift * first);
-                let axis: Vec<f64> = axis.collect();
-                let (points, runs) = base_monoclinic(length(second), first, &axis);
-                // The paper's first primitive vector is our second, and its third is ±c + shift·a, a = p1 + p2.
-                let own = move |[first, second, third]: [f64; 3]| {
+    let labels = match (kind.word, conventional) {
+        ("oblique", [first, second]) => {
+            let plane = Reduced::of(first, second)?;
+            Labels::placed(oblique(&plane), |[_, second, third]| {
+                plane.own(second, third).to_vec()
+            })
+        }
+        ("rhombohedral", [first, second, _]) => {
+            let cosine = dot(first, second) / (length(first) * length(second));
+            Labels::placed(rhombohedral(cosine), |point| point.to_vec())
+        }
+        // The paper's unique axis is its first, ours the second.
+        ("monoclinic", [first, _, third]) => {
+            let plane = Reduced::of(first, third)?;
+            Labels::placed(monoclinic(&plane), |[unique, second, third]| {
+                let [second, third] = plane.own(second, third);
+                vec![second, unique, third]
+            })
+        }
+        ("base-monoclinic", [first, second, third]) => {
+            let (sign, shift) = least_slant(first, third);
+            let axis = third.iter().zip(first);
+            let axis: Vec<f64> = axis
+                .map(|(third, first)| sign * third + shift * first)
+                .collect();
+            // The paper's first primitive vector is our second, and its third is ±c + shift·a, a = p1 + p2.
+            Labels::placed(
+                base_monoclinic(length(second), first, &axis),
+                |[first, second, third]| {
                     vec![second, first, sign * (third - shift * (first + second))]
-                };
-                (points, runs, Box::new(own))
-            }
-            ("triclinic", vectors) => {
-                let (points, runs) = triclinic(vectors)?;
-                (points, runs, Box::new(|point| point.to_vec()))
-            }
-            _ => return None,
-        };
-    let points = points
-        .into_iter()
-        .map(|(name, point)| (name, own(point)))
-        .collect();
-    Some(Labels { points, runs })
+                },
+            )
+        }
+        ("triclinic", [first, second, third]) => {
+            Labels::placed(triclinic(first, second, third), |point| point.to_vec())
+        }
+        _ => return None,
+    };
+    Some(labels)
 }
 
 /// The shortest two vectors of a plane lattice, the second at 60 to 90 degrees to the first and no shorter
@@ -349,10 +340,7 @@ fn base_monoclinic_far(ratios: &Ratios) -> (Paper, Runs) {
 
 /// The labels of the paper's two cases: the reciprocal vectors all at right or obtuse angles, or all at right or acute
 /// ones. Vectors that mix the two have the first case's.
-fn triclinic(vectors: &[Vec<f64>]) -> Option<(Paper, Runs)> {
-    let [a, b, c] = vectors else {
-        return None;
-    };
+fn triclinic(a: &[f64], b: &[f64], c: &[f64]) -> (Paper, Runs) {
     // bᵢ·bⱼ has the sign of (aⱼ·aₖ)(aₖ·aᵢ) − (aⱼ·aᵢ)(aₖ·aₖ).
     let leans = |one: &[f64], other: &[f64], third: &[f64]| {
         let lean = dot(other, third) * dot(third, one) - dot(other, one) * dot(third, third);
@@ -382,5 +370,5 @@ fn triclinic(vectors: &[Vec<f64>]) -> Option<(Paper, Runs)> {
             ("Z", [0.0, 0.0, HALF]),
         ]
     };
-    Some((points, runs))
+    (points, runs)
 }
