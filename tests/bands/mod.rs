@@ -1,12 +1,15 @@
 //! Text in memory → solved crystals.
 #![allow(dead_code, clippy::print_stdout)]
 
+#[path = "../memory/mod.rs"]
+mod memory;
+
 use std::path::{Path, PathBuf};
 use std::sync::Arc;
 
 use crenate::bands::{Assessment, MeasureValue, Solution, Solver, Unsolved};
-use crenate::model::{Built, CrystalRef, FileSource, ReadFailure, Setting, World, build_crystal};
-use crenate::syntax::{Tree, read};
+use crenate::model::{Built, CrystalRef, Setting, World, build_crystal};
+use memory::Memory;
 
 /// One elementary charge: joule per electronvolt (exact in the SI).
 pub const EV: f64 = 1.602_176_634e-19;
@@ -20,25 +23,6 @@ pub fn row(case: &str, against: &str, worst: f64, bar: f64) {
     assert!(worst <= bar, "{case}: {worst:e} above {bar:e}");
 }
 
-/// A single file in memory.
-struct Memory(Arc<Tree>);
-
-impl FileSource for Memory {
-    fn tree(&self, path: &Path) -> Result<Arc<Tree>, ReadFailure> {
-        if path == Path::new("model.cren") {
-            Ok(Arc::clone(&self.0))
-        } else {
-            Err(ReadFailure::NotFound)
-        }
-    }
-    fn bytes(&self, _: &Path) -> Result<Arc<[u8]>, ReadFailure> {
-        Err(ReadFailure::NotFound)
-    }
-    fn inside(&self, _: &Path) -> bool {
-        true
-    }
-}
-
 /// The crystals of a text.
 pub struct Bench {
     world: World,
@@ -48,7 +32,7 @@ pub struct Bench {
 
 impl Bench {
     pub fn new(text: &str) -> Self {
-        let source = Memory(Arc::new(read(text)));
+        let source = Memory::of([("model.cren", text)]);
         let world = World::gather(&source, &[PathBuf::from("model.cren")]);
         Self {
             world,
