@@ -34,6 +34,7 @@ pub mod scan;
 pub mod show_csv;
 pub mod show_json;
 pub mod show_text;
+pub mod structure;
 pub mod svg;
 pub mod tidy;
 mod trial;

@@ -4,10 +4,11 @@ use super::analysis::{FileAnalysis, SectionAnalysis};
 use super::grid::{Stand, lay};
 use super::locate::Locator;
 use super::paint::Paint;
-use super::units::{self, BOLTZMANN, Scale, Trade, exact};
+use super::structure;
+use super::units::{self, Scale, Trade};
 use super::words;
 use crate::bands::{Assessment, Extremum, MassAxis, MeasureValue, Measured, Solution};
-use crate::model::{Crystal, Dimension};
+use crate::model::Crystal;
 
 /// The crystals of a file, in order; `only` picks one.
 #[must_use]
@@ -42,7 +43,8 @@ pub fn crystal(
     if crystal.title != crystal.name && !crystal.title.is_empty() {
         text += &format!("  {}\n", crystal.title);
     }
-    text += &format!("  {}\n", structure(crystal, section.solution(), &trade));
+    let about = structure::structure(crystal, section.solution(), &trade);
+    text += &format!("  {about}\n");
     if let Some(why) = section.unsolved() {
         text += &format!("  no bands: {}\n", words::unsolved(why));
     }
@@ -54,84 +56,6 @@ pub fn crystal(
     }
     text += &wishes(locator, section, crystal, paint);
     text
-}
-
-/// What repeats, who moves, and between which energies.
-fn structure(crystal: &Crystal, solution: Option<&Solution>, trade: &Trade) -> String {
-    let mut parts = vec![cell(crystal, trade)];
-    if let Some(recoil) = &crystal.recoil {
-        let energy = Trade {
-            recoil: None,
-            atoms: true,
-        }
-        .tell_energy(exact(recoil.energy.value));
-        parts.push(format!("1 Er = {energy}"));
-    }
-    if let Some(solution) = solution {
-        parts.push(potential(solution, trade));
-    }
-    if let Some(temperature) = &crystal.temperature {
-        let told = trade.tell_exact(temperature.value, Dimension::TEMPERATURE);
-        let thermal = trade.tell_energy(exact(temperature.value * BOLTZMANN));
-        parts.push(format!("{told} (kT = {thermal})"));
-    }
-    parts.join(" · ")
-}
-
-/// The lattice in words.
-#[must_use]
-pub fn cell(crystal: &Crystal, trade: &Trade) -> String {
-    let lengths: Vec<f64> = crystal
-        .conventional
-        .iter()
-        .map(|vector| {
-            vector
-                .iter()
-                .map(|entry| entry.value * entry.value)
-                .sum::<f64>()
-                .sqrt()
-        })
-        .collect();
-    let told: Vec<String> = lengths
-        .iter()
-        .map(|length| trade.tell_exact(*length, Dimension::LENGTH))
-        .collect();
-    match (crystal.dimension, crystal.lattice_kind.as_deref()) {
-        (_, Some(kind)) if told.is_empty() => kind.to_owned(),
-        (1, _) => format!("period {}", told.join("")),
-        (_, Some(kind)) => format!("{kind}, {}", told.join(" by ")),
-        (0, None) => "no lattice".to_owned(),
-        (dimension, None) => format!("{dimension}D, {}", told.join(" by ")),
-    }
-}
-
-/// Lowest, mean and highest of the potential.
-#[must_use]
-pub fn potential(solution: &Solution, trade: &Trade) -> String {
-    let range = &solution.potential;
-    let size = range
-        .lowest
-        .abs()
-        .max(range.highest.abs())
-        .max(range.mean.abs());
-    let scale = trade.energy(size);
-    // A mean that cancels to rounding is nought.
-    let number = |value: f64| match value.abs() < 1e-13 * size {
-        true => "0".to_owned(),
-        false => units::digits(value / scale.factor, 0.0),
-    };
-    let (lowest, mean, highest) = (
-        number(range.lowest),
-        number(range.mean),
-        number(range.highest),
-    );
-    match lowest == highest && lowest == mean {
-        true => format!("potential {lowest} {} throughout", scale.name),
-        false => format!(
-            "potential {lowest} to {highest} {}, mean {mean} {}",
-            scale.name, scale.name
-        ),
-    }
 }
 
 /// The unit that all edges of a crystal are told in.

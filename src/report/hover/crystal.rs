@@ -8,9 +8,9 @@ use crate::bands::{Gap, GapKind, MeasureValue, Measured, Solution};
 use crate::model::constants::SPEED_OF_LIGHT;
 use crate::model::{Crystal, Dimension, Layer, Place};
 use crate::report::analysis::SectionAnalysis;
-use crate::report::show_text;
 use crate::report::units::{self, BOLTZMANN, ELECTRONVOLT, PLANCK, Trade, exact};
 use crate::report::{drawing, words};
+use crate::report::{show_text, structure};
 use crate::syntax::Statement;
 
 /// Gaps told of.
@@ -55,7 +55,7 @@ fn told(view: &View<'_>, section: &SectionAnalysis) -> Option<Card> {
     if let Some(description) = description(view, crystal.place) {
         card.say(description);
     }
-    let mut about = vec![show_text::cell(crystal, &trade)];
+    let mut about = vec![structure::cell(crystal, &trade)];
     if let Some(recoil) = &crystal.recoil {
         let plain = Trade {
             recoil: None,
@@ -117,7 +117,7 @@ fn numbers(section: &SectionAnalysis, crystal: &Crystal, solution: &Solution, ca
     if let Some(line) = show_text::filling_line(crystal, solution, &trade) {
         card.row(["filling".to_owned(), line]);
     }
-    let potential = show_text::potential(solution, &trade);
+    let potential = structure::potential(solution, &trade);
     let potential = potential.strip_prefix("potential ").unwrap_or(&potential);
     card.row(["potential".to_owned(), potential.to_owned()]);
     if !section.targets.is_empty() {

@@ -155,14 +155,15 @@ impl<'a> Canvas<'a> {
         let mut group = Group::new();
         let mut last: Option<(f64, String)> = None;
         for (run, place) in self.placed() {
+            let mut joint = "|";
             for (distance, name) in &run.stops {
                 let x = place.x(*distance);
                 group = group.add(line_between((x, TOP), (x, BOTTOM), FAINT, 0.8));
                 let name = if name == "centre" { "Γ" } else { name };
                 match last.take() {
-                    // The end of one run and the beginning of the next share a label.
+                    // The end of one run and the beginning of the next share a label, and so do stops too near for two.
                     Some((before, other)) if x - before < 2.0 * BREAK => {
-                        let both = format!("{other}|{name}");
+                        let both = format!("{other}{joint}{name}");
                         last = Some((0.5 * (before + x), both));
                     }
                     Some((before, other)) => {
@@ -171,6 +172,7 @@ impl<'a> Canvas<'a> {
                     }
                     None => last = Some((x, name.to_owned())),
                 }
+                joint = " ";
             }
         }
         if let Some((x, name)) = last {

@@ -5,7 +5,7 @@ use svg::node::element::path::Data;
 use svg::node::element::{ClipPath, Definitions, Group, Line, Path, Rectangle, Text};
 
 use crate::model::Crystal;
-use crate::report::show_text;
+use crate::report::structure;
 use crate::report::units::{self, Scale, Trade};
 
 pub(super) const WIDTH: f64 = 960.0;
@@ -44,7 +44,7 @@ pub(super) fn head(crystal: &Crystal, trade: &Trade, numbers: &[String], left: f
         true => &crystal.name,
         false => &crystal.title,
     };
-    let mut about = show_text::cell(crystal, trade);
+    let mut about = structure::cell(crystal, trade);
     for number in numbers {
         about.push_str(" · ");
         about.push_str(number);
