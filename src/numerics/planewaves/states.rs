@@ -19,12 +19,15 @@ use super::settle::UNTRIED;
 use super::{Budget, Error, Estimate};
 use rustc_hash::FxHashMap;
 
+/// Energies at the corners of a simplex, rising; infinite beyond the dimension.
+pub(super) type Corners = [f64; 4];
+
 /// The levels on a mesh, cut into simplices.
 #[derive(Clone, Debug)]
 pub struct States {
     dimension: usize,
-    /// Sorted corner energies (the first d+1) and the share of the zone they stand for.
-    pub(super) simplices: Vec<([f64; 4], f64)>,
+    /// Corner energies and the share of the zone they stand for.
+    pub(super) simplices: Vec<(Corners, f64)>,
     /// Bounds of all energies.
     range: (f64, f64),
     /// What the cut-off left uncertain, band by band.
@@ -77,7 +80,18 @@ impl Waves<'_> {
     ) -> Result<States, Error> {
         let mesh = self.mesh(most);
         let (energies, errors) = self.settled_on(&mesh, bands, (cut, share), budget)?;
-        let corners = self.simplices(&mesh);
+        self.states_of(&mesh, &energies, bands, errors)
+    }
+
+    /// States from the levels at the irreducible points of a mesh.
+    pub(super) fn states_of(
+        &self,
+        mesh: &Mesh,
+        energies: &[Vec<f64>],
+        bands: usize,
+        errors: Vec<f64>,
+    ) -> Result<States, Error> {
+        let corners = self.simplices(mesh);
         let mut shares: FxHashMap<Vec<usize>, f64> = FxHashMap::default();
         let total = (mesh.of.len() * corners.len()) as f64;
         for place in 0..mesh.of.len() {
@@ -171,6 +185,31 @@ impl Waves<'_> {
 }
 
 impl States {
+    /// States with energies in `range`; that of all corners where it has no ends.
+    pub(super) fn of(
+        dimension: usize,
+        simplices: Vec<(Corners, f64)>,
+        range: (f64, f64),
+    ) -> Self {
+        let all = simplices.iter().map(|(corner, _)| corner);
+        let range = if range.0.is_finite() {
+            range
+        } else {
+            let lowest = all.clone().map(|corner| corner[0]);
+            let highest = all.map(|corner| corner[dimension]);
+            (
+                lowest.fold(f64::INFINITY, f64::min),
+                highest.fold(f64::NEG_INFINITY, f64::max),
+            )
+        };
+        Self {
+            dimension,
+            simplices,
+            range,
+            errors: Vec::new(),
+        }
+    }
+
     /// States per cell below an energy, one a level.
     pub fn number(&self, energy: f64) -> f64 {
         self.simplices
@@ -233,8 +272,24 @@ impl States {
         }
     }
 
+    /// The density over the energies this near.
+    pub(super) fn density_within(&self, energy: f64, near: f64) -> f64 {
+        (self.number(energy + near) - self.number(energy - near)) / (2.0 * near)
+    }
+
     /// The level at which this many levels per cell are filled; the lower edge where a range of energies does.
     pub(super) fn fill(&self, levels: f64) -> Filled {
+        let high = self.fill_from(levels, 0.0);
+        Filled {
+            level: high,
+            density: self.smooth_density(high),
+            energy: self.energy(high),
+            curved: self.curved(high),
+        }
+    }
+
+    /// The same where so many levels are filled in any case.
+    pub(super) fn fill_from(&self, levels: f64, filled: f64) -> f64 {
         let (mut low, mut high) = self.range;
         let slack = 1e-12 * levels;
         for _ in 0..200 {
@@ -242,18 +297,13 @@ impl States {
             if middle <= low || middle >= high {
                 break;
             }
-            if self.number(middle) < levels - slack {
+            if filled + self.number(middle) < levels - slack {
                 low = middle;
             } else {
                 high = middle;
             }
         }
-        Filled {
-            level: high,
-            density: self.smooth_density(high),
-            energy: self.energy(high),
-            curved: self.curved(high),
-        }
+        high
     }
 }
 

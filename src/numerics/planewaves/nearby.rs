@@ -1,0 +1,216 @@
+//! The levels near a solved wave vector.
+//!
+//! With the lowest states ψ (the set P) at k₀, all others the set Q, p = ∂H/∂k = 2(k₀+G), and an energy s below all of Q,
+//!
+//! ```text
+//! φ_n(q) = ψ_n + Σ_x q_x w_nx,    (H − s) w_nx = −Q p_x ψ_n
+//! S = φ†φ = 1 + Σ q_x q_y w_x†w_y
+//! φ†H(k₀+q)φ = ε + q·ψ†pψ + q² S + Σ q_x q_y (ψ†p_y w_x + s w_x†w_y) + Σ q_x q_y q_z w_x†p_y w_z
+//! ```
+//!
+//! Levels at k₀ + q are those of this small pencil. At E = s it is Löwdin's partition (J. Chem. Phys. 19, 1396 (1951))
+//! to third order in q, so that levels near s are wrong by order q⁴ only; crossings within P stay crossings. What the cut
+//! leaves out, δ of `settle.rs`, is taken off as a matrix on P.
+//!
+//! Fails, with `None`, where some of Q lies below s. Its error is not known from within: the caller compares with solves.
+
+use super::basis::Waves;
+use super::eigen::Scalar;
+use super::lattice::{add, real};
+use super::levels::Basis;
+use super::{Budget, Error, Levels};
+use faer::linalg::solvers::Solve;
+use faer::{Mat, Side};
+use nalgebra::{Complex, DMatrix};
+
+/// A solved point and what its neighbourhood is found from, real where the crystal has a centre of inversion.
+pub(super) enum Nearby {
+    Real(Pencil<f64>),
+    Complex(Pencil<Complex<f64>>),
+}
+
+/// Coefficient matrices of the powers of q.
+pub(super) struct Pencil<T: nalgebra::ComplexField> {
+    dimension: usize,
+    /// H at q = 0, then by x, by x ≤ y, by x ≤ y ≤ z.
+    constant: DMatrix<T>,
+    linear: Vec<DMatrix<T>>,
+    square: Vec<DMatrix<T>>,
+    cubic: Vec<DMatrix<T>>,
+    /// S beyond the identity by x ≤ y.
+    overlap: Vec<DMatrix<T>>,
+}
+
+impl Nearby {
+    /// The levels at k₀ + q, q on the axes of the lattice.
+    pub fn levels(&self, q: [f64; 3]) -> Vec<f64> {
+        match self {
+            Self::Real(pencil) => pencil.levels(q),
+            Self::Complex(pencil) => pencil.levels(q),
+        }
+    }
+
+    /// How many levels it gives.
+    pub fn count(&self) -> usize {
+        match self {
+            Self::Real(pencil) => pencil.constant.nrows(),
+            Self::Complex(pencil) => pencil.constant.nrows(),
+        }
+    }
+}
+
+impl Waves<'_> {
+    /// The neighbourhood of a point solved at `cut`, of its lowest `count` levels, for energies near `near`.
+    pub(super) fn nearby(
+        &self,
+        basis: &Basis,
+        levels: &Levels,
+        (count, near): (usize, f64),
+        cut: f64,
+        budget: &Budget,
+    ) -> Result<Option<Nearby>, Error> {
+        budget.spend(levels.waves.len())?;
+        let left_out = self.left_out_between(levels, count, cut)?;
+        Ok(if self.is_real() {
+            self.pencil::<f64>(basis, levels, (count, near), &left_out)?
+                .map(Nearby::Real)
+        } else {
+            self.pencil::<Complex<f64>>(basis, levels, (count, near), &left_out)?
+                .map(Nearby::Complex)
+        })
+    }
+
+    fn pencil<T: Scalar + nalgebra::ComplexField<RealField = f64>>(
+        &self,
+        basis: &Basis,
+        levels: &Levels,
+        (count, near): (usize, f64),
+        left_out: &Mat<Complex<f64>>,
+    ) -> Result<Option<Pencil<T>>, Error> {
+        let (n, d) = (levels.waves.len(), self.frame.dimension);
+        let of = <T as Scalar>::from_complex;
+        let number = |x: f64| of(Complex::new(x, 0.0));
+        let states = Mat::<T>::from_fn(n, count, |i, j| {
+            of(levels.vectors[(i, j)] * self.gauge(levels.waves[i]).conj())
+        });
+        let momenta: Vec<[f64; 3]> = levels
+            .waves
+            .iter()
+            .map(|g| {
+                let wave = self.frame.wave(add(levels.k, real(*g)));
+                self.frame.on_axes(wave).map(|x| 2.0 * x)
+            })
+            .collect();
+        let times = |axis: usize, of: &Mat<T>| {
+            Mat::<T>::from_fn(n, of.ncols(), |i, j| {
+                number(momenta[i][axis]) * of[(i, j)]
+            })
+        };
+        let moved: Vec<Mat<T>> = (0..d).map(|x| times(x, &states)).collect();
+        // H − s with the states of P raised out of the way, so that it is positive.
+        let mut raised = self.matrix::<T>(&levels.waves, levels.k, basis.reach)?;
+        let lift = self.frame.unit() + near.abs();
+        let lifted = Mat::<T>::from_fn(n, count, |i, j| {
+            states[(i, j)] * number(lift + near - levels.energies[j])
+        });
+        raised += &lifted * states.adjoint();
+        for i in 0..n {
+            raised[(i, i)] = raised[(i, i)] - number(near);
+        }
+        let Ok(factors) = raised.llt(Side::Lower) else {
+            return Ok(None);
+        };
+        let outside = |of: &Mat<T>| of - &states * (states.adjoint() * of);
+        let answers: Vec<Mat<T>> = moved
+            .iter()
+            .map(|moved| outside(&factors.solve(-outside(moved))))
+            .collect();
+        let small = |left: &Mat<T>, right: &Mat<T>| {
+            let product = left.adjoint() * right;
+            DMatrix::<T>::from_fn(count, count, |i, j| product[(i, j)])
+        };
+        let hermitian = |m: DMatrix<T>| (&m + m.adjoint()) * number(0.5);
+        let energies = DMatrix::from_fn(count, count, |i, j| {
+            let kept = if i == j { levels.energies[i] } else { 0.0 };
+            of(Complex::new(kept, 0.0) - left_out[(i, j)])
+        });
+        let mut pencil = Pencil {
+            dimension: d,
+            constant: hermitian(energies),
+            linear: moved.iter().map(|m| hermitian(small(&states, m))).collect(),
+            square: Vec::new(),
+            cubic: Vec::new(),
+            overlap: Vec::new(),
+        };
+        for x in 0..d {
+            for y in x..d {
+                // The sum over both orders of x ≠ y.
+                let both = number(if x == y { 1.0 } else { 2.0 });
+                let overlap = hermitian(small(&answers[x], &answers[y])) * both;
+                let bent = hermitian(small(&moved[y], &answers[x])) * both;
+                pencil.square.push(bent + &overlap * number(near));
+                pencil.overlap.push(overlap);
+            }
+        }
+        for x in 0..d {
+            for y in x..d {
+                for z in y..d {
+                    let orders = [[x, y, z], [y, z, x], [z, x, y], [x, z, y], [y, x, z], [z, y, x]];
+                    let mut sum = DMatrix::<T>::zeros(count, count);
+                    let mut seen: Vec<[usize; 3]> = Vec::new();
+                    for order in orders {
+                        if !seen.contains(&order) {
+                            seen.push(order);
+                            let [a, b, c] = order;
+                            sum += small(&answers[a], &times(b, &answers[c]));
+                        }
+                    }
+                    pencil.cubic.push(hermitian(sum));
+                }
+            }
+        }
+        Ok(Some(pencil))
+    }
+}
+
+impl<T: Scalar + nalgebra::ComplexField<RealField = f64>> Pencil<T> {
+    fn levels(&self, q: [f64; 3]) -> Vec<f64> {
+        let d = self.dimension;
+        let number = |x: f64| <T as Scalar>::from_complex(Complex::new(x, 0.0));
+        let count = self.constant.nrows();
+        let square: f64 = q.iter().map(|x| x * x).sum();
+        let mut matrix = self.constant.clone();
+        let mut overlap = DMatrix::<T>::identity(count, count);
+        let (mut second, mut third) = (0, 0);
+        for x in 0..d {
+            add_to(&mut matrix, &self.linear[x], number(q[x]));
+            for y in x..d {
+                let share = q[x] * q[y];
+                add_to(&mut matrix, &self.square[second], number(share));
+                add_to(&mut overlap, &self.overlap[second], number(share));
+                second += 1;
+                for z in y..d {
+                    add_to(&mut matrix, &self.cubic[third], number(share * q[z]));
+                    third += 1;
+                }
+            }
+        }
+        add_to(&mut matrix, &overlap, number(square));
+        // S is the identity and what is no less than zero, so that it has a factor.
+        if let Some(factor) = overlap.cholesky() {
+            let lower = factor.l_dirty();
+            lower.solve_lower_triangular_mut(&mut matrix);
+            matrix.adjoint_mut();
+            lower.solve_lower_triangular_mut(&mut matrix);
+        }
+        let mut levels: Vec<f64> = matrix.symmetric_eigenvalues().iter().copied().collect();
+        levels.sort_by(f64::total_cmp);
+        levels
+    }
+}
+
+fn add_to<T: nalgebra::ComplexField>(sum: &mut DMatrix<T>, part: &DMatrix<T>, share: T) {
+    for (sum, part) in sum.iter_mut().zip(part.iter()) {
+        *sum += part.clone() * share.clone();
+    }
+}
