@@ -7,14 +7,17 @@
 //! uncertain. In one dimension whole meshes are compared instead.
 
 use super::basis::Waves;
+use super::lattice::dot;
 use super::levels::Basis;
 use super::mesh::Mesh;
 use super::nearby::Nearby;
 use super::settle::{Prediction, UNTRIED};
 use super::states::{Filled, States};
 use super::surface::{Corner, Surface};
+use super::surroundings::{Piece, cell};
 use super::{Budget, Error, Estimate, Levels};
 use rayon::prelude::*;
+use std::ops::Range;
 
 /// A Fermi level.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -34,8 +37,8 @@ pub struct Fermi {
 const CROSSING: [f64; 3] = [0.02, 1.0, 0.6];
 /// Places looked at on the way to one level: about a second of one core.
 const MOST_PLACES: usize = 250_000;
-/// Levels this far above the Fermi level, in the natural unit, may count as far.
-const CLEAR: f64 = 0.12;
+/// Levels farther than this below and above the Fermi level, in the natural unit, may count as far.
+const CLEAR: [f64; 2] = [0.25, 0.12];
 /// Solves that levels between the mesh's points are held against.
 const CHECKS: usize = 10;
 
@@ -45,13 +48,26 @@ struct Solved {
     points: Vec<(Basis, Levels)>,
     /// Levels less what the cut leaves out, with their errors.
     known: Vec<Vec<Estimate>>,
+    /// The energy of all filled states by the mesh's own simplices.
+    energy: Estimate,
 }
 
 /// A level with what was made of it.
 struct Closed {
-    fermi: Fermi,
+    /// `None` where the mesh is too coarse to be worth it.
+    fermi: Option<Fermi>,
     /// How far levels between the mesh's points were from solves.
     between: f64,
+}
+
+/// What is asked for.
+#[derive(Clone, Copy)]
+struct Wanted {
+    levels: f64,
+    tolerance: f64,
+    cut: f64,
+    /// The share of what the cut leaves out that is uncertain.
+    share: f64,
 }
 
 impl Waves<'_> {
@@ -72,90 +88,134 @@ impl Waves<'_> {
             2 => &[8, 12, 16, 24, 32, 48],
             _ => &[6, 8, 12, 16, 24],
         };
-        let mut best: Option<Closed> = None;
+        let wanted = Wanted {
+            levels,
+            tolerance,
+            cut,
+            share,
+        };
+        let mut bands = levels.ceil() as usize + [2, 4, 6][self.frame.dimension - 1];
+        let mut best: Option<Fermi> = None;
+        let mut passed: Option<usize> = None;
         for size in sizes {
-            let found = match self.closed_in(levels, *size, tolerance, (cut, share), budget) {
-                Err(Error::BudgetSpent) if best.is_some() => break,
+            let last = sizes.last() == Some(size);
+            let found = match self.closed_in(*size, &mut bands, wanted, !last, budget) {
+                Err(Error::BudgetSpent) if best.is_some() || passed.is_some() => break,
                 other => other?,
             };
             let Some(found) = found else {
                 continue;
             };
-            let better = best
-                .as_ref()
-                .is_none_or(|other| found.fermi.level.error < other.fermi.level.error);
+            let Some(fermi) = found.fermi else {
+                passed = Some(*size);
+                continue;
+            };
+            passed = None;
             // A finer mesh helps only where the levels in between were what is uncertain.
-            let done = found.fermi.settled || found.between < 0.2 * found.fermi.level.error;
-            if better {
-                best = Some(found);
+            let done = fermi.settled || found.between < 0.2 * fermi.level.error;
+            if best.is_none_or(|other| fermi.level.error < other.level.error) {
+                best = Some(fermi);
             }
             if done {
                 break;
             }
         }
-        best.map(|found| found.fermi).ok_or(Error::BudgetSpent)
+        if let Some(size) = passed {
+            // The work allowed did not reach further: that mesh it must be.
+            let budget = Budget::new(budget.cancelled, budget.max_basis, usize::MAX);
+            let found = self.closed_in(size, &mut bands, wanted, false, &budget)?;
+            best = best.or(found.and_then(|found| found.fermi));
+        }
+        best.ok_or(Error::BudgetSpent)
     }
 
     /// The level from one mesh and the levels between its points; `None` where these are not to be had.
     fn closed_in(
         &self,
-        levels: f64,
         size: usize,
-        tolerance: f64,
-        (cut, share): (f64, f64),
+        bands: &mut usize,
+        wanted: Wanted,
+        hasty: bool,
         budget: &Budget,
     ) -> Result<Option<Closed>, Error> {
-        let Some((solved, guess, counts)) = self.solved_for(levels, size, (cut, share), budget)?
-        else {
+        let Some((solved, mut guess)) = self.solved_for(size, bands, wanted, budget)? else {
             return Ok(None);
         };
-        let near: Option<Vec<Nearby>> = solved
-            .points
-            .par_iter()
-            .zip(&counts)
-            .map(|((basis, at), count)| self.nearby(basis, at, (*count, guess), cut, budget))
-            .collect::<Result<_, Error>>()?;
-        let Some(near) = near else {
-            return Ok(None);
-        };
-        let surface = Surface::new(self, &solved.mesh, &near, guess)?;
-        let between = self.missed(&surface.corners(), &solved.mesh, guess, cut, budget)?;
-        let cut_off = solved.uncertain(guess, 0.2 * self.frame.unit());
-        let fermi = self.divided(surface, levels, guess, tolerance, between + cut_off, budget)?;
-        Ok(Some(Closed { fermi, between }))
+        let radius = radius(&cell(&self.frame, solved.mesh.size)?);
+        for _ in 0..4 {
+            let ranges = solved
+                .points
+                .iter()
+                .map(|(_, at)| self.kept(at, guess, radius));
+            let Some(ranges) = ranges.collect::<Option<Vec<_>>>() else {
+                return Ok(None);
+            };
+            let near: Option<Vec<Nearby>> = solved
+                .points
+                .par_iter()
+                .zip(ranges)
+                .map(|((basis, at), range)| {
+                    self.nearby(basis, at, (range, guess), wanted.cut, budget)
+                })
+                .collect::<Result<_, Error>>()?;
+            let Some(near) = near else {
+                return Ok(None);
+            };
+            let surface = Surface::new(self, &solved.mesh, &near, guess)?;
+            let first = surface.level(wanted.levels);
+            // The levels are good near the guess only.
+            if (first - guess).abs() > 0.3 * CLEAR[1] * self.frame.unit() {
+                guess = first;
+                continue;
+            }
+            let between =
+                self.missed(&surface.corners(), &solved.mesh, guess, wanted.cut, budget)?;
+            if hasty && between > 0.4 * wanted.tolerance {
+                return Ok(Some(Closed {
+                    fermi: None,
+                    between,
+                }));
+            }
+            let cut_off = solved.uncertain(guess, 0.2 * self.frame.unit());
+            let mut fermi = self.divided(surface, wanted, guess, between + cut_off, budget)?;
+            fermi.energy = solved.energy;
+            fermi.energy.error += cut_off * wanted.levels.max(1.0);
+            return Ok(Some(Closed {
+                fermi: Some(fermi),
+                between,
+            }));
+        }
+        Ok(None)
     }
 
-    /// A mesh solved with levels enough above the filling, the level there by its own simplices, and for each point how
-    /// many levels are to be kept apart from all above; `None` where they cannot be.
-    #[allow(clippy::type_complexity)]
+    /// A mesh solved with levels enough above the filling, and the level there by its own simplices; `None` where the
+    /// levels do not reach far enough.
     fn solved_for(
         &self,
-        levels: f64,
         size: usize,
-        (cut, share): (f64, f64),
+        bands: &mut usize,
+        wanted: Wanted,
         budget: &Budget,
-    ) -> Result<Option<(Solved, f64, Vec<usize>)>, Error> {
-        let clear = CLEAR * self.frame.unit();
-        let mut bands = levels.ceil() as usize + [2, 4, 6][self.frame.dimension - 1];
-        for _ in 0..4 {
-            let mesh = self.mesh(size);
+    ) -> Result<Option<(Solved, f64)>, Error> {
+        let mesh = self.mesh(size);
+        let radius = radius(&cell(&self.frame, mesh.size)?);
+        for _ in 0..5 {
             let points: Vec<(Basis, Levels)> = mesh
                 .points
                 .par_iter()
                 .map(|k| {
-                    let basis = self.basis(*k, cut);
-                    let solved = self.solve_on(&basis, *k, bands, true, budget)?;
+                    let basis = self.basis(*k, wanted.cut);
+                    let solved = self.solve_on(&basis, *k, *bands, true, budget)?;
                     Ok((basis, solved))
                 })
                 .collect::<Result<_, Error>>()?;
             let known: Vec<Vec<Estimate>> = points
                 .par_iter()
                 .map(|(_, at)| {
-                    let known = self.predict(at, cut)?;
-                    Ok(known.iter().map(|p| p.known_to(share)).collect())
+                    let known = self.predict(at, wanted.cut)?;
+                    Ok(known.iter().map(|p| p.known_to(wanted.share)).collect())
                 })
                 .collect::<Result<_, Error>>()?;
-            let least = known.iter().map(Vec::len).min().unwrap_or(0);
             let energies: Vec<Vec<f64>> = known
                 .iter()
                 .map(|at| {
@@ -164,25 +224,54 @@ impl Waves<'_> {
                     energies
                 })
                 .collect();
-            let guess = self
-                .states_of(&mesh, &energies, least, Vec::new())?
-                .fill(levels.min(least as f64))
-                .level;
-            let counts: Option<Vec<usize>> = points
-                .iter()
-                .map(|(_, at)| kept(&at.energies, guess + clear))
-                .collect();
-            let solved = Solved {
-                mesh,
-                points,
-                known,
-            };
-            match counts {
-                Some(counts) => return Ok(Some((solved, guess, counts))),
-                None => bands += 4,
+            let least = energies.iter().map(Vec::len).min().unwrap_or(0);
+            if (least as f64) < wanted.levels {
+                return Ok(None);
             }
+            let filled = self
+                .states_of(&mesh, &energies, least, Vec::new())?
+                .fill(wanted.levels);
+            if points
+                .iter()
+                .all(|(_, at)| self.kept(at, filled.level, radius).is_some())
+            {
+                let solved = Solved {
+                    mesh,
+                    points,
+                    known,
+                    energy: Estimate {
+                        value: filled.energy,
+                        error: filled.curved.abs(),
+                    },
+                };
+                return Ok(Some((solved, filled.level)));
+            }
+            *bands += 4;
         }
         Ok(None)
+    }
+
+    /// The levels at a point that may come to an energy within `radius` of it; `None` where there may be more.
+    fn kept(&self, at: &Levels, near: f64, radius: f64) -> Option<Range<usize>> {
+        let [lower, upper] = CLEAR.map(|x| x * self.frame.unit());
+        // A free particle's wave vector at that energy above the lowest potential, or so; it moves by the radius.
+        let floor = self.mean - self.swing;
+        let wave = (near - floor).max(0.0).sqrt();
+        let high = floor + (wave + radius).powi(2) + upper;
+        let low = floor + (wave - radius).max(0.0).powi(2) - lower;
+        let gap = |count: usize| at.energies[count] - at.energies[count - 1];
+        let end = (1..at.energies.len())
+            .filter(|count| at.energies[*count] > high)
+            .take(4)
+            .max_by(|a, b| gap(*a).total_cmp(&gap(*b)).then(b.cmp(a)))?;
+        let below = at.energies.iter().filter(|e| **e < low).count();
+        let start = (1..=below.min(end))
+            .rev()
+            .filter(|count| *count < at.energies.len())
+            .take(2)
+            .max_by(|a, b| gap(*a).total_cmp(&gap(*b)).then(a.cmp(b)))
+            .unwrap_or(0);
+        Some(start..end)
     }
 
     /// How far the levels at cell corners near the guess are from solves there.
@@ -195,6 +284,7 @@ impl Waves<'_> {
         budget: &Budget,
     ) -> Result<f64, Error> {
         let unit = self.frame.unit();
+        let close = 0.03 * unit;
         let nearest = |corner: &Corner| {
             corner
                 .energies
@@ -225,74 +315,88 @@ impl Waves<'_> {
         let worst: Vec<f64> = chosen
             .par_iter()
             .map(|(nearest, k, corner)| {
-                let count = corner.energies.len();
+                let count = corner.below + corner.energies.len() + 1;
                 let at = self.solve_on(&self.basis(*k, cut), *k, count, true, budget)?;
                 let mut exact: Vec<f64> = self.predict(&at, cut)?.iter().map(|p| p.value).collect();
                 exact.sort_by(f64::total_cmp);
-                let close = nearest.max(0.03 * unit) * (1.0 + 1e-9);
-                let rows = exact.iter().zip(&corner.energies);
-                Ok(rows
-                    .filter(|(_, e)| (**e - guess).abs() <= close)
-                    .map(|(exact, e)| (exact - e).abs())
-                    .fold(0.0, f64::max))
+                let close = nearest.max(close) * (1.0 + 1e-9);
+                let within = |e: f64| (e - guess).abs() <= close;
+                // A level more or less on either side counts as wrong by how near it came.
+                let mut worst = 0.0_f64;
+                for (index, exact) in exact.iter().enumerate() {
+                    let found = index
+                        .checked_sub(corner.below)
+                        .and_then(|index| corner.energies.get(index));
+                    match found {
+                        Some(found) if within(*found) || within(*exact) => {
+                            worst = worst.max((exact - found).abs());
+                        }
+                        None if within(*exact) => worst = worst.max(close),
+                        _ => {}
+                    }
+                }
+                Ok(worst)
             })
             .collect::<Result<_, Error>>()?;
-        Ok(worst.into_iter().fold(0.0, f64::max))
+        // Errors of order q⁴ average over a cell to less than half of what they are at its corners.
+        Ok(0.5 * worst.into_iter().fold(0.0, f64::max))
     }
 
     /// Divides the surface's simplices until the level settles; `known` is what else is uncertain.
     fn divided(
         &self,
         mut surface: Surface,
-        levels: f64,
+        wanted: Wanted,
         guess: f64,
-        tolerance: f64,
         known: f64,
         budget: &Budget,
     ) -> Result<Fermi, Error> {
         let (unit, d) = (self.frame.unit(), self.frame.dimension);
-        let everything = (f64::NEG_INFINITY, f64::INFINITY);
-        // Twice without leaving anything out, for the energy of all filled states.
-        let first = surface.crossed(everything).states.fill(levels);
+        let first = surface.level(wanted.levels);
         let mut places = surface.places();
         surface.divide(budget)?;
-        let states = surface.crossed(everything).states;
-        let second = states.fill(levels);
-        let mut found = self.refined(&second, &first, 2.0, known, levels);
-        let mut before = (first.level - guess).abs();
-        let mut change = second.level - first.level;
-        let mut level = second.level;
-        let mut smooth = second.density.value;
+        let mut level = surface.level(wanted.levels);
+        let mut before = (first - guess).abs();
+        let mut change = level - first;
+        let mut density: Option<Estimate> = None;
         loop {
             let crossing = CROSSING[d - 1] * unit / surface.fineness().powi(2);
-            found.level = Estimate {
-                value: level + change / 3.0,
-                error: (change.abs() + 0.25 * before) / 3.0 + crossing + known + 1e-13 * unit,
-            };
-            found.settled = found.level.error <= tolerance;
-            let grown = surface.places() - places;
-            places = surface.places();
-            // What is known otherwise sets how far it is worth going.
-            let good = (change.abs() + 0.25 * before) / 3.0 + crossing < 0.1 * known;
-            if found.settled || good || places + (1 << (d - 1)) * grown > MOST_PLACES {
-                return Ok(found);
-            }
             let width = 2.0 * change.abs() + 2.0 * crossing;
             let window = (level - width, level + width);
+            let states = surface.crossed(window).states;
+            let smooth = states.density_within(level, 0.5 * width);
+            let point = states.density(level);
+            let apart = density.map_or(smooth, |coarser| (smooth - coarser.value).abs());
+            density = Some(Estimate {
+                value: smooth,
+                error: apart + (smooth - point).abs(),
+            });
+            let open = (change.abs() + 0.25 * before) / 3.0 + crossing;
+            let error = open + known + 1e-13 * unit;
+            let found = Fermi {
+                level: Estimate {
+                    value: level + change / 3.0,
+                    error,
+                },
+                density: density.unwrap_or_default(),
+                energy: Estimate::default(),
+                settled: error <= wanted.tolerance,
+            };
+            let grown = surface.places() - places;
+            places = surface.places();
+            // What is uncertain otherwise sets how far it is worth going.
+            let enough = found.settled || open < 0.1 * known;
+            if enough || places + (1 << (d - 1)) * grown > MOST_PLACES {
+                return Ok(found);
+            }
             surface.prune(window);
             surface.divide(budget)?;
             let crossed = surface.crossed(window);
-            let next = crossed.states.fill_from(levels, crossed.filled);
+            let next = crossed.states.fill_from(wanted.levels, crossed.filled);
             // Outside the window nothing is known: what was found stands.
             if (next - level).abs() > 0.9 * width {
                 return Ok(found);
             }
-            let denser = crossed.states.density_within(next, 0.5 * width);
-            found.density = Estimate {
-                value: denser,
-                error: (denser - smooth).abs() + (denser - crossed.states.density(next)).abs(),
-            };
-            smooth = denser;
             (before, change, level) = (change.abs(), next - level, next);
         }
     }
@@ -309,14 +413,12 @@ impl Solved {
     }
 }
 
-/// How many of these levels to keep, the first left out being above `clear` and as far from the last kept as may be.
-fn kept(energies: &[f64], clear: f64) -> Option<usize> {
-    (1..energies.len())
-        .filter(|count| energies[*count] > clear)
-        .max_by(|a, b| {
-            let gap = |count: usize| energies[count] - energies[count - 1];
-            gap(*a).total_cmp(&gap(*b)).then(b.cmp(a))
-        })
+/// The largest distance of a corner from the middle.
+fn radius(cell: &[Piece]) -> f64 {
+    cell.iter()
+        .flat_map(|piece| piece.corners)
+        .map(|corner| dot(corner, corner).sqrt())
+        .fold(0.0, f64::max)
 }
 
 impl Waves<'_> {

@@ -1,6 +1,7 @@
-//! The levels near a solved wave vector.
+//! The levels near a solved wave vector, at energies near a given one.
 //!
-//! With the lowest states ψ (the set P) at k₀, all others the set Q, p = ∂H/∂k = 2(k₀+G), and an energy s below all of Q,
+//! With the states ψ (the set P) at k₀ whose energies ε are near an energy s, all others the set Q, and p = ∂H/∂k =
+//! 2(k₀+G),
 //!
 //! ```text
 //! φ_n(q) = ψ_n + Σ_x q_x w_nx,    (H − s) w_nx = −Q p_x ψ_n
@@ -9,10 +10,12 @@
 //! ```
 //!
 //! Levels at k₀ + q are those of this small pencil. At E = s it is Löwdin's partition (J. Chem. Phys. 19, 1396 (1951))
-//! to third order in q, so that levels near s are wrong by order q⁴ only; crossings within P stay crossings. What the cut
-//! leaves out, δ of `settle.rs`, is taken off as a matrix on P.
+//! to third order in q, so that levels near s are wrong by order q⁴ only; crossings within P stay crossings; and as many
+//! levels lie below s as states of Q do and levels of the pencil (Haynsworth, Linear Algebra Appl. 1, 73 (1968)). What
+//! the cut leaves out, δ of `settle.rs`, is taken off as a matrix on P.
 //!
-//! Fails, with `None`, where some of Q lies below s. Its error is not known from within: the caller compares with solves.
+//! Failure mode: a level of Q that comes to s within |q|. Its error is not known from within: the caller compares with
+//! solves.
 
 use super::basis::Waves;
 use super::eigen::Scalar;
@@ -22,15 +25,25 @@ use super::{Budget, Error, Levels};
 use faer::linalg::solvers::Solve;
 use faer::{Mat, Side};
 use nalgebra::{Complex, DMatrix};
+use std::ops::Range;
 
-/// A solved point and what its neighbourhood is found from, real where the crystal has a centre of inversion.
-pub(super) enum Nearby {
+/// A solved point and what its neighbourhood is found from.
+pub(super) struct Nearby {
+    /// How many levels lie below those that it gives.
+    pub below: usize,
+    /// How many levels it gives.
+    pub count: usize,
+    pencil: Kind,
+}
+
+/// Real where the crystal has a centre of inversion.
+enum Kind {
     Real(Pencil<f64>),
     Complex(Pencil<Complex<f64>>),
 }
 
 /// Coefficient matrices of the powers of q.
-pub(super) struct Pencil<T: nalgebra::ComplexField> {
+struct Pencil<T: nalgebra::ComplexField> {
     dimension: usize,
     /// H at q = 0, then by x, by x ≤ y, by x ≤ y ≤ z.
     constant: DMatrix<T>,
@@ -44,55 +57,58 @@ pub(super) struct Pencil<T: nalgebra::ComplexField> {
 impl Nearby {
     /// The levels at k₀ + q, q on the axes of the lattice.
     pub fn levels(&self, q: [f64; 3]) -> Vec<f64> {
-        match self {
-            Self::Real(pencil) => pencil.levels(q),
-            Self::Complex(pencil) => pencil.levels(q),
-        }
-    }
-
-    /// How many levels it gives.
-    pub fn count(&self) -> usize {
-        match self {
-            Self::Real(pencil) => pencil.constant.nrows(),
-            Self::Complex(pencil) => pencil.constant.nrows(),
+        match &self.pencil {
+            Kind::Real(pencil) => pencil.levels(q),
+            Kind::Complex(pencil) => pencil.levels(q),
         }
     }
 }
 
 impl Waves<'_> {
-    /// The neighbourhood of a point solved at `cut`, of its lowest `count` levels, for energies near `near`.
+    /// The neighbourhood of a point solved at `cut`, of a range of its levels, for energies near `near`; `None` where
+    /// levels above the range do not lie above that.
     pub(super) fn nearby(
         &self,
         basis: &Basis,
         levels: &Levels,
-        (count, near): (usize, f64),
+        (range, near): (Range<usize>, f64),
         cut: f64,
         budget: &Budget,
     ) -> Result<Option<Nearby>, Error> {
         budget.spend(levels.waves.len())?;
-        let left_out = self.left_out_between(levels, count, cut)?;
-        Ok(if self.is_real() {
-            self.pencil::<f64>(basis, levels, (count, near), &left_out)?
-                .map(Nearby::Real)
+        let left_out = self.left_out_between(levels, range.clone(), cut)?;
+        let (below, count) = (range.start, range.len());
+        let given = (range, near);
+        let pencil = if self.is_real() {
+            self.pencil::<f64>(basis, levels, given, &left_out)?
+                .map(Kind::Real)
         } else {
-            self.pencil::<Complex<f64>>(basis, levels, (count, near), &left_out)?
-                .map(Nearby::Complex)
-        })
+            self.pencil::<Complex<f64>>(basis, levels, given, &left_out)?
+                .map(Kind::Complex)
+        };
+        Ok(pencil.map(|pencil| Nearby {
+            below,
+            count,
+            pencil,
+        }))
     }
 
     fn pencil<T: Scalar + nalgebra::ComplexField<RealField = f64>>(
         &self,
         basis: &Basis,
         levels: &Levels,
-        (count, near): (usize, f64),
+        (range, near): (Range<usize>, f64),
         left_out: &Mat<Complex<f64>>,
     ) -> Result<Option<Pencil<T>>, Error> {
         let (n, d) = (levels.waves.len(), self.frame.dimension);
         let of = <T as Scalar>::from_complex;
         let number = |x: f64| of(Complex::new(x, 0.0));
-        let states = Mat::<T>::from_fn(n, count, |i, j| {
+        let (below, count) = (range.start, range.len());
+        let all = Mat::<T>::from_fn(n, range.end, |i, j| {
             of(levels.vectors[(i, j)] * self.gauge(levels.waves[i]).conj())
         });
+        let states = all.as_ref().subcols(below, count).to_owned();
+        let lower = all.as_ref().subcols(0, below).to_owned();
         let momenta: Vec<[f64; 3]> = levels
             .waves
             .iter()
@@ -102,28 +118,32 @@ impl Waves<'_> {
             })
             .collect();
         let times = |axis: usize, of: &Mat<T>| {
-            Mat::<T>::from_fn(n, of.ncols(), |i, j| {
-                number(momenta[i][axis]) * of[(i, j)]
-            })
+            Mat::<T>::from_fn(n, of.ncols(), |i, j| number(momenta[i][axis]) * of[(i, j)])
         };
         let moved: Vec<Mat<T>> = (0..d).map(|x| times(x, &states)).collect();
-        // H − s with the states of P raised out of the way, so that it is positive.
+        // H − s with all states up to those of P raised out of the way, so that it is positive.
         let mut raised = self.matrix::<T>(&levels.waves, levels.k, basis.reach)?;
         let lift = self.frame.unit() + near.abs();
-        let lifted = Mat::<T>::from_fn(n, count, |i, j| {
-            states[(i, j)] * number(lift + near - levels.energies[j])
+        let lifted = Mat::<T>::from_fn(n, range.end, |i, j| {
+            all[(i, j)] * number(lift + near - levels.energies[j])
         });
-        raised += &lifted * states.adjoint();
+        raised += &lifted * all.adjoint();
         for i in 0..n {
             raised[(i, i)] = raised[(i, i)] - number(near);
         }
         let Ok(factors) = raised.llt(Side::Lower) else {
             return Ok(None);
         };
-        let outside = |of: &Mat<T>| of - &states * (states.adjoint() * of);
+        let above = |of: &Mat<T>| of - &all * (all.adjoint() * of);
         let answers: Vec<Mat<T>> = moved
             .iter()
-            .map(|moved| outside(&factors.solve(-outside(moved))))
+            .map(|moved| {
+                let parts = lower.adjoint() * moved;
+                let shares = Mat::<T>::from_fn(below, count, |i, j| {
+                    parts[(i, j)] * number(1.0 / (near - levels.energies[i]))
+                });
+                above(&factors.solve(-above(moved))) + &lower * shares
+            })
             .collect();
         let small = |left: &Mat<T>, right: &Mat<T>| {
             let product = left.adjoint() * right;
@@ -131,7 +151,11 @@ impl Waves<'_> {
         };
         let hermitian = |m: DMatrix<T>| (&m + m.adjoint()) * number(0.5);
         let energies = DMatrix::from_fn(count, count, |i, j| {
-            let kept = if i == j { levels.energies[i] } else { 0.0 };
+            let kept = if i == j {
+                levels.energies[below + i]
+            } else {
+                0.0
+            };
             of(Complex::new(kept, 0.0) - left_out[(i, j)])
         });
         let mut pencil = Pencil {
@@ -155,7 +179,14 @@ impl Waves<'_> {
         for x in 0..d {
             for y in x..d {
                 for z in y..d {
-                    let orders = [[x, y, z], [y, z, x], [z, x, y], [x, z, y], [y, x, z], [z, y, x]];
+                    let orders = [
+                        [x, y, z],
+                        [y, z, x],
+                        [z, x, y],
+                        [x, z, y],
+                        [y, x, z],
+                        [z, y, x],
+                    ];
                     let mut sum = DMatrix::<T>::zeros(count, count);
                     let mut seen: Vec<[usize; 3]> = Vec::new();
                     for order in orders {

@@ -20,6 +20,7 @@ use super::{Budget, Decay, Error, Estimate, Levels};
 use faer::Mat;
 use nalgebra::Complex;
 use rustc_hash::FxHashMap;
+use std::ops::Range;
 
 /// No larger cut tells how much of δ is uncertain.
 pub(super) const UNTRIED: f64 = f64::INFINITY;
@@ -197,19 +198,22 @@ impl Waves<'_> {
         }
     }
 
-    /// δ as a matrix between the lowest `count` levels, each at its own energy; δ of each is its diagonal.
+    /// δ as a matrix between some levels, each at its own energy; δ of each is its diagonal.
     pub(super) fn left_out_between(
         &self,
         levels: &Levels,
-        count: usize,
+        range: Range<usize>,
         cut: f64,
     ) -> Result<Mat<Complex<f64>>, Error> {
         let outside = self.outside(levels, cut)?;
+        let count = range.len();
         let mut sums = Mat::<Complex<f64>>::zeros(count, count);
         let mut scaled = vec![Complex::new(0.0, 0.0); count];
         for (wave, row) in outside.chunks(levels.energies.len()) {
             for (j, scaled) in scaled.iter_mut().enumerate() {
-                *scaled = row[j] * (wave.weight / wave.below(levels.energies[j], cut)).sqrt();
+                let level = range.start + j;
+                let below = wave.below(levels.energies[level], cut);
+                *scaled = row[level] * (wave.weight / below).sqrt();
             }
             for i in 0..count {
                 for j in 0..count {

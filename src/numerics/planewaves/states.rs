@@ -186,11 +186,7 @@ impl Waves<'_> {
 
 impl States {
     /// States with energies in `range`; that of all corners where it has no ends.
-    pub(super) fn of(
-        dimension: usize,
-        simplices: Vec<(Corners, f64)>,
-        range: (f64, f64),
-    ) -> Self {
+    pub(super) fn of(dimension: usize, simplices: Vec<(Corners, f64)>, range: (f64, f64)) -> Self {
         let all = simplices.iter().map(|(corner, _)| corner);
         let range = if range.0.is_finite() {
             range

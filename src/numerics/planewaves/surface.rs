@@ -5,9 +5,10 @@
 //! 55, 355 (1995)), again and again; of the others all or nothing is filled. In the smallest, levels are linear
 //! (`states.rs`), which is wrong by second order in their size: a division leaves a quarter of the error.
 //!
-//! A simplex may be crossed where none of its corners says so: by a level that bends, and by one that turns at a crossing
-//! with another. Energies within `BENT` times the square of the longest edge of a corner's count as crossed, and near
-//! another level those within a quarter of what a free particle's energy changes along that edge.
+//! A simplex may be crossed where none of its corners says so: by a level that bends, and by one that turns where it meets
+//! others. Energies within `BENT` times the square of the longest edge of a corner's count as crossed, and where another
+//! level is as near that they may meet, those that a free particle has no farther away than any point of the simplex is
+//! from some corner (`FARTHEST` of the edge; √(3/8) in a regular tetrahedron).
 
 use super::basis::Waves;
 use super::lattice::dot;
@@ -21,6 +22,8 @@ use rustc_hash::FxHashMap;
 
 /// Levels bend by up to this much between corners, times the square of the edge: four times what free particles do.
 const BENT: f64 = 1.0;
+/// No point of a simplex is farther from all its corners than this share of its longest edge.
+const FARTHEST: f64 = 0.62;
 
 /// A simplex by its corners' numbers, and the share of the zone it stands for.
 type Simplex = ([u32; 4], f64);
@@ -59,17 +62,14 @@ pub(super) struct Corner {
     /// The mesh point that it was seen from.
     pub point: usize,
     pub place: [f64; 3],
+    /// How many levels lie below these.
+    pub below: usize,
     pub energies: Vec<f64>,
 }
 
 impl<'n> Surface<'n> {
     /// The cells of all irreducible points of a mesh, for levels near `level`.
-    pub fn new(
-        waves: &Waves,
-        mesh: &Mesh,
-        near: &'n [Nearby],
-        level: f64,
-    ) -> Result<Self, Error> {
+    pub fn new(waves: &Waves, mesh: &Mesh, near: &'n [Nearby], level: f64) -> Result<Self, Error> {
         let frame = &waves.frame;
         let pieces = cell(frame, mesh.size)?;
         let total = mesh.of.len() as f64;
@@ -82,7 +82,7 @@ impl<'n> Surface<'n> {
                 Patch::new(near, &own, mesh.weights[point] / total, frame.dimension)
             })
             .collect();
-        let kinetic = (level - waves.mean).max(0.1 * frame.unit());
+        let kinetic = (level - waves.mean + waves.swing).max(0.1 * frame.unit());
         Ok(Self {
             dimension: frame.dimension,
             patches,
@@ -102,16 +102,23 @@ impl<'n> Surface<'n> {
         self.patches.iter().map(|patch| patch.places.len()).sum()
     }
 
+    /// The level at which so many levels per cell are filled, while nothing has been given up.
+    pub fn level(&self, levels: f64) -> f64 {
+        let all = self.crossed((f64::NEG_INFINITY, f64::INFINITY));
+        all.states.fill_from(levels, all.filled)
+    }
+
     /// The corners of all cells: what is farthest from where levels were solved.
     pub fn corners(&self) -> Vec<Corner> {
         let mut found = Vec::new();
         for (point, patch) in self.patches.iter().enumerate() {
-            let count = patch.near.count();
-            for (place, energies) in patch.places.iter().zip(patch.energies.chunks(count)) {
+            let (below, count) = (patch.near.below, patch.near.count);
+            for (index, place) in patch.places.iter().enumerate() {
                 found.push(Corner {
                     point,
                     place: *place,
-                    energies: energies.to_vec(),
+                    below,
+                    energies: patch.energies[index * count..(index + 1) * count].to_vec(),
                 });
             }
         }
@@ -146,7 +153,7 @@ impl<'n> Surface<'n> {
         let mut simplices = Vec::new();
         for patch in &self.patches {
             filled += patch.filled;
-            let count = patch.near.count();
+            let count = patch.near.count;
             for (corners, share) in &patch.simplices {
                 for band in 0..count {
                     let own = patch.corner_energies(corners, band, self.dimension);
@@ -173,8 +180,11 @@ impl<'n> Patch<'n> {
             energies: Vec::new(),
             middles: FxHashMap::default(),
             simplices: Vec::new(),
-            filled: 0.0,
+            filled: near.below as f64 * weight,
         };
+        if near.count == 0 {
+            return patch;
+        }
         for piece in pieces {
             let mut corners = [0; 4];
             for (slot, place) in corners.iter_mut().zip(&piece.corners[..=d]) {
@@ -216,7 +226,12 @@ impl<'n> Patch<'n> {
             let share = share * part;
             let (ab, ac, bc) = (self.middle(a, b), self.middle(a, c), self.middle(b, c));
             if d == 2 {
-                let children = [[a, ab, ac, 0], [ab, b, bc, 0], [ac, bc, c, 0], [ab, bc, ac, 0]];
+                let children = [
+                    [a, ab, ac, 0],
+                    [ab, b, bc, 0],
+                    [ac, bc, c, 0],
+                    [ab, bc, ac, 0],
+                ];
                 self.simplices.extend(children.map(|child| (child, share)));
                 continue;
             }
@@ -236,7 +251,7 @@ impl<'n> Patch<'n> {
     }
 
     fn prune(&mut self, (low, high): (f64, f64), d: usize, speed: f64) {
-        let count = self.near.count();
+        let count = self.near.count;
         let old = std::mem::take(&mut self.simplices);
         for (corners, share) in old {
             let edge = self.longest(&corners, d);
@@ -244,8 +259,9 @@ impl<'n> Patch<'n> {
             let mut crossed = false;
             for band in 0..count {
                 let own = self.corner_energies(&corners, band, d);
-                let near = self.apart(&corners, band, d) < speed * edge;
-                let slack = BENT * edge * edge + if near { 0.25 * speed * edge } else { 0.0 };
+                let near = self.apart(&corners, band, d) < 2.0 * FARTHEST * speed * edge;
+                let turn = if near { FARTHEST * speed * edge } else { 0.0 };
+                let slack = turn.max(BENT * edge * edge);
                 if own[d] + slack <= low {
                     below += 1;
                 } else if own[0] - slack < high {
@@ -262,7 +278,7 @@ impl<'n> Patch<'n> {
 
     /// A band's energies at the corners, rising.
     fn corner_energies(&self, corners: &[u32; 4], band: usize, d: usize) -> Corners {
-        let count = self.near.count();
+        let count = self.near.count;
         let mut own = [f64::INFINITY; 4];
         for (slot, corner) in own.iter_mut().zip(&corners[..=d]) {
             *slot = self.energies[*corner as usize * count + band];
@@ -273,7 +289,7 @@ impl<'n> Patch<'n> {
 
     /// How near a band comes to another at the corners.
     fn apart(&self, corners: &[u32; 4], band: usize, d: usize) -> f64 {
-        let count = self.near.count();
+        let count = self.near.count;
         let mut least = f64::INFINITY;
         for corner in &corners[..=d] {
             let own = &self.energies[*corner as usize * count..(*corner as usize + 1) * count];
@@ -291,7 +307,10 @@ impl<'n> Patch<'n> {
         let mut longest = 0.0_f64;
         for i in 0..=d {
             for j in 0..i {
-                let (a, b) = (self.places[corners[i] as usize], self.places[corners[j] as usize]);
+                let (a, b) = (
+                    self.places[corners[i] as usize],
+                    self.places[corners[j] as usize],
+                );
                 let way: [f64; 3] = std::array::from_fn(|x| a[x] - b[x]);
                 longest = longest.max(dot(way, way));
             }

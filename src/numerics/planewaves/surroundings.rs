@@ -82,7 +82,9 @@ fn facets(mesh: &Frame) -> Vec<[f64; 3]> {
     let d = mesh.dimension;
     let length = |n: [i32; 3]| mesh.square(n.map(f64::from));
     // A class's shortest vector is no longer than one with entries of 0 and 1.
-    let longest: f64 = (0..d).map(|i| dot(mesh.reciprocal[i], mesh.reciprocal[i]).sqrt()).sum();
+    let longest: f64 = (0..d)
+        .map(|i| dot(mesh.reciprocal[i], mesh.reciprocal[i]).sqrt())
+        .sum();
     let mut classes: FxHashMap<[i32; 3], (f64, Vec<[i32; 3]>)> = FxHashMap::default();
     for n in mesh.waves([0.0; 3], longest * longest) {
         let class = n.map(|x| x.rem_euclid(2));
