@@ -25,6 +25,7 @@
 #![allow(clippy::indexing_slicing, clippy::needless_range_loop)]
 
 mod basis;
+mod closing;
 mod crease;
 mod edges;
 mod eigen;
@@ -37,6 +38,7 @@ mod levels;
 mod mesh;
 mod nearby;
 mod path;
+mod plan;
 mod potential;
 mod response;
 mod samples;
