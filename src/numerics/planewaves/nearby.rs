@@ -245,3 +245,60 @@ fn add_to<T: nalgebra::ComplexField>(sum: &mut DMatrix<T>, part: &DMatrix<T>, sh
         *sum += part.clone() * share.clone();
     }
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::numerics::planewaves::{Decay, Lattice, Potential};
+
+    /// Levels near s are wrong by order q⁴, with low levels left out and kept, real and complex.
+    #[test]
+    fn errors_fall_as_the_fourth_power_of_the_distance() {
+        let lattice = Lattice::new(&[[1.0, 0.0, 0.0], [0.3, 1.1, 0.0]]).expect("a lattice");
+        let budget = Budget::new(&|| false, 500, 1000);
+        for turn in [0.0, 0.9] {
+            let components = |n: [i32; 3]| {
+                let size = (-0.25 * f64::from(n[0] * n[0] + n[1] * n[1])).exp();
+                let odd = f64::from((n[0] + 2 * n[1]).signum());
+                Complex::new(-9.0, turn * 4.0 * odd) * size * if n == [0; 3] { 0.0 } else { 1.0 }
+            };
+            let potential = Potential {
+                components: &components,
+                decay: Decay::Finite { radius: 60.0 },
+            };
+            let waves = Waves::new(&lattice, potential).expect("waves");
+            assert_eq!(waves.is_real(), turn == 0.0);
+            let k = [0.17, 0.31, 0.0];
+            let basis = waves.basis(k, 1500.0);
+            let levels = waves.solve_on(&basis, k, 8, true, &budget).expect("levels");
+            for (range, level) in [(0..4, 2), (2..5, 3)] {
+                let first = range.start;
+                let near = waves
+                    .nearby(
+                        &basis,
+                        &levels,
+                        (range, levels.energies[level]),
+                        1500.0,
+                        &budget,
+                    )
+                    .expect("no error")
+                    .expect("levels above are above");
+                let error = |step: f64| {
+                    let q = [0.6 * step, -0.8 * step, 0.0];
+                    let moved = waves.frame.off_axes(q);
+                    let there = std::array::from_fn(|i| k[i] + moved[i]);
+                    let exact = waves
+                        .solve_on(&basis, there, 8, false, &budget)
+                        .expect("levels");
+                    let left_out = waves.left_out_between(&levels, level..level + 1, 1500.0);
+                    let left_out = left_out.expect("no error")[(0, 0)].re;
+                    (near.levels(q)[level - first] - exact.energies[level] + left_out).abs()
+                };
+                assert!(error(0.0) < 1e-10);
+                let (wide, half) = (error(0.4), error(0.2));
+                assert!(wide < 2e-2 && half > 1e-9, "{wide} {half}");
+                assert!(half < wide / 10.0, "{turn} {level}: {wide} {half}");
+            }
+        }
+    }
+}

@@ -190,3 +190,46 @@ fn cut(facet: [f64; 3], corners: &[[f64; 3]], d: usize) -> Vec<Piece> {
         })
         .collect()
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    /// Cells of meshes as fine along every vector: a square and a hexagon, edges cut in two; a cube, each face in four;
+    /// the truncated octahedron around a bcc point, six squares in four and eight hexagons in six. The whole point
+    /// group leaves one piece of each kind of edge: hexagons border squares and hexagons in turn.
+    #[test]
+    fn cells_have_the_faces_of_their_lattice() {
+        let h = 3f64.sqrt() / 2.0;
+        let rows: [(&[[f64; 3]], usize, usize); 5] = [
+            (&[[1.0, 0.0, 0.0], [0.0, 1.0, 0.0]], 8, 1),
+            (&[[1.0, 0.0, 0.0], [-0.5, h, 0.0]], 12, 1),
+            (&[[1.0, 0.0, 0.0], [0.0, 1.0, 0.0], [0.0, 0.0, 1.0]], 24, 1),
+            (&[[0.0, 0.5, 0.5], [0.5, 0.0, 0.5], [0.5, 0.5, 0.0]], 72, 3),
+            // The same lattice by skew vectors.
+            (&[[0.0, 0.5, 0.5], [0.5, 0.5, 1.0], [1.0, 1.5, 1.5]], 72, 3),
+        ];
+        for (vectors, wanted, kinds) in rows {
+            let frame = Frame::new(&Lattice::new(vectors).expect("a lattice")).expect("a frame");
+            let size = std::array::from_fn(|i| if i < vectors.len() { 6 } else { 1 });
+            let pieces = cell(&frame, size).expect("a cell");
+            assert_eq!(pieces.len(), wanted);
+            let zero = [([0; 3], nalgebra::Complex::new(0.0, 0.0))];
+            let group = super::super::symmetry::find_symmetry(&frame, &zero).operations;
+            let own = distinct(&frame, &pieces, &group);
+            assert_eq!(own.len(), kinds);
+            let total: f64 = own.iter().map(|piece| piece.share).sum();
+            assert!((total - 1.0).abs() < 1e-12);
+        }
+    }
+
+    /// A general lattice: no facet is lost, whatever the sizes along the vectors.
+    #[test]
+    fn cells_of_skew_lattices_fill_space() {
+        let vectors = [[1.0, 0.0, 0.0], [0.4, 1.1, 0.0], [0.3, 0.7, 0.9]];
+        let frame = Frame::new(&Lattice::new(&vectors).expect("a lattice")).expect("a frame");
+        for size in [[4, 4, 4], [4, 6, 12], [8, 2, 6]] {
+            assert!(cell(&frame, size).is_ok_and(|pieces| pieces.len() >= 24));
+        }
+    }
+}
