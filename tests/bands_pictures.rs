@@ -2,7 +2,6 @@
 #![allow(clippy::indexing_slicing, clippy::unwrap_used, missing_docs)]
 
 #[path = "bands/mod.rs"]
-#[allow(dead_code)]
 mod bench;
 
 use bench::Bench;

@@ -9,35 +9,15 @@
 #[path = "bands/mod.rs"]
 mod bench;
 
-use std::sync::Arc;
-
-use bench::{Bench, EV};
+use bench::{Bench, EV, RYDBERG, row};
 use crenate::bands::{Class, Feature, GapKind, Measured, Solution, TargetState, Unsolved};
 use crenate::model::{ParameterId, ParameterKind, Setting};
 use serde_json::Value;
-
-/// Ry in joule (CODATA 2022).
-const RYDBERG: f64 = 13.605_693_122_990 * EV;
-
-/// One row of the table of worst errors (`cargo test --test bands_zones -- --nocapture | grep '|'`).
-fn row(case: &str, against: &str, worst: f64, bar: f64) {
-    println!("| {case} | {against} | {worst:.1e} | {bar:.0e} |");
-    assert!(worst <= bar, "{case}: {worst:e} above {bar:e}");
-}
 
 fn value(bench: &Bench, crystal: usize, measure: &str) -> Measured {
     let (_, measures) = bench.assess(crystal);
     let found = measures.iter().find(|one| one.name == measure).unwrap();
     found.value.clone().unwrap()
-}
-
-fn coarse(bench: &Bench) -> Arc<Solution> {
-    let built = bench.build(0, &Setting::default());
-    assert!(!built.crystal.broken, "{:#?}", built.troubles);
-    bench
-        .solver
-        .solve_coarse(&built.crystal, &|| false)
-        .expect("coarse bands")
 }
 
 /// One row of `mathieu.csv`: bottom and top of the n-th band at q.
@@ -105,10 +85,10 @@ fn a_separable_square_lattice_has_sums_of_mathieu_values() {
     let level = measures[1].value.clone().unwrap();
     assert!((level.value / recoil - 2.0 * b1).abs() < 1e-9);
 
-    let quick = coarse(&Bench::new(
+    let quick = Bench::new(
         "crystal eggs\n  mass 10 u\n  lattice square 500 nm\n  recoil 1000 nm\n  cosine (1,0) = 2.0 Er\n  \
          cosine (0,1) = 2.0 Er\n  bands 2\n",
-    ));
+    ).coarse();
     assert!(!quick.fine && found.fine);
     for (rough, fine) in quick.bands.iter().zip(&found.bands) {
         for (rough, fine) in [(&rough.bottom, &fine.bottom), (&rough.top, &fine.top)] {
@@ -139,53 +119,9 @@ fn a_honeycomb_is_closed_at_its_corners() {
 
     let told_apart = "  cosine (1,0) = 0.2 Er phase 90 deg\n  cosine (0,1) = 0.2 Er phase -90 deg\n  \
                       cosine (1,-1) = 0.2 Er phase -90 deg\n";
-    let open = coarse(&Bench::new(&format!("{head}{told_apart}")));
+    let open = Bench::new(&format!("{head}{told_apart}")).coarse();
     assert_eq!(open.gaps[0].kind, GapKind::Direct, "{:?}", open.gaps[0]);
     assert_eq!(open.bands[0].top.point.as_deref(), Some("K"));
-}
-
-const SILICON: &str = "crystal si\n  lattice fcc 5.43 Å\n  atom A at (0.125, 0.125, 0.125)\n  \
-     atom A at (0.875, 0.875, 0.875)\n  formfactor A 3 = -0.21 Ry\n  formfactor A 8 = 0.04 Ry\n  \
-     formfactor A 11 = 0.08 Ry\n  filling 8\n  bands 4\n";
-
-/// Form factors of silicon: Cohen & Bergstresser, Phys. Rev. 141, 789 (1966), Table II; a gap of 0.8 eV in print (from
-/// memory), 0.8203 eV at 0.85·2π/a from Γ to X by a dense solve at cut-off 50 (`planewaves_epm.rs`).
-#[test]
-fn a_silicon_like_solid_has_its_indirect_gap() {
-    let found = coarse(&Bench::new(SILICON));
-    let gap = found.gaps[3];
-    assert!((gap.size.value / EV - 0.8).abs() < 0.15, "{gap:?}");
-    assert!(
-        (gap.size.value / EV - 0.8203).abs() < gap.size.uncertainty / EV + 1e-3,
-        "{gap:?}"
-    );
-    let fine = Bench::new(&SILICON.replace("bands 4", "bands 5")).solve(0);
-    row(
-        "silicon, indirect gap",
-        "dense solve on Γ–X, eV",
-        (fine.gaps[3].size.value / EV - 0.8203).abs(),
-        1e-3,
-    );
-    // The valleys lie on the axes, longer along them than across; six of them have one mean mass.
-    let valley = &fine.bands[4].bottom;
-    let masses: Vec<f64> = valley.axes.iter().map(|axis| axis.mass.value).collect();
-    let mean = valley.mass.unwrap().value;
-    assert_eq!(masses.len(), 3);
-    assert!((masses.iter().product::<f64>().cbrt() - mean).abs() < 1e-6 * mean);
-    assert!(
-        masses[0] > 3.0 * masses[1] && (masses[1] - masses[2]).abs() < 1e-3 * masses[1],
-        "{masses:?}"
-    );
-    let along = &valley.axes[0].along;
-    assert!(
-        along.iter().any(|x| (x.abs() - 1.0).abs() < 1e-6),
-        "{along:?}"
-    );
-    assert_eq!(gap.kind, GapKind::Indirect);
-    assert_eq!(found.bands[3].top.point.as_deref(), Some("centre"));
-    assert_eq!(found.class, Some(Class::Semiconductor));
-    let fermi = found.fermi.unwrap().value;
-    assert!(found.bands[3].top.energy.value < fermi);
 }
 
 const ALUMINIUM: &str = "crystal al\n  lattice fcc 4.05 Å\n  atom A at (0, 0, 0)\n  formfactor A 3 = 0.0179 Ry\n  \
@@ -235,7 +171,7 @@ fn an_aluminium_like_solid_is_a_nearly_free_metal() {
         (fermi.value / EV - free).abs() < 0.5,
         "{fermi:?}, free {free} eV"
     );
-    let rough = coarse(&Bench::new(ALUMINIUM)).fermi.unwrap();
+    let rough = Bench::new(ALUMINIUM).coarse().fermi.unwrap();
     let apart = (rough.value - fermi.value).abs();
     assert!(
         apart <= rough.uncertainty + fermi.uncertainty,
@@ -284,71 +220,6 @@ fn free_particles_fill_to_their_level() {
         "closed form, of themselves",
         worst,
         2e-3,
-    );
-}
-
-/// The fourteen models of Cohen & Bergstresser, Phys. Rev. 141, 789 (1966), Table II, from their text: levels at Γ, X and L
-/// against a dense LAPACK solve at cut-off 80 (`tests/reference/epm_generate.py`).
-#[test]
-fn form_factor_models_have_the_levels_of_a_dense_solve() {
-    let rows: Value = serde_json::from_str(include_str!("reference/epm_levels.json")).unwrap();
-    let mut worst = 0.0_f64;
-    for (name, model) in rows.as_object().unwrap() {
-        let a = model["a"].as_f64().unwrap();
-        let form: Vec<f64> = model["form"]
-            .as_array()
-            .unwrap()
-            .iter()
-            .map(|x| x.as_f64().unwrap())
-            .collect();
-        let mut text = format!(
-            "crystal c\n  lattice fcc {a} Å\n  bands 5\n  atom A at (0.125, 0.125, 0.125)\n"
-        );
-        if form[3..].iter().all(|v| *v == 0.0) {
-            text += "  atom A at (0.875, 0.875, 0.875)\n";
-            for (q, v) in [3, 8, 11].iter().zip(&form) {
-                text += &format!("  formfactor A {q} = {v} Ry\n");
-            }
-        } else {
-            text += "  atom B at (0.875, 0.875, 0.875)\n";
-            for (q, s, v) in [
-                (3, form[0], form[3]),
-                (4, 0.0, form[4]),
-                (8, form[1], 0.0),
-                (11, form[2], form[5]),
-            ] {
-                text += &format!("  formfactor A and B {q} = {s} Ry, {v} Ry\n");
-            }
-        }
-        for point in ["centre", "X", "L"] {
-            for level in [4, 5] {
-                text += &format!("  measure at_{point}_{level} = level {level} at {point}\n");
-            }
-        }
-        let bench = Bench::new(&text);
-        let (_, measures) = bench.assess(0);
-        let unit = (2.0 * std::f64::consts::PI / (a / 0.529_177_210_544)).powi(2) * RYDBERG;
-        for measure in measures {
-            let parts: Vec<&str> = measure.name.split('_').collect();
-            let label = if parts[1] == "centre" { "G" } else { parts[1] };
-            let level: usize = parts[2].parse().unwrap();
-            let wanted = model["cuts"]["80"][label][1][level - 1].as_f64().unwrap() * unit;
-            let found = measure.value.unwrap();
-            let error = (found.value - wanted).abs();
-            // The reference itself is settled to about 1e-6 of the unit.
-            assert!(
-                error <= found.uncertainty + 1e-6 * unit,
-                "{name} {}: {found:?} for {wanted:e}",
-                measure.name
-            );
-            worst = worst.max(error / EV);
-        }
-    }
-    row(
-        "fourteen form-factor models",
-        "dense solve, eV",
-        worst,
-        1e-4,
     );
 }
 
@@ -428,6 +299,10 @@ fn draws(bench: &Bench) -> Vec<ParameterId> {
         .map(|parameter| parameter.id)
         .collect()
 }
+
+const SILICON: &str = "crystal si\n  lattice fcc 5.43 Å\n  atom A at (0.125, 0.125, 0.125)\n  \
+     atom A at (0.875, 0.875, 0.875)\n  formfactor A 3 = -0.21 Ry\n  formfactor A 8 = 0.04 Ry\n  \
+     formfactor A 11 = 0.08 Ry\n  filling 8\n  bands 4\n";
 
 /// A target in three dimensions: value, slope's sign and worst corner by the solver, against the corners solved apart.
 #[test]

@@ -284,3 +284,22 @@ fn one_crystal_can_be_picked() {
 fn tables_read_well() {
     insta::assert_snapshot!(stdout(&run(&folder(), &["show", "tern.cren"])));
 }
+
+/// What is shown of a crystal of which a line cannot be read would be the numbers of another crystal.
+#[test]
+fn measures_of_a_lattice_with_errors_have_no_value() {
+    let folder = Folder::new();
+    folder.write(
+        "floor.cren",
+        "crystal floor\n  mass 1 me\n  lattice square 2 nm\n  cosine (1,0) = 0.1 eV\n  cosine (0,1) 0.1 eV\n  \
+         measure corner = level 1 at M\n  measure hop = hopping 1 by (1,0)\n  require level 1 at M < 1 eV\n",
+    );
+    let output = run(&folder, &["show", "floor.cren"]);
+    let text = stdout(&output);
+    assert_eq!(
+        text.matches("no value: the model has errors").count(),
+        2,
+        "{text}"
+    );
+    assert!(text.contains("untestable"), "{text}");
+}

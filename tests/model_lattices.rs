@@ -5,90 +5,13 @@ mod model_support;
 
 use std::f64::consts::PI;
 
-use crenate::model::{Crystal, Scalar, Setting, TroubleKind};
+use crenate::model::{Scalar, Setting, TroubleKind};
+use model_support::cells::{combine, cross, crystal, dot, padded, reciprocal, values};
 use model_support::{Desk, assert_close, only_trouble};
-
-fn crystal(lattice: &str) -> Crystal {
-    let desk = Desk::new(&format!("crystal a\n  lattice {lattice}\n"));
-    assert_eq!(desk.problems(), 0, "{lattice}");
-    assert!(
-        desk.troubles().is_empty(),
-        "{lattice}: {:?}",
-        desk.troubles()
-    );
-    let built = desk.crystal("a").crystal;
-    assert!(!built.broken);
-    built
-}
-
-fn values(vectors: &[Vec<crenate::model::Dual>]) -> Vec<Vec<f64>> {
-    vectors
-        .iter()
-        .map(|row| row.iter().map(|entry| entry.value).collect())
-        .collect()
-}
-
-fn cross(a: &[f64], b: &[f64]) -> Vec<f64> {
-    vec![
-        a[1] * b[2] - a[2] * b[1],
-        a[2] * b[0] - a[0] * b[2],
-        a[0] * b[1] - a[1] * b[0],
-    ]
-}
-
-fn dot(a: &[f64], b: &[f64]) -> f64 {
-    a.iter().zip(b).map(|(x, y)| x * y).sum()
-}
-
-fn padded(vectors: &[Vec<f64>]) -> Vec<Vec<f64>> {
-    let mut rows: Vec<Vec<f64>> = vectors
-        .iter()
-        .map(|row| {
-            row.iter()
-                .copied()
-                .chain(std::iter::repeat(0.0))
-                .take(3)
-                .collect()
-        })
-        .collect();
-    for axis in rows.len()..3 {
-        let mut unit = vec![0.0; 3];
-        unit[axis] = 1.0;
-        rows.push(unit);
-    }
-    rows
-}
 
 fn volume(vectors: &[Vec<f64>]) -> f64 {
     let rows = padded(vectors);
     dot(&rows[0], &cross(&rows[1], &rows[2])).abs()
-}
-
-/// b_i with b_i·a_j = 2π δ_ij.
-fn reciprocal(vectors: &[Vec<f64>]) -> Vec<Vec<f64>> {
-    let rows = padded(vectors);
-    let whole = dot(&rows[0], &cross(&rows[1], &rows[2]));
-    (0..vectors.len())
-        .map(|i| {
-            let b = cross(&rows[(i + 1) % 3], &rows[(i + 2) % 3]);
-            b.iter()
-                .take(vectors.len())
-                .map(|entry| 2.0 * PI * entry / whole)
-                .collect()
-        })
-        .collect()
-}
-
-fn combine(vectors: &[Vec<f64>], factors: &[f64]) -> Vec<f64> {
-    (0..vectors.len())
-        .map(|axis| {
-            vectors
-                .iter()
-                .zip(factors)
-                .map(|(row, factor)| factor * row[axis])
-                .sum()
-        })
-        .collect()
 }
 
 #[test]

@@ -7,7 +7,6 @@
     missing_docs
 )]
 
-#[allow(dead_code)]
 #[path = "bands/mod.rs"]
 mod bench;
 

@@ -10,7 +10,6 @@
     missing_docs
 )]
 
-#[allow(dead_code)]
 #[path = "bands/mod.rs"]
 mod bench;
 

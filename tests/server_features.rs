@@ -182,6 +182,29 @@ async fn completion_and_signatures_know_the_place() {
     assert_eq!(&label[from..to], "MATERIAL");
 }
 
+/// While the line is still being written, and for the lattice as it stands: a short axis has no Σ.
+#[tokio::test]
+async fn completion_names_the_points_of_the_zone() {
+    for (axis, has) in [("5 nm", true), ("2 nm", false)] {
+        let text = format!(
+            "crystal tall\n  mass 1 me\n  lattice body-tetragonal 3 nm axis {axis}\n  require level 1 at \n"
+        );
+        let mut client = opened(&text).await;
+        client.findings(A, 1).await;
+        let (line, character) = place(&text, "at ", 3);
+        let reply = client
+            .at("textDocument/completion", A, line, character)
+            .await;
+        let items = reply["result"].as_array().unwrap().iter();
+        let labels: Vec<&str> = items.map(|item| item["label"].as_str().unwrap()).collect();
+        assert!(
+            labels.contains(&"centre") && labels.contains(&"P"),
+            "{labels:?}"
+        );
+        assert_eq!(labels.contains(&"Σ"), has, "{labels:?}");
+    }
+}
+
 #[tokio::test]
 async fn names_lead_to_where_they_are_given_and_used() {
     let mut client = opened(TEXT).await;

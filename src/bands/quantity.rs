@@ -9,7 +9,8 @@ use super::chain::{Chain, unsolved};
 use super::effort::budget;
 use super::filling::Filled;
 use super::{
-    Extremum, Feature, Measured, Solution, Solver, Unsolved, solve, zone_quantity, zone_slopes,
+    Extremum, Feature, Measured, Solution, Solver, Unsolved, impossible, solve, zone_quantity,
+    zone_slopes,
 };
 
 /// Why a quantity has no value.
@@ -86,6 +87,9 @@ impl Evaluation<'_> {
     fn quantity(&self, quantity: &Quantity) -> Result<Leaf, Untested> {
         let crystal =
             (self.crystals)(quantity.of).ok_or_else(|| because("its crystal cannot be read"))?;
+        if let Some(unsolved) = impossible(&crystal) {
+            return Err(unsolved.into());
+        }
         if let (QuantityKind::Level(number, k), true) = (&quantity.kind, crystal.dimension > 1) {
             return self.zone_level(&crystal, *number, k);
         }

@@ -3,7 +3,7 @@
 use std::sync::Arc;
 
 use super::shape::centring::{Centring, LatticeKind, lattice_kind};
-use super::shape::zone_points::{zone_path, zone_points};
+use super::shape::zone::{NamedPoints, zone_path, zone_points};
 use super::{Dimension, Dual, Measure, ParameterId, Place, Target};
 
 /// A crystal with all its names resolved.
@@ -74,16 +74,20 @@ impl Crystal {
     /// The primitive vectors without derivatives, in metre.
     #[must_use]
     pub fn primitive_values(&self) -> Vec<Vec<f64>> {
-        let rows = self.vectors.iter();
-        rows.map(|row| row.iter().map(|entry| entry.value).collect())
-            .collect()
+        values(&self.vectors)
+    }
+
+    /// The conventional vectors without derivatives, in metre.
+    #[must_use]
+    pub fn conventional_values(&self) -> Vec<Vec<f64>> {
+        values(&self.conventional)
     }
 
     /// The named points of its zone, in fractions of the primitive reciprocal vectors.
     #[must_use]
-    pub fn zone_points(&self) -> Vec<(&'static str, Vec<f64>)> {
+    pub fn zone_points(&self) -> NamedPoints {
         match self.kind() {
-            Some(kind) => zone_points(kind),
+            Some(kind) => zone_points(kind, &self.conventional_values()),
             None => vec![("centre", vec![0.0; self.dimension])],
         }
     }
@@ -92,8 +96,14 @@ impl Crystal {
     /// vectors.
     #[must_use]
     pub fn zone_path(&self) -> Vec<Vec<(String, Vec<f64>)>> {
-        zone_path(self.kind(), self.dimension)
+        zone_path(self.kind(), &self.conventional_values(), self.dimension)
     }
+}
+
+fn values(vectors: &[Vec<Dual>]) -> Vec<Vec<f64>> {
+    let rows = vectors.iter();
+    rows.map(|row| row.iter().map(|entry| entry.value).collect())
+        .collect()
 }
 
 /// Something that the crystal's numbers depend on.

@@ -3,11 +3,13 @@
 use std::path::Path;
 
 use super::analysis::Analysis;
+use super::editor_expected::dimension_after;
 use super::editor_outline::word_at;
+use crate::model::Dimension;
 use crate::model::constants::CONSTANTS;
 use crate::model::unit::UNITS;
 use crate::rules;
-use crate::syntax::{Section, SectionKind, StatementKind, Tree, words};
+use crate::syntax::{Section, SectionId, SectionKind, StatementKind, Tree, words};
 use crate::text::Span;
 
 /// The sorts of proposal.
@@ -59,6 +61,7 @@ pub struct Proposals {
 
 /// Where the cursor is.
 struct Place<'t> {
+    id: SectionId,
     section: &'t Section,
     /// The words of the line before the one that is being written.
     typed: Vec<&'t str>,
@@ -109,6 +112,7 @@ pub fn proposals(
         .filter(|word| *word != "\\")
         .collect();
     let place = Place {
+        id: entry.id,
         section,
         typed,
         analysis,
@@ -171,6 +175,7 @@ impl Place<'_> {
             ("layer" | "stack", Some("of" | "to")) => self.sections(SectionKind::Material),
             ("require" | "measure", Some("of")) => self.sections(SectionKind::Crystal),
             ("require", None) => [self.wanted(), choices(words::CLASSES, "a class")].concat(),
+            ("require" | "measure", Some("at")) if self.typed.contains(&"level") => self.points(),
             (_, Some(last)) if starts_with_digit(last) => {
                 [self.units(), self.clauses(first)].concat()
             }
@@ -227,11 +232,41 @@ impl Place<'_> {
             .collect()
     }
 
+    /// The units of the number that ends the line; all where its place does not say what it is.
     fn units(&self) -> Vec<Proposal> {
-        let own = [("Er", "recoil energy"), ("ML", "monolayers")];
-        let units = UNITS.iter().map(|unit| (unit.name, unit.about)).chain(own);
+        let before = self
+            .typed
+            .split_last()
+            .map_or(&[][..], |(_, before)| before);
+        let meant = dimension_after(before);
+        let own = [
+            ("Er", "recoil energy", Dimension::ENERGY),
+            ("ML", "monolayers", Dimension::LENGTH),
+        ];
+        let units = UNITS
+            .iter()
+            .map(|unit| (unit.name, unit.about, unit.dimension))
+            .chain(own);
         units
-            .map(|(name, about)| proposal(name, about, ProposalSort::Unit))
+            .filter(|(_, _, dimension)| meant.is_none_or(|meant| meant == *dimension))
+            .map(|(name, about, _)| proposal(name, about, ProposalSort::Unit))
+            .collect()
+    }
+
+    /// The named points of this crystal's zone.
+    fn points(&self) -> Vec<Proposal> {
+        let file = self.analysis.and_then(|analysis| analysis.file(self.path));
+        let section = file.and_then(|file| {
+            let mut sections = file.sections.iter();
+            sections.find(|section| section.section == self.id)
+        });
+        let crystal = section.and_then(|section| section.crystal.as_ref());
+        let points = crystal.map(|crystal| crystal.zone_points());
+        let points = points.unwrap_or_else(|| vec![("centre", Vec::new())]);
+        let detail = "a point of the zone";
+        points
+            .into_iter()
+            .map(|(name, _)| proposal(name, detail, ProposalSort::Choice))
             .collect()
     }
 
@@ -367,6 +402,8 @@ mod tests {
             ["wall"]
         );
         assert!(offers("crystal a\n  layer 5 |", "nm") && offers("crystal a\n  layer 5 |", "of"));
+        assert!(offers("material a\n  edge 1 |", "meV") && !offers("material a\n  edge 1 |", "nm"));
+        assert!(offers("crystal a\n  layer 2 * 1 |", "nm"));
         assert!(offers("crystal a\n  lattice |", "fcc"));
         assert!(offers("let s = 8 nm\ncrystal a\n  layer |", "s"));
         assert!(

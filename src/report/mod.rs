@@ -6,6 +6,7 @@ pub mod analyst;
 pub mod disk;
 mod drawing;
 pub mod editor_complete;
+mod editor_expected;
 pub mod editor_format;
 pub mod editor_links;
 pub mod editor_names;

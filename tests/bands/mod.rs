@@ -1,4 +1,5 @@
 //! Text in memory → solved crystals.
+#![allow(dead_code, clippy::print_stdout)]
 
 use std::path::{Path, PathBuf};
 use std::sync::Arc;
@@ -9,6 +10,15 @@ use crenate::syntax::{Tree, read};
 
 /// One elementary charge: joule per electronvolt (exact in the SI).
 pub const EV: f64 = 1.602_176_634e-19;
+
+/// Ry in joule (CODATA 2022).
+pub const RYDBERG: f64 = 13.605_693_122_990 * EV;
+
+/// One row of the table of worst errors (`cargo test --test bands_zones --test bands_epm -- --nocapture | grep '|'`).
+pub fn row(case: &str, against: &str, worst: f64, bar: f64) {
+    println!("| {case} | {against} | {worst:.1e} | {bar:.1e} |");
+    assert!(worst <= bar, "{case}: {worst:e} above {bar:e}");
+}
 
 /// A single file in memory.
 struct Memory(Arc<Tree>);
@@ -71,6 +81,15 @@ impl Bench {
 
     pub fn solve(&self, index: usize) -> Arc<Solution> {
         self.solve_at(index, &Setting::default())
+    }
+
+    /// The first answer to the first crystal.
+    pub fn coarse(&self) -> Arc<Solution> {
+        let built = self.build(0, &Setting::default());
+        assert!(!built.crystal.broken, "{:#?}", built.troubles);
+        self.solver
+            .solve_coarse(&built.crystal, &|| false)
+            .expect("coarse bands")
     }
 
     pub fn assess(&self, index: usize) -> (Vec<Assessment>, Vec<MeasureValue>) {

@@ -1,6 +1,8 @@
 //! Files in memory, and short ways to build what they say.
 #![allow(dead_code, clippy::unwrap_used, clippy::indexing_slicing, missing_docs)]
 
+pub mod cells;
+
 use std::collections::BTreeMap;
 use std::path::{Path, PathBuf};
 use std::sync::Arc;

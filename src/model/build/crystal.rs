@@ -8,6 +8,7 @@ use super::scales::Scales;
 use super::takeover::{Statements, Taken, chain_of, check_chain, mark_taken_over};
 use super::{Built, BuiltMaterial, Key, SectionRef, World, check_lets, checks};
 use crate::model::evaluate::{Context, Evaluator};
+use crate::model::world::NoFiles;
 use crate::model::{Crystal, CrystalRef, FileSource, Setting, Trouble};
 
 /// A crystal that is being built.
@@ -76,6 +77,22 @@ fn drop_known(
     }
 }
 
+/// The conventional vectors of a crystal as its file writes them, without its tolerances; none where they have mistakes.
+pub(crate) fn nominal_lattice(world: &World, section: SectionRef<'_>) -> Vec<Vec<f64>> {
+    let (chain, _) = chain_of(world, section);
+    let setting = Setting::default();
+    lattice_alone(Evaluator::new(world, &setting, section), &chain).conventional_values()
+}
+
+/// A crystal of which only the lattice is built.
+fn lattice_alone<'w>(mut evaluator: Evaluator<'w>, chain: &[SectionRef<'w>]) -> Crystal {
+    let statements = Statements::gather(&mut evaluator, chain);
+    let mut build = CrystalBuild::new(evaluator, &NoFiles, chain, statements);
+    build.scales();
+    build.lattice();
+    build.crystal
+}
+
 impl<'c, 'w> CrystalBuild<'c, 'w> {
     fn new(
         evaluator: Evaluator<'w>,
@@ -100,12 +117,8 @@ impl<'c, 'w> CrystalBuild<'c, 'w> {
             draws: FxHashMap::default(),
             overrides: self.evaluator.setting.overrides.clone(),
         };
-        let mut evaluator = Evaluator::new(self.evaluator.world, &setting, self.evaluator.home);
-        let statements = Statements::gather(&mut evaluator, self.chain);
-        let mut build = CrystalBuild::new(evaluator, self.source, self.chain, statements);
-        build.scales();
-        build.lattice();
-        build.crystal.primitive_values()
+        let evaluator = Evaluator::new(self.evaluator.world, &setting, self.evaluator.home);
+        lattice_alone(evaluator, self.chain).primitive_values()
     }
 
     fn run(&mut self) {

@@ -30,6 +30,7 @@ use crate::syntax::SectionId;
 use super::FileId;
 
 pub use crystal::build_crystal;
+pub(crate) use crystal::nominal_lattice;
 pub use material::{BuiltMaterial, MaterialField, build_material};
 pub use preamble::{BuiltPreamble, NamedValue, build_preamble, values_in_scope};
 pub use summary::{LatticeSummary, summarise};

@@ -1,8 +1,8 @@
 //! Quantities of bands: which crystal, which band, which point.
 
 use super::{Context, Evaluator, Term, Typed};
-use crate::model::build::{LatticeSummary, summarise};
-use crate::model::shape::zone_points::{zone_point, zone_points};
+use crate::model::build::{LatticeSummary, nominal_lattice, summarise};
+use crate::model::shape::zone::{depends_on_sizes, zone_point, zone_points};
 use crate::model::words::nearest;
 use crate::model::{
     CrystalRef, Dimension, NameSort, Quantity, QuantityKind, SectionRef, TroubleKind,
@@ -129,7 +129,7 @@ impl<'w> Evaluator<'w> {
     ) -> Option<Vec<f64>> {
         let lattice = self.lattice_of(section)?;
         match point {
-            Point::Named(word) => self.named_point(word, &lattice, context),
+            Point::Named(word) => self.named_point(word, section, &lattice, context),
             Point::Fractions(tuple) => self.fractions(tuple, &lattice, context),
         }
     }
@@ -137,16 +137,30 @@ impl<'w> Evaluator<'w> {
     fn named_point(
         &mut self,
         word: &'w Word,
+        section: SectionRef<'w>,
         lattice: &LatticeSummary,
         context: &Context<'_, 'w>,
     ) -> Option<Vec<f64>> {
-        if let Some(point) = lattice.kind.and_then(|kind| zone_point(kind, &word.text)) {
-            return Some(point);
-        }
-        if lattice.kind.is_none() && matches!(word.text.as_str(), "centre" | "Γ" | "gamma") {
+        if matches!(word.text.as_str(), "centre" | "Γ" | "gamma") {
             return Some(vec![0.0; lattice.dimension]);
         }
-        let known = lattice.kind.map(zone_points).unwrap_or_default();
+        let sized = lattice.kind.is_some_and(depends_on_sizes);
+        let conventional = if sized {
+            nominal_lattice(self.world, section)
+        } else {
+            Vec::new()
+        };
+        if sized && conventional.is_empty() {
+            // What is wrong with the lattice is said where it stands.
+            self.broken = true;
+            return None;
+        }
+        let kind = lattice.kind;
+        if let Some(point) = kind.and_then(|kind| zone_point(kind, &conventional, &word.text)) {
+            return Some(point);
+        }
+        let known = kind.map(|kind| zone_points(kind, &conventional));
+        let known = known.unwrap_or_default();
         let kind = TroubleKind::UnknownName {
             name: word.text.clone(),
             wanted: "zone point",

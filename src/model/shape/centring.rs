@@ -244,6 +244,19 @@ impl Centring {
             .collect()
     }
 
+    /// Fractions of the primitive reciprocal vectors as fractions of the conventional ones, as many as are given.
+    #[must_use]
+    pub fn fractions_to_conventional(self, fractions: &[f64]) -> Vec<f64> {
+        let rows = self.inverse();
+        let along = |row: &[i64; 3]| {
+            let parts = row.iter().zip(fractions);
+            parts
+                .map(|(factor, fraction)| f64::from(i32::try_from(*factor).unwrap_or(0)) * fraction)
+                .sum()
+        };
+        rows.iter().take(fractions.len()).map(along).collect()
+    }
+
     /// What indices must fulfil, in words.
     #[must_use]
     pub fn condition(self, dimension: usize) -> &'static str {

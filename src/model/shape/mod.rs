@@ -6,4 +6,4 @@ pub mod images;
 pub mod sampler;
 pub mod spline;
 pub mod symmetry;
-pub mod zone_points;
+pub mod zone;

@@ -24,6 +24,7 @@ pub use names::LetRef;
 pub(crate) use names::{Scope, lets_of};
 pub(crate) use path::beside;
 pub use path::normalise;
+pub(crate) use source::NoFiles;
 pub use source::{FileSource, ReadFailure, TableFile, TableSamples};
 
 /// A snapshot of all files that take part.

@@ -29,6 +29,23 @@ pub trait FileSource: Sync {
     }
 }
 
+/// No files at all: for what needs none.
+pub(crate) struct NoFiles;
+
+impl FileSource for NoFiles {
+    fn tree(&self, _path: &Path) -> Result<Arc<Tree>, ReadFailure> {
+        Err(ReadFailure::NotFound)
+    }
+
+    fn bytes(&self, _path: &Path) -> Result<Arc<[u8]>, ReadFailure> {
+        Err(ReadFailure::NotFound)
+    }
+
+    fn inside(&self, _path: &Path) -> bool {
+        false
+    }
+}
+
 /// Why a file cannot be read.
 #[derive(Clone, Debug, PartialEq, Eq)]
 pub enum ReadFailure {
