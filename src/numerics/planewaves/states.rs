@@ -60,16 +60,6 @@ impl Waves<'_> {
         self.states_known(bands, most, (cut, UNTRIED), budget)
     }
 
-    /// States for a picture, as [`Waves::along`] has its levels.
-    ///
-    /// # Errors
-    /// `NotFinite`, `BudgetSpent`, `Cancelled`.
-    pub fn sketched_states(&self, bands: usize, budget: &Budget) -> Result<States, Error> {
-        let cut = self.first_cut(bands, 200.0, budget)?;
-        let most = [384, 48, 16][self.frame.dimension - 1];
-        self.states(bands, most, cut, budget)
-    }
-
     /// The same where the share of what the cut leaves out that is uncertain is known.
     pub(super) fn states_known(
         &self,
@@ -92,27 +82,28 @@ impl Waves<'_> {
         errors: Vec<f64>,
     ) -> Result<States, Error> {
         let corners = self.simplices(mesh);
-        let mut shares: FxHashMap<Vec<usize>, f64> = FxHashMap::default();
+        let d = self.frame.dimension;
+        let mut shares: FxHashMap<[usize; 4], f64> = FxHashMap::default();
         let total = (mesh.of.len() * corners.len()) as f64;
         for place in 0..mesh.of.len() {
             let base = mesh.indices(place).map(|x| x as i64);
             for simplex in &corners {
-                let mut points: Vec<usize> = simplex
-                    .iter()
-                    .map(|c| mesh.of[mesh.wrapped(std::array::from_fn(|i| base[i] + c[i]))])
-                    .collect();
+                let mut points = [usize::MAX; 4];
+                for (slot, c) in points.iter_mut().zip(simplex) {
+                    *slot = mesh.of[mesh.wrapped(std::array::from_fn(|i| base[i] + c[i]))];
+                }
                 points.sort_unstable();
                 *shares.entry(points).or_default() += 1.0 / total;
             }
         }
         let mut simplices = Vec::with_capacity(shares.len() * bands);
         let mut range = (f64::INFINITY, f64::NEG_INFINITY);
-        let mut ordered: Vec<(Vec<usize>, f64)> = shares.into_iter().collect();
+        let mut ordered: Vec<([usize; 4], f64)> = shares.into_iter().collect();
         ordered.sort_by(|a, b| a.0.cmp(&b.0));
         for (points, share) in ordered {
             for band in 0..bands {
                 let mut corner = [f64::INFINITY; 4];
-                for (slot, point) in corner.iter_mut().zip(&points) {
+                for (slot, point) in corner.iter_mut().zip(&points[..=d]) {
                     *slot = energies[*point]
                         .get(band)
                         .copied()
@@ -220,6 +211,22 @@ impl States {
             .iter()
             .map(|(corner, share)| share * density(&corner[..=self.dimension], energy))
             .sum()
+    }
+
+    /// The same at each of some rising energies.
+    pub fn densities(&self, energies: &[f64]) -> Vec<f64> {
+        let mut sums = vec![0.0; energies.len()];
+        for (corner, share) in &self.simplices {
+            let own = &corner[..=self.dimension];
+            let first = energies.partition_point(|energy| *energy <= own[0]);
+            for (energy, sum) in energies.iter().zip(&mut sums).skip(first) {
+                if *energy >= own[self.dimension] {
+                    break;
+                }
+                *sum += share * density(own, *energy);
+            }
+        }
+        sums
     }
 
     /// The energies of all states filled up to `energy`, per cell, with Blöchl's correction.
