@@ -96,7 +96,8 @@ impl Waves<'_> {
                 self.missed(&surface.corners(), &solved.mesh, guess, wanted.cut, budget)?;
             let cut_off = solved.uncertain(guess, 0.2 * self.frame.unit());
             // A finer mesh helps where the levels in between are what is most uncertain.
-            if hasty && between > 0.4 * wanted.tolerance.max(cut_off) {
+            let reached = self.reached(&surface);
+            if hasty && between > 0.4 * wanted.tolerance.max(cut_off).max(reached) {
                 return Ok(Some(Closed {
                     fermi: None,
                     between,
@@ -125,15 +126,7 @@ impl Waves<'_> {
         let mesh = self.mesh(size);
         let radius = radius(&cell(&self.frame, mesh.size)?);
         for _ in 0..5 {
-            let points: Vec<(Basis, Levels)> = mesh
-                .points
-                .par_iter()
-                .map(|k| {
-                    let basis = self.basis(*k, wanted.cut);
-                    let solved = self.solve_on(&basis, *k, *bands, true, budget)?;
-                    Ok((basis, solved))
-                })
-                .collect::<Result<_, Error>>()?;
+            let points = self.solved_on(&mesh, *bands, wanted.cut, budget)?;
             let known: Vec<Vec<Estimate>> = points
                 .par_iter()
                 .map(|(_, at)| {
@@ -143,11 +136,7 @@ impl Waves<'_> {
                 .collect::<Result<_, Error>>()?;
             let energies: Vec<Vec<f64>> = known
                 .iter()
-                .map(|at| {
-                    let mut energies: Vec<f64> = at.iter().map(|e| e.value).collect();
-                    energies.sort_by(f64::total_cmp);
-                    energies
-                })
+                .map(|at| rising(at.iter().map(|e| e.value)))
                 .collect();
             let least = energies.iter().map(Vec::len).min().unwrap_or(0);
             if (least as f64) < wanted.levels {
@@ -174,6 +163,32 @@ impl Waves<'_> {
             *bands += 4;
         }
         Ok(None)
+    }
+
+    /// Every irreducible point of a mesh with its basis and its lowest levels.
+    pub(super) fn solved_on(
+        &self,
+        mesh: &Mesh,
+        bands: usize,
+        cut: f64,
+        budget: &Budget,
+    ) -> Result<Vec<(Basis, Levels)>, Error> {
+        mesh.points
+            .par_iter()
+            .map(|k| {
+                let basis = self.basis(*k, cut);
+                let solved = self.solve_on(&basis, *k, bands, true, budget)?;
+                Ok((basis, solved))
+            })
+            .collect()
+    }
+
+    /// What the divisions that are worth it will leave uncertain, or so.
+    fn reached(&self, surface: &Surface) -> f64 {
+        let d = self.frame.dimension;
+        let more = MOST_PLACES as f64 / surface.places() as f64;
+        let finest = surface.fineness() * more.powf(1.0 / (d - 1) as f64);
+        2.0 * CROSSING[d - 1] * self.frame.unit() / finest.powi(2)
     }
 
     /// The levels at a point that may come to an energy within `radius` of it; `None` where there may be more.
@@ -208,23 +223,37 @@ impl Waves<'_> {
         cut: f64,
         budget: &Budget,
     ) -> Result<f64, Error> {
-        let unit = self.frame.unit();
-        let close = 0.03 * unit;
-        let nearest = |corner: &Corner| {
-            corner
-                .energies
-                .iter()
-                .map(|e| (e - guess).abs())
-                .fold(f64::INFINITY, f64::min)
-        };
+        let close = 0.03 * self.frame.unit();
+        let chosen = self.nearest_to(guess, corners, mesh);
+        let worst: Vec<f64> = chosen
+            .par_iter()
+            .map(|(nearest, k, corner)| {
+                let count = corner.below + corner.energies.len() + 1;
+                let at = self.solve_on(&self.basis(*k, cut), *k, count, true, budget)?;
+                let exact = rising(self.predict(&at, cut)?.iter().map(|p| p.value));
+                Ok(corner.wrong_by(&exact, guess, nearest.max(close) * (1.0 + 1e-9)))
+            })
+            .collect::<Result<_, Error>>()?;
+        // Errors of order q⁴ average over a cell to less than half of what they are at its corners.
+        Ok(0.5 * worst.into_iter().fold(0.0, f64::max))
+    }
+
+    /// A few corners that symmetry does not make equal, with the levels nearest to an energy: how near, and where.
+    fn nearest_to<'c>(
+        &self,
+        energy: f64,
+        corners: &'c [Corner],
+        mesh: &Mesh,
+    ) -> Vec<(f64, [f64; 3], &'c Corner)> {
         let mut order: Vec<(f64, [f64; 3], &Corner)> = corners
             .iter()
             .filter(|corner| corner.place != [0.0; 3])
             .map(|corner| {
+                let apart = corner.energies.iter().map(|e| (e - energy).abs());
                 let moved = self.frame.off_axes(corner.place);
                 let start = mesh.points[corner.point];
                 let k = std::array::from_fn(|i| start[i] + moved[i]);
-                (nearest(corner), k, corner)
+                (apart.fold(f64::INFINITY, f64::min), k, corner)
             })
             .collect();
         order.sort_by(|a, b| a.0.total_cmp(&b.0));
@@ -237,34 +266,7 @@ impl Waves<'_> {
                 chosen.push(entry);
             }
         }
-        let worst: Vec<f64> = chosen
-            .par_iter()
-            .map(|(nearest, k, corner)| {
-                let count = corner.below + corner.energies.len() + 1;
-                let at = self.solve_on(&self.basis(*k, cut), *k, count, true, budget)?;
-                let mut exact: Vec<f64> = self.predict(&at, cut)?.iter().map(|p| p.value).collect();
-                exact.sort_by(f64::total_cmp);
-                let close = nearest.max(close) * (1.0 + 1e-9);
-                let within = |e: f64| (e - guess).abs() <= close;
-                // A level more or less on either side counts as wrong by how near it came.
-                let mut worst = 0.0_f64;
-                for (index, exact) in exact.iter().enumerate() {
-                    let found = index
-                        .checked_sub(corner.below)
-                        .and_then(|index| corner.energies.get(index));
-                    match found {
-                        Some(found) if within(*found) || within(*exact) => {
-                            worst = worst.max((exact - found).abs());
-                        }
-                        None if within(*exact) => worst = worst.max(close),
-                        _ => {}
-                    }
-                }
-                Ok(worst)
-            })
-            .collect::<Result<_, Error>>()?;
-        // Errors of order q⁴ average over a cell to less than half of what they are at its corners.
-        Ok(0.5 * worst.into_iter().fold(0.0, f64::max))
+        chosen
     }
 
     /// Divides the surface's simplices until the level settles; `known` is what else is uncertain.
@@ -325,6 +327,33 @@ impl Waves<'_> {
             (before, change, level) = (change.abs(), next - level, next);
         }
     }
+}
+
+impl Corner {
+    /// How far its levels within `close` of an energy are from these; one more or less on either side counts as wrong by
+    /// all of that.
+    fn wrong_by(&self, exact: &[f64], energy: f64, close: f64) -> f64 {
+        let within = |e: f64| (e - energy).abs() <= close;
+        let mut worst = 0.0_f64;
+        for (index, exact) in exact.iter().enumerate() {
+            let found = index.checked_sub(self.below);
+            match found.and_then(|index| self.energies.get(index)) {
+                Some(found) if within(*found) || within(*exact) => {
+                    worst = worst.max((exact - found).abs());
+                }
+                None if within(*exact) => worst = worst.max(close),
+                _ => {}
+            }
+        }
+        worst
+    }
+}
+
+/// Sorted.
+pub(super) fn rising(energies: impl Iterator<Item = f64>) -> Vec<f64> {
+    let mut energies: Vec<f64> = energies.collect();
+    energies.sort_by(f64::total_cmp);
+    energies
 }
 
 impl Solved {

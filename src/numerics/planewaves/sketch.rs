@@ -2,12 +2,11 @@
 
 use super::basis::Waves;
 use super::lattice::add;
-use super::levels::Basis;
 use super::mesh::Mesh;
 use super::nearby::Nearby;
 use super::states::States;
 use super::symmetry::rotate_real;
-use super::{Budget, Error, Levels};
+use super::{Budget, Error};
 use rayon::prelude::*;
 
 /// Levels solved beyond those wanted, among which the widest gap is looked for.
@@ -51,15 +50,7 @@ impl Waves<'_> {
         cut: f64,
         budget: &Budget,
     ) -> Result<Option<Vec<Nearby>>, Error> {
-        let solved: Vec<(Basis, Levels)> = mesh
-            .points
-            .par_iter()
-            .map(|k| {
-                let basis = self.basis(*k, cut);
-                let levels = self.solve_on(&basis, *k, bands + FURTHER, true, budget)?;
-                Ok((basis, levels))
-            })
-            .collect::<Result<_, Error>>()?;
+        let solved = self.solved_on(mesh, bands + FURTHER, cut, budget)?;
         if solved.iter().any(|(_, at)| at.energies.len() <= bands) {
             return Ok(None);
         }
