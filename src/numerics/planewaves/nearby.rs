@@ -129,7 +129,7 @@ impl Waves<'_> {
         });
         raised += &lifted * all.adjoint();
         for i in 0..n {
-            raised[(i, i)] = raised[(i, i)] - number(near);
+            raised[(i, i)] -= number(near);
         }
         let Ok(factors) = raised.llt(Side::Lower) else {
             return Ok(None);

@@ -99,7 +99,7 @@ impl Waves<'_> {
         let mut simplices = Vec::with_capacity(shares.len() * bands);
         let mut range = (f64::INFINITY, f64::NEG_INFINITY);
         let mut ordered: Vec<([usize; 4], f64)> = shares.into_iter().collect();
-        ordered.sort_by(|a, b| a.0.cmp(&b.0));
+        ordered.sort_by_key(|entry| entry.0);
         for (points, share) in ordered {
             for band in 0..bands {
                 let mut corner = [f64::INFINITY; 4];
