@@ -18,8 +18,9 @@ use nalgebra::Complex;
 use rayon::prelude::*;
 use std::f64::consts::PI;
 use std::hint::black_box;
+use std::path::{Path, PathBuf};
 
-#[path = "../tests/bands/memory.rs"]
+#[path = "../tests/memory/mod.rs"]
 mod memory;
 
 use memory::Memory;
@@ -212,8 +213,8 @@ fn hover_cold(bench: &mut Criterion) {
         ("3D metal", METAL),
     ];
     for (name, text) in rows {
-        let source = Memory::new(text);
-        let roots = [Memory::path()];
+        let source = Memory::of([("a.cren", text)]);
+        let roots = [PathBuf::from("a.cren")];
         for (kind, quick) in [("first", true), ("fine", false)] {
             bench.bench_function(&format!("cold hover {kind}, {name}"), |b| {
                 b.iter(|| {
@@ -229,7 +230,7 @@ fn hover_cold(bench: &mut Criterion) {
                     } else {
                         analyst.analyse(&request)
                     };
-                    let shown = hover(&analyst, &analysis, &Memory::path(), 10).unwrap();
+                    let shown = hover(&analyst, &analysis, Path::new("a.cren"), 10).unwrap();
                     assert!(shown.plain.contains("gap 1"), "{}", shown.plain);
                     shown
                 })

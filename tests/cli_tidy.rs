@@ -2,16 +2,17 @@
 #![allow(missing_docs, clippy::unwrap_used)]
 
 mod cli;
+mod memory;
 
-use std::path::{Path, PathBuf};
-use std::sync::{Arc, OnceLock};
+use std::path::PathBuf;
+use std::sync::OnceLock;
 
 use cli::{Folder, run, run_with_input, stderr, stdout};
-use crenate::model::{FileSource, ReadFailure};
 use crenate::report::analyst::{Analyst, Request};
 use crenate::report::tidy::tidy;
 use crenate::rules::Tier;
-use crenate::syntax::{Tree, read};
+use crenate::syntax::read;
+use memory::Memory;
 use proptest::prelude::*;
 
 const LOOSE: &str = "crystal tern\n\n\n mass   0.07 me#light\n layer 8 nm at 0 meV\n";
@@ -110,28 +111,12 @@ const UNREADABLE: [&str; 5] = [
     "<<<<<<<  ours",
 ];
 
-struct One(String);
-
-impl FileSource for One {
-    fn tree(&self, _: &Path) -> Result<Arc<Tree>, ReadFailure> {
-        Ok(Arc::new(read(&self.0)))
-    }
-
-    fn bytes(&self, _: &Path) -> Result<Arc<[u8]>, ReadFailure> {
-        Err(ReadFailure::NotFound)
-    }
-
-    fn inside(&self, _: &Path) -> bool {
-        true
-    }
-}
-
 /// What a text means: what is found in it, and the bands of its crystals to the last bit.
 fn meaning(text: &str) -> Vec<String> {
     static ANALYST: OnceLock<Analyst> = OnceLock::new();
     let path = PathBuf::from("/a.cren");
     let analysis = ANALYST.get_or_init(Analyst::default).analyse(&Request {
-        source: &One(text.to_owned()),
+        source: &Memory::of([(path.clone(), text)]),
         roots: std::slice::from_ref(&path),
         depth: Tier::Bands,
         cancel: &|| false,

@@ -16,6 +16,7 @@
 mod kinds;
 #[path = "faults/lines.rs"]
 mod lines;
+mod memory;
 #[path = "faults/models.rs"]
 mod models;
 
@@ -53,7 +54,7 @@ enum Outcome {
 
 fn analysed(analyst: &Analyst, models: &Models, depth: Tier) -> Analysis {
     analyst.analyse(&Request {
-        source: models,
+        source: &models.source(),
         roots: &models.roots(),
         depth,
         cancel: &|| false,

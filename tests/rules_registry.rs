@@ -3,63 +3,35 @@
 
 #![allow(missing_docs, clippy::unwrap_used, clippy::indexing_slicing)]
 
+mod memory;
+
 use std::fmt::Write as _;
 use std::path::{Path, PathBuf};
 use std::sync::Arc;
 
-use crenate::model::{FileSource, Place, ReadFailure, normalise};
+use crenate::model::{Place, normalise};
 use crenate::report::analysis::FileAnalysis;
 use crenate::report::analyst::{Analyst, Request};
 use crenate::rules::{self, Finding, Fix, Level, Mark, Rule, Sample, Tier};
-use crenate::syntax::{Tree, read};
 use crenate::text::Span;
+use memory::Memory;
 
 /// The name under which an example stands.
 const EXAMPLE: &str = "/example.cren";
 /// Fixes come to rest within so many rounds.
 const ROUNDS: usize = 8;
 
-/// Files in memory.
-struct Memory(Vec<(PathBuf, String)>);
-
-impl Memory {
-    fn of(text: &str, sample: &Sample) -> Self {
-        let path = |name: &str| normalise(&Path::new("/").join(name));
-        let mut files = vec![(normalise(Path::new(EXAMPLE)), text.to_owned())];
-        files.extend(
-            sample
-                .files
-                .iter()
-                .map(|(name, text)| (path(name), text.clone())),
-        );
-        Self(files)
-    }
-
-    fn text(&self, path: &Path) -> Result<&str, ReadFailure> {
-        let found = self.0.iter().find(|(known, _)| known == path);
-        found
-            .map(|(_, text)| text.as_str())
-            .ok_or(ReadFailure::NotFound)
-    }
-}
-
-impl FileSource for Memory {
-    fn tree(&self, path: &Path) -> Result<Arc<Tree>, ReadFailure> {
-        Ok(Arc::new(read(self.text(path)?)))
-    }
-
-    fn bytes(&self, path: &Path) -> Result<Arc<[u8]>, ReadFailure> {
-        Ok(Arc::from(self.text(path)?.as_bytes()))
-    }
-
-    fn inside(&self, _: &Path) -> bool {
-        true
-    }
+/// A text beside the files of its rule's documentation.
+fn files(text: &str, sample: &Sample) -> Memory {
+    let path = |name: &str| normalise(&Path::new("/").join(name));
+    let others = sample.files.iter();
+    let others = others.map(|(name, text)| (path(name), text.clone()));
+    Memory::of([(path(EXAMPLE), text.to_owned())].into_iter().chain(others))
 }
 
 /// What the whole pipeline makes of a text.
 fn analysed(text: &str, sample: &Sample) -> Arc<FileAnalysis> {
-    let source = Memory::of(text, sample);
+    let source = files(text, sample);
     let roots = [PathBuf::from(EXAMPLE)];
     let analysis = Analyst::default().analyse(&Request {
         source: &source,

@@ -6,10 +6,9 @@ use std::path::{Path, PathBuf};
 
 use clap::Args;
 
+use super::desk::Desk;
 use super::{Status, files, in_order, output};
-use crate::report::analyst::{Analyst, Request};
-use crate::report::disk::Disk;
-use crate::report::{FileSource, Tier, svg};
+use crate::report::{Tier, svg};
 
 #[derive(Debug, Args)]
 pub struct Arguments {
@@ -39,13 +38,12 @@ pub fn run(arguments: &Arguments) -> Status {
         output::message(&format!("{}: {error}", arguments.output.display()));
         return Status::Failed;
     }
-    let disk = Disk::within(&files::reach(&arguments.paths));
-    let analyst = Analyst::default();
+    let desk = Desk::of(&arguments.paths);
     let mut taken = HashSet::new();
     let mut drawn = 0;
     let outcome = in_order::each(
         &selection.files,
-        |path, cancel| pictures(arguments, &disk, &analyst, path, cancel),
+        |path, cancel| pictures(arguments, &desk, path, cancel),
         |pictures| {
             for (name, picture) in pictures {
                 match picture.and_then(|picture| {
@@ -70,20 +68,13 @@ pub fn run(arguments: &Arguments) -> Status {
 
 fn pictures(
     arguments: &Arguments,
-    disk: &Disk,
-    analyst: &Analyst,
+    desk: &Desk,
     path: &Path,
     cancel: &(dyn Fn() -> bool + Sync),
 ) -> Pictures {
-    let analysis = analyst.analyse(&Request {
-        source: disk,
-        roots: &[path.to_owned()],
-        depth: Tier::Model,
-        cancel,
-    });
-    let Some(file) = analysis.files.first() else {
-        let why = disk.tree(path).err().map(|failure| failure.words());
-        return vec![(path.display().to_string(), Err(why.unwrap_or_default()))];
+    let file = match desk.analysed(path, Tier::Model, cancel) {
+        Ok((_, file)) => file,
+        Err(why) => return vec![(path.display().to_string(), Err(why))],
     };
     let stem = path
         .file_stem()
@@ -97,7 +88,7 @@ fn pictures(
         .map(|(_, crystal)| {
             (
                 format!("{stem}-{}", crystal.name),
-                svg::draw(analyst, crystal, cancel),
+                svg::draw(&desk.analyst, crystal, cancel),
             )
         })
         .collect()

@@ -5,14 +5,13 @@ use std::path::{Path, PathBuf};
 
 use clap::{Args, ValueEnum};
 
+use super::desk::Desk;
 use super::files::{self, Selection, Shard};
 use super::{FailOn, Status, in_order, mend, output};
-use crate::report::analyst::{Analyst, Request};
-use crate::report::disk::Disk;
 use crate::report::lint_text::{self, Tally};
 use crate::report::locate::Locator;
 use crate::report::paint::Paint;
-use crate::report::{FileSource, Level, Tier, junit, lint_json, sarif};
+use crate::report::{Level, Tier, junit, lint_json, sarif};
 
 #[derive(Debug, Args)]
 pub struct Arguments {
@@ -93,13 +92,12 @@ pub fn run(arguments: &Arguments) -> Status {
 }
 
 fn check(arguments: &Arguments, selection: &Selection, printer: &mut Printer) -> io::Result<()> {
-    let disk = Disk::within(&files::reach(&arguments.paths));
-    let analyst = Analyst::knowing_used(files::used(&selection.all));
+    let desk = Desk::knowing(&arguments.paths, selection);
     let paint = output::paint();
     printer.begin()?;
     in_order::each(
         &selection.files,
-        |path, cancel| piece(arguments, (&disk, &analyst), paint, path, cancel),
+        |path, cancel| piece(arguments, &desk, paint, path, cancel),
         |piece| printer.take(piece),
     )?;
     printer.end(paint)
@@ -107,38 +105,33 @@ fn check(arguments: &Arguments, selection: &Selection, printer: &mut Printer) ->
 
 fn piece(
     arguments: &Arguments,
-    (disk, analyst): (&Disk, &Analyst),
+    desk: &Desk,
     paint: Paint,
     path: &Path,
     cancel: &(dyn Fn() -> bool + Sync),
 ) -> Piece {
-    let analysis = analyst.analyse(&Request {
-        source: disk,
-        roots: &[path.to_owned()],
-        depth: Tier::Bands,
-        cancel,
-    });
-    let Some(file) = analysis.files.first() else {
-        return Piece::failed(arguments.format, disk, path);
+    let (analysis, file) = match desk.analysed(path, Tier::Bands, cancel) {
+        Ok(analysed) => analysed,
+        Err(why) => return Piece::failed(arguments.format, path, &why),
     };
     let locator = Locator::new(&analysis);
     let findings = file.chosen_findings(&arguments.only);
     let mut tally = Tally::default();
     findings.iter().for_each(|finding| tally.add(finding.level));
     let told = match arguments.format {
-        Format::Text => Told::Text(lint_text::file(&locator, file, &findings, paint)),
+        Format::Text => Told::Text(lint_text::file(&locator, &file, &findings, paint)),
         Format::Json => Told::Json(
             findings
                 .iter()
                 .map(|finding| lint_json::line(&locator, finding))
                 .collect(),
         ),
-        Format::Sarif => Told::Sarif(sarif::results(&locator, file, &findings)),
+        Format::Sarif => Told::Sarif(sarif::results(&locator, &file, &findings)),
         Format::Junit => {
             let fail_on = arguments.fail_on.level();
             Told::Junit(Some(Box::new(junit::suite(
                 &locator,
-                file,
+                &file,
                 &findings,
                 fail_on,
                 &arguments.only,
@@ -154,8 +147,7 @@ fn piece(
 }
 
 impl Piece {
-    fn failed(format: Format, disk: &Disk, path: &Path) -> Self {
-        let why = disk.tree(path).err().map(|failure| failure.words());
+    fn failed(format: Format, path: &Path, why: &str) -> Self {
         let told = match format {
             Format::Text => Told::Text(String::new()),
             Format::Json => Told::Json(Vec::new()),
@@ -166,7 +158,7 @@ impl Piece {
             told,
             tally: Tally::default(),
             chosen: false,
-            failure: Some(format!("{}: {}", path.display(), why.unwrap_or_default())),
+            failure: Some(format!("{}: {why}", path.display())),
         }
     }
 }

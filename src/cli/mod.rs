@@ -4,6 +4,7 @@
 //! 0 where nothing reaches the failing level, 1 where something does, 2 where the
 //! work could not be done.
 
+mod desk;
 mod draw;
 mod files;
 mod in_order;

@@ -4,11 +4,10 @@ use std::path::PathBuf;
 
 use clap::{Args, ValueEnum};
 
-use super::{Status, files, output};
-use crate::report::analyst::{Analyst, Request};
-use crate::report::disk::Disk;
+use super::desk::Desk;
+use super::{Status, output};
 use crate::report::scan::{self, Range, Scan};
-use crate::report::{FileSource, Tier, locate};
+use crate::report::{Tier, locate};
 
 #[derive(Debug, Args)]
 pub struct Arguments {
@@ -46,42 +45,34 @@ enum Format {
 
 /// Shows the bands against one named value.
 pub fn run(arguments: &Arguments) -> Status {
-    let disk = Disk::within(&files::reach(std::slice::from_ref(&arguments.path)));
-    let analyst = Analyst::default();
-    let analysis = analyst.analyse(&Request {
-        source: &disk,
-        roots: std::slice::from_ref(&arguments.path),
-        depth: Tier::Model,
-        cancel: &|| false,
-    });
-    let Some(file) = analysis.files.first() else {
-        let why = disk
-            .tree(&arguments.path)
-            .err()
-            .map(|failure| failure.words());
-        output::message(&format!(
-            "{}: {}",
-            arguments.path.display(),
-            why.unwrap_or_default()
-        ));
-        return Status::Failed;
-    };
+    let desk = Desk::of(std::slice::from_ref(&arguments.path));
+    match scanned(arguments, &desk) {
+        Ok(text) => output::written(output::result(&text), Status::Clean),
+        Err(why) => {
+            output::message(&format!("{}: {why}", arguments.path.display()));
+            Status::Failed
+        }
+    }
+}
+
+/// The table of a scan; why there is none, in words.
+fn scanned(arguments: &Arguments, desk: &Desk) -> Result<String, String> {
+    let (analysis, file) = desk.analysed(&arguments.path, Tier::Model, &|| false)?;
     let range = Range {
         name: &arguments.vary,
         from: &arguments.from,
         to: &arguments.to,
         steps: arguments.steps,
     };
-    match scan::scan(&analyst, &disk, &analysis, file, &arguments.only, &range) {
-        Ok(scans) => {
-            let text = told(arguments, &scans, &locate::shown_path(&file.path));
-            output::written(output::result(&text), Status::Clean)
-        }
-        Err(why) => {
-            output::message(&format!("{}: {why}", arguments.path.display()));
-            Status::Failed
-        }
-    }
+    let scans = scan::scan(
+        &desk.analyst,
+        &desk.disk,
+        &analysis,
+        &file,
+        &arguments.only,
+        &range,
+    )?;
+    Ok(told(arguments, &scans, &locate::shown_path(&file.path)))
 }
 
 fn told(arguments: &Arguments, scans: &[Scan], file: &str) -> String {

@@ -5,16 +5,13 @@ use std::path::{Path, PathBuf};
 
 use clap::{Args, ValueEnum};
 
+use super::desk::Desk;
 use super::files::{self, Selection, Shard};
 use super::{FailOn, Status, in_order, output};
-use crate::report::analyst::{Analyst, Request};
-use crate::report::disk::Disk;
 use crate::report::lint_text::Tally;
 use crate::report::locate::Locator;
 use crate::report::paint::Paint;
-use crate::report::{
-    FileSource, Tier, lint_json, lint_text, locate, show_csv, show_json, show_text,
-};
+use crate::report::{Tier, lint_json, lint_text, locate, show_csv, show_json, show_text};
 
 #[derive(Debug, Args)]
 pub struct Arguments {
@@ -75,13 +72,12 @@ pub fn run(arguments: &Arguments) -> Status {
 }
 
 fn show(arguments: &Arguments, selection: &Selection, printer: &mut Printer) -> io::Result<()> {
-    let disk = Disk::within(&files::reach(&arguments.paths));
-    let analyst = Analyst::knowing_used(files::used(&selection.all));
+    let desk = Desk::knowing(&arguments.paths, selection);
     let paint = output::paint();
     printer.begin()?;
     in_order::each(
         &selection.files,
-        |path, cancel| piece(arguments, (&disk, &analyst), paint, path, cancel),
+        |path, cancel| piece(arguments, &desk, paint, path, cancel),
         |piece| printer.take(piece),
     )?;
     printer.end()
@@ -89,24 +85,20 @@ fn show(arguments: &Arguments, selection: &Selection, printer: &mut Printer) -> 
 
 fn piece(
     arguments: &Arguments,
-    (disk, analyst): (&Disk, &Analyst),
+    desk: &Desk,
     paint: Paint,
     path: &Path,
     cancel: &(dyn Fn() -> bool + Sync),
 ) -> Piece {
-    let analysis = analyst.analyse(&Request {
-        source: disk,
-        roots: &[path.to_owned()],
-        depth: Tier::Bands,
-        cancel,
-    });
-    let Some(file) = analysis.files.first() else {
-        let why = disk.tree(path).err().map(|failure| failure.words());
-        return Piece {
-            messages: vec![format!("{}: {}", path.display(), why.unwrap_or_default())],
-            failed: true,
-            ..Piece::default()
-        };
+    let (analysis, file) = match desk.analysed(path, Tier::Bands, cancel) {
+        Ok(analysed) => analysed,
+        Err(why) => {
+            return Piece {
+                messages: vec![format!("{}: {why}", path.display())],
+                failed: true,
+                ..Piece::default()
+            };
+        }
     };
     let locator = Locator::new(&analysis);
     let only = &arguments.only;
@@ -120,10 +112,10 @@ fn piece(
         .iter()
         .for_each(|finding| piece.tally.add(finding.level));
     match arguments.format {
-        Format::Text => piece.text = show_text::file(&locator, file, only, paint),
-        Format::Csv => piece.text = show_csv::rows(file, &name, only),
+        Format::Text => piece.text = show_text::file(&locator, &file, only, paint),
+        Format::Csv => piece.text = show_csv::rows(&file, &name, only),
         Format::Json => {
-            piece.crystals = show_json::lines(&locator, file, &name, only);
+            piece.crystals = show_json::lines(&locator, &file, &name, only);
             let told = findings
                 .iter()
                 .map(|finding| lint_json::line(&locator, finding));

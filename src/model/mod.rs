@@ -17,6 +17,7 @@ mod scalar;
 mod setting;
 pub mod shape;
 mod target;
+pub mod trade;
 mod trouble;
 pub mod unit;
 pub mod words;

@@ -7,17 +7,17 @@
 //! *Invariant*: only what a fix calls safe is applied, and only in the file that
 //! the finding stands in.
 
-use std::path::{Path, PathBuf};
+use std::path::Path;
 use std::sync::Arc;
 
-use rustc_hash::{FxHashMap, FxHashSet};
+use rustc_hash::FxHashSet;
 use similar::TextDiff;
 
 use super::analysis::{Analysis, FileAnalysis};
 use super::analyst::{Analyst, Request};
+use super::overlay::Overlay;
 use crate::model::{FileSource, ReadFailure, normalise};
 use crate::rules::{Fix, Tier};
-use crate::syntax::{self, Tree};
 use crate::text::Span;
 
 /// Fixes come to rest within fewer rounds than this; beyond it the rest is left to be reported.
@@ -27,8 +27,7 @@ const CONTEXT: usize = 3;
 
 /// A source of files in which some have been mended.
 pub struct Mending<'a> {
-    source: &'a dyn FileSource,
-    mended: FxHashMap<PathBuf, Arc<Tree>>,
+    files: Overlay<'a>,
 }
 
 /// A file before and after.
@@ -45,8 +44,7 @@ impl<'a> Mending<'a> {
     #[must_use]
     pub fn of(source: &'a dyn FileSource) -> Self {
         Self {
-            source,
-            mended: FxHashMap::default(),
+            files: Overlay::of(source),
         }
     }
 
@@ -63,11 +61,10 @@ impl<'a> Mending<'a> {
         cancel: &(dyn Fn() -> bool + Sync),
     ) -> Result<Option<Mended>, ReadFailure> {
         let path = normalise(path);
-        let original = self.source.tree(&path)?;
-        let start = self.tree(&path)?;
+        let original = self.files.source.tree(&path)?;
+        let start = self.files.tree(&path)?;
         let mut trial = Self {
-            source: self.source,
-            mended: self.mended.clone(),
+            files: self.files.clone(),
         };
         let mut seen = FxHashSet::from_iter([Arc::clone(&start.text)]);
         let mut text = Arc::clone(&start.text);
@@ -89,8 +86,7 @@ impl<'a> Mending<'a> {
 
     /// Sees the file at `path` with this text from now on.
     pub fn keep(&mut self, path: &Path, text: &str) {
-        self.mended
-            .insert(normalise(path), Arc::new(syntax::read(text)));
+        self.files.keep(path, text);
     }
 
     /// The text after one round; nothing where no fix is left.
@@ -102,33 +98,12 @@ impl<'a> Mending<'a> {
         cancel: &(dyn Fn() -> bool + Sync),
     ) -> Option<String> {
         let analysis = analyst.analyse(&Request {
-            source: self,
+            source: &self.files,
             roots: &[path.to_owned()],
             depth: Tier::Bands,
             cancel,
         });
         applied(&analysis, analysis.files.first()?, only)
-    }
-}
-
-impl FileSource for Mending<'_> {
-    fn tree(&self, path: &Path) -> Result<Arc<Tree>, ReadFailure> {
-        match self.mended.get(path) {
-            Some(tree) => Ok(Arc::clone(tree)),
-            None => self.source.tree(path),
-        }
-    }
-
-    fn bytes(&self, path: &Path) -> Result<Arc<[u8]>, ReadFailure> {
-        self.source.bytes(path)
-    }
-
-    fn inside(&self, path: &Path) -> bool {
-        self.source.inside(path)
-    }
-
-    fn is_used(&self, path: &Path) -> bool {
-        self.source.is_used(path)
     }
 }
 
@@ -201,6 +176,7 @@ fn free(span: Span, edits: &[(Span, &str)]) -> bool {
 #[cfg(test)]
 mod tests {
     use super::*;
+    use crate::syntax::{self, Tree};
 
     struct One(&'static str);
 

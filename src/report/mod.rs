@@ -26,6 +26,7 @@ pub mod lint_text;
 pub mod locate;
 mod meet;
 pub mod mend;
+mod overlay;
 pub mod paint;
 pub mod rule_page;
 pub mod sarif;

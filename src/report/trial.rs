@@ -1,14 +1,15 @@
 //! What would come of a crystal if a text were edited so: tried out, and nothing kept but the bands' cache.
 
-use std::path::{Path, PathBuf};
+use std::path::PathBuf;
 use std::sync::Arc;
 
 use super::actions::Asked;
 use super::analysis::FileAnalysis;
+use super::overlay::Overlay;
 use crate::bands::Assessment;
-use crate::model::{CrystalRef, FileSource, ReadFailure, Setting, World, build_crystal};
+use crate::model::{CrystalRef, FileSource, Setting, World, build_crystal};
 use crate::rules::{self, Level, Subject, Tier};
-use crate::syntax::{Entry, SectionId, Tree, read};
+use crate::syntax::{Entry, SectionId};
 use crate::text::Span;
 
 /// Replacements in absolute bytes, by file.
@@ -27,7 +28,7 @@ pub(super) fn targets(
         .iter()
         .position(|entry| entry.id == section)?;
     let before = mistakes(asked, &asked.analysis.world, file, index, asked.source)?;
-    let edited = Edited::new(asked, edits)?;
+    let edited = edited(asked, edits)?;
     let world = World::gather(&edited, std::slice::from_ref(&file.path));
     if mistakes(asked, &world, file, index, &edited)? > before {
         return None;
@@ -88,56 +89,26 @@ fn mistakes(
     Some(errors.count())
 }
 
-/// Files as they are, but for the edited ones.
-struct Edited<'a> {
-    source: &'a dyn FileSource,
-    files: Vec<(PathBuf, Arc<Tree>)>,
-}
-
-impl<'a> Edited<'a> {
-    fn new(asked: &Asked<'a>, edits: &Edits) -> Option<Self> {
-        let mut texts: Vec<(PathBuf, String)> = Vec::new();
-        let mut edits: Vec<_> = edits.iter().collect();
-        // From the end of each file on, so that those before keep their places.
-        edits.sort_by_key(|(_, span, _)| std::cmp::Reverse((span.start, span.end)));
-        for (path, span, new) in edits {
-            if !texts.iter().any(|(known, _)| known == path) {
-                let files = asked.analysis.world.files().iter();
-                let file = files.into_iter().find(|file| file.path == *path)?;
-                texts.push((path.clone(), file.tree.text.to_string()));
-            }
-            let (_, text) = texts.iter_mut().find(|(known, _)| known == path)?;
-            let range = span.start as usize..span.end as usize;
-            text.get(range.clone())?;
-            text.replace_range(range, new);
+/// Files as they are, but for the edited ones; `None` where an edit has no place in them.
+fn edited<'a>(asked: &Asked<'a>, edits: &Edits) -> Option<Overlay<'a>> {
+    let mut texts: Vec<(PathBuf, String)> = Vec::new();
+    let mut edits: Vec<_> = edits.iter().collect();
+    // From the end of each file on, so that those before keep their places.
+    edits.sort_by_key(|(_, span, _)| std::cmp::Reverse((span.start, span.end)));
+    for (path, span, new) in edits {
+        if !texts.iter().any(|(known, _)| known == path) {
+            let files = asked.analysis.world.files().iter();
+            let file = files.into_iter().find(|file| file.path == *path)?;
+            texts.push((path.clone(), file.tree.text.to_string()));
         }
-        let files = texts.into_iter();
-        Some(Self {
-            source: asked.source,
-            files: files
-                .map(|(path, text)| (path, Arc::new(read(&text))))
-                .collect(),
-        })
+        let (_, text) = texts.iter_mut().find(|(known, _)| known == path)?;
+        let range = span.start as usize..span.end as usize;
+        text.get(range.clone())?;
+        text.replace_range(range, new);
     }
-}
-
-impl FileSource for Edited<'_> {
-    fn tree(&self, path: &Path) -> Result<Arc<Tree>, ReadFailure> {
-        match self.files.iter().find(|(known, _)| known == path) {
-            Some((_, tree)) => Ok(Arc::clone(tree)),
-            None => self.source.tree(path),
-        }
+    let mut files = Overlay::of(asked.source);
+    for (path, text) in &texts {
+        files.keep(path, text);
     }
-
-    fn bytes(&self, path: &Path) -> Result<Arc<[u8]>, ReadFailure> {
-        self.source.bytes(path)
-    }
-
-    fn inside(&self, path: &Path) -> bool {
-        self.source.inside(path)
-    }
-
-    fn is_used(&self, path: &Path) -> bool {
-        self.source.is_used(path)
-    }
+    Some(files)
 }

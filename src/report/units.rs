@@ -14,26 +14,12 @@
 //! * A number without uncertainty is exact as written; its trailing zeros are dropped.
 
 use crate::bands::Measured;
-use crate::model::{Crystal, Dimension};
+use crate::model::Dimension;
+pub use crate::model::constants::{ATOMIC_MASS, BOLTZMANN, ELECTRON_MASS, ELECTRONVOLT, PLANCK};
+pub use crate::model::trade::Trade;
 
 /// Significant digits of a number that is known better than anyone wants to read.
 pub const USUAL: i32 = 4;
-
-/// J in one eV (CODATA 2022, exact).
-pub const ELECTRONVOLT: f64 = 1.602_176_634e-19;
-/// J s in h (CODATA 2022, exact).
-pub const PLANCK: f64 = 6.626_070_15e-34;
-/// J/K in kB (CODATA 2022, exact).
-pub const BOLTZMANN: f64 = 1.380_649e-23;
-/// m/s in c (exact).
-pub const LIGHT: f64 = 299_792_458.0;
-/// kg in one electron mass (CODATA 2022).
-pub const ELECTRON_MASS: f64 = 9.109_383_713_9e-31;
-/// kg in one unified atomic mass unit (CODATA 2022).
-pub const ATOMIC_MASS: f64 = 1.660_539_068_92e-27;
-
-/// A mass above this is an atom's (the lightest atom has 1837 me).
-const LIGHTEST_ATOM: f64 = 1000.0 * ELECTRON_MASS;
 
 /// A unit to show numbers in.
 #[derive(Clone, Debug, PartialEq)]
@@ -53,26 +39,7 @@ impl Scale {
     }
 }
 
-/// What a crystal's people measure energies and masses in.
-#[derive(Clone, Copy, Debug, Default, PartialEq)]
-pub struct Trade {
-    /// One recoil energy in joule, where the crystal has a `recoil`.
-    pub recoil: Option<f64>,
-    /// Whether an atom moves, not an electron.
-    pub atoms: bool,
-}
-
 impl Trade {
-    /// The trade of a crystal, told by its `recoil` and its mass.
-    #[must_use]
-    pub fn of(crystal: &Crystal) -> Self {
-        let recoil = crystal.recoil.as_ref().map(|recoil| recoil.energy.value);
-        Self {
-            recoil: recoil.filter(|energy| energy.is_finite() && *energy > 0.0),
-            atoms: crystal.mass.value > LIGHTEST_ATOM,
-        }
-    }
-
     /// The unit for an energy of this size in joule.
     #[must_use]
     pub fn energy(&self, size: f64) -> Scale {

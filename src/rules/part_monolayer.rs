@@ -48,18 +48,26 @@ const CLOSE: f64 = 0.05;
 const CLOSE_IN_ML: f64 = 1e-6;
 
 fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
+    each_layer(subject, findings, finding);
+}
+
+/// Adds what is found in each layer; the repeats of a stack are written once, and told once.
+pub(super) fn each_layer(
+    subject: &Subject<'_>,
+    findings: &mut Vec<Finding>,
+    look: impl Fn(&Subject<'_>, &Layer) -> Option<Finding>,
+) {
     let Some(crystal) = subject.crystal else {
         return;
     };
     for layer in &crystal.potential.layers {
-        let finding = finding(subject, layer);
-        // The repeats of a stack are written once.
-        let new = |finding: &Finding| {
-            findings
-                .iter()
-                .all(|other| other.place != finding.place || other.rule != RULE.name)
+        let Some(found) = look(subject, layer) else {
+            continue;
         };
-        findings.extend(finding.filter(new).into_iter().collect::<Vec<_>>());
+        let known = |other: &Finding| (other.rule, other.place) == (found.rule, found.place);
+        if !findings.iter().any(known) {
+            findings.push(found);
+        }
     }
 }
 

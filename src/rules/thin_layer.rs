@@ -26,7 +26,7 @@
 //! # Fix
 //! One monolayer, to be looked at.
 
-use super::part_monolayer::{thickness_place, whole_monolayers};
+use super::part_monolayer::{each_layer, thickness_place, whole_monolayers};
 use super::{Finding, Level, Rule, Subject, Tier, words};
 use crate::model::Layer;
 
@@ -45,18 +45,7 @@ pub const RULE: Rule = Rule {
 pub const ROUNDING: f64 = 1e-3;
 
 fn check(subject: &Subject<'_>, findings: &mut Vec<Finding>) {
-    let Some(crystal) = subject.crystal else {
-        return;
-    };
-    for layer in &crystal.potential.layers {
-        let finding = finding(subject, layer);
-        let new = |finding: &Finding| {
-            findings
-                .iter()
-                .all(|other| other.place != finding.place || other.rule != RULE.name)
-        };
-        findings.extend(finding.filter(new).into_iter().collect::<Vec<_>>());
-    }
+    each_layer(subject, findings, finding);
 }
 
 fn finding(subject: &Subject<'_>, layer: &Layer) -> Option<Finding> {

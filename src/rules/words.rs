@@ -3,6 +3,8 @@
 
 use super::Subject;
 use crate::model::constants::{ATOMIC_MASS, ELECTRON_MASS, ELECTRONVOLT as EV, PLANCK};
+use crate::model::trade::LIGHTEST_ATOM;
+pub use crate::model::trade::Trade;
 use crate::model::{Crystal, Dimension};
 
 /// Digits shown where nothing asks for more.
@@ -50,26 +52,7 @@ const fn unit(name: &'static str, size: f64) -> Unit {
     Unit { name, size }
 }
 
-/// What a crystal's people measure energies in.
-#[derive(Clone, Copy, Debug, Default, PartialEq)]
-pub struct Trade {
-    /// One `Er` in joule, where the crystal has a `recoil`.
-    pub recoil: Option<f64>,
-    /// Whether an atom moves.
-    pub atoms: bool,
-}
-
 impl Trade {
-    /// Told by the crystal's recoil and mass.
-    #[must_use]
-    pub fn of(crystal: &Crystal) -> Self {
-        let recoil = crystal.recoil.as_ref().map(|recoil| recoil.energy.value);
-        Self {
-            recoil: recoil.filter(|joule| joule.is_finite() && *joule > 0.0),
-            atoms: crystal.mass.value > 0.5 * ATOMIC_MASS,
-        }
-    }
-
     /// The trade of the crystal that a rule looks at; the usual one where there is none.
     #[must_use]
     pub fn here(subject: &Subject<'_>) -> Self {
@@ -85,7 +68,7 @@ pub fn unit_for(value: f64, dimension: Dimension, trade: Trade) -> Option<Unit> 
         Dimension::NUMBER => Some(unit("", 1.0)),
         Dimension::ENERGY => Some(energy_unit(size, trade)),
         Dimension::LENGTH => Some(length_unit(size)),
-        Dimension::MASS if size < 0.5 * ATOMIC_MASS => Some(unit("me", ELECTRON_MASS)),
+        Dimension::MASS if size < LIGHTEST_ATOM => Some(unit("me", ELECTRON_MASS)),
         Dimension::MASS => Some(unit("u", ATOMIC_MASS)),
         Dimension::TEMPERATURE => Some(first_at_most(&TEMPERATURES, size)),
         Dimension::ENERGY_LENGTH => Some(unit("eV*nm", 1e-9 * EV)),

@@ -1,13 +1,14 @@
 //! Text in memory → solved crystals.
 #![allow(dead_code, clippy::print_stdout)]
 
+#[path = "../memory/mod.rs"]
+mod memory;
+
+use std::path::{Path, PathBuf};
 use std::sync::Arc;
 
 use crenate::bands::{Assessment, MeasureValue, Solution, Solver, Unsolved};
 use crenate::model::{Built, CrystalRef, Setting, World, build_crystal};
-
-mod memory;
-
 use memory::Memory;
 
 /// One elementary charge: joule per electronvolt (exact in the SI).
@@ -31,8 +32,8 @@ pub struct Bench {
 
 impl Bench {
     pub fn new(text: &str) -> Self {
-        let source = Memory::new(text);
-        let world = World::gather(&source, &[Memory::path()]);
+        let source = Memory::of([("model.cren", text)]);
+        let world = World::gather(&source, &[PathBuf::from("model.cren")]);
         Self {
             world,
             source,
@@ -41,7 +42,11 @@ impl Bench {
     }
 
     pub fn crystal_ref(&self, index: usize) -> CrystalRef {
-        let file = self.world.file_at(&Memory::path()).expect("the file").id;
+        let file = self
+            .world
+            .file_at(Path::new("model.cren"))
+            .expect("the file")
+            .id;
         let section = self.world.crystals(file)[index].0;
         CrystalRef { file, section }
     }

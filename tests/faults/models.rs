@@ -2,10 +2,8 @@
 
 use std::fs;
 use std::path::{Path, PathBuf};
-use std::sync::Arc;
 
-use crenate::model::{FileSource, ReadFailure};
-use crenate::syntax::{Tree, read};
+use super::memory::Memory;
 
 /// Files that belong together; those that end in `.cren` are analysed.
 #[derive(Clone)]
@@ -174,24 +172,9 @@ impl Models {
             .collect()
     }
 
-    fn text(&self, path: &Path) -> Result<&str, ReadFailure> {
-        let found = self.files.iter().find(|(name, _)| Self::path(name) == path);
-        found
-            .map(|(_, text)| text.as_str())
-            .ok_or(ReadFailure::NotFound)
-    }
-}
-
-impl FileSource for Models {
-    fn tree(&self, path: &Path) -> Result<Arc<Tree>, ReadFailure> {
-        Ok(Arc::new(read(self.text(path)?)))
-    }
-
-    fn bytes(&self, path: &Path) -> Result<Arc<[u8]>, ReadFailure> {
-        Ok(Arc::from(self.text(path)?.as_bytes()))
-    }
-
-    fn inside(&self, _: &Path) -> bool {
-        true
+    /// Where they can be read.
+    pub fn source(&self) -> Memory {
+        let files = self.files.iter();
+        Memory::of(files.map(|(name, text)| (Self::path(name), text.as_str())))
     }
 }

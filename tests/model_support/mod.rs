@@ -2,49 +2,28 @@
 #![allow(dead_code, clippy::unwrap_used, clippy::indexing_slicing, missing_docs)]
 
 pub mod cells;
+#[path = "../memory/mod.rs"]
+mod memory;
 
-use std::collections::BTreeMap;
 use std::path::{Path, PathBuf};
-use std::sync::Arc;
 
 use crenate::model::{
-    Built, BuiltMaterial, BuiltPreamble, CrystalRef, FileId, FileSource, ReadFailure, Setting,
-    Trouble, TroubleKind, World, build_crystal, build_material, build_preamble,
+    Built, BuiltMaterial, BuiltPreamble, CrystalRef, FileId, Setting, Trouble, TroubleKind, World,
+    build_crystal, build_material, build_preamble,
 };
-use crenate::syntax::{Tree, read};
+use memory::Memory;
 
-/// Files by path; those under `/w` are in the workspace.
-#[derive(Default)]
-pub struct Files(pub BTreeMap<PathBuf, Vec<u8>>);
-
-impl FileSource for Files {
-    fn tree(&self, path: &Path) -> Result<Arc<Tree>, ReadFailure> {
-        let bytes = self.0.get(path).ok_or(ReadFailure::NotFound)?;
-        let text = std::str::from_utf8(bytes).map_err(|_| ReadFailure::NotText)?;
-        Ok(Arc::new(read(text)))
-    }
-    fn bytes(&self, path: &Path) -> Result<Arc<[u8]>, ReadFailure> {
-        let bytes = self.0.get(path).ok_or(ReadFailure::NotFound)?;
-        Ok(Arc::from(bytes.as_slice()))
-    }
-    fn inside(&self, path: &Path) -> bool {
-        path.starts_with("/w")
-    }
-}
-
-/// A world with its files; `/w/a.cren` is the root.
+/// A world with its files; `/w/a.cren` is the root, and `/w` the workspace.
 pub struct Desk {
-    pub files: Files,
+    pub files: Memory,
     pub world: World,
 }
 
 impl Desk {
     pub fn of(files: &[(&str, &str)]) -> Self {
-        let files = files
-            .iter()
-            .map(|(path, text)| (Path::new("/w").join(path), text.as_bytes().to_vec()))
-            .collect();
-        let files = Files(files);
+        let files = files.iter();
+        let files = files.map(|(path, text)| (Path::new("/w").join(path), *text));
+        let files = Memory::of(files).but(|path| !path.starts_with("/w"));
         let world = World::gather(&files, &[PathBuf::from("/w/a.cren")]);
         Self { files, world }
     }

@@ -5,10 +5,11 @@ use std::collections::BTreeMap;
 use super::View;
 use super::card::Card;
 use crate::bands::{Gap, GapKind, MeasureValue, Measured, Solution};
+use crate::model::constants::SPEED_OF_LIGHT;
 use crate::model::{Crystal, Dimension, Layer, Place};
 use crate::report::analysis::SectionAnalysis;
 use crate::report::show_text;
-use crate::report::units::{self, BOLTZMANN, ELECTRONVOLT, LIGHT, PLANCK, Trade, exact};
+use crate::report::units::{self, BOLTZMANN, ELECTRONVOLT, PLANCK, Trade, exact};
 use crate::report::{drawing, words};
 use crate::syntax::Statement;
 
@@ -176,7 +177,7 @@ fn beside(energy: Measured, trade: &Trade) -> Option<String> {
     }
     let optical = size > OPTICAL.0 * ELECTRONVOLT && size < OPTICAL.1 * ELECTRONVOLT;
     (optical && !trade.atoms).then(|| {
-        let wavelength = PLANCK * LIGHT / size;
+        let wavelength = PLANCK * SPEED_OF_LIGHT / size;
         let uncertainty = wavelength * energy.uncertainty / size;
         let value = Measured {
             value: wavelength / 1e-6,
