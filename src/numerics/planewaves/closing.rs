@@ -85,7 +85,7 @@ impl Waves<'_> {
             let Some(near) = near else {
                 return Ok(None);
             };
-            let surface = Surface::new(self, &solved.mesh, &near, guess)?;
+            let surface = Surface::new(self, &solved.mesh, &near, guess, budget)?;
             let first = surface.level(wanted.levels);
             // The levels are good near the guess only.
             if (first - guess).abs() > 0.3 * CLEAR[1] * self.frame.unit() {

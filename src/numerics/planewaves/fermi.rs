@@ -21,7 +21,7 @@ pub struct Fermi {
     /// States per cell and unit of energy there, one state a level; its error is an estimate, not a bound, near
     /// singularities.
     pub density: Estimate,
-    /// The sum of the filled levels' energies per cell.
+    /// The sum of the filled levels' energies per cell, by the coarse mesh alone: known less well than the level.
     pub energy: Estimate,
     /// Whether the level is known as well as was asked for.
     pub settled: bool,
@@ -29,6 +29,9 @@ pub struct Fermi {
 
 /// What bands that cross leave on simplices of this fineness, in the natural unit times its square, by dimension.
 pub(super) const CROSSING: [f64; 3] = [0.02, 1.0, 0.6];
+
+/// Points that symmetry does not make equal in the finest mesh.
+const MOST_POINTS: usize = 2500;
 
 impl Waves<'_> {
     /// The Fermi level at which `levels` levels per cell are filled (particles over the states a level holds; it need
@@ -57,7 +60,10 @@ impl Waves<'_> {
         let mut bands = levels.ceil() as usize + [2, 4, 6][self.frame.dimension - 1];
         let mut best: Option<Fermi> = None;
         let mut passed: Option<usize> = None;
-        for size in sizes {
+        let most = MOST_POINTS * self.operations();
+        let few = |size: &&usize| size.pow(self.frame.dimension as u32) <= most;
+        let sizes: Vec<usize> = sizes.iter().take_while(few).copied().collect();
+        for size in &sizes {
             let last = sizes.last() == Some(size);
             let found = match self.closed_in(*size, &mut bands, wanted, !last, budget) {
                 Err(Error::BudgetSpent) if best.is_some() || passed.is_some() => break,

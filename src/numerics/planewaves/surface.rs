@@ -69,7 +69,13 @@ pub(super) struct Corner {
 
 impl<'n> Surface<'n> {
     /// The cells of all irreducible points of a mesh, for levels near `level`.
-    pub fn new(waves: &Waves, mesh: &Mesh, near: &'n [Nearby], level: f64) -> Result<Self, Error> {
+    pub fn new(
+        waves: &Waves,
+        mesh: &Mesh,
+        near: &'n [Nearby],
+        level: f64,
+        budget: &Budget,
+    ) -> Result<Self, Error> {
         let frame = &waves.frame;
         let pieces = cell(frame, mesh.size)?;
         let total = mesh.of.len() as f64;
@@ -77,11 +83,15 @@ impl<'n> Surface<'n> {
             .par_iter()
             .enumerate()
             .map(|(point, near)| {
+                if (budget.cancelled)() {
+                    return Err(Error::Cancelled);
+                }
                 let group = waves.symmetry.little_group(mesh.points[point]);
                 let own = distinct(frame, &pieces, &group);
-                Patch::new(near, &own, mesh.weights[point] / total, frame.dimension)
+                let share = mesh.weights[point] / total;
+                Ok(Patch::new(near, &own, share, frame.dimension))
             })
-            .collect();
+            .collect::<Result<_, Error>>()?;
         let kinetic = (level - waves.mean + waves.swing).max(0.1 * frame.unit());
         Ok(Self {
             dimension: frame.dimension,
