@@ -12,15 +12,18 @@ use crenate::numerics::planewaves::{
 };
 use crenate::report::analyst::Effort;
 use crenate::report::hover::hover;
-use crenate::report::{Analyst, FileSource, ReadFailure, Request, Tier};
-use crenate::syntax::{Tree, read};
+use crenate::report::{Analyst, Request, Tier};
 use criterion::Criterion;
 use nalgebra::Complex;
 use rayon::prelude::*;
 use std::f64::consts::PI;
 use std::hint::black_box;
 use std::path::{Path, PathBuf};
-use std::sync::Arc;
+
+#[path = "../tests/memory/mod.rs"]
+mod memory;
+
+use memory::Memory;
 
 fn fcc() -> Lattice {
     Lattice::new(&[[0.0, PI, PI], [PI, 0.0, PI], [PI, PI, 0.0]]).unwrap()
@@ -182,31 +185,14 @@ fn main() {
     bench.final_summary();
 }
 
-/// One file in memory.
-struct Memory(Arc<Tree>);
-
-impl FileSource for Memory {
-    fn tree(&self, path: &Path) -> Result<Arc<Tree>, ReadFailure> {
-        if path == Path::new("a.cren") {
-            Ok(Arc::clone(&self.0))
-        } else {
-            Err(ReadFailure::NotFound)
-        }
-    }
-    fn bytes(&self, _: &Path) -> Result<Arc<[u8]>, ReadFailure> {
-        Err(ReadFailure::NotFound)
-    }
-    fn inside(&self, _: &Path) -> bool {
-        true
-    }
-}
-
 const SHEET: &str = "crystal comb\n  mass 0.067 me\n  lattice hexagonal 20 nm\n  \
     site gaussian -60 meV sigma 2.8 nm at (1/3, 2/3)\n  site gaussian -66 meV sigma 2.8 nm at (2/3, 1/3)\n  filling 2\n";
 const TUBES: &str = "crystal box\n  mass 87 u\n  carriers bosons\n  lattice square 532 nm\n  recoil 1064 nm\n  \
     depth (1,0) = 6 Er\n  depth (0,1) = 6 Er\n";
 const PROFILE: &str = "crystal waves\n  mass 0.1 me\n  lattice square 4 nm\n  \
     profile = 50 meV*cos(2*pi*x/4 nm)*cos(2*pi*y/4 nm)\n";
+const SOLID_PROFILE: &str = "crystal lattice_of_waves\n  mass 0.1 me\n  lattice cubic 4 nm\n  \
+    profile = 50 meV*cos(2*pi*x/4 nm)*cos(2*pi*y/4 nm) + 30 meV*cos(2*pi*z/4 nm)\n";
 const DISKS: &str = "crystal disks\n  mass 0.067 me\n  lattice hexagonal 30 nm\n  \
     site disk -80 meV radius 6 nm at (0, 0)\n  filling 1\n";
 const DIAMOND: &str = "crystal stone\n  lattice fcc 5.5 Å\n  atom A at (0.125, 0.125, 0.125)\n  \
@@ -221,12 +207,13 @@ fn hover_cold(bench: &mut Criterion) {
         ("2D dots", SHEET),
         ("2D tubes", TUBES),
         ("2D profile", PROFILE),
+        ("3D profile", SOLID_PROFILE),
         ("2D disks", DISKS),
         ("3D semiconductor", DIAMOND),
         ("3D metal", METAL),
     ];
     for (name, text) in rows {
-        let source = Memory(Arc::new(read(text)));
+        let source = Memory::of([("a.cren", text)]);
         let roots = [PathBuf::from("a.cren")];
         for (kind, quick) in [("first", true), ("fine", false)] {
             bench.bench_function(&format!("cold hover {kind}, {name}"), |b| {

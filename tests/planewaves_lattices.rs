@@ -389,7 +389,11 @@ fn gaussian_wells_settle_inside_their_stated_errors() {
 #[test]
 fn no_point_of_a_fine_grid_beats_the_edges() {
     let lattice = Lattice::new(&[[1.0, 0.0, 0.0], [0.37, 0.92, 0.0]]).unwrap();
-    for (first, second, place) in [(-25.0, -14.0, [0.31, 0.17]), (-60.0, 35.0, [0.45, 0.3])] {
+    for (first, second, place) in [
+        (-25.0, -14.0, [0.31, 0.17]),
+        (-60.0, 35.0, [0.45, 0.3]),
+        (-8.0, -8.0, [0.2, 0.6]),
+    ] {
         let b = lattice.reciprocal();
         let components = |n: [i32; 3]| {
             let g: [f64; 3] =

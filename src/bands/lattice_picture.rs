@@ -142,7 +142,11 @@ fn density(
 ) -> Vec<(f64, f64)> {
     let scale = zone.field.scale.energy;
     let energies = (0..=ENERGIES).map(|step| from + (to - from) * step as f64 / ENERGIES as f64);
+    let energies: Vec<f64> = energies.collect();
+    let scaled: Vec<f64> = energies.iter().map(|energy| energy / scale).collect();
+    let densities = states.densities(&scaled).into_iter();
     energies
-        .map(|energy| (energy, degeneracy * states.density(energy / scale) / scale))
+        .into_iter()
+        .zip(densities.map(|density| degeneracy * density / scale))
         .collect()
 }

@@ -28,7 +28,7 @@ const SETTLED: [f64; 3] = [1e-10, 1e-6, 1e-5];
 /// An answer whose edges are less certain than this, in the largest |bᵢ|², is none.
 const USELESS: f64 = 0.05;
 /// The Fermi level of a metal, in the largest |bᵢ|², in two and three dimensions.
-const FERMI: [f64; 2] = [1.5e-4, 1e-3];
+const FERMI: [f64; 2] = [5e-6, 4e-5];
 
 /// The sum of the cubes of all bases, coarse and fine: about a second and some ten seconds of one core.
 const COST: [f64; 2] = [2e9, 2e10];

@@ -1,10 +1,13 @@
-//! The Fermi level: meshes refined until it settles.
+//! The Fermi level: the zone's simplices refined until it settles.
 //!
-//! What linear simplices leave is of second order in the mesh, so that meshes of M and M′ > M points along an edge give
-//! E′ + (E′ − E)/((M′/M)² − 1). The whole of that last term is stated as error, with what the mesh before leads one to expect,
-//! what crossing bands may leave, and what the cut-off left uncertain.
+//! A coarse mesh is solved; between its points levels come from `nearby.rs`, and the simplices of `surface.rs` are divided
+//! until the level E settles. What linear simplices leave is of second order in their size, so that two divisions give
+//! E′ + (E′ − E)/3. The whole of that last term is stated as error, with what the one before leads one to expect, what
+//! crossing bands may leave, how far levels between the mesh's points were from solves there, and what the cut-off left
+//! uncertain. In one dimension whole meshes are compared instead.
 
 use super::basis::Waves;
+use super::closing::Wanted;
 use super::settle::{Prediction, UNTRIED};
 use super::states::{Filled, States};
 use super::{Budget, Error, Estimate};
@@ -18,47 +21,106 @@ pub struct Fermi {
     /// States per cell and unit of energy there, one state a level; its error is an estimate, not a bound, near
     /// singularities.
     pub density: Estimate,
-    /// The sum of the filled levels' energies per cell.
+    /// The sum of the filled levels' energies per cell, by the coarse mesh alone: known less well than the level.
     pub energy: Estimate,
     /// Whether the level is known as well as was asked for.
     pub settled: bool,
 }
+
+/// What bands that cross leave on simplices of this fineness, in the natural unit times its square, by dimension.
+pub(super) const CROSSING: [f64; 3] = [0.02, 1.0, 0.6];
+
+/// Points that symmetry does not make equal in the finest mesh.
+const MOST_POINTS: usize = 2500;
 
 impl Waves<'_> {
     /// The Fermi level at which `levels` levels per cell are filled (particles over the states a level holds; it need
     /// not be whole). For whole bands with a gap above, this is the gap's lower edge.
     ///
     /// # Errors
-    /// `NotFinite` where `levels` is not positive; `BudgetSpent` where not even two meshes fit; `Cancelled`.
+    /// `NotFinite` where `levels` is not positive; `BudgetSpent` where not even the first mesh fits; `Cancelled`.
     pub fn fermi(&self, levels: f64, tolerance: f64, budget: &Budget) -> Result<Fermi, Error> {
         if !(levels > 0.0 && levels < 1e4 && tolerance > 0.0 && tolerance.is_finite()) {
             return Err(Error::NotFinite);
         }
         let (cut, share) = self.cut_for_states(levels, tolerance, budget)?;
+        if self.frame.dimension == 1 {
+            return self.fermi_of_chain(levels, tolerance, (cut, share), budget);
+        }
         let sizes: &[usize] = match self.frame.dimension {
-            1 => &[24, 48, 96, 192, 384, 768],
-            2 => &[12, 24, 48, 96, 192],
-            _ => &[6, 12, 24, 32, 48],
+            2 => &[8, 12, 16, 24, 32, 48],
+            _ => &[6, 8, 12, 16, 24],
         };
+        let wanted = Wanted {
+            levels,
+            tolerance,
+            cut,
+            share,
+        };
+        let mut bands = levels.ceil() as usize + [2, 4, 6][self.frame.dimension - 1];
+        let mut best: Option<Fermi> = None;
+        let mut passed: Option<usize> = None;
+        let most = MOST_POINTS * self.operations();
+        let few = |size: &&usize| size.pow(self.frame.dimension as u32) <= most;
+        let sizes: Vec<usize> = sizes.iter().take_while(few).copied().collect();
+        for size in &sizes {
+            let last = sizes.last() == Some(size);
+            let found = match self.closed_in(*size, &mut bands, wanted, !last, budget) {
+                Err(Error::BudgetSpent) if best.is_some() || passed.is_some() => break,
+                other => other?,
+            };
+            let Some(found) = found else {
+                continue;
+            };
+            let Some(fermi) = found.fermi else {
+                passed = Some(*size);
+                continue;
+            };
+            passed = None;
+            // A finer mesh helps only where the levels in between were what is uncertain.
+            let done = fermi.settled || found.between < 0.2 * fermi.level.error;
+            if best.is_none_or(|other| fermi.level.error < other.level.error) {
+                best = Some(fermi);
+            }
+            if done {
+                break;
+            }
+        }
+        if let Some(size) = passed {
+            // The work allowed did not reach further: that mesh it must be.
+            let budget = Budget::new(budget.cancelled, budget.max_basis, usize::MAX);
+            let found = self.closed_in(size, &mut bands, wanted, false, &budget)?;
+            best = best.or(found.and_then(|found| found.fermi));
+        }
+        best.ok_or(Error::BudgetSpent)
+    }
+}
+
+impl Waves<'_> {
+    /// The level in one dimension, by meshes refined until it settles.
+    fn fermi_of_chain(
+        &self,
+        levels: f64,
+        tolerance: f64,
+        (cut, share): (f64, f64),
+        budget: &Budget,
+    ) -> Result<Fermi, Error> {
         let mut last: Option<(f64, Filled)> = None;
         let mut before = 0.0;
         let mut best: Option<Fermi> = None;
-        for size in sizes {
-            let states = match self.enough_states(levels, *size, cut, share, budget) {
+        for size in [24_usize, 48, 96, 192, 384, 768] {
+            let states = match self.enough_states(levels, size, cut, share, budget) {
                 Err(Error::BudgetSpent) if best.is_some() => break,
                 other => other?,
             };
             let filled = states.fill(levels);
             let cut_off = states.error_below(levels);
             if let Some((coarser, lower)) = last {
-                let ratio = *size as f64 / coarser;
+                let ratio = size as f64 / coarser;
                 let mut found = self.refined(&filled, &lower, ratio, cut_off, levels);
                 let change = (filled.level - lower.level).abs() / (ratio * ratio - 1.0);
-                // Two meshes may agree by chance: what the last change promises counts too, and what bands that cross
-                // leave on a mesh of this size (free particles on four plane lattices: at most 0.9 after the change is
-                // taken off; on fcc 0.3).
-                let d = self.frame.dimension;
-                let crossing = [0.02, 1.0, 0.6][d - 1] * self.frame.unit() / (size * size) as f64;
+                // Two meshes may agree by chance: what the last change promises counts too.
+                let crossing = CROSSING[0] * self.frame.unit() / (size * size) as f64;
                 found.level.error += before / (ratio * ratio) + crossing;
                 before = change;
                 let settled = found.level.error <= tolerance;
@@ -67,7 +129,7 @@ impl Waves<'_> {
                     break;
                 }
             }
-            last = Some((*size as f64, filled));
+            last = Some((size as f64, filled));
         }
         best.ok_or(Error::BudgetSpent)
     }

@@ -25,6 +25,7 @@
 #![allow(clippy::indexing_slicing, clippy::needless_range_loop)]
 
 mod basis;
+mod closing;
 mod crease;
 mod edges;
 mod eigen;
@@ -35,14 +36,19 @@ mod iterate;
 mod lattice;
 mod levels;
 mod mesh;
+mod nearby;
 mod path;
+mod plan;
 mod potential;
 mod response;
 mod samples;
 mod settle;
 pub mod shapes;
+mod sketch;
 mod slopes;
 mod states;
+mod surface;
+mod surroundings;
 mod symmetry;
 mod tridiagonal;
 mod zone;

@@ -20,6 +20,7 @@ use super::{Budget, Decay, Error, Estimate, Levels};
 use faer::Mat;
 use nalgebra::Complex;
 use rustc_hash::FxHashMap;
+use std::ops::Range;
 
 /// No larger cut tells how much of δ is uncertain.
 pub(super) const UNTRIED: f64 = f64::INFINITY;
@@ -81,6 +82,33 @@ pub struct SettledLevels {
     pub levels: Levels,
     /// Whether every energy is known as well as was asked for.
     pub settled: bool,
+}
+
+/// A wave beyond the cut.
+struct Far {
+    /// |k+G|² + V(0).
+    above: f64,
+    /// It stands for so many like it.
+    weight: f64,
+}
+
+impl Far {
+    /// Its distance above a level. A level above the cut has no meaning, but must not divide by zero.
+    fn below(&self, energy: f64, cut: f64) -> f64 {
+        (self.above - energy).max(1e-3 * cut)
+    }
+}
+
+/// Waves beyond the cut and r_G of each, level by level.
+struct Outside {
+    waves: Vec<Far>,
+    couplings: Vec<Complex<f64>>,
+}
+
+impl Outside {
+    fn chunks(&self, levels: usize) -> impl Iterator<Item = (&Far, &[Complex<f64>])> {
+        self.waves.iter().zip(self.couplings.chunks(levels.max(1)))
+    }
 }
 
 impl Waves<'_> {
@@ -154,6 +182,50 @@ impl Waves<'_> {
 
     /// δ of each level.
     fn left_out(&self, levels: &Levels, cut: f64) -> Result<Vec<f64>, Error> {
+        let outside = self.outside(levels, cut)?;
+        let count = levels.energies.len();
+        let mut sums = vec![0.0; count];
+        for (wave, row) in outside.chunks(count) {
+            for (j, coupling) in row.iter().enumerate() {
+                let below = wave.below(levels.energies[j], cut);
+                sums[j] += wave.weight * coupling.norm_sqr() / below;
+            }
+        }
+        if sums.iter().all(|x| x.is_finite()) {
+            Ok(sums)
+        } else {
+            Err(Error::NotFinite)
+        }
+    }
+
+    /// δ as a matrix between some levels, each at its own energy; δ of each is its diagonal.
+    pub(super) fn left_out_between(
+        &self,
+        levels: &Levels,
+        range: Range<usize>,
+        cut: f64,
+    ) -> Result<Mat<Complex<f64>>, Error> {
+        let outside = self.outside(levels, cut)?;
+        let count = range.len();
+        let mut sums = Mat::<Complex<f64>>::zeros(count, count);
+        let mut scaled = vec![Complex::new(0.0, 0.0); count];
+        for (wave, row) in outside.chunks(levels.energies.len()) {
+            for (j, scaled) in scaled.iter_mut().enumerate() {
+                let level = range.start + j;
+                let below = wave.below(levels.energies[level], cut);
+                *scaled = row[level] * (wave.weight / below).sqrt();
+            }
+            for i in 0..count {
+                for j in 0..count {
+                    sums[(i, j)] += scaled[i].conj() * scaled[j];
+                }
+            }
+        }
+        Ok(sums)
+    }
+
+    /// The waves beyond the cut that count, and how the levels couple to them.
+    fn outside(&self, levels: &Levels, cut: f64) -> Result<Outside, Error> {
         let far = cut * [16.0, 6.0, 3.5][self.frame.dimension - 1];
         let (shells, ends) = match self.potential.decay {
             Decay::Finite { radius } => {
@@ -169,46 +241,33 @@ impl Waves<'_> {
             reach: (cut.sqrt() + shells.sqrt()) * (1.0 + 1e-9),
         };
         let outside = all.waves.get(inside..).unwrap_or(&[]);
-        let couplings = self.couplings(levels, outside, &all)?;
-        let mut sums = vec![0.0; levels.energies.len()];
-        let mut shell = vec![0.0; levels.energies.len()];
-        for (n, row) in outside
-            .iter()
-            .zip(couplings.chunks(levels.energies.len().max(1)))
-        {
-            let kinetic = self.frame.square(add(levels.k, real(*n)));
-            for (j, coupling) in row.iter().enumerate() {
-                // A level above the cut has no meaning, but must not divide by zero.
-                let below = (kinetic + self.mean - levels.energies[j]).max(1e-3 * cut);
-                sums[j] += coupling / below;
-                if kinetic > 0.5 * shells {
-                    shell[j] += coupling / below;
-                }
-            }
-        }
         let beyond = match self.potential.decay {
             _ if ends => 0.0,
             Decay::Bounded(bound) => tail(bound, self.frame.dimension, shells),
             // Components of unknown fall: as much again as in the last octave.
             Decay::Finite { .. } => 1.0,
         };
-        for (sum, shell) in sums.iter_mut().zip(shell) {
-            *sum += beyond * shell;
-        }
-        if sums.iter().all(|x| x.is_finite()) {
-            Ok(sums)
-        } else {
-            Err(Error::NotFinite)
-        }
+        let place = |n: &[i32; 3]| {
+            let kinetic = self.frame.square(add(levels.k, real(*n)));
+            let last = kinetic > 0.5 * shells;
+            Far {
+                above: kinetic + self.mean,
+                weight: if last { 1.0 + beyond } else { 1.0 },
+            }
+        };
+        Ok(Outside {
+            waves: outside.iter().map(place).collect(),
+            couplings: self.couplings(levels, outside, &all)?,
+        })
     }
 
-    /// |r_G|² for every wave outside, level by level.
+    /// r_G for every wave outside, level by level, but for a phase of each wave.
     fn couplings(
         &self,
         levels: &Levels,
         outside: &[[i32; 3]],
         all: &Basis,
-    ) -> Result<Vec<f64>, Error> {
+    ) -> Result<Vec<Complex<f64>>, Error> {
         if let Some(few) = &self.few {
             return Ok(self.couplings_of_few(levels, outside, few));
         }
@@ -225,7 +284,7 @@ impl Waves<'_> {
         levels: &Levels,
         outside: &[[i32; 3]],
         few: &[([i32; 3], Complex<f64>)],
-    ) -> Vec<f64> {
+    ) -> Vec<Complex<f64>> {
         let count = levels.energies.len();
         let places: FxHashMap<[i32; 3], usize> =
             outside.iter().enumerate().map(|(i, n)| (*n, i)).collect();
@@ -240,7 +299,7 @@ impl Waves<'_> {
                 }
             }
         }
-        sums.iter().map(|sum| sum.norm_sqr()).collect()
+        sums
     }
 
     fn couplings_as<T: Scalar>(
@@ -248,7 +307,7 @@ impl Waves<'_> {
         levels: &Levels,
         outside: &[[i32; 3]],
         all: &Basis,
-    ) -> Result<Vec<f64>, Error> {
+    ) -> Result<Vec<Complex<f64>>, Error> {
         let table = self.table(all.reach, extent(&all.waves))?;
         let inside = &levels.waves;
         let gauged = Mat::<T>::from_fn(inside.len(), levels.energies.len(), |i, j| {
@@ -260,9 +319,7 @@ impl Waves<'_> {
             let rows = table.rectangle::<T>(strip, inside);
             let coupled = &rows * &gauged;
             for i in 0..strip.len() {
-                result.extend(
-                    (0..levels.energies.len()).map(|j| coupled[(i, j)].to_complex().norm_sqr()),
-                );
+                result.extend((0..levels.energies.len()).map(|j| coupled[(i, j)].to_complex()));
             }
         }
         Ok(result)

@@ -19,12 +19,15 @@ use super::settle::UNTRIED;
 use super::{Budget, Error, Estimate};
 use rustc_hash::FxHashMap;
 
+/// Energies at the corners of a simplex, rising; infinite beyond the dimension.
+pub(super) type Corners = [f64; 4];
+
 /// The levels on a mesh, cut into simplices.
 #[derive(Clone, Debug)]
 pub struct States {
     dimension: usize,
-    /// Sorted corner energies (the first d+1) and the share of the zone they stand for.
-    pub(super) simplices: Vec<([f64; 4], f64)>,
+    /// Corner energies and the share of the zone they stand for.
+    pub(super) simplices: Vec<(Corners, f64)>,
     /// Bounds of all energies.
     range: (f64, f64),
     /// What the cut-off left uncertain, band by band.
@@ -57,16 +60,6 @@ impl Waves<'_> {
         self.states_known(bands, most, (cut, UNTRIED), budget)
     }
 
-    /// States for a picture, as [`Waves::along`] has its levels.
-    ///
-    /// # Errors
-    /// `NotFinite`, `BudgetSpent`, `Cancelled`.
-    pub fn sketched_states(&self, bands: usize, budget: &Budget) -> Result<States, Error> {
-        let cut = self.first_cut(bands, 200.0, budget)?;
-        let most = [384, 48, 16][self.frame.dimension - 1];
-        self.states(bands, most, cut, budget)
-    }
-
     /// The same where the share of what the cut leaves out that is uncertain is known.
     pub(super) fn states_known(
         &self,
@@ -77,28 +70,40 @@ impl Waves<'_> {
     ) -> Result<States, Error> {
         let mesh = self.mesh(most);
         let (energies, errors) = self.settled_on(&mesh, bands, (cut, share), budget)?;
-        let corners = self.simplices(&mesh);
-        let mut shares: FxHashMap<Vec<usize>, f64> = FxHashMap::default();
+        self.states_of(&mesh, &energies, bands, errors)
+    }
+
+    /// States from the levels at the irreducible points of a mesh.
+    pub(super) fn states_of(
+        &self,
+        mesh: &Mesh,
+        energies: &[Vec<f64>],
+        bands: usize,
+        errors: Vec<f64>,
+    ) -> Result<States, Error> {
+        let corners = self.simplices(mesh);
+        let d = self.frame.dimension;
+        let mut shares: FxHashMap<[usize; 4], f64> = FxHashMap::default();
         let total = (mesh.of.len() * corners.len()) as f64;
         for place in 0..mesh.of.len() {
             let base = mesh.indices(place).map(|x| x as i64);
             for simplex in &corners {
-                let mut points: Vec<usize> = simplex
-                    .iter()
-                    .map(|c| mesh.of[mesh.wrapped(std::array::from_fn(|i| base[i] + c[i]))])
-                    .collect();
+                let mut points = [usize::MAX; 4];
+                for (slot, c) in points.iter_mut().zip(simplex) {
+                    *slot = mesh.of[mesh.wrapped(std::array::from_fn(|i| base[i] + c[i]))];
+                }
                 points.sort_unstable();
                 *shares.entry(points).or_default() += 1.0 / total;
             }
         }
         let mut simplices = Vec::with_capacity(shares.len() * bands);
         let mut range = (f64::INFINITY, f64::NEG_INFINITY);
-        let mut ordered: Vec<(Vec<usize>, f64)> = shares.into_iter().collect();
-        ordered.sort_by(|a, b| a.0.cmp(&b.0));
+        let mut ordered: Vec<([usize; 4], f64)> = shares.into_iter().collect();
+        ordered.sort_by_key(|entry| entry.0);
         for (points, share) in ordered {
             for band in 0..bands {
                 let mut corner = [f64::INFINITY; 4];
-                for (slot, point) in corner.iter_mut().zip(&points) {
+                for (slot, point) in corner.iter_mut().zip(&points[..=d]) {
                     *slot = energies[*point]
                         .get(band)
                         .copied()
@@ -171,6 +176,27 @@ impl Waves<'_> {
 }
 
 impl States {
+    /// States with energies in `range`; that of all corners where it has no ends.
+    pub(super) fn of(dimension: usize, simplices: Vec<(Corners, f64)>, range: (f64, f64)) -> Self {
+        let all = simplices.iter().map(|(corner, _)| corner);
+        let range = if range.0.is_finite() {
+            range
+        } else {
+            let lowest = all.clone().map(|corner| corner[0]);
+            let highest = all.map(|corner| corner[dimension]);
+            (
+                lowest.fold(f64::INFINITY, f64::min),
+                highest.fold(f64::NEG_INFINITY, f64::max),
+            )
+        };
+        Self {
+            dimension,
+            simplices,
+            range,
+            errors: Vec::new(),
+        }
+    }
+
     /// States per cell below an energy, one a level.
     pub fn number(&self, energy: f64) -> f64 {
         self.simplices
@@ -185,6 +211,22 @@ impl States {
             .iter()
             .map(|(corner, share)| share * density(&corner[..=self.dimension], energy))
             .sum()
+    }
+
+    /// The same at each of some rising energies.
+    pub fn densities(&self, energies: &[f64]) -> Vec<f64> {
+        let mut sums = vec![0.0; energies.len()];
+        for (corner, share) in &self.simplices {
+            let own = &corner[..=self.dimension];
+            let first = energies.partition_point(|energy| *energy <= own[0]);
+            for (energy, sum) in energies.iter().zip(&mut sums).skip(first) {
+                if *energy >= own[self.dimension] {
+                    break;
+                }
+                *sum += share * density(own, *energy);
+            }
+        }
+        sums
     }
 
     /// The energies of all states filled up to `energy`, per cell, with Blöchl's correction.
@@ -233,8 +275,24 @@ impl States {
         }
     }
 
+    /// The density over the energies this near.
+    pub(super) fn density_within(&self, energy: f64, near: f64) -> f64 {
+        (self.number(energy + near) - self.number(energy - near)) / (2.0 * near)
+    }
+
     /// The level at which this many levels per cell are filled; the lower edge where a range of energies does.
     pub(super) fn fill(&self, levels: f64) -> Filled {
+        let high = self.fill_from(levels, 0.0);
+        Filled {
+            level: high,
+            density: self.smooth_density(high),
+            energy: self.energy(high),
+            curved: self.curved(high),
+        }
+    }
+
+    /// The same where so many levels are filled in any case.
+    pub(super) fn fill_from(&self, levels: f64, filled: f64) -> f64 {
         let (mut low, mut high) = self.range;
         let slack = 1e-12 * levels;
         for _ in 0..200 {
@@ -242,18 +300,13 @@ impl States {
             if middle <= low || middle >= high {
                 break;
             }
-            if self.number(middle) < levels - slack {
+            if filled + self.number(middle) < levels - slack {
                 low = middle;
             } else {
                 high = middle;
             }
         }
-        Filled {
-            level: high,
-            density: self.smooth_density(high),
-            energy: self.energy(high),
-            curved: self.curved(high),
-        }
+        high
     }
 }
 

@@ -1,8 +1,9 @@
 //! Band edges, widths, masses and gaps over the whole zone.
 
 use super::basis::Waves;
-use super::edges::{Found, Plan};
+use super::edges::Found;
 use super::extrema::{Kind, Target};
+use super::plan::Plan;
 use super::slopes::{Tensor, principal};
 use super::{Budget, Error, Estimate, Lattice, Potential};
 use rayon::prelude::*;
