@@ -26,14 +26,17 @@
 
 mod basis;
 mod crease;
+mod density;
 mod edges;
 mod eigen;
 mod extrema;
 mod fermi;
+mod fermi_density;
 mod hopping;
 mod iterate;
 mod lattice;
 mod levels;
+mod mass_density;
 mod mesh;
 mod path;
 mod potential;
@@ -43,11 +46,13 @@ mod settle;
 pub mod shapes;
 mod slopes;
 mod states;
+mod swept;
 mod symmetry;
 mod tridiagonal;
 mod zone;
 
 pub use basis::Waves;
+pub use density::Density;
 pub use fermi::Fermi;
 pub use lattice::Lattice;
 pub use levels::Levels;
