@@ -2,13 +2,11 @@
 
 use std::sync::Arc;
 
-use crate::model::{
-    ClassWish, Crystal, CrystalRef, Dimension, GapWish, Setting, Target, Wish,
-};
+use crate::model::{ClassWish, Crystal, CrystalRef, Dimension, GapWish, Setting, Target, Wish};
 
 use super::filling::Filled;
 use super::probe::{Measures, Probe, Reading};
-use super::quantity::{Crystals, Evaluation, Untested};
+use super::quantity::{Beside, Crystals, Evaluation, Untested};
 use super::{
     Assessment, Class, GapKind, MeasureValue, Measured, Solution, Solver, TargetState, solve,
 };
@@ -30,7 +28,7 @@ impl Assessor<'_> {
     pub fn measures(&self) -> Vec<MeasureValue> {
         let nominal = Setting::default();
         let crystals = |of| self.at(of, &nominal);
-        let evaluation = self.evaluation(&crystals, false);
+        let evaluation = self.evaluation(&crystals, None);
         let measures = self.crystal.measures.iter();
         measures
             .map(|measure| MeasureValue {
@@ -55,13 +53,13 @@ impl Assessor<'_> {
     pub fn evaluation<'b>(
         &'b self,
         crystals: &'b Crystals<'b>,
-        with_slopes: bool,
+        beside: Option<&'b Beside<'b>>,
     ) -> Evaluation<'b> {
         Evaluation {
             solver: self.solver,
             crystals,
             cancelled: self.cancelled,
-            with_slopes,
+            beside,
         }
     }
 
@@ -98,12 +96,8 @@ impl Assessor<'_> {
         dimension: Dimension,
     ) -> Result<Assessment, Untested> {
         let draws = self.draws(target);
-        let probe = Probe {
-            assessor: self,
-            measures: Measures::Target(index),
-            draws: &draws,
-        };
-        let nominal = probe.at(&vec![0.0; draws.len()], false)?;
+        let probe = Probe::new(self, Measures::Target(index), &draws);
+        let nominal = probe.nominal()?;
         let limits = limits(&nominal);
         let mut assessment = Assessment {
             state: state(nominal.value.value, limits),

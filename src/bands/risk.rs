@@ -1,15 +1,16 @@
 //! What the tolerances do to a crystal's targets: which of them count, and the search for the worst case.
 
 use crate::model::{
-    CrystalRef, ParameterId, ParameterKind, Quantity, QuantityKind, Setting, Target,
-    TargetFormula, Wish,
+    CrystalRef, ParameterId, ParameterKind, Quantity, QuantityKind, Setting, Target, TargetFormula,
+    Wish,
 };
 
 use super::assess::{Assessor, limits, state};
-use super::probe::{Least, Measures, Probe, Search, Side};
+use super::filling::Filled;
+use super::probe::{Measures, Probe, Search, Side};
 use super::quantity::Untested;
-use super::worst::Sample;
-use super::{Assessment, TargetState};
+use super::worst::{Least, Sample};
+use super::{Assessment, TargetState, solve};
 
 /// Tolerances past this many are taken at their corners by sign alone.
 const MOST_TOLERANCES: usize = 24;
@@ -44,13 +45,9 @@ impl Assessor<'_> {
         let Some(Least { centre, worst, .. }) = least else {
             return Ok(());
         };
-        let there = probe.at(&worst.point, false)?;
+        let there = probe.at(&worst.point)?;
         assessment.worst = Some(there.value.value.value);
         note_corner(assessment, probe.draws, &centre, &worst);
-        if search.corners && assessment.reason.is_none() {
-            assessment.reason =
-                Some("the worst case is the worst of the tolerances' corners".into());
-        }
         if assessment.state == TargetState::Met {
             match state(there.value.value, limits(&there)) {
                 TargetState::Missed => assessment.state = TargetState::AtRisk,
@@ -79,17 +76,11 @@ impl Assessor<'_> {
         });
         let dimension = dimensions.max().unwrap_or(self.crystal.dimension);
         let smooth = !quantities.iter().any(|quantity| self.is_kinked(quantity));
-        let exact = self.has_exact_slopes(target);
-        Search {
-            exact,
-            corners: !exact && dimension > 1,
-            ..self.search_in(dimension, smooth)
-        }
+        self.search_in(dimension, smooth)
     }
 
     fn search_in(&self, dimension: usize, smooth: bool) -> Search {
         Search {
-            exact: true,
             smooth,
             floor: f64::NEG_INFINITY,
             most: match dimension {
@@ -97,7 +88,6 @@ impl Assessor<'_> {
                 2 => MOST_POINTS[0],
                 _ => MOST_POINTS[1],
             },
-            corners: false,
         }
     }
 
@@ -116,33 +106,21 @@ impl Assessor<'_> {
         // An extremum on a crossing has no mass.
         let top = |number: usize| band(number).is_none_or(|band| band.top.mass.is_none());
         let bottom = |number: usize| band(number).is_none_or(|band| band.bottom.mass.is_none());
+        let beside =
+            |number: usize| top(number) || number < solution.bands.len() && bottom(number + 1);
         match quantity.kind {
-            QuantityKind::Gap(number) => {
-                top(number) || number < solution.bands.len() && bottom(number + 1)
-            }
+            QuantityKind::Gap(number) => beside(number),
             QuantityKind::Width(number) => top(number) || bottom(number),
-            QuantityKind::Top(number) => top(number),
-            QuantityKind::Bottom(number) => bottom(number),
-            _ => true,
+            QuantityKind::Top(number) | QuantityKind::MassTop(number) => top(number),
+            QuantityKind::Bottom(number) | QuantityKind::MassBottom(number) => bottom(number),
+            // What is summed over a zone is smooth, and a hopping is that of a band that touches no other.
+            QuantityKind::Hopping(..) => false,
+            QuantityKind::Fermi => match solve::filled(&crystal) {
+                Some(Filled::Whole(whole)) => beside(whole),
+                _ => false,
+            },
+            QuantityKind::Level(..) => true,
         }
-    }
-
-    /// Whether a target speaks only of quantities with exact derivatives.
-    pub fn has_exact_slopes(&self, target: &Target) -> bool {
-        let Wish::Compare { expression, .. } = &target.wish else {
-            return true;
-        };
-        let differenced = |quantity: &&Quantity| match quantity.kind {
-            QuantityKind::MassBottom(_) | QuantityKind::MassTop(_) | QuantityKind::Hopping(..) => {
-                true
-            }
-            // A metal's, past one dimension, comes from sums over the whole zone.
-            QuantityKind::Fermi => self
-                .at(quantity.of, &Setting::default())
-                .is_some_and(|crystal| crystal.dimension > 1),
-            _ => false,
-        };
-        !expression.quantities().iter().any(differenced)
     }
 
     /// The tolerances that reach any crystal that a target speaks of.
@@ -194,11 +172,7 @@ impl Assessor<'_> {
             kind: QuantityKind::Gap(band),
         };
         let gap = TargetFormula::Quantity(gap);
-        let probe = Probe {
-            assessor: self,
-            measures: Measures::Formula(&gap),
-            draws: &draws,
-        };
+        let probe = Probe::new(self, Measures::Formula(&gap), &draws);
         let dimension = self
             .at(of, &Setting::default())
             .map_or(self.crystal.dimension, |crystal| crystal.dimension);
@@ -270,4 +244,3 @@ fn note_corner(
         .or_else(|| most(&begun))
         .and_then(|axis| draws.get(axis).copied());
 }
-

@@ -14,10 +14,24 @@ pub(super) struct Sample {
     pub point: Vec<f64>,
     pub value: f64,
     pub slopes: Vec<f64>,
+    /// The numerical error of the value.
+    pub doubt: f64,
+    /// Where in k the extrema lie that the value hangs on: it jumps where these do.
+    pub seats: Vec<f64>,
+}
+
+/// What is found: the values at the centre, and the least.
+pub(super) struct Least {
+    /// At the nominal values.
+    pub centre: Sample,
+    /// At the worst ones found.
+    pub worst: Sample,
+    /// Whether the search came to its end.
+    pub complete: bool,
 }
 
 /// What the search needs: the value and slopes at a point; `None` ends the search (cancelled, or not solvable there).
-pub(super) type Evaluate<'a> = dyn FnMut(&[f64]) -> Option<(f64, Vec<f64>)> + 'a;
+pub(super) type Evaluate<'a> = dyn FnMut(&[f64]) -> Option<Sample> + 'a;
 
 /// Corners are tried one by one in boxes of up to this many tolerances.
 const MOST_FOR_ALL_CORNERS: usize = 8;
@@ -27,6 +41,11 @@ const LINE_STEPS: usize = 44;
 const DESCENTS: usize = 24;
 /// Starts for the search inside the box.
 const STARTS: usize = 4;
+/// Seats farther apart than this (fractions of the reciprocal vectors) are different extrema.
+const SAME_SEAT: f64 = 0.05;
+/// Halvings that close in on a jump, and the lines on which that is done.
+const HALVINGS: usize = 24;
+const JUMPS: usize = 2;
 
 /// Finds the least value over the box. A value at or below `floor` (zero for a gap, with its uncertainty) cannot be
 /// undercut. Where the function is `smooth` at the nominal values, slopes there are trusted to name the corner.
@@ -35,22 +54,41 @@ pub(super) fn least(
     floor: f64,
     smooth: bool,
     evaluate: &mut Evaluate<'_>,
-) -> Option<(Sample, Sample)> {
-    let mut search = Search { evaluate, floor };
+) -> Option<Least> {
+    let mut search = Search {
+        evaluate,
+        floor,
+        jumps: false,
+    };
     let centre = search.at(vec![0.0; dimensions])?;
     let corner = search.at(corner_below(&centre.slopes))?;
+    let agree = |other: &Sample| {
+        same_signs(&centre.slopes, &other.slopes) && same_seats(&centre.seats, &other.seats)
+    };
+    let complete = |centre: &Sample, worst: Sample| {
+        Some(Least {
+            centre: centre.clone(),
+            worst,
+            complete: true,
+        })
+    };
     if dimensions == 0 {
-        return Some((centre, corner));
+        return complete(&centre, corner);
     }
-    if smooth && same_signs(&centre.slopes, &corner.slopes) && corner.value <= centre.value {
+    if smooth && agree(&corner) && corner.value <= centre.value {
         // A roof beyond the centre would show here: an edge that two levels take turns to be.
         let across = search.at(corner.point.iter().map(|at| -at).collect())?;
-        if same_signs(&centre.slopes, &across.slopes) && centre.value <= across.value {
-            return Some((centre, corner));
+        if agree(&across) && centre.value <= across.value {
+            return complete(&centre, corner);
         }
     }
-    let best = search.inside(&centre, corner)?;
-    Some((centre, best))
+    let worst = search.inside(&centre, corner)?;
+    let complete = dimensions == 1 || !search.jumps;
+    Some(Least {
+        centre,
+        worst,
+        complete,
+    })
 }
 
 /// The corner to which all slopes fall.
@@ -65,6 +103,15 @@ fn same_signs(a: &[f64], b: &[f64]) -> bool {
     a.iter().zip(b).all(|(a, b)| a * b >= 0.0)
 }
 
+fn same_seats(a: &[f64], b: &[f64]) -> bool {
+    apart(a, b) <= SAME_SEAT
+}
+
+fn apart(a: &[f64], b: &[f64]) -> f64 {
+    let pairs = a.iter().zip(b);
+    pairs.map(|(a, b)| (a - b).abs()).fold(0.0, f64::max)
+}
+
 fn dot(a: &[f64], b: &[f64]) -> f64 {
     a.iter().zip(b).map(|(a, b)| a * b).sum()
 }
@@ -72,16 +119,13 @@ fn dot(a: &[f64], b: &[f64]) -> f64 {
 struct Search<'a, 'b> {
     evaluate: &'a mut Evaluate<'b>,
     floor: f64,
+    /// Whether the value jumps somewhere in the box.
+    jumps: bool,
 }
 
 impl Search<'_, '_> {
     fn at(&mut self, point: Vec<f64>) -> Option<Sample> {
-        let (value, slopes) = (self.evaluate)(&point)?;
-        value.is_finite().then_some(Sample {
-            point,
-            value,
-            slopes,
-        })
+        (self.evaluate)(&point).filter(|sample| sample.value.is_finite())
     }
 
     /// The least value where signs differ: every corner, then descents from the best starts.
@@ -91,13 +135,20 @@ impl Search<'_, '_> {
         starts.sort_by(|a, b| a.value.total_cmp(&b.value));
         let mut best = starts.first()?.clone();
         for pair in crossings(&starts) {
-            let (end, _) =
-                self.along(&starts.get(pair.0)?.clone(), &starts.get(pair.1)?.clone())?;
+            let (end, _) = self.along(&pair.0, &pair.1)?;
             if end.value < best.value {
                 best = end;
             }
             if best.value <= self.floor {
                 return Some(best);
+            }
+        }
+        let leaps = neighbours(&starts).filter(|(a, b)| !same_seats(&a.seats, &b.seats));
+        let leaps: Vec<(Sample, Sample)> = leaps.map(|(a, b)| (a.clone(), b.clone())).collect();
+        for (a, b) in leaps.into_iter().take(JUMPS) {
+            let side = self.leap(a, b)?;
+            if side.value < best.value {
+                best = side;
             }
         }
         if centre.point.len() == 1 {
@@ -140,6 +191,46 @@ impl Search<'_, '_> {
         Some(())
     }
 
+    /// The lower side of a jump between two points.
+    fn leap(&mut self, mut left: Sample, mut right: Sample) -> Option<Sample> {
+        for _ in 0..HALVINGS {
+            let way: Vec<f64> = { right.point.iter().zip(&left.point) }
+                .map(|(right, left)| right - left)
+                .collect();
+            let (lower, direction) = (
+                if left.value < right.value {
+                    &left
+                } else {
+                    &right
+                },
+                &way,
+            );
+            let move_left = dot(&lower.slopes, direction).abs();
+            if move_left <= lower.doubt.max(1e-9 * lower.value.abs()) {
+                break;
+            }
+            let point = { left.point.iter().zip(&way) }
+                .map(|(at, way)| at + 0.5 * way)
+                .collect();
+            let middle = self.at(point)?;
+            if apart(&middle.seats, &left.seats) <= apart(&middle.seats, &right.seats) {
+                left = middle;
+            } else {
+                right = middle;
+            }
+            if same_seats(&left.seats, &right.seats) {
+                // The extremum went there by and by.
+                break;
+            }
+        }
+        self.jumps |= !same_seats(&left.seats, &right.seats);
+        Some(if left.value < right.value {
+            left
+        } else {
+            right
+        })
+    }
+
     /// Steepest descent over lines, at kinks along the valley.
     fn descend(&mut self, start: Sample) -> Option<Sample> {
         let mut here = start;
@@ -156,7 +247,7 @@ impl Search<'_, '_> {
             if moved {
                 here = next;
             }
-            if here.value <= self.floor || gained <= 1e-12 * here.value.abs() && !moved {
+            if here.value <= self.floor || gained <= here.doubt.max(1e-12 * here.value.abs()) {
                 break;
             }
         }
@@ -181,10 +272,10 @@ impl Search<'_, '_> {
         }
         for step in 0..LINE_STEPS {
             let middle = 0.5 * (low + high);
-            let try_at = if step % 3 == 2 {
-                middle
-            } else {
-                meeting(&left, &right, &direction, low, high)
+            let try_at = match step % 3 {
+                0 => meeting(&left, &right, &direction, low, high),
+                1 => standstill(&left, &right, &direction, low, high),
+                _ => middle,
             };
             let point = from
                 .point
@@ -198,10 +289,15 @@ impl Search<'_, '_> {
             } else {
                 (high, right) = (try_at, sample);
             }
-            let best = left.value.min(right.value);
+            let best = if left.value <= right.value {
+                &left
+            } else {
+                &right
+            };
             // Between convex sides the value cannot fall below where the tangents meet.
             let possible = meeting_height(&left, &right, &direction, low, high);
-            if best <= self.floor || high - low < 1e-13 || best - possible <= 1e-11 * best.abs() {
+            let near = best.doubt.max(1e-11 * best.value.abs());
+            if best.value <= self.floor || high - low < 1e-13 || best.value - possible <= near {
                 break;
             }
         }
@@ -218,39 +314,58 @@ impl Search<'_, '_> {
 fn meeting(left: &Sample, right: &Sample, direction: &[f64], low: f64, high: f64) -> f64 {
     let (down, up) = (dot(&left.slopes, direction), dot(&right.slopes, direction));
     let meet = (right.value - left.value + down * low - up * high) / (down - up);
+    between(meet, low, high)
+}
+
+/// Where a slope that changes evenly between the ends is zero; the middle where it is nowhere.
+fn standstill(left: &Sample, right: &Sample, direction: &[f64], low: f64, high: f64) -> f64 {
+    let (down, up) = (dot(&left.slopes, direction), dot(&right.slopes, direction));
+    between(low + (high - low) * down / (down - up), low, high)
+}
+
+/// A place well inside an interval, or else its middle.
+fn between(place: f64, low: f64, high: f64) -> f64 {
     let margin = 1e-3 * (high - low);
-    if meet > low + margin && meet < high - margin {
-        meet
+    if place > low + margin && place < high - margin {
+        place
     } else {
         0.5 * (low + high)
     }
 }
 
-/// The value at which the tangents from both ends meet.
+/// The value at which the tangents from both ends meet; without bound where the far one does not rise.
 fn meeting_height(left: &Sample, right: &Sample, direction: &[f64], low: f64, high: f64) -> f64 {
     let (down, up) = (dot(&left.slopes, direction), dot(&right.slopes, direction));
+    if up <= 0.0 {
+        return f64::NEG_INFINITY;
+    }
     let meet = (right.value - left.value + down * low - up * high) / (down - up);
     left.value + down * (meet - low)
 }
 
-/// Pairs of neighbouring points between which the function first falls and then rises.
-fn crossings(samples: &[Sample]) -> Vec<(usize, usize)> {
-    let mut pairs = Vec::new();
-    for (i, a) in samples.iter().enumerate() {
-        for (j, b) in samples.iter().enumerate().skip(i + 1) {
-            let direction: Vec<f64> = b.point.iter().zip(&a.point).map(|(b, a)| b - a).collect();
-            let neighbours = direction.iter().filter(|step| **step != 0.0).count() <= 1;
-            let from_centre =
-                a.point.iter().all(|t| *t == 0.0) || b.point.iter().all(|t| *t == 0.0);
-            if (neighbours || from_centre)
-                && dot(&a.slopes, &direction) < 0.0
-                && dot(&b.slopes, &direction) > 0.0
-            {
-                pairs.push((i, j));
-            }
-        }
-    }
-    pairs
+/// Pairs of points next to each other, or of one and the centre.
+fn neighbours(samples: &[Sample]) -> impl Iterator<Item = (&Sample, &Sample)> {
+    let central = |sample: &Sample| sample.point.iter().all(|t| *t == 0.0);
+    let pairs = samples.iter().enumerate().flat_map(|(index, a)| {
+        let later = samples.iter().skip(index + 1);
+        later.map(move |b| (a, b))
+    });
+    pairs.filter(move |(a, b)| {
+        let differ = a.point.iter().zip(&b.point).filter(|(a, b)| a != b).count();
+        differ <= 1 || central(a) || central(b)
+    })
+}
+
+/// Those of points by rising value between which the function falls from the lower one.
+fn crossings(samples: &[Sample]) -> Vec<(Sample, Sample)> {
+    let falls = |(a, b): &(&Sample, &Sample)| {
+        let direction: Vec<f64> = { b.point.iter().zip(&a.point) }
+            .map(|(b, a)| b - a)
+            .collect();
+        -dot(&a.slopes, &direction) > a.doubt.max(1e-9 * a.value.abs())
+    };
+    let pairs = neighbours(samples).filter(falls);
+    pairs.map(|(a, b)| (a.clone(), b.clone())).collect()
 }
 
 /// Minus the shortest vector between the slopes of both sides, kept inside the box.
@@ -311,14 +426,24 @@ fn edge_of_box(point: &[f64], direction: &[f64]) -> Vec<f64> {
 mod tests {
     use super::*;
 
+    fn sample(point: &[f64], (value, slopes): (f64, Vec<f64>), seats: Vec<f64>) -> Sample {
+        Sample {
+            point: point.to_vec(),
+            value,
+            slopes,
+            doubt: 0.0,
+            seats,
+        }
+    }
+
     fn search(dimensions: usize, f: impl Fn(&[f64]) -> (f64, Vec<f64>)) -> (f64, usize) {
         let mut count = 0;
         let mut evaluate = |point: &[f64]| {
             count += 1;
-            Some(f(point))
+            Some(sample(point, f(point), Vec::new()))
         };
-        let value =
-            least(dimensions, f64::NEG_INFINITY, true, &mut evaluate).map(|(_, best)| best.value);
+        let value = least(dimensions, f64::NEG_INFINITY, true, &mut evaluate)
+            .map(|found| found.worst.value);
         (value.expect("a least value"), count)
     }
 
@@ -364,9 +489,9 @@ mod tests {
             _ => vec![-0.1],
         };
         let least_by = |smooth: bool| {
-            let mut evaluate = |t: &[f64]| Some((f(t), slopes(t)));
+            let mut evaluate = |t: &[f64]| Some(sample(t, (f(t), slopes(t)), Vec::new()));
             let found = least(1, f64::NEG_INFINITY, smooth, &mut evaluate);
-            found.expect("a least value").1.value
+            found.expect("a least value").worst.value
         };
         assert_eq!([true, false].map(least_by), [-4.0, -4.0]);
     }

@@ -102,7 +102,12 @@ impl Density {
     }
 
     fn add_kinetic(&mut self, kinetic: &Tensor, factor: f64) {
-        for (sum, value) in self.kinetic.iter_mut().flatten().zip(kinetic.iter().flatten()) {
+        for (sum, value) in self
+            .kinetic
+            .iter_mut()
+            .flatten()
+            .zip(kinetic.iter().flatten())
+        {
             *sum += factor * value;
         }
     }

@@ -100,11 +100,7 @@ impl Waves<'_> {
         let delta = |x: usize, y: usize| if x == y { 2.0 } else { 0.0 };
         let bend = |x: usize, y: usize| delta(x, y) + 2.0 * overlap(&pushed(x, &c), &first[y]);
         let curvature: Vec<Vec<f64>> = (0..d)
-            .map(|x| {
-                (0..d)
-                    .map(|y| 0.5 * (bend(x, y) + bend(y, x)))
-                    .collect()
-            })
+            .map(|x| (0..d).map(|y| 0.5 * (bend(x, y) + bend(y, x))).collect())
             .collect();
         let inverse = inverse_of(&curvature)?;
         let third = |x: usize, y: usize, z: usize| {
@@ -162,12 +158,18 @@ impl Waves<'_> {
         }
         // How the fractions of k+G move along each axis.
         let ways: Vec<[f64; 3]> = (0..d)
-            .map(|x| self.frame.off_axes(std::array::from_fn(|i| f64::from(u8::from(i == x)))))
+            .map(|x| {
+                self.frame
+                    .off_axes(std::array::from_fn(|i| f64::from(u8::from(i == x))))
+            })
             .collect();
         for (i, n) in levels.waves.iter().enumerate() {
             let q = add(levels.k, real(*n));
             let held = c[i].norm_sqr();
-            let rise: Vec<f64> = first.iter().map(|u| 2.0 * (c[i].conj() * u[i]).re).collect();
+            let rise: Vec<f64> = first
+                .iter()
+                .map(|u| 2.0 * (c[i].conj() * u[i]).re)
+                .collect();
             let mut bent = 2.0 * (c[i].conj() * moved[i]).re;
             for (x, y) in pairs(d) {
                 bent += 2.0 * answer.inverse[x][y] * (first[x][i].conj() * first[y][i]).re;

@@ -111,9 +111,7 @@ impl Waves<'_> {
         let energy = Complex::new(levels.energies[level], 0.0);
         let bordered = Mat::<T>::from_fn(n + 1, n + 1, |i, j| {
             T::from_complex(match (i < n, j < n) {
-                (true, true) => {
-                    matrix[(i, j)].to_complex() - if i == j { energy } else { zero() }
-                }
+                (true, true) => matrix[(i, j)].to_complex() - if i == j { energy } else { zero() },
                 (true, false) => c[i],
                 (false, true) => c[j].conj(),
                 (false, false) => zero(),
