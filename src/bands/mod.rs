@@ -12,6 +12,7 @@ mod filling;
 mod fingerprint;
 mod lattice_picture;
 mod layout;
+mod lines;
 mod meet;
 mod picture;
 mod probe;

@@ -11,8 +11,9 @@ use crate::model::{Crystal, CrystalRef, Limits, ParameterId, Setting, TargetForm
 
 use super::assess::Assessor;
 use super::effort::MOST_QUESTIONS;
+use super::lines::Sample;
 use super::quantity::{Beside, Leaf, Untested, sum_slopes};
-use super::worst::{self, Least, Sample};
+use super::worst::{self, Least};
 
 /// Step of the differences used for quantities without exact derivatives, in half widths.
 const STEP: f64 = 1e-4;

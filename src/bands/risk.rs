@@ -7,9 +7,10 @@ use crate::model::{
 
 use super::assess::{Assessor, limits, state};
 use super::filling::Filled;
+use super::lines::Sample;
 use super::probe::{Measures, Probe, Search, Side};
 use super::quantity::Untested;
-use super::worst::{Least, Sample};
+use super::worst::Least;
 use super::{Assessment, TargetState, solve};
 
 /// Tolerances past this many are taken at their corners by sign alone.

@@ -8,17 +8,9 @@
 //! two sides (the subdifferential of a maximum of two smooth functions; see Clarke, *Optimization and Nonsmooth
 //! Analysis*, 1983).
 
-/// A point of the box, the value there and the slopes.
-#[derive(Clone, Debug)]
-pub(super) struct Sample {
-    pub point: Vec<f64>,
-    pub value: f64,
-    pub slopes: Vec<f64>,
-    /// The numerical error of the value.
-    pub doubt: f64,
-    /// Where in k the extrema lie that the value hangs on: it jumps where these do.
-    pub seats: Vec<f64>,
-}
+use super::lines::{
+    Sample, apart, dot, downhill, edge_of_box, meeting, meeting_height, same_seats, standstill,
+};
 
 /// What is found: the values at the centre, and the least.
 pub(super) struct Least {
@@ -41,8 +33,6 @@ const LINE_STEPS: usize = 44;
 const DESCENTS: usize = 24;
 /// Starts for the search inside the box.
 const STARTS: usize = 4;
-/// Seats farther apart than this (fractions of the reciprocal vectors) are different extrema.
-const SAME_SEAT: f64 = 0.05;
 /// Halvings that close in on a jump, and the lines on which that is done.
 const HALVINGS: usize = 24;
 const JUMPS: usize = 2;
@@ -101,19 +91,6 @@ fn corner_below(slopes: &[f64]) -> Vec<f64> {
 
 fn same_signs(a: &[f64], b: &[f64]) -> bool {
     a.iter().zip(b).all(|(a, b)| a * b >= 0.0)
-}
-
-fn same_seats(a: &[f64], b: &[f64]) -> bool {
-    apart(a, b) <= SAME_SEAT
-}
-
-fn apart(a: &[f64], b: &[f64]) -> f64 {
-    let pairs = a.iter().zip(b);
-    pairs.map(|(a, b)| (a - b).abs()).fold(0.0, f64::max)
-}
-
-fn dot(a: &[f64], b: &[f64]) -> f64 {
-    a.iter().zip(b).map(|(a, b)| a * b).sum()
 }
 
 struct Search<'a, 'b> {
@@ -294,10 +271,14 @@ impl Search<'_, '_> {
             } else {
                 &right
             };
-            // Between convex sides the value cannot fall below where the tangents meet.
+            // Between convex sides the value cannot fall below where the tangents meet; where they meet above it, the
+            // sides are not convex.
             let possible = meeting_height(&left, &right, &direction, low, high);
             let near = best.doubt.max(1e-11 * best.value.abs());
-            if best.value <= self.floor || high - low < 1e-13 || best.value - possible <= near {
+            if best.value <= self.floor
+                || high - low < 1e-13
+                || (best.value - possible).abs() <= near
+            {
                 break;
             }
         }
@@ -308,39 +289,6 @@ impl Search<'_, '_> {
         };
         Some((best, far.slopes))
     }
-}
-
-/// Where the tangents from both ends meet; the middle where they do not meet between.
-fn meeting(left: &Sample, right: &Sample, direction: &[f64], low: f64, high: f64) -> f64 {
-    let (down, up) = (dot(&left.slopes, direction), dot(&right.slopes, direction));
-    let meet = (right.value - left.value + down * low - up * high) / (down - up);
-    between(meet, low, high)
-}
-
-/// Where a slope that changes evenly between the ends is zero; the middle where it is nowhere.
-fn standstill(left: &Sample, right: &Sample, direction: &[f64], low: f64, high: f64) -> f64 {
-    let (down, up) = (dot(&left.slopes, direction), dot(&right.slopes, direction));
-    between(low + (high - low) * down / (down - up), low, high)
-}
-
-/// A place well inside an interval, or else its middle.
-fn between(place: f64, low: f64, high: f64) -> f64 {
-    let margin = 1e-3 * (high - low);
-    if place > low + margin && place < high - margin {
-        place
-    } else {
-        0.5 * (low + high)
-    }
-}
-
-/// The value at which the tangents from both ends meet; without bound where the far one does not rise.
-fn meeting_height(left: &Sample, right: &Sample, direction: &[f64], low: f64, high: f64) -> f64 {
-    let (down, up) = (dot(&left.slopes, direction), dot(&right.slopes, direction));
-    if up <= 0.0 {
-        return f64::NEG_INFINITY;
-    }
-    let meet = (right.value - left.value + down * low - up * high) / (down - up);
-    left.value + down * (meet - low)
 }
 
 /// Pairs of points next to each other, or of one and the centre.
@@ -366,59 +314,6 @@ fn crossings(samples: &[Sample]) -> Vec<(Sample, Sample)> {
     };
     let pairs = neighbours(samples).filter(falls);
     pairs.map(|(a, b)| (a.clone(), b.clone())).collect()
-}
-
-/// Minus the shortest vector between the slopes of both sides, kept inside the box.
-fn downhill(here: &Sample, other: Option<&[f64]>) -> Option<Vec<f64>> {
-    let mut slopes = here.slopes.clone();
-    if let Some(other) = other {
-        let difference: Vec<f64> = other.iter().zip(&slopes).map(|(b, a)| b - a).collect();
-        let size = dot(&difference, &difference);
-        if size > 0.0 {
-            let share = (-dot(&slopes, &difference) / size).clamp(0.0, 1.0);
-            slopes
-                .iter_mut()
-                .zip(&difference)
-                .for_each(|(slope, step)| *slope += share * step);
-        }
-    }
-    let steepest = here
-        .slopes
-        .iter()
-        .fold(0.0_f64, |most, slope| most.max(slope.abs()));
-    let direction: Vec<f64> = slopes
-        .iter()
-        .zip(&here.point)
-        .map(|(slope, at)| {
-            if (*at >= 1.0 && *slope < 0.0) || (*at <= -1.0 && *slope > 0.0) {
-                0.0
-            } else {
-                -slope
-            }
-        })
-        .collect();
-    let length = dot(&direction, &direction).sqrt();
-    (length > 1e-9 * steepest).then(|| direction.iter().map(|step| step / length).collect())
-}
-
-/// The last point of the box in a direction.
-fn edge_of_box(point: &[f64], direction: &[f64]) -> Vec<f64> {
-    let reach = point
-        .iter()
-        .zip(direction)
-        .filter(|(_, step)| **step != 0.0)
-        .map(|(at, step)| (step.signum() - at) / step)
-        .fold(f64::INFINITY, f64::min);
-    let reach = if reach.is_finite() {
-        reach.max(0.0)
-    } else {
-        0.0
-    };
-    point
-        .iter()
-        .zip(direction)
-        .map(|(at, step)| (at + reach * step).clamp(-1.0, 1.0))
-        .collect()
 }
 
 #[cfg(test)]
@@ -494,6 +389,47 @@ mod tests {
             found.expect("a least value").worst.value
         };
         assert_eq!([true, false].map(least_by), [-4.0, -4.0]);
+    }
+
+    /// Sides that bend towards the axis: their tangents meet above the value already found.
+    #[test]
+    fn a_kink_between_hollow_sides_is_found() {
+        let way = |t: &[f64]| t[0] - 0.3317;
+        let f = |t: &[f64]| 1.0 - (-3.0 * way(t).abs()).exp();
+        let slopes = |t: &[f64]| vec![3.0 * way(t).signum() * (-3.0 * way(t).abs()).exp()];
+        let (value, count) = search(1, |t| (f(t), slopes(t)));
+        assert!(value < 1e-9, "{value}");
+        assert!(count < 100, "{count} evaluations");
+    }
+
+    /// Where another valley takes over the value jumps up: the last before it is the least, though every slope says go on.
+    #[test]
+    fn the_edge_of_a_jump_is_found() {
+        let first = |t: &[f64]| t[0] + 0.2 * t[1] < 0.37;
+        let at = |t: &[f64]| match first(t) {
+            true => sample(t, (1.0 - t[0], vec![-1.0, 0.0]), vec![0.5]),
+            false => sample(t, (1.9 - t[0], vec![-1.0, 0.0]), vec![0.0]),
+        };
+        let mut along = |t: &[f64]| Some(at(&[t[0], 0.0]));
+        let found = least(1, f64::NEG_INFINITY, true, &mut along).expect("a least value");
+        let error = found.worst.value - 0.63;
+        assert!((0.0..1e-6).contains(&error) && found.complete, "{error}");
+        // Across more tolerances it is not known whether the edge was met at its lowest.
+        let mut both = |t: &[f64]| Some(at(t));
+        let found = least(2, f64::NEG_INFINITY, true, &mut both).expect("a least value");
+        assert!(found.worst.value < 0.63 && !found.complete);
+    }
+
+    #[test]
+    fn the_least_of_a_smooth_bowl_takes_few_evaluations() {
+        let f = |t: &[f64]| (t[0] - 0.3).powi(2) + 0.1 * (t[0] - 0.3).powi(3) + 1.0 - 0.1 * t[1];
+        let slopes = |t: &[f64]| {
+            let way = t[0] - 0.3;
+            vec![2.0 * way + 0.3 * way * way, -0.1]
+        };
+        let (value, count) = search(2, |t| (f(t), slopes(t)));
+        assert!((value - 0.9).abs() < 1e-9, "{value}");
+        assert!(count < 60, "{count} evaluations");
     }
 
     #[test]
