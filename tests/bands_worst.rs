@@ -33,9 +33,10 @@ fn draws(bench: &Bench) -> Vec<ParameterId> {
 }
 
 fn setting(draws: &[ParameterId], at: &[f64]) -> Setting {
-    let mut setting = Setting::default();
-    setting.draws = draws.iter().copied().zip(at.iter().copied()).collect();
-    setting
+    Setting {
+        draws: draws.iter().copied().zip(at.iter().copied()).collect(),
+        ..Setting::default()
+    }
 }
 
 /// The value of a measure and its uncertainty at a setting, in SI.
@@ -365,11 +366,7 @@ fn a_hopping_that_changes_sign_is_followed_to_zero() {
     assert!(lowest < 0.0 && highest > 0.0, "{lowest:e} {highest:e}");
     let (targets, _) = bench.assess(0);
     assert_eq!(targets[0].state, TargetState::AtRisk, "{:?}", targets[0]);
-    assert!(
-        targets[0].worst.unwrap() < 1e-9 * EV,
-        "{:?}",
-        targets[0]
-    );
+    assert!(targets[0].worst.unwrap() < 1e-9 * EV, "{:?}", targets[0]);
     assert_eq!(corner(&targets[1], &draws), at);
     let error = (targets[1].worst.unwrap() / highest - 1.0).abs();
     row(

@@ -41,16 +41,15 @@ pub(super) fn meeting(
     between(meet, low, high)
 }
 
-/// Where a slope that changes evenly between the ends is zero; the middle where it is nowhere.
-pub(super) fn standstill(
-    left: &Sample,
-    right: &Sample,
-    direction: &[f64],
-    low: f64,
-    high: f64,
-) -> f64 {
-    let (down, up) = (dot(&left.slopes, direction), dot(&right.slopes, direction));
-    between(low + (high - low) * down / (down - up), low, high)
+/// Where a slope that changes evenly between two places is zero; the middle where that is not between.
+pub(super) fn standstill(recent: [(f64, f64); 2], low: f64, high: f64) -> f64 {
+    let [(one, down), (other, up)] = recent;
+    let place = one + (other - one) * down / (down - up);
+    if place > low && place < high {
+        place
+    } else {
+        0.5 * (low + high)
+    }
 }
 
 /// A place well inside an interval, or else its middle.

@@ -17,6 +17,9 @@ use super::{Budget, Error, Estimate};
 /// The levels at each irreducible point, the largest error of the band, and what else is wanted.
 type Solved<T> = (Vec<Vec<f64>>, f64, T);
 
+/// What gives them on a mesh at a cut.
+type OnMesh<'a, T> = dyn Fn(&Mesh, f64) -> Result<Solved<T>, Error> + 'a;
+
 impl Waves<'_> {
     /// J_R of a band (counted from zero) for each R in cells of the primitive vectors.
     ///
@@ -87,7 +90,7 @@ impl Waves<'_> {
         cells: &[[i32; 3]],
         tolerance: f64,
         budget: &Budget,
-        solve: &dyn Fn(&Mesh, f64) -> Result<Solved<T>, Error>,
+        solve: &OnMesh<'_, T>,
     ) -> Result<(Vec<Estimate>, T), Error> {
         if !(tolerance > 0.0 && tolerance.is_finite()) {
             return Err(Error::NotFinite);
