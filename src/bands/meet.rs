@@ -1,7 +1,7 @@
 //! The value of one number at which a target is met.
 //!
 //! Newton's method on the margin m(p) of the limit that fails, from today's value p₀ towards the side where m rises,
-//! with exact derivatives where there are any and differences otherwise; a bracket (m < 0, m ≥ 0) once found is
+//! with its derivative; a bracket (m < 0, m ≥ 0) once found is
 //! never left. A margin that turns before it reaches zero, or is still below zero at 0.3 p₀ or 3 p₀, has no such value.
 
 use std::sync::Arc;
@@ -9,7 +9,7 @@ use std::sync::Arc;
 use crate::model::{Crystal, CrystalRef, ParameterId, Setting};
 
 use super::assess::Assessor;
-use super::probe::{Measures, Probe, Reading, Side, margin_of};
+use super::probe::{Measures, Probe, Side, doubt, margin_of};
 use super::{Assessment, Cancelled, Rebuild, Solver};
 
 /// Derivatives by parameter.
@@ -23,8 +23,6 @@ const STRIDE: f64 = 0.35;
 const NEAR: f64 = 0.01;
 /// Steps to find a bracket, and to close it.
 const STEPS: usize = 12;
-/// Step of the differences where there are no exact derivatives, as a part of the number.
-const DIFFERENCE: f64 = 1e-5;
 
 /// A target to be met by changing one number.
 pub struct Wanted<'a> {
@@ -62,21 +60,10 @@ impl Solver {
         numbers: &[(ParameterId, f64)],
         corner: &Corner,
     ) -> Option<Vec<f64>> {
-        let exact = wanted.exact(self)?;
-        let (side, _, slopes) = {
-            let assessor = wanted.assessor(self, wanted.crystal, wanted.rebuild);
-            margin(&assessor, wanted.index, corner, None, exact)?
-        };
-        let pull = |number: &(ParameterId, f64)| match exact {
-            true => Some(slope(&slopes, number.0)),
-            false => Some(self.point(wanted, *number, corner, side)?.slope),
-        };
-        Some(
-            numbers
-                .iter()
-                .map(|number| pull(number).unwrap_or(0.0))
-                .collect(),
-        )
+        let assessor = wanted.assessor(self, wanted.crystal, wanted.rebuild);
+        let (_, _, slopes) = margin(&assessor, wanted.index, corner, None, numbers)?;
+        let pulls = numbers.iter().map(|(id, _)| slope(&slopes, *id));
+        Some(pulls.collect())
     }
 
     /// The value nearest to today's, within 0.3 to 3 times of it, at which the target's failing limit is just kept at
@@ -89,7 +76,7 @@ impl Solver {
         corner: &Corner,
     ) -> Option<(f64, bool)> {
         let assessor = wanted.assessor(self, wanted.crystal, wanted.rebuild);
-        let (side, _, _) = margin(&assessor, wanted.index, corner, None, false)?;
+        let (side, _, _) = margin(&assessor, wanted.index, corner, None, &[number])?;
         let (id, today) = number;
         let start = self.point(wanted, number, corner, side)?;
         if start.margin >= 0.0 || start.slope == 0.0 {
@@ -120,21 +107,11 @@ impl Solver {
         corner: &Corner,
         side: Side,
     ) -> Option<Point> {
-        let exact = wanted.exact(self)?;
-        let at = |value: f64| {
-            wanted.with((id, value), |crystal, rebuild| {
-                let assessor = wanted.assessor(self, crystal, rebuild);
-                margin(&assessor, wanted.index, corner, Some(side), exact)
-            })
-        };
-        let (_, margin, slopes) = at(value)?;
-        let slope = match exact {
-            true => slope(&slopes, id),
-            false => {
-                let step = DIFFERENCE * value;
-                (at(value + step)?.1 - at(value - step)?.1) / (2.0 * step)
-            }
-        };
+        let (_, margin, slopes) = wanted.with((id, value), |crystal, rebuild| {
+            let assessor = wanted.assessor(self, crystal, rebuild);
+            margin(&assessor, wanted.index, corner, Some(side), &[(id, value)])
+        })?;
+        let slope = slope(&slopes, id);
         (margin.is_finite() && slope.is_finite()).then_some(Point {
             value,
             margin,
@@ -144,12 +121,6 @@ impl Solver {
 }
 
 impl Wanted<'_> {
-    fn exact(&self, solver: &Solver) -> Option<bool> {
-        let assessor = self.assessor(solver, self.crystal, self.rebuild);
-        let target = self.crystal.targets.get(self.index)?;
-        Some(assessor.has_exact_slopes(target))
-    }
-
     fn assessor<'b>(
         &'b self,
         solver: &'b Solver,
@@ -173,7 +144,7 @@ impl Wanted<'_> {
     ) -> Option<T> {
         let rebuild = |of: CrystalRef, setting: &Setting| {
             let mut setting = setting.clone();
-            setting.overrides.insert(id, value);
+            setting.overrides.entry(id).or_insert(value);
             (self.rebuild)(of, &setting)
         };
         let crystal = rebuild(self.of, &Setting::default())?;
@@ -184,21 +155,19 @@ impl Wanted<'_> {
     }
 }
 
-/// The margin of one limit, or of the one that fails most, numerical error taken off, with its derivatives.
+/// The margin of one limit, or of the one that fails most, numerical error taken off, with its derivatives by these
+/// numbers among others.
 fn margin(
     assessor: &Assessor<'_>,
     index: usize,
     corner: &Corner,
     side: Option<Side>,
-    with_slopes: bool,
+    numbers: &[(ParameterId, f64)],
 ) -> Option<(Side, f64, Slopes)> {
     let (draws, point): (Vec<ParameterId>, Vec<f64>) = corner.iter().copied().unzip();
-    let probe = Probe {
-        assessor,
-        measures: Measures::Target(index),
-        draws: &draws,
-    };
-    let reading = probe.at(&point, with_slopes).ok()?;
+    let mut probe = Probe::new(assessor, Measures::Target(index), &draws);
+    probe.numbers = numbers;
+    let reading = probe.at(&point).ok()?;
     let sides = [Side::Lower, Side::Upper].into_iter();
     let margins = sides
         .filter(|one| side.is_none_or(|side| side == *one))
@@ -207,16 +176,6 @@ fn margin(
             Some((side, value - doubt(&reading, side), slopes))
         });
     margins.min_by(|one, other| one.1.total_cmp(&other.1))
-}
-
-/// The numerical error of a margin.
-fn doubt(reading: &Reading, side: Side) -> f64 {
-    let limit = match side {
-        Side::Lower => &reading.lower,
-        Side::Upper => &reading.upper,
-    };
-    let limit = limit.as_ref().map_or(0.0, |limit| limit.value.uncertainty);
-    reading.value.value.uncertainty + limit
 }
 
 fn slope(slopes: &[(ParameterId, f64)], id: ParameterId) -> f64 {

@@ -1,6 +1,7 @@
 //! A target's value, limits and margin at any point of the box of tolerances.
 
 use std::cell::RefCell;
+use std::rc::Rc;
 use std::sync::Arc;
 use std::sync::atomic::{AtomicUsize, Ordering};
 
@@ -10,11 +11,14 @@ use crate::model::{Crystal, CrystalRef, Limits, ParameterId, Setting, TargetForm
 
 use super::assess::Assessor;
 use super::effort::MOST_QUESTIONS;
-use super::quantity::{Leaf, Untested, sum_slopes};
-use super::worst::{self, Sample};
+use super::lines::Sample;
+use super::quantity::{Beside, Leaf, Untested, sum_slopes};
+use super::worst::{self, Least};
 
-/// Step of the differences used for quantities without exact derivatives (masses, hoppings), in half widths.
+/// Step of the differences used for quantities without exact derivatives, in half widths.
 const STEP: f64 = 1e-4;
+/// The same as a part of a number.
+const PART: f64 = 1e-5;
 
 /// Which limit a margin is measured from.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
@@ -39,31 +43,21 @@ pub(super) struct Probe<'a> {
     pub assessor: &'a Assessor<'a>,
     pub measures: Measures<'a>,
     pub draws: &'a [ParameterId],
-}
-
-/// The least margin over the box of tolerances.
-pub(super) struct Least {
-    /// At the nominal values.
-    pub centre: Sample,
-    /// At the worst ones found.
-    pub worst: Sample,
-    /// Whether the search came to its end.
-    pub complete: bool,
+    /// Numbers, with their values, by which derivatives are wanted instead; exact ones are by all there is.
+    pub numbers: &'a [(ParameterId, f64)],
+    /// What was read already.
+    known: RefCell<FxHashMap<Vec<u64>, Rc<Reading>>>,
 }
 
 /// How a least margin is searched for.
 #[derive(Clone, Copy)]
 pub(super) struct Search {
-    /// Whether there are exact derivatives.
-    pub exact: bool,
     /// Whether the margin is smooth at the nominal values.
     pub smooth: bool,
     /// A margin at or below this cannot be undercut.
     pub floor: f64,
     /// How many points of the box may be looked at.
     pub most: usize,
-    /// Whether only corners are looked at: where each point is dear and its derivatives are not known.
-    pub corners: bool,
 }
 
 /// Value and limits at one point.
@@ -73,9 +67,47 @@ pub(super) struct Reading {
     pub upper: Option<Leaf>,
 }
 
-impl Probe<'_> {
-    /// Value and limits at a point of the box.
-    pub fn at(&self, point: &[f64], with_slopes: bool) -> Result<Reading, Untested> {
+impl<'a> Probe<'a> {
+    /// A probe that has read nothing.
+    pub fn new(
+        assessor: &'a Assessor<'a>,
+        measures: Measures<'a>,
+        draws: &'a [ParameterId],
+    ) -> Self {
+        Self {
+            assessor,
+            measures,
+            draws,
+            numbers: &[],
+            known: RefCell::default(),
+        }
+    }
+
+    /// Value and limits at the nominal values; with derivatives where there are tolerances and these can be had.
+    pub fn nominal(&self) -> Result<Rc<Reading>, Untested> {
+        let centre = vec![0.0; self.draws.len()];
+        if self.draws.is_empty() {
+            return self.read(&centre, false).map(Rc::new);
+        }
+        match self.at(&centre) {
+            Err(Untested::Because(_)) => self.read(&centre, false).map(Rc::new),
+            found => found,
+        }
+    }
+
+    /// Value and limits at a point of the box, with derivatives.
+    pub fn at(&self, point: &[f64]) -> Result<Rc<Reading>, Untested> {
+        let key = key(point);
+        if let Some(reading) = self.known.borrow().get(&key) {
+            return Ok(Rc::clone(reading));
+        }
+        let reading = Rc::new(self.read(point, true)?);
+        self.known.borrow_mut().insert(key, Rc::clone(&reading));
+        Ok(reading)
+    }
+
+    /// The same from anew, with derivatives or without.
+    pub fn read(&self, point: &[f64], with_slopes: bool) -> Result<Reading, Untested> {
         let setting = self.setting(point);
         let built: RefCell<FxHashMap<CrystalRef, Option<Arc<Crystal>>>> = RefCell::default();
         let crystals = |of: CrystalRef| {
@@ -86,7 +118,31 @@ impl Probe<'_> {
             built.borrow_mut().insert(of, crystal.clone());
             crystal
         };
-        let evaluation = self.assessor.evaluation(&crystals, with_slopes);
+        let steps: Vec<(ParameterId, f64)> = match self.numbers {
+            [] => self.draws.iter().map(|draw| (*draw, STEP)).collect(),
+            numbers => {
+                let steps = numbers.iter().map(|(id, value)| (*id, PART * value));
+                steps.filter(|(_, step)| *step != 0.0).collect()
+            }
+        };
+        let moved = |of: CrystalRef, id: ParameterId, step: f64| {
+            let mut setting = setting.clone();
+            match self.numbers.iter().find(|(number, _)| *number == id) {
+                Some((_, value)) => setting.overrides.insert(id, value + step),
+                None => {
+                    let at = setting.draws.get(&id).copied().unwrap_or(0.0);
+                    setting.draws.insert(id, at + step)
+                }
+            };
+            self.assessor.at(of, &setting)
+        };
+        let beside = Beside {
+            steps: &steps,
+            moved: &moved,
+        };
+        let evaluation = self
+            .assessor
+            .evaluation(&crystals, with_slopes.then_some(&beside));
         match self.measures {
             Measures::Formula(formula) => Ok(Reading {
                 value: evaluation.formula(formula)?,
@@ -130,32 +186,18 @@ impl Probe<'_> {
     }
 
     /// The margin from one limit, with its derivatives by the tolerances; `None` without such a limit.
-    fn margin(
-        &self,
-        point: &[f64],
-        side: Side,
-        exact: bool,
-    ) -> Result<Option<(f64, Vec<f64>)>, Untested> {
-        let reading = self.at(point, exact)?;
+    fn margin(&self, point: &[f64], side: Side) -> Result<Option<Sample>, Untested> {
+        let reading = self.at(point)?;
         let Some((value, slopes)) = margin_of(&reading, side) else {
             return Ok(None);
         };
-        if exact {
-            return Ok(Some((value, self.by_draw(&slopes))));
-        }
-        let mut by_draw = Vec::with_capacity(point.len());
-        for axis in 0..point.len() {
-            let mut ends = [0.0; 2];
-            for (end, step) in ends.iter_mut().zip([-STEP, STEP]) {
-                let mut moved = point.to_vec();
-                if let Some(at) = moved.get_mut(axis) {
-                    *at += step;
-                }
-                *end = margin_of(&self.at(&moved, false)?, side).map_or(value, |(value, _)| value);
-            }
-            by_draw.push((ends[1] - ends[0]) / (2.0 * STEP));
-        }
-        Ok(Some((value, by_draw)))
+        Ok(Some(Sample {
+            point: point.to_vec(),
+            value,
+            slopes: self.by_draw(&slopes),
+            doubt: doubt(&reading, side),
+            seats: reading.value.seats.clone(),
+        }))
     }
 
     fn by_draw(&self, slopes: &[(ParameterId, f64)]) -> Vec<f64> {
@@ -180,9 +222,14 @@ impl Probe<'_> {
         };
         let limited = Probe {
             assessor: &assessor,
-            ..*self
+            measures: self.measures,
+            draws: self.draws,
+            numbers: self.numbers,
+            known: RefCell::new(self.known.take()),
         };
-        match limited.search(side, search) {
+        let found = limited.search(side, search);
+        self.known.replace(limited.known.take());
+        match found {
             Err(Untested::Cancelled) if !overtaken() => Err(Untested::Because(
                 "the work allowed was spent in the search for the worst case".into(),
             )),
@@ -191,30 +238,20 @@ impl Probe<'_> {
     }
 
     fn search(&self, side: Side, search: Search) -> Result<Option<Least>, Untested> {
-        if search.corners {
-            return self.least_corner(side, search.most);
-        }
-        let exact = search.exact;
-        if self
-            .margin(&vec![0.0; self.draws.len()], side, exact)?
-            .is_none()
-        {
+        if self.margin(&vec![0.0; self.draws.len()], side)?.is_none() {
             return Ok(None);
         }
         let mut failure = None;
         let mut seen: Vec<Sample> = Vec::new();
+        let mut left = search.most;
         let mut evaluate = |point: &[f64]| {
-            if seen.len() >= search.most {
-                return None;
+            if !self.known.borrow().contains_key(&key(point)) {
+                left = left.checked_sub(1)?;
             }
-            match self.margin(point, side, exact) {
-                Ok(Some((value, slopes))) => {
-                    seen.push(Sample {
-                        point: point.to_vec(),
-                        value,
-                        slopes: slopes.clone(),
-                    });
-                    Some((value, slopes))
+            match self.margin(point, side) {
+                Ok(Some(sample)) => {
+                    seen.push(sample.clone());
+                    Some(sample)
                 }
                 Ok(None) => None,
                 Err(untested) => {
@@ -227,12 +264,8 @@ impl Probe<'_> {
         if let Some(untested) = failure {
             return Err(untested);
         }
-        if let Some((centre, worst)) = found {
-            return Ok(Some(Least {
-                centre,
-                worst,
-                complete: true,
-            }));
+        if let Some(found) = found {
+            return Ok(Some(found));
         }
         let lowest = seen
             .iter()
@@ -246,59 +279,19 @@ impl Probe<'_> {
     }
 }
 
-impl Probe<'_> {
-    /// The least margin at the corners of the box (and its centre); slopes are half the mean differences along each axis.
-    fn least_corner(&self, side: Side, most: usize) -> Result<Option<Least>, Untested> {
-        let count = self.draws.len();
-        let value = |point: &[f64]| -> Result<Option<f64>, Untested> {
-            let reading = self.at(point, false)?;
-            Ok(margin_of(&reading, side).map(|(value, _)| value))
-        };
-        let Some(centre) = value(&vec![0.0; count])? else {
-            return Ok(None);
-        };
-        let complete = count < 12 && 1 << count <= most;
-        // Too many: the corners that differ from the nominal values in one tolerance.
-        let points: Vec<Vec<f64>> = match complete {
-            true => (0..1_usize << count)
-                .map(|bits| {
-                    let sign = |axis: usize| if bits >> axis & 1 == 1 { 1.0 } else { -1.0 };
-                    (0..count).map(sign).collect()
-                })
-                .collect(),
-            false => (0..2 * count.min(most / 2))
-                .map(|index| {
-                    let mut point = vec![0.0; count];
-                    if let Some(at) = point.get_mut(index / 2) {
-                        *at = if index % 2 == 0 { -1.0 } else { 1.0 };
-                    }
-                    point
-                })
-                .collect(),
-        };
-        let mut slopes = vec![0.0; count];
-        let mut worst = (vec![0.0; count], centre);
-        let share = 1.0 / if complete { points.len() as f64 } else { 2.0 };
-        for point in points {
-            let found = value(&point)?.unwrap_or(centre);
-            for (slope, at) in slopes.iter_mut().zip(&point) {
-                *slope += share * at * found;
-            }
-            if found < worst.1 {
-                worst = (point, found);
-            }
-        }
-        let sample = |point: Vec<f64>, value: f64| Sample {
-            point,
-            value,
-            slopes: slopes.clone(),
-        };
-        Ok(Some(Least {
-            centre: sample(vec![0.0; count], centre),
-            worst: sample(worst.0, worst.1),
-            complete,
-        }))
-    }
+/// A point by its bits; both zeros are one.
+fn key(point: &[f64]) -> Vec<u64> {
+    point.iter().map(|at| (at + 0.0).to_bits()).collect()
+}
+
+/// The numerical error of a margin.
+pub(super) fn doubt(reading: &Reading, side: Side) -> f64 {
+    let limit = match side {
+        Side::Lower => &reading.lower,
+        Side::Upper => &reading.upper,
+    };
+    let limit = limit.as_ref().map_or(0.0, |limit| limit.value.uncertainty);
+    reading.value.value.uncertainty + limit
 }
 
 /// A margin and its derivatives by all parameters.

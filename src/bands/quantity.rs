@@ -9,8 +9,8 @@ use super::chain::{Chain, unsolved};
 use super::effort::budget;
 use super::filling::Filled;
 use super::{
-    Extremum, Feature, Measured, Solution, Solver, Unsolved, impossible, solve, zone_quantity,
-    zone_slopes,
+    Extremum, Feature, GapKind, Measured, Solution, Solver, Unsolved, impossible, solve,
+    zone_quantity, zone_slopes,
 };
 
 /// Why a quantity has no value.
@@ -45,18 +45,31 @@ fn because(why: &str) -> Untested {
 #[derive(Clone, Debug, Default)]
 pub(super) struct Leaf {
     pub value: Measured,
+    /// Sorted by parameter.
     pub slopes: Vec<(ParameterId, f64)>,
+    /// The wave vectors of the extrema whose masses it speaks of, in two and three dimensions: masses jump where an extremum
+    /// does.
+    pub seats: Vec<f64>,
 }
 
 /// The crystals that an expression may speak of, at one setting of the tolerances.
 pub(super) type Crystals<'a> = dyn Fn(CrystalRef) -> Option<Arc<Crystal>> + 'a;
 
-/// What evaluates expressions: the solver, the crystals, the hook, and whether derivatives are wanted.
+/// Differences for quantities without exact derivatives: the masses and hoppings of chains.
+pub(super) struct Beside<'a> {
+    /// By what, and how far to each side.
+    pub steps: &'a [(ParameterId, f64)],
+    /// A crystal with one of these moved by so much.
+    pub moved: &'a dyn Fn(CrystalRef, ParameterId, f64) -> Option<Arc<Crystal>>,
+}
+
+/// What evaluates expressions: the solver, the crystals, the hook, and, where derivatives are wanted, what those
+/// that are not exact are made with.
 pub(super) struct Evaluation<'a> {
     pub solver: &'a Solver,
     pub crystals: &'a Crystals<'a>,
     pub cancelled: &'a (dyn Fn() -> bool + Sync),
-    pub with_slopes: bool,
+    pub beside: Option<&'a Beside<'a>>,
 }
 
 /// Leaves are numbered from here while an expression is evaluated; parameters are hashes far above.
@@ -90,18 +103,50 @@ impl Evaluation<'_> {
         if let Some(unsolved) = impossible(&crystal) {
             return Err(unsolved.into());
         }
-        if let (QuantityKind::Level(number, k), true) = (&quantity.kind, crystal.dimension > 1) {
-            return self.zone_level(&crystal, *number, k);
+        match (&quantity.kind, crystal.dimension > 1) {
+            (QuantityKind::Level(number, k), true) => self.zone_level(&crystal, *number, k),
+            (QuantityKind::Hopping(number, hop), true) => self.zone_hopping(&crystal, *number, hop),
+            _ => self.solved(quantity, &crystal),
         }
-        let solution = self.solver.solve(&crystal, self.cancelled)?;
+    }
+
+    /// A quantity that is taken from the bands solved, or goes with them.
+    fn solved(&self, quantity: &Quantity, crystal: &Crystal) -> Result<Leaf, Untested> {
+        let solution = self.solver.solve(crystal, self.cancelled)?;
+        let kind = &quantity.kind;
         let mut leaf = Leaf {
-            value: self.value(&crystal, &solution, &quantity.kind)?,
-            slopes: Vec::new(),
+            value: self.value(crystal, &solution, kind)?,
+            ..Leaf::default()
         };
-        if self.with_slopes {
-            leaf.slopes = self.slopes(&crystal, &solution, &quantity.kind)?;
+        if let Some(beside) = self.beside {
+            leaf.slopes = match self.slopes(crystal, &solution, kind)? {
+                Some(exact) => exact,
+                None => self.differences(quantity, beside)?,
+            };
+        }
+        if let (Some(edge), true) = (edge(&solution, kind), crystal.dimension > 1) {
+            leaf.seats = edge.k.clone();
         }
         Ok(leaf)
+    }
+
+    fn differences(
+        &self,
+        quantity: &Quantity,
+        beside: &Beside<'_>,
+    ) -> Result<Vec<(ParameterId, f64)>, Untested> {
+        let at = |id: ParameterId, step: f64| -> Result<f64, Untested> {
+            let gone = || because("the model has errors within its tolerances");
+            let crystal = (beside.moved)(quantity.of, id, step).ok_or_else(gone)?;
+            let solution = self.solver.solve(&crystal, self.cancelled)?;
+            Ok(self.value(&crystal, &solution, &quantity.kind)?.value)
+        };
+        let mut slopes = Vec::with_capacity(beside.steps.len());
+        for (id, step) in beside.steps {
+            slopes.push((*id, (at(*id, *step)? - at(*id, -step)?) / (2.0 * step)));
+        }
+        slopes.sort_by_key(|(id, _)| *id);
+        Ok(slopes)
     }
 
     /// A level of a plane or solid crystal: its zone need not be solved for that.
@@ -109,13 +154,34 @@ impl Evaluation<'_> {
         if !(1..=crystal.bands).contains(&number) {
             return Err(too_few(number, crystal.bands));
         }
-        let slopes = match self.with_slopes {
-            true => zone_slopes::level_slopes(crystal, number, k, self.cancelled)?,
-            false => Vec::new(),
+        let slopes = match self.beside {
+            Some(_) => zone_slopes::level_slopes(crystal, number, k, self.cancelled)?,
+            None => Vec::new(),
         };
         Ok(Leaf {
             value: zone_quantity::level(crystal, number, k, self.cancelled)?,
             slopes,
+            ..Leaf::default()
+        })
+    }
+
+    /// A hopping there, nor for that.
+    fn zone_hopping(
+        &self,
+        crystal: &Crystal,
+        number: usize,
+        hop: &[i64],
+    ) -> Result<Leaf, Untested> {
+        if !(1..=crystal.bands).contains(&number) {
+            return Err(too_few(number, crystal.bands));
+        }
+        let with_slopes = self.beside.is_some();
+        let (value, slopes) =
+            zone_quantity::hopping(crystal, number, hop, with_slopes, self.cancelled)?;
+        Ok(Leaf {
+            value,
+            slopes,
+            ..Leaf::default()
         })
     }
 
@@ -162,9 +228,6 @@ impl Evaluation<'_> {
     }
 
     fn hopping(&self, crystal: &Crystal, number: usize, hop: &[i64]) -> Result<Measured, Untested> {
-        if crystal.dimension > 1 {
-            return zone_quantity::hopping(crystal, number, hop, self.cancelled);
-        }
         let budget = budget(self.cancelled);
         let chain = Chain::new(crystal, &budget)?;
         let cells = hop.first().map_or(0, |cells| cells.unsigned_abs());
@@ -174,13 +237,13 @@ impl Evaluation<'_> {
         Ok(chain.energy(hopping))
     }
 
-    /// Exact derivatives of a quantity; masses and hoppings have none here and give an empty list.
+    /// Exact derivatives of a quantity; the masses and hoppings of chains have none.
     fn slopes(
         &self,
         crystal: &Crystal,
         solution: &Solution,
         kind: &QuantityKind,
-    ) -> Result<Vec<(ParameterId, f64)>, Untested> {
+    ) -> Result<Option<Vec<(ParameterId, f64)>>, Untested> {
         let budget = budget(self.cancelled);
         let feature = match kind {
             QuantityKind::Gap(number) => Feature::Gap(*number),
@@ -188,18 +251,23 @@ impl Evaluation<'_> {
             QuantityKind::Bottom(number) => Feature::Bottom(*number),
             QuantityKind::Top(number) => Feature::Top(*number),
             QuantityKind::Level(number, k) => {
-                return Ok(Chain::new(crystal, &budget)?.level_slopes(
-                    *number,
-                    turn(k),
-                    &budget,
-                )?);
+                let chain = Chain::new(crystal, &budget)?;
+                return Ok(Some(chain.level_slopes(*number, turn(k), &budget)?));
             }
-            QuantityKind::Fermi => return self.fermi_slopes(crystal, solution),
-            QuantityKind::MassBottom(_) | QuantityKind::MassTop(_) | QuantityKind::Hopping(..) => {
-                return Ok(Vec::new());
+            QuantityKind::Fermi => return self.fermi_slopes(crystal, solution).map(Some),
+            QuantityKind::MassBottom(number) | QuantityKind::MassTop(number) => {
+                return match edge(solution, kind).filter(|_| crystal.dimension > 1) {
+                    Some(edge) => {
+                        let found =
+                            zone_slopes::mass_slopes(crystal, *number, edge, self.cancelled)?;
+                        Ok(Some(found))
+                    }
+                    None => Ok(None),
+                };
             }
+            QuantityKind::Hopping(..) => return Ok(None),
         };
-        self.feature_slopes(crystal, feature)
+        self.feature_slopes(crystal, feature).map(Some)
     }
 
     fn feature_slopes(
@@ -216,15 +284,17 @@ impl Evaluation<'_> {
         Ok(Chain::new(crystal, &budget)?.feature_slopes(feature, &budget)?)
     }
 
-    /// The Fermi level of a part-filled band moves with the level at its k; that of whole bands with the middle of the gap.
+    /// The Fermi level of a part-filled band moves with the levels at its k; that of whole bands with the middle of the
+    /// gap, where there is one.
     fn fermi_slopes(
         &self,
         crystal: &Crystal,
         solution: &Solution,
     ) -> Result<Vec<(ParameterId, f64)>, Untested> {
         match solve::filled(crystal) {
-            // Through the whole zone: differences, see `assess::has_exact_slopes`.
-            Some(Filled::Part(_)) if crystal.dimension > 1 => Ok(Vec::new()),
+            Some(Filled::Part(part)) if crystal.dimension > 1 => {
+                Ok(zone_slopes::fermi_slopes(crystal, part, self.cancelled)?)
+            }
             Some(Filled::Part(part)) => {
                 let budget = budget(self.cancelled);
                 let chain = Chain::new(crystal, &budget)?;
@@ -235,6 +305,11 @@ impl Evaluation<'_> {
                 Ok(chain.level_slopes(band + 1, share * std::f64::consts::PI, &budget)?)
             }
             Some(Filled::Whole(whole)) => {
+                let gap = solution.gaps.get(whole.wrapping_sub(1));
+                if gap.is_some_and(|gap| gap.kind == GapKind::Overlap) {
+                    let whole = whole as f64;
+                    return Ok(zone_slopes::fermi_slopes(crystal, whole, self.cancelled)?);
+                }
                 let top = self.feature_slopes(crystal, Feature::Top(whole))?;
                 let bottom = self.feature_slopes(crystal, Feature::Bottom(whole + 1))?;
                 Ok(sum_slopes(&[(0.5, &top), (0.5, &bottom)]))
@@ -247,6 +322,16 @@ impl Evaluation<'_> {
 /// ka of a point given in fractions of the reciprocal vector.
 fn turn(k: &[f64]) -> f64 {
     2.0 * std::f64::consts::PI * k.first().copied().unwrap_or(0.0)
+}
+
+/// The extremum whose mass a quantity is.
+fn edge<'s>(solution: &'s Solution, kind: &QuantityKind) -> Option<&'s Extremum> {
+    let band = |number: &usize| solution.bands.get(number.wrapping_sub(1));
+    match kind {
+        QuantityKind::MassBottom(number) => Some(&band(number)?.bottom),
+        QuantityKind::MassTop(number) => Some(&band(number)?.top),
+        _ => None,
+    }
 }
 
 fn mass(extremum: &Extremum) -> Result<Measured, Untested> {
@@ -281,6 +366,11 @@ fn no_fermi(crystal: &Crystal, solution: &Solution) -> Untested {
 /// Replaces the leaves in a value's derivatives by what they depend on.
 fn collect(value: &Dual, leaves: &[Leaf]) -> Leaf {
     let mut uncertainty = 4.0 * f64::EPSILON * value.value.abs();
+    let seats = leaves
+        .iter()
+        .flat_map(|leaf| &leaf.seats)
+        .copied()
+        .collect();
     let mut parts: Vec<(f64, &[(ParameterId, f64)])> = Vec::new();
     let mut direct = Vec::new();
     for (id, slope) in &value.slopes {
@@ -306,6 +396,7 @@ fn collect(value: &Dual, leaves: &[Leaf]) -> Leaf {
                 .first()
                 .map_or_else(Measured::default, |leaf| leaf.value),
             slopes: slopes.to_vec(),
+            seats,
         };
     }
     parts.push((1.0, &direct));
@@ -316,6 +407,7 @@ fn collect(value: &Dual, leaves: &[Leaf]) -> Leaf {
             uncertainty,
         },
         slopes,
+        seats,
     }
 }
 

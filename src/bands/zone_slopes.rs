@@ -1,23 +1,14 @@
-//! Exact derivatives of levels, edges and gaps in two and three dimensions (Hellmann–Feynman).
+//! Exact derivatives of levels, edges, gaps, hoppings, Fermi levels and masses in two and three dimensions.
 //!
-//! With the coefficients c_G of a level held, its energy is a sum of numbers that the model knows with derivatives:
-//!
-//! ```text
-//! E = (ħ²/2m) Σ_ab K_ab b_a·b_b + Σ_G S_G V(G) + Σ_r ρ(r) V_profile(r)/N
-//! K_ab = Σ_G |c_G|² (k+G)_a (k+G)_b,   S_G = Σ_G' c*_{G'+G} c_G',   ρ = |ψ|²
-//! ```
-//!
-//! k and r are in fractions of the cell, and c varies in second order only. An edge is an extremum in k, so that it may
-//! stand still too. Within a degenerate set the average is meant, as for changes that keep the symmetry.
+//! Each is a weighted sum of levels (`zone_density.rs`). An edge is an extremum in k, so that it may stand still; a hopping
+//! is a Fourier coefficient of a band; a Fermi level moves with the levels at the Fermi surface; a mass has the second
+//! derivatives by k of what its level does. Within a degenerate set the average is meant, as for changes that keep the
+//! symmetry.
 
-use nalgebra::Complex;
-use std::f64::consts::PI;
-
-use crate::model::{Crystal, Dual, ParameterId, Scalar};
-use crate::numerics::planewaves::Levels;
+use crate::model::{Crystal, Dual, ParameterId};
 
 use super::quantity::sum_slopes;
-use super::zone_cell::{ZoneCell, dot};
+use super::zone_cell::ZoneCell;
 use super::zone_field::ZoneField;
 use super::zone_solve::{Effort, Zone, unsolved, with_zone, zone_budget};
 use super::{Cancelled, Extremum, Feature, Sensitivity, Solver, Unsolved};
@@ -29,8 +20,6 @@ pub(super) type Slopes = Vec<(ParameterId, f64)>;
 const TOGETHER: f64 = 1e-6;
 /// Levels are settled to this, in the largest |bᵢ|²: derivatives need no more.
 const SETTLED: f64 = 1e-6;
-/// Grid points along each vector at which a profile's derivatives are summed, in two and three dimensions.
-const GRID: [usize; 2] = [96, 32];
 
 /// Of the level of a band (counted from 1) at a point.
 pub(super) fn level_slopes(
@@ -76,6 +65,52 @@ pub(super) fn sensitivities(
     Ok(pairs
         .map(|(feature, slopes)| Sensitivity { feature, slopes })
         .collect())
+}
+
+/// Of the Fermi level at `levels` filled levels, inside bands.
+pub(super) fn fermi_slopes(
+    crystal: &Crystal,
+    levels: f64,
+    cancelled: &Cancelled<'_>,
+) -> Result<Slopes, Unsolved> {
+    let field = ZoneField::new(crystal)?;
+    with_zone(&field, |zone| {
+        let budget = zone_budget(&field, crystal.bands, Effort::Fine, cancelled);
+        let density = zone.waves.fermi_density(levels, &budget);
+        Ok(zone.dual(&density.map_err(unsolved)?)?.slopes)
+    })
+}
+
+/// Of the mass at an extremum of a band (counted from 1), its magnitude, in kilogram per SI unit.
+///
+/// With E_κκ the second derivatives by the fractions of k, m = ħ² |det E_κκ|^{−1/d} (2π)² volume^{−2/d}.
+pub(super) fn mass_slopes(
+    crystal: &Crystal,
+    band: usize,
+    edge: &Extremum,
+    cancelled: &Cancelled<'_>,
+) -> Result<Slopes, Unsolved> {
+    let mass = edge.mass.map_or(0.0, |mass| mass.value.abs());
+    let field = ZoneField::new(crystal)?;
+    let cell = ZoneCell::<Dual>::new(crystal).ok_or(Unsolved::BrokenModel)?;
+    with_zone(&field, |zone| {
+        let budget = zone_budget(&field, band, Effort::Fine, cancelled);
+        let found = zone
+            .waves
+            .settled_at(kernel_k(&edge.k), band + 2, SETTLED * zone.unit, &budget)
+            .map_err(unsolved)?;
+        let density = zone
+            .waves
+            .mass_density(&found.levels, band.saturating_sub(1), &budget)
+            .map_err(unsolved)?;
+        let bent = zone.dual(&density)?;
+        let share = -mass / field.dimension as f64;
+        let by_volume = 2.0 * share / cell.volume.value;
+        Ok(sum_slopes(&[
+            (share / field.scale.energy, &bent.slopes),
+            (by_volume, &cell.volume.slopes),
+        ]))
+    })
 }
 
 fn several(
@@ -153,150 +188,10 @@ impl Zone<'_> {
             .waves
             .settled_at(kernel_k(k), band + 2, SETTLED * self.unit, &budget)
             .map_err(unsolved)?;
-        let energy = self.dual(&found.levels, band.saturating_sub(1))?;
-        Ok(energy.slopes)
+        let set = found
+            .levels
+            .degenerate_with(band.saturating_sub(1), TOGETHER * self.unit);
+        let density = found.levels.density(set).map_err(unsolved)?;
+        Ok(self.dual(&density)?.slopes)
     }
-
-    /// The energy of a level, in joule, with its derivatives.
-    pub fn dual(&self, levels: &Levels, level: usize) -> Result<Dual, Unsolved> {
-        let cell = ZoneCell::<Dual>::new(self.field.crystal).ok_or(Unsolved::BrokenModel)?;
-        let set = levels.degenerate_with(level, TOGETHER * self.unit);
-        let set = set.start..set.end.min(levels.energies.len());
-        let mut parts = self.kinetic(&cell, levels, set.clone());
-        parts.extend(self.potential(&cell, levels, set.clone()));
-        parts.extend(self.profile(&cell, levels, set));
-        Ok(Dual::sum(&parts))
-    }
-
-    fn kinetic(
-        &self,
-        cell: &ZoneCell<Dual>,
-        levels: &Levels,
-        set: std::ops::Range<usize>,
-    ) -> Vec<Dual> {
-        let weights = weights(levels, set);
-        let scale = self.field.scale;
-        // ħ²/2 over the mass with its derivatives.
-        let factor = Dual::constant(scale.energy * scale.length * scale.length * scale.mass)
-            .over(&self.field.crystal.mass);
-        let mut parts = Vec::new();
-        for (a, first) in cell.reciprocal.iter().enumerate() {
-            for (b, second) in cell.reciprocal.iter().enumerate() {
-                let along = |n: &[i32; 3], axis: usize| {
-                    let index = n.get(axis).copied().unwrap_or(0);
-                    f64::from(index) + levels.k.get(axis).copied().unwrap_or(0.0)
-                };
-                let share: f64 = levels
-                    .waves
-                    .iter()
-                    .zip(&weights)
-                    .map(|(n, weight)| weight * along(n, a) * along(n, b))
-                    .sum();
-                parts.push(dot(first, second).times(&factor).scaled(share));
-            }
-        }
-        parts
-    }
-
-    fn potential(
-        &self,
-        cell: &ZoneCell<Dual>,
-        levels: &Levels,
-        set: std::ops::Range<usize>,
-    ) -> Vec<Dual> {
-        let farthest = levels
-            .waves
-            .iter()
-            .map(|n| self.field.length_of(*n))
-            .fold(0.0, f64::max);
-        let reach = 2.0 * farthest;
-        let radius = self.field.ends.map_or(reach, |ends| ends.min(reach));
-        // One of ±G: V(−G)·S(−G) is the conjugate of V(G)·S(G).
-        let half: Vec<[i32; 3]> = self
-            .field
-            .cell
-            .indices(radius)
-            .into_iter()
-            .filter(|n| *n >= [0; 3])
-            .collect();
-        let responses = levels.responses(set, &half);
-        half.iter()
-            .zip(responses)
-            .map(|(n, response)| {
-                let twice = if *n == [0; 3] { 1.0 } else { 2.0 };
-                let (real, imaginary) = self.field.component(cell, *n);
-                real.scaled(twice * response.re)
-                    .minus(&imaginary.scaled(twice * response.im))
-            })
-            .collect()
-    }
-
-    fn profile(
-        &self,
-        cell: &ZoneCell<Dual>,
-        levels: &Levels,
-        set: std::ops::Range<usize>,
-    ) -> Vec<Dual> {
-        let Some(piece) = self.field.crystal.potential.profile.first() else {
-            return Vec::new();
-        };
-        let dimension = self.field.dimension;
-        let size = GRID.get(dimension - 2).copied().unwrap_or(1);
-        let total = size.pow(u32::try_from(dimension).unwrap_or(1));
-        let states: Vec<Vec<Complex<f64>>> = set.map(|level| levels.coefficients(level)).collect();
-        let share = 1.0 / (total * states.len().max(1)) as f64;
-        let roots: Vec<Complex<f64>> = (0..size)
-            .map(|step| Complex::cis(2.0 * PI * step as f64 / size as f64))
-            .collect();
-        let point = |index: usize, axis: usize| {
-            if axis < dimension {
-                index / size.pow(u32::try_from(axis).unwrap_or(0)) % size
-            } else {
-                0
-            }
-        };
-        (0..total)
-            .map(|index| {
-                let at: [usize; 3] = std::array::from_fn(|axis| point(index, axis));
-                let turns: Vec<Complex<f64>> = levels
-                    .waves
-                    .iter()
-                    .map(|n| {
-                        let steps: i64 = n
-                            .iter()
-                            .zip(at)
-                            .map(|(n, at)| i64::from(*n) * at as i64)
-                            .sum();
-                        let place = steps.rem_euclid(size as i64);
-                        let place = usize::try_from(place).unwrap_or(0);
-                        roots.get(place).copied().unwrap_or_default()
-                    })
-                    .collect();
-                let density: f64 = states
-                    .iter()
-                    .map(|state| {
-                        let pairs = state.iter().zip(&turns);
-                        pairs
-                            .map(|(c, turn)| c * turn)
-                            .sum::<Complex<f64>>()
-                            .norm_sqr()
-                    })
-                    .sum();
-                let place = cell.place(at.map(|at| at as f64 / size as f64));
-                piece.formula.dual_at(&place).scaled(share * density)
-            })
-            .collect()
-    }
-}
-
-/// |c_G|² averaged over a set.
-fn weights(levels: &Levels, set: std::ops::Range<usize>) -> Vec<f64> {
-    let count = set.len().max(1) as f64;
-    let mut sums = vec![0.0; levels.waves.len()];
-    for level in set {
-        for (sum, c) in sums.iter_mut().zip(levels.coefficients(level)) {
-            *sum += c.norm_sqr() / count;
-        }
-    }
-    sums
 }

@@ -8,10 +8,17 @@
 //! E(k) is then analytic and periodic.
 
 use super::basis::Waves;
+use super::density::Density;
 use super::lattice::{dot, real};
 use super::mesh::Mesh;
-use super::settle::UNTRIED;
+use super::settle::{Prediction, UNTRIED};
 use super::{Budget, Error, Estimate};
+
+/// The levels at each irreducible point, the largest error of the band, and what else is wanted.
+type Solved<T> = (Vec<Vec<f64>>, f64, T);
+
+/// What gives them on a mesh at a cut.
+type OnMesh<'a, T> = dyn Fn(&Mesh, f64) -> Result<Solved<T>, Error> + 'a;
 
 impl Waves<'_> {
     /// J_R of a band (counted from zero) for each R in cells of the primitive vectors.
@@ -26,6 +33,65 @@ impl Waves<'_> {
         tolerance: f64,
         budget: &Budget,
     ) -> Result<Vec<Estimate>, Error> {
+        let solve = |mesh: &Mesh, cut: f64| {
+            let (energies, errors) = self.settled_on(mesh, band + 2, (cut, UNTRIED), budget)?;
+            let error = errors.get(band).copied().unwrap_or(f64::INFINITY);
+            Ok((energies, error, ()))
+        };
+        let (found, ()) = self.hopping_by(band, cells, tolerance, budget, &solve)?;
+        Ok(found)
+    }
+
+    /// J_R of a band for one R, and how it answers: by the same coefficient of the levels' own answers.
+    ///
+    /// # Errors
+    /// As [`Waves::hopping`].
+    pub fn hopping_density(
+        &self,
+        band: usize,
+        cell: [i32; 3],
+        tolerance: f64,
+        budget: &Budget,
+    ) -> Result<(Estimate, Density), Error> {
+        let solve = |mesh: &Mesh, cut: f64| {
+            let share = -1.0 / mesh.of.len() as f64;
+            let tell = |point: usize| {
+                let k = mesh.points[point];
+                let levels = self.solve_on(&self.basis(k, cut), k, band + 2, true, budget)?;
+                let known: Vec<Estimate> = self
+                    .predict(&levels, cut)?
+                    .iter()
+                    .map(Prediction::unjudged)
+                    .collect();
+                let mut weights = vec![0.0; band + 1];
+                weights[band] = share;
+                Ok((known, levels, weights))
+            };
+            let (known, density) = self.swept(mesh, cell, cut, &tell)?;
+            let error = |point: &Vec<Estimate>| point.get(band).map_or(f64::INFINITY, |e| e.error);
+            let worst = known.iter().map(error).fold(0.0, f64::max);
+            let energies = known.into_iter().map(|point| {
+                let mut energies: Vec<f64> = point.iter().map(|e| e.value).collect();
+                energies.sort_by(f64::total_cmp);
+                energies
+            });
+            Ok((energies.collect(), worst, density))
+        };
+        let (found, density) = self.hopping_by(band, &[cell], tolerance, budget, &solve)?;
+        let first = found.first().copied().ok_or(Error::NotFinite)?;
+        Ok((first, density))
+    }
+
+    /// Meshes refined until the coefficients settle; `solve` gives the levels on one, the error of the band, and
+    /// what else is wanted of the last.
+    fn hopping_by<T>(
+        &self,
+        band: usize,
+        cells: &[[i32; 3]],
+        tolerance: f64,
+        budget: &Budget,
+        solve: &OnMesh<'_, T>,
+    ) -> Result<(Vec<Estimate>, T), Error> {
         if !(tolerance > 0.0 && tolerance.is_finite()) {
             return Err(Error::NotFinite);
         }
@@ -37,15 +103,13 @@ impl Waves<'_> {
         };
         let d = self.frame.dimension;
         let mut last: Option<Vec<f64>> = None;
-        let mut best: Option<Vec<Estimate>> = None;
+        let mut best: Option<(Vec<Estimate>, T)> = None;
         for size in sizes {
             let mesh = self.mesh_of(std::array::from_fn(|i| if i < d { *size } else { 1 }));
-            let (energies, errors) = match self.settled_on(&mesh, band + 2, (cut, UNTRIED), budget)
-            {
+            let (energies, error, more) = match solve(&mesh, cut) {
                 Err(Error::BudgetSpent) if best.is_some() => break,
                 other => other?,
             };
-            let error = errors.get(band).copied().unwrap_or(f64::INFINITY);
             self.check_apart(&energies, band, error)?;
             let own: Vec<f64> = energies
                 .iter()
@@ -65,7 +129,7 @@ impl Waves<'_> {
                     })
                     .collect();
                 let settled = found.iter().all(|e| e.error <= tolerance);
-                best = Some(found);
+                best = Some((found, more));
                 if settled {
                     break;
                 }

@@ -106,7 +106,17 @@ fn transform(
         }
         values.push(Complex::new(sample * scale, 0.0));
     }
+    Ok(fourier(values, dimension, size))
+}
+
+/// Σ_m x_m e^{−2πi n·m/size} on a grid of `size` points along each vector, the last index running fastest.
+pub(super) fn fourier(
+    mut values: Vec<Complex<f64>>,
+    dimension: usize,
+    size: usize,
+) -> Vec<Complex<f64>> {
     let fft = FftPlanner::new().plan_fft_forward(size);
+    let total = values.len();
     // Along the last axis rows are whole; turning the axes round brings each to that place.
     for _ in 0..dimension {
         fft.process(&mut values);
@@ -115,7 +125,7 @@ fn transform(
             .map(|index| values[index % rows * size + index / rows])
             .collect();
     }
-    Ok(values)
+    values
 }
 
 /// The largest difference of the components that both grids have.

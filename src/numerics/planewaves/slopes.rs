@@ -24,7 +24,7 @@ pub(super) type Tensor = [[f64; 3]; 3];
 
 impl Waves<'_> {
     /// p = 2(k+G) on the axes, for every wave.
-    fn momenta(&self, levels: &Levels) -> Vec<[f64; 3]> {
+    pub(super) fn momenta(&self, levels: &Levels) -> Vec<[f64; 3]> {
         let at = |n: &[i32; 3]| {
             self.frame
                 .on_axes(self.frame.wave(add(levels.k, real(*n))))
@@ -67,26 +67,13 @@ impl Waves<'_> {
         levels: &Levels,
         level: usize,
     ) -> Result<Tensor, Error> {
-        let n = levels.waves.len();
         let d = self.frame.dimension;
-        let matrix = self.matrix::<T>(&levels.waves, levels.k, basis.reach)?;
+        let (bordered, c) = self.bordered::<T>(levels, level, basis.reach)?;
         let momenta = self.momenta(levels);
-        let c: Vec<Complex<f64>> = (0..n)
-            .map(|i| levels.vectors[(i, level)] * self.gauge(levels.waves[i]).conj())
-            .collect();
-        let energy = Complex::new(levels.energies[level], 0.0);
-        let zero = Complex::new(0.0, 0.0);
-        let bordered = Mat::<T>::from_fn(n + 1, n + 1, |i, j| {
-            T::from_complex(match (i < n, j < n) {
-                (true, true) => matrix[(i, j)].to_complex() - if i == j { energy } else { zero },
-                (true, false) => c[i],
-                (false, true) => c[j].conj(),
-                (false, false) => zero,
-            })
-        });
+        let n = c.len();
         // The border takes up the part of p c along c.
         let right = Mat::<T>::from_fn(n + 1, d, |i, x| {
-            T::from_complex(if i < n { -c[i] * momenta[i][x] } else { zero })
+            T::from_complex(if i < n { -c[i] * momenta[i][x] } else { zero() })
         });
         let solved = bordered.partial_piv_lu().solve(&right);
         let mut tensor = [[0.0; 3]; 3];
@@ -106,6 +93,36 @@ impl Waves<'_> {
             Err(Error::NotFinite)
         }
     }
+}
+
+impl Waves<'_> {
+    /// H − E bordered with c, and c, both in the gauge of the matrices; `reach` bounds the differences of the waves.
+    pub(super) fn bordered<T: Scalar>(
+        &self,
+        levels: &Levels,
+        level: usize,
+        reach: f64,
+    ) -> Result<(Mat<T>, Vec<Complex<f64>>), Error> {
+        let n = levels.waves.len();
+        let matrix = self.matrix::<T>(&levels.waves, levels.k, reach)?;
+        let c: Vec<Complex<f64>> = (0..n)
+            .map(|i| levels.vectors[(i, level)] * self.gauge(levels.waves[i]).conj())
+            .collect();
+        let energy = Complex::new(levels.energies[level], 0.0);
+        let bordered = Mat::<T>::from_fn(n + 1, n + 1, |i, j| {
+            T::from_complex(match (i < n, j < n) {
+                (true, true) => matrix[(i, j)].to_complex() - if i == j { energy } else { zero() },
+                (true, false) => c[i],
+                (false, true) => c[j].conj(),
+                (false, false) => zero(),
+            })
+        });
+        Ok((bordered, c))
+    }
+}
+
+fn zero() -> Complex<f64> {
+    Complex::new(0.0, 0.0)
 }
 
 /// Eigenvalues and vectors (rows) of the leading block of a symmetric tensor.

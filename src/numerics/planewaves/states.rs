@@ -81,8 +81,13 @@ impl Waves<'_> {
         bands: usize,
         errors: Vec<f64>,
     ) -> Result<States, Error> {
+        let states = States::cut(self.frame.dimension, &self.shares(mesh), energies, bands)?;
+        Ok(States { errors, ..states })
+    }
+
+    /// The simplices of a mesh by their irreducible points, sorted, and the share of the zone that each stands for.
+    pub(super) fn shares(&self, mesh: &Mesh) -> Vec<(Vec<usize>, f64)> {
         let corners = self.simplices(mesh);
-        let d = self.frame.dimension;
         let mut shares: FxHashMap<[usize; 4], f64> = FxHashMap::default();
         let total = (mesh.of.len() * corners.len()) as f64;
         for place in 0..mesh.of.len() {
@@ -96,30 +101,13 @@ impl Waves<'_> {
                 *shares.entry(points).or_default() += 1.0 / total;
             }
         }
-        let mut simplices = Vec::with_capacity(shares.len() * bands);
-        let mut range = (f64::INFINITY, f64::NEG_INFINITY);
         let mut ordered: Vec<([usize; 4], f64)> = shares.into_iter().collect();
         ordered.sort_by_key(|entry| entry.0);
-        for (points, share) in ordered {
-            for band in 0..bands {
-                let mut corner = [f64::INFINITY; 4];
-                for (slot, point) in corner.iter_mut().zip(&points[..=d]) {
-                    *slot = energies[*point]
-                        .get(band)
-                        .copied()
-                        .ok_or(Error::NotFinite)?;
-                    range = (range.0.min(*slot), range.1.max(*slot));
-                }
-                corner.sort_by(f64::total_cmp);
-                simplices.push((corner, share));
-            }
-        }
-        Ok(States {
-            dimension: self.frame.dimension,
-            simplices,
-            range,
-            errors,
-        })
+        let corners = self.frame.dimension + 1;
+        ordered
+            .into_iter()
+            .map(|(points, share)| (points[..corners].to_vec(), share))
+            .collect()
     }
 
     /// The corners, in steps of the mesh, of the simplices that fill a cell, cut along its shortest diagonal.
@@ -195,6 +183,32 @@ impl States {
             range,
             errors: Vec::new(),
         }
+    }
+
+    /// The lowest bands at the points of these simplices.
+    pub(super) fn cut(
+        dimension: usize,
+        shares: &[(Vec<usize>, f64)],
+        energies: &[Vec<f64>],
+        bands: usize,
+    ) -> Result<Self, Error> {
+        let mut simplices = Vec::with_capacity(shares.len() * bands);
+        let mut range = (f64::INFINITY, f64::NEG_INFINITY);
+        for (points, share) in shares {
+            for band in 0..bands {
+                let mut corner = [f64::INFINITY; 4];
+                for (slot, point) in corner.iter_mut().zip(points) {
+                    *slot = energies[*point]
+                        .get(band)
+                        .copied()
+                        .ok_or(Error::NotFinite)?;
+                    range = (range.0.min(*slot), range.1.max(*slot));
+                }
+                corner.sort_by(f64::total_cmp);
+                simplices.push((corner, *share));
+            }
+        }
+        Ok(Self::of(dimension, simplices, range))
     }
 
     /// States per cell below an energy, one a level.
@@ -359,6 +373,51 @@ fn density(e: &[f64], x: f64) -> f64 {
     }
 }
 
+/// How fast the share below an energy falls as each corner rises; the sum is the density.
+pub(super) fn pulls(e: &[f64], x: f64) -> [f64; 4] {
+    let d = e.len() - 1;
+    let mut pulls = [0.0; 4];
+    if x <= e[0] || x >= e[d] {
+        return pulls;
+    }
+    let ratio = |from: usize, to: usize| (x - e[from]) / (e[to] - e[from]);
+    // A factor (x − e_from)/(e_to − e_from), `rest` being what the share has by it.
+    let mut pull = |from: usize, to: usize, rest: f64| {
+        let gap = e[to] - e[from];
+        let r = ratio(from, to);
+        pulls[from] += rest * (1.0 - r) / gap;
+        pulls[to] += rest * r / gap;
+    };
+    // A product of factors from one corner to the others.
+    let mut product = |from: usize, to: &[usize], sign: f64| {
+        for one in to {
+            let others = to.iter().filter(|other| *other != one);
+            pull(
+                from,
+                *one,
+                sign * others.map(|other| ratio(from, *other)).product::<f64>(),
+            );
+        }
+    };
+    match (d, e.iter().filter(|corner| **corner <= x).count()) {
+        (1, _) => product(0, &[1], 1.0),
+        (2, 1) => product(0, &[1, 2], 1.0),
+        (2, _) => product(2, &[0, 1], -1.0),
+        (_, 1) => product(0, &[1, 2, 3], 1.0),
+        (_, 2) => {
+            // ab + (1 − a)bc + (1 − b)cf as in the share.
+            let (a, b) = (ratio(0, 2), ratio(0, 3));
+            let (c, f) = (ratio(1, 2), ratio(1, 3));
+            pull(0, 2, b - b * c);
+            pull(0, 3, a + (1.0 - a) * c - c * f);
+            pull(1, 2, (1.0 - a) * b + (1.0 - b) * f);
+            pull(1, 3, (1.0 - b) * c);
+        }
+        _ => product(3, &[0, 1, 2], -1.0),
+    }
+    pulls
+}
+
 /// ∫ of the number up to an energy: polynomials of degree d + 1 between the corners, by Gauss–Legendre with three
 /// points, exact to degree five.
 fn integral(e: &[f64], x: f64) -> f64 {
@@ -420,6 +479,17 @@ mod tests {
                 );
                 let slope = (number(&corner, x + 1e-5) - number(&corner, x - 1e-5)) / 2e-5;
                 assert!((density(&corner, x) - slope).abs() < 1e-6, "{d}D {x}");
+                let pulled = pulls(&corner, x);
+                assert!((pulled.iter().sum::<f64>() - density(&corner, x)).abs() < 1e-12);
+                for (i, pull) in pulled.iter().take(d + 1).enumerate() {
+                    let moved = |step: f64| {
+                        let mut corner = corner.clone();
+                        corner[i] += step;
+                        number(&corner, x)
+                    };
+                    let fall = (moved(-1e-5) - moved(1e-5)) / 2e-5;
+                    assert!((pull - fall).abs() < 1e-6, "{d}D {x} {i}");
+                }
                 let area = (integral(&corner, x + 1e-4) - integral(&corner, x - 1e-4)) / 2e-4;
                 assert!((number(&corner, x) - area).abs() < 1e-6);
             }

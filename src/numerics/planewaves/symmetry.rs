@@ -26,6 +26,9 @@ const SAME: f64 = 1e-10;
 pub(super) struct Symmetry {
     /// Rotations with E(Mk) = E(k), k → −k included; the first is the identity.
     pub operations: Vec<Rotation>,
+    /// For each of them what it does in space: itself, or its negative where it is that only with time reversed, and the
+    /// shift.
+    pub in_space: Vec<(Rotation, [f64; 3])>,
     /// A centre of inversion, in fractions of the primitive vectors.
     pub inversion: Option<[f64; 3]>,
 }
@@ -51,10 +54,14 @@ pub(super) fn find_symmetry(frame: &Frame, sample: &[([i32; 3], Complex<f64>)]) 
     let components = Components::new(sample);
     let identity = identity(frame.dimension);
     let mut operations = vec![identity, negated(&identity)];
+    let mut in_space = vec![(identity, [0.0; 3]); 2];
     for m in lattice_rotations(frame) {
-        if !operations.contains(&m) && components.shift(&m).is_some() {
-            operations.push(m);
-            operations.push(negated(&m));
+        if operations.contains(&m) {
+            continue;
+        }
+        if let Some(shift) = components.shift(&m) {
+            operations.extend([m, negated(&m)]);
+            in_space.extend([(m, shift); 2]);
         }
     }
     let inversion = components
@@ -62,6 +69,7 @@ pub(super) fn find_symmetry(frame: &Frame, sample: &[([i32; 3], Complex<f64>)]) 
         .map(|t| t.map(|x| 0.5 * x));
     Symmetry {
         operations,
+        in_space,
         inversion,
     }
 }
