@@ -460,3 +460,22 @@ fn of_a_very_long_line_only_what_is_near_the_finding_is_shown() {
     let mark = lines[line + 1].chars().position(|c| c == '─');
     assert_eq!(at, mark, "{told}");
 }
+
+#[test]
+fn a_star_is_offered_only_where_the_statement_has_one() {
+    let folder = Folder::new();
+    for (wave, offered) in [
+        ("cosine (1, 0) = 1 meV", true),
+        ("cosine (1, 0) = 1 meV phase 30 deg", false),
+        ("fourier (1, 0) = 1 meV\n  fourier (-1, 0) = 1 meV", false),
+    ] {
+        let text = format!("crystal a\n  mass 0.1 me\n  lattice square 5 nm\n  {wave}\n");
+        folder.write("a.cren", &text);
+        let told = stdout(&run(&folder, &["lint", "a.cren"]));
+        assert!(
+            told.contains("the lattice makes it equal to (0, 1)"),
+            "{told}"
+        );
+        assert_eq!(told.contains("`star` writes them all"), offered, "{told}");
+    }
+}
