@@ -488,3 +488,21 @@ fn what_does_not_settle_is_said_so() {
         "{found:?}"
     );
 }
+
+/// Where a weak potential folds free particles back, bands have creases along the faces of the zone, and their tops lie
+/// at its corners: no level may lie above the top, wherever it is.
+#[test]
+fn a_top_at_a_corner_of_the_zone_is_found_along_the_crease() {
+    let bench = Bench::new(
+        "crystal slab\n  lattice oblique 7 nm by 6.8 nm angle 85 deg\n  cosine (1, 0) = -0.2 meV\n  \
+         cosine (2, -1) = -0.1 meV\n  measure l = level 1 at (0.4615, 0.5355)\n",
+    );
+    let (top, level) = (bench.solve(0), value(&bench, 0, "l"));
+    let top = &top.bands[0].top.energy;
+    assert!(
+        top.value + top.uncertainty + level.uncertainty >= level.value,
+        "{} meV at the top, {} meV elsewhere",
+        top.value / EV * 1e3,
+        level.value / EV * 1e3
+    );
+}

@@ -425,3 +425,57 @@ fn a_slip_in_a_named_value_is_said_once_where_it_stands() {
         assert_eq!(findings[0]["related"].as_array().unwrap().len(), 2);
     }
 }
+
+#[test]
+fn of_a_very_long_line_only_what_is_near_the_finding_is_shown() {
+    let folder = Folder::new();
+    let sum = vec!["1 nm"; 3000].join(" + ");
+    let text = format!(
+        "let a = {sum}\nlet b = 7 nm + {}3 mn + {}\n",
+        "0 nm + ".repeat(60),
+        "0 nm + ".repeat(60) + "1 nm"
+    );
+    folder.write("long.cren", &text);
+    let output = run(&folder, &["lint", "long.cren"]);
+    let told = stdout(&output);
+    assert_eq!(output.status.code(), Some(1), "{told}");
+    assert!(
+        told.contains("long.cren:1:9 error unreadable-line"),
+        "{told}"
+    );
+    assert!(told.contains("too long, or nests too deep"), "{told}");
+    assert!(told.contains("unknown-unit"), "{told}");
+    assert!(
+        told.chars().count() < 3000,
+        "{} characters",
+        told.chars().count()
+    );
+    // The mark still stands under the word.
+    let lines: Vec<&str> = told.lines().collect();
+    let line = lines.iter().position(|line| line.contains("3 mn")).unwrap();
+    let at = lines[line].chars().position(|c| c == 'm').map(|_| {
+        let byte = lines[line].find("mn").unwrap();
+        lines[line][..byte].chars().count()
+    });
+    let mark = lines[line + 1].chars().position(|c| c == '─');
+    assert_eq!(at, mark, "{told}");
+}
+
+#[test]
+fn a_star_is_offered_only_where_the_statement_has_one() {
+    let folder = Folder::new();
+    for (wave, offered) in [
+        ("cosine (1, 0) = 1 meV", true),
+        ("cosine (1, 0) = 1 meV phase 30 deg", false),
+        ("fourier (1, 0) = 1 meV\n  fourier (-1, 0) = 1 meV", false),
+    ] {
+        let text = format!("crystal a\n  mass 0.1 me\n  lattice square 5 nm\n  {wave}\n");
+        folder.write("a.cren", &text);
+        let told = stdout(&run(&folder, &["lint", "a.cren"]));
+        assert!(
+            told.contains("the lattice makes it equal to (0, 1)"),
+            "{told}"
+        );
+        assert_eq!(told.contains("`star` writes them all"), offered, "{told}");
+    }
+}

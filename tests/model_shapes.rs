@@ -309,3 +309,26 @@ fn pieces_may_start_anywhere() {
     assert_close(crystal.potential_at(3.5e-9), 5.0 * MEV, 1e-12);
     assert_close(crystal.potential_at(2.5e-9), 5.0 * MEV, 1e-12);
 }
+
+/// The reference page places a delta at `period/2` and a box at `period - 1 nm`.
+#[test]
+fn the_period_may_place_sites_and_deltas() {
+    let layers = "  layer 3 nm at 0 meV\n  layer 5 nm at 90 meV ± 1 meV\n";
+    for cell in ["  lattice chain 8 nm\n", layers] {
+        let text = format!(
+            "crystal a\n{cell}  delta 0.2 eV*nm at period/2\n  \
+             site box 30 meV size period/4 at period - 1 nm\n"
+        );
+        let built = Desk::new(&text).crystal("a");
+        assert!(built.troubles.is_empty(), "{:?}", built.troubles);
+        let potential = built.crystal.potential;
+        assert_close(potential.deltas[0].at.value, 4e-9, 1e-14);
+        assert_close(potential.sites[0].at[0].value, 7e-9, 1e-14);
+        let SiteShape::Box(sizes) = &potential.sites[0].shape else {
+            panic!("a box");
+        };
+        assert_close(sizes[0].value, 2e-9, 1e-14);
+    }
+    let square = "crystal a\n  lattice square 5 nm\n  site disk 1 meV radius period/4 at (0, 0)\n";
+    assert_eq!(Desk::new(square).crystal("a").troubles.len(), 1);
+}

@@ -125,3 +125,32 @@ fn a_keystroke_is_answered_at_once() {
     // Far above what is measured in a release build, as a loaded machine and a debug build take their share.
     assert!(cheap[100].as_millis() < 100, "{:?}", cheap[100]);
 }
+
+/// Four times the layers take about four times as long, not sixteen.
+#[test]
+fn many_layers_are_looked_over_one_by_one() {
+    let layers = |count: usize| {
+        let mut text = "crystal tall\n  mass      0.1 me\n".to_owned();
+        for number in 0..count {
+            text += &format!(
+                "  layer     {}.{number} nm at {} meV\n",
+                1 + number % 7,
+                1 + number % 13
+            );
+        }
+        text
+    };
+    let time = |count: usize| {
+        let text = layers(count);
+        let once = || {
+            let start = Instant::now();
+            let analysis = analyse(&Analyst::default(), &Buffer::of(&text), Tier::Model);
+            assert_eq!(analysis.files.len(), 1);
+            start.elapsed().as_secs_f64()
+        };
+        (0..3).map(|_| once()).fold(f64::INFINITY, f64::min)
+    };
+    let (few, many) = (time(4_000), time(16_000));
+    println!("4,000 layers {few:.3} s, 16,000 layers {many:.3} s");
+    assert!(many < 9.0 * few, "{few} s, then {many} s");
+}

@@ -1,6 +1,7 @@
 //! Findings for people: a header with line and column, the message, the lines it is about.
 
 use std::fmt;
+use std::ops::Range;
 use std::sync::Arc;
 
 use miette::{
@@ -158,6 +159,12 @@ fn footer(locator: &Locator<'_>, finding: &Finding, paint: Paint) -> String {
     text
 }
 
+/// Lines longer than this, in bytes, are shown in part.
+const LONGEST: usize = 400;
+/// How much of them is shown on either side of what is found, and how much of that at most.
+const AROUND: usize = 60;
+const WIDEST: usize = 200;
+
 /// A finding as miette wants it.
 struct Shown<'a> {
     finding: &'a Finding,
@@ -177,7 +184,13 @@ impl<'a> Shown<'a> {
                 continue;
             }
             let span = locator.analysis().absolute(place);
-            if let Some(span) = span.and_then(|(_, span)| snippet.visible(span)) {
+            let near = |span: &SourceSpan| {
+                labels
+                    .first()
+                    .is_some_and(|first: &LabeledSpan| snippet.together(*first.inner(), *span))
+            };
+            let span = span.and_then(|(_, span)| snippet.visible(span));
+            if let Some(span) = span.filter(near) {
                 labels.push(LabeledSpan::new_with_span(Some(what.clone()), span));
             }
         }
@@ -265,6 +278,7 @@ impl Snippet {
         let length = self.shown.len();
         let start = self.boundary((span.start as usize).min(length));
         let end = self.boundary((span.end as usize).min(length)).max(start);
+        let end = end.min(self.boundary((start + WIDEST).min(length)));
         let marked = self.shown.get(start..end)?.trim_end().len();
         if marked > 0 {
             return Some((start, marked).into());
@@ -282,6 +296,26 @@ impl Snippet {
             Some(last) => Some((line.start + content - last.len_utf8(), last.len_utf8()).into()),
             None => (line.start < length).then(|| (line.start, 0).into()),
         }
+    }
+
+    /// What is shown of the lines around a span: of a very long line, a stretch about the span.
+    fn window(&self, first: Range<usize>, last: Range<usize>, span: Range<usize>) -> Range<usize> {
+        let mut shown = first.start..last.end;
+        if first.len() > LONGEST {
+            shown.start = self.boundary(span.start.saturating_sub(AROUND).max(first.start));
+        }
+        if last.len() > LONGEST {
+            shown.end = self.boundary((span.end + AROUND).min(last.end));
+        }
+        shown
+    }
+
+    /// Whether two spans can be shown in one picture: not at the ends of a very long line.
+    fn together(&self, one: SourceSpan, other: SourceSpan) -> bool {
+        let start = one.offset().min(other.offset());
+        let end = (one.offset() + one.len()).max(other.offset() + other.len());
+        let of = |byte: usize| self.lines.line_of(u32::try_from(byte).unwrap_or(u32::MAX));
+        end - start <= LONGEST || of(one.offset()) != of(other.offset())
     }
 
     fn boundary(&self, byte: usize) -> usize {
@@ -306,7 +340,9 @@ impl SourceCode for Snippet {
         let first = line_of(span.offset()).saturating_sub(before);
         let end = span.offset() + span.len().max(1) - 1;
         let last = (line_of(end) + after).min(self.lines.last());
-        let bytes = self.lines.range(first).start..self.lines.range(last).end;
+        let (top, bottom) = (self.lines.range(first), self.lines.range(last));
+        let spanned = span.offset()..span.offset() + span.len();
+        let bytes = self.window(top, bottom, spanned);
         let data = self
             .shown
             .get(bytes.clone())

@@ -110,11 +110,21 @@ fn finding(
     Some(
         Finding::new(&RULE, place, message)
             .help(format!(
-                "the lattice makes it equal to {}{more}; `star` writes them all",
-                some.join(", ")
+                "the lattice makes it equal to {}{more}{}",
+                some.join(", "),
+                if takes_star(wave) {
+                    "; `star` writes them all"
+                } else {
+                    ""
+                }
             ))
             .fix(if alone { fix(subject, wave) } else { None }),
     )
+}
+
+/// Whether the statement has a form with `star`, which takes no phase.
+fn takes_star(wave: &Wave) -> bool {
+    wave.kind != WaveKind::Fourier && wave.phase.value == 0.0
 }
 
 /// The one of ±G whose first index that is not zero is positive.

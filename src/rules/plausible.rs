@@ -5,7 +5,7 @@
 use crate::model::constants::{ATOMIC_MASS, ELECTRON_MASS, ELECTRONVOLT as EV, PLANCK};
 
 /// What a quantity is.
-#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Hash)]
 pub enum Kind {
     /// The mass of the carrier.
     Mass,

@@ -1,5 +1,7 @@
 //! The quantities that a section states, each with the number in the text that it comes from.
 
+use rustc_hash::FxHashSet;
+
 use super::Subject;
 use super::plausible::{Kind, Setting, THINNEST};
 use crate::model::{
@@ -89,6 +91,8 @@ struct Collector<'s, 'a> {
     subject: &'s Subject<'a>,
     parameters: &'s [Parameter],
     found: Vec<Stated>,
+    /// What is in `found`: a crystal may have twenty thousand layers.
+    known: FxHashSet<(Place, Kind)>,
 }
 
 impl Collector<'_, '_> {
@@ -101,8 +105,7 @@ impl Collector<'_, '_> {
         let Some(place) = own.or(self.subject.holds(statement).then_some(statement)) else {
             return;
         };
-        let known = |stated: &Stated| stated.place == place && stated.kind == kind;
-        if !self.found.iter().any(known) {
+        if self.known.insert((place, kind)) {
             self.found.push(Stated {
                 kind,
                 value: dual.value,
@@ -147,6 +150,7 @@ fn of_material(subject: &Subject<'_>) -> Vec<Stated> {
         subject,
         parameters: &material.parameters,
         found: Vec::new(),
+        known: FxHashSet::default(),
     };
     let fields = [
         (Kind::Mass, &material.mass),
@@ -168,6 +172,7 @@ fn of_crystal(subject: &Subject<'_>, crystal: &Crystal) -> Vec<Stated> {
         subject,
         parameters: &crystal.parameters,
         found: Vec::new(),
+        known: FxHashSet::default(),
     };
     scales(&mut collector, crystal);
     cell(&mut collector, crystal);

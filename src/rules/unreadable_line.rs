@@ -73,7 +73,7 @@ fn finding(subject: &Subject<'_>, problem: &Problem) -> Option<Finding> {
                 .fix(Fix::safe("take the `\\` away", Replacement::new(place, ""))),
         ),
         ProblemKind::TooDeep => Some(
-            of("brackets are nested too deep to be read".to_owned())
+            of("this is too long, or nests too deep, to be read".to_owned())
                 .help("name parts of the expression with `let`"),
         ),
         _ => None,

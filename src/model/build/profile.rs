@@ -41,8 +41,7 @@ impl<'w> CrystalBuild<'_, 'w> {
         let period = self.one_period();
         let context = Context {
             variables: Variables::Position(self.crystal.dimension.max(1)),
-            period: period.as_ref(),
-            ..self.context(taken)
+            ..self.context(taken).within(period.as_ref())
         };
         let in_chain =
             range.is_none() || self.allowed(taken, &[1], "a lattice of one dimension for pieces");

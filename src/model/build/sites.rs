@@ -16,7 +16,8 @@ impl<'w> CrystalBuild<'_, 'w> {
             if !self.allowed(taken, &[1], "a lattice of one dimension") {
                 continue;
             }
-            let context = self.context(taken);
+            let period = self.one_period();
+            let context = self.context(taken).within(period.as_ref());
             let strength = self
                 .evaluator
                 .quantity_of(strength, Dimension::ENERGY_LENGTH, &context);
@@ -44,7 +45,8 @@ impl<'w> CrystalBuild<'_, 'w> {
             if !self.allowed(taken, dimensions, needs) {
                 continue;
             }
-            let context = self.context(taken);
+            let period = self.one_period();
+            let context = self.context(taken).within(period.as_ref());
             let energy = self
                 .evaluator
                 .quantity_of(energy, Dimension::ENERGY, &context);

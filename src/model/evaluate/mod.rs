@@ -154,6 +154,11 @@ impl<'c, 'w> Context<'c, 'w> {
         }
     }
 
+    /// With `period` in sight, where the cell has one.
+    pub(crate) fn within(self, period: Option<&'c Dual>) -> Self {
+        Self { period, ..self }
+    }
+
     pub(crate) fn place(&self, span: Span) -> Place {
         self.spot.place(span)
     }

@@ -171,9 +171,12 @@ impl<'w> Evaluator<'w> {
 }
 
 fn is_variable(name: &str, context: &Context<'_, '_>) -> bool {
+    if name == "period" && context.period.is_some() {
+        return true;
+    }
     match context.variables {
         super::Variables::None => false,
-        super::Variables::Position(_) => matches!(name, "x" | "y" | "z" | "period"),
+        super::Variables::Position(_) => matches!(name, "x" | "y" | "z"),
         super::Variables::Magnitude => name == "q",
     }
 }

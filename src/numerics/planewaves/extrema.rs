@@ -9,6 +9,7 @@
 //! Failure mode: an extremum whose basin lies wholly between mesh points is not seen.
 
 use super::basis::Waves;
+use super::lattice::dot;
 use super::levels::Basis;
 use super::mesh::Mesh;
 use super::slopes::{Tensor, principal};
@@ -274,18 +275,20 @@ impl Search<'_, '_> {
         if !self.waves.symmetry.singles_out(start) {
             return self.crease(start);
         }
-        let directions = self.directions(start);
+        let mut directions = self.directions(start);
+        directions.extend(self.along_creases(start)?);
         for step in [0.5, 0.125, 0.031_25, 0.007_812_5] {
-            let mut best = (value - floor, None);
+            let mut lower: Vec<(f64, [f64; 3])> = Vec::new();
             for direction in &directions {
                 let next = std::array::from_fn(|i| start[i] + step * direction[i]);
                 let found = self.target.value(&self.solve(next, false)?.energies);
-                if found < best.0 {
-                    best = (found, Some(next));
+                if found < value - floor {
+                    lower.push((found, next));
                 }
             }
-            if let Some(lower) = best.1 {
-                return self.crease(lower);
+            lower.sort_by(|a, b| a.0.total_cmp(&b.0));
+            if let Some(spot) = self.lowest_crease(&lower)? {
+                return Ok(spot);
             }
         }
         Ok(Spot {
@@ -293,6 +296,64 @@ impl Search<'_, '_> {
             value,
             seat: Seat::Pinned,
         })
+    }
+
+    /// The lowest of the extrema that the best few starts lead to: several creases may leave one point.
+    fn lowest_crease(&self, starts: &[(f64, [f64; 3])]) -> Result<Option<Spot>, Error> {
+        let mut best: Option<Spot> = None;
+        for (_, start) in starts.iter().take(3) {
+            let spot = self.crease(*start)?;
+            if best.is_none_or(|other| spot.value < other.value) {
+                best = Some(spot);
+            }
+        }
+        Ok(best)
+    }
+
+    /// Steps along which levels that cross here stay together: a crease is too narrow for other directions to lie on it.
+    fn along_creases(&self, k: [f64; 3]) -> Result<Vec<[f64; 3]>, Error> {
+        let levels = self.solve(k, true)?;
+        let frame = &self.waves.frame;
+        let near = 10.0 * APART * self.unit();
+        let mut steps = Vec::new();
+        for (level, _) in self.target.levels() {
+            let joined =
+                |other: &usize| (levels.energies[*other] - levels.energies[level]).abs() < near;
+            let group: Vec<usize> = (0..levels.energies.len()).filter(joined).collect();
+            let (Some(first), Some(last)) = (group.first(), group.last()) else {
+                continue;
+            };
+            let axes = principal(
+                &self.waves.parting(&levels, *first..*last + 1),
+                frame.dimension,
+            );
+            let flat: Vec<[f64; 3]> = axes
+                .into_iter()
+                .filter(|(parted, _)| *parted < 1e-8 * self.unit())
+                .map(|(_, axis)| axis)
+                .collect();
+            let limit = (0..frame.dimension)
+                .map(|i| self.spacing[i] * dot(frame.reciprocal[i], frame.reciprocal[i]).sqrt())
+                .fold(0.0, f64::max);
+            match flat.as_slice() {
+                [along] => {
+                    steps.extend([1.0, -1.0].map(|sign| along.map(|x| sign * limit * x)));
+                }
+                [one, other] => {
+                    // A plane of them: a few ways in it.
+                    steps.extend((0..12).map(|turn| {
+                        let (sine, cosine) =
+                            (f64::from(turn) * std::f64::consts::PI / 6.0).sin_cos();
+                        std::array::from_fn(|x| limit * (cosine * one[x] + sine * other[x]))
+                    }));
+                }
+                _ => {}
+            }
+        }
+        Ok(steps
+            .into_iter()
+            .map(|parts| frame.off_axes(parts))
+            .collect())
     }
 
     /// Steps to all neighbours in the mesh, one of each set that symmetry makes equal.

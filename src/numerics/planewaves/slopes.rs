@@ -45,6 +45,45 @@ impl Waves<'_> {
         sum
     }
 
+    /// How fast levels that cross at this point part: Σ over their pairs of Re vₓ v_y*, with v = ⟨a|p|b⟩ less its mean
+    /// over the diagonal. Where it vanishes along a direction they stay together, to first order.
+    pub(super) fn parting(&self, levels: &Levels, group: std::ops::Range<usize>) -> Tensor {
+        let momenta = self.momenta(levels);
+        let pairs = |a: usize, b: usize| -> [Complex<f64>; 3] {
+            let mut sum = [Complex::new(0.0, 0.0); 3];
+            for (i, p) in momenta.iter().enumerate() {
+                let weight = levels.vectors[(i, a)].conj() * levels.vectors[(i, b)];
+                for x in 0..3 {
+                    sum[x] += weight * p[x];
+                }
+            }
+            sum
+        };
+        let size = group.len().max(1) as f64;
+        let mut mean = [Complex::new(0.0, 0.0); 3];
+        for a in group.clone() {
+            let own = pairs(a, a);
+            for x in 0..3 {
+                mean[x] += own[x] / size;
+            }
+        }
+        let mut tensor = [[0.0; 3]; 3];
+        for a in group.clone() {
+            for b in group.clone() {
+                let mut v = pairs(a, b);
+                if a == b {
+                    v = std::array::from_fn(|x| v[x] - mean[x]);
+                }
+                for x in 0..3 {
+                    for y in 0..3 {
+                        tensor[x][y] += (v[x] * v[y].conj()).re;
+                    }
+                }
+            }
+        }
+        tensor
+    }
+
     /// d²E/dk² of one level.
     pub(super) fn curvature(
         &self,
