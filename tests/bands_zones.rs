@@ -489,6 +489,21 @@ fn what_does_not_settle_is_said_so() {
     );
 }
 
+/// A crease may be longer than a step of the mesh: the search goes on along it. 9.625885851 meV at (0.55765, −0.27884) by a
+/// simplex search on 225 plane waves (numpy, scipy).
+#[test]
+fn a_top_far_along_a_crease_is_found() {
+    let bench = Bench::new(
+        "crystal comb\n  lattice hexagonal 5 nm\n  fourier (0, 1) = 20 meV\n  fourier (0, -1) = 20 meV\n  \
+         cosine (2, 0) = -1 meV\n",
+    );
+    let solution = bench.solve(0);
+    let top = &solution.bands[0].top;
+    let error = (top.energy.value / EV - 9.625_885_851e-3).abs();
+    assert!(error < 1e-11 + top.energy.uncertainty / EV, "{top:?}");
+    assert!((top.k[1].abs() - 0.278_84).abs() < 1e-4, "{top:?}");
+}
+
 /// Where a weak potential folds free particles back, bands have creases along the faces of the zone, and their tops lie
 /// at its corners: no level may lie above the top, wherever it is.
 #[test]

@@ -9,19 +9,21 @@
 //! ```
 //!
 //! (Kiwiel, Math. Program. 46, 105 (1990)). It is taken where `f` falls as promised; else its planes improve the model.
-//! With ε = Σ wᵢ αᵢ the least lies within ε + |G|²/(2µ) where f grows by ½ µ |k − c|² along the crease; µ = ½ is assumed (a
-//! free particle has 2). Pieces that bend down spoil the planes: their α is kept above a part of the distance's square.
+//! With ε = Σ wᵢ αᵢ the least lies within ε + |G|²/(2µ) where f grows by ½ µ |k − c|² along the crease; µ = 1/20 is assumed
+//! (a free particle has 2). Pieces that bend down spoil the planes: their α is kept above a part of the distance's square.
 
 use super::Error;
-use super::extrema::{Kind, Search, Seat, Spot};
+use super::extrema::{Kind, Search, Seat, Spot, WANDERING};
 use super::lattice::{add, dot};
 
 /// Solves in one search.
-const EVALUATIONS: usize = 70;
+const EVALUATIONS: usize = 100;
 /// Planes kept.
 const PLANES: usize = 48;
 /// Levels this near, in the natural unit, may take over.
 const NEAR: f64 = 0.05;
+/// How f is assumed to bend along a crease at the least, the µ above.
+const LEAST_BEND: f64 = 0.05;
 /// α is at least this much of the square of the distance.
 const BENT: f64 = 0.05;
 /// What is left, in the natural unit, when the search ends.
@@ -57,7 +59,7 @@ impl Search<'_, '_> {
         for _ in 0..EVALUATIONS {
             let (slope, gap) = combined(&planes, centre, value, t);
             let square = dot(slope, slope);
-            left = gap + square;
+            left = gap + square / (2.0 * LEAST_BEND);
             let length = t * square.sqrt();
             if left <= LEFT * unit || length <= 1e-12 * stride {
                 break;
@@ -66,6 +68,7 @@ impl Search<'_, '_> {
             let promised = share * (t * square + gap);
             let next: [f64; 3] = std::array::from_fn(|x| centre[x] - share * t * slope[x]);
             if self.drifted(place(next)) {
+                left = left.max(WANDERING * unit);
                 break;
             }
             let found = self.planes_at(place(next), next, &mut planes)?;

@@ -96,6 +96,11 @@ pub(super) fn distance(energies: &[f64], level: usize) -> f64 {
     })
 }
 
+/// What may be left to go, in the natural unit, where a search went on and on.
+pub(super) const WANDERING: f64 = 1e-2;
+/// A search that ends this many steps of the mesh from its basis's centre goes on from there: one step of its own may be
+/// half as long.
+const FAR: f64 = 0.9;
 /// Levels closer than this share of the natural unit are searched as crossings.
 const APART: f64 = 1e-5;
 /// Differences below this share of the natural unit are rounding.
@@ -154,7 +159,7 @@ impl Search<'_, '_> {
         let mut k = start;
         // A crossing may lie on the way, or the way may lead off this basis, so searches take turns, a few times.
         for _ in 0..8 {
-            if search.drifted(k) {
+            if search.strayed(k, FAR) {
                 search.basis = self.waves.basis(k, self.cut);
                 search.centre = k;
                 // Levels of another basis are not to be compared.
@@ -184,13 +189,14 @@ impl Search<'_, '_> {
             let done = spot.seat == Seat::Pinned || !search.simple(&ends);
             let stuck = last.is_some_and(|last| spot.value >= last.value - ROUNDING * self.unit());
             last = Some(spot);
-            if (done || stuck) && !search.drifted(spot.k) {
+            // A search over creases ends where its next step would leave the basis: it may not be there yet.
+            if (done || stuck) && !search.strayed(spot.k, FAR) {
                 return Ok(spot);
             }
             k = spot.k;
         }
         // It went on and on: what is left to go is not known.
-        let wandering = Seat::Creased(1e-2 * self.unit());
+        let wandering = Seat::Creased(WANDERING * self.unit());
         let value = self.target.value(&search.solve(k, false)?.energies);
         Ok(Spot {
             k,
@@ -205,7 +211,12 @@ impl Search<'_, '_> {
 
     /// Whether a wave vector is farther from the basis's centre than a step of the mesh and a half.
     pub(super) fn drifted(&self, k: [f64; 3]) -> bool {
-        (0..3).any(|i| (k[i] - self.centre[i]).abs() > 1.5 * self.spacing[i] + 1e-12)
+        self.strayed(k, 1.5)
+    }
+
+    /// The same for so many steps.
+    fn strayed(&self, k: [f64; 3], steps: f64) -> bool {
+        (0..3).any(|i| (k[i] - self.centre[i]).abs() > steps * self.spacing[i] + 1e-12)
     }
 
     /// Newton's search; the inner error is where it met a crossing, left the basis, or did not settle.
@@ -327,9 +338,14 @@ impl Search<'_, '_> {
                 &self.waves.parting(&levels, *first..*last + 1),
                 frame.dimension,
             );
+            let most = axes.iter().map(|(parted, _)| *parted).fold(0.0, f64::max);
+            // Levels that part nowhere, as in deep wells, have no crease.
+            if most < 1e-8 * self.unit() {
+                continue;
+            }
             let flat: Vec<[f64; 3]> = axes
                 .into_iter()
-                .filter(|(parted, _)| *parted < 1e-8 * self.unit())
+                .filter(|(parted, _)| *parted < (1e-8 * self.unit()).min(1e-3 * most))
                 .map(|(_, axis)| axis)
                 .collect();
             let limit = (0..frame.dimension)
