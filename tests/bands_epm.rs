@@ -209,3 +209,22 @@ fn a_silicon_like_solid_has_its_indirect_gap() {
     let fermi = found.fermi.unwrap().value;
     assert!(found.bands[3].top.energy.value < fermi);
 }
+
+/// Eight free levels meet at the corner of a cubic zone, and atoms of no symmetry part them into basins narrower than the
+/// search's mesh: 21.540258702 meV at (0.498541, 0.500764, 0.529944) by a simplex search from the best points of a mesh of
+/// 12³ (251 plane waves, numpy and scipy).
+#[test]
+fn a_narrow_basin_beside_a_corner_is_found() {
+    let bench = Bench::new(
+        "crystal crowd\n  lattice cubic 128.20339373651774 bohr\n  bands 6\n  atom A at (0.261, 0.382, 0.202)\n  \
+         atom B at (0, 0.5, 0.25)\n  atom A at (0.513, 0.371, 0.627)\n  \
+         formfactor A curve = -4814.062991785267 ueV*exp(-(q*1.4743098628059656 nm)^2) \
+         - 1.4388483851079073 meV*sech(1.3*q*1.4743098628059658 nm)*exp(-(q*1.4743098628059656 nm)^2)\n  \
+         formfactor B curve = 2.9459356843391574e-5 Ry*exp(-(q*1.1173207102730396 nm)^2) \
+         + 5.343457523179299e-22 J*sech(1.3*q*1.1173207102730396 nm)*exp(-(q*1.1173207102730396 nm)^2)\n",
+    );
+    let solution = bench.solve(0);
+    let bottom = &solution.bands[4].bottom.energy;
+    let error = (bottom.value / EV - 21.540_258_702e-3).abs();
+    assert!(error < 1e-11 + bottom.uncertainty / EV, "{bottom:?}");
+}

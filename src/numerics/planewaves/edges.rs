@@ -26,6 +26,8 @@ pub(super) struct Found {
 const LARGEST_FOR_MASSES: usize = 450;
 /// Creases are searched anew on bases up to this size.
 const LARGEST_FOR_CREASES: usize = 260;
+/// Levels this near, in the natural unit, may part into narrow basins.
+const CROWDED: f64 = 0.05;
 
 impl Waves<'_> {
     /// Searches for one extremum and settles it.
@@ -64,10 +66,15 @@ impl Waves<'_> {
         let spacing = plan.spacing(self.frame.dimension);
         let mut spots: Vec<Spot> = Vec::new();
         let most = if plan.tolerance.is_some() { 6 } else { 3 };
-        for (point, _, floor) in starts(&plan.mesh, energies, target, 1e-11 * unit)
+        let mut from: Vec<([f64; 3], f64)> = starts(&plan.mesh, energies, target, 1e-11 * unit)
             .into_iter()
             .take(most)
-        {
+            .map(|(point, _, floor)| (plan.mesh.points[point], floor))
+            .collect();
+        if plan.tolerance.is_some() {
+            from.extend(self.beside_crossings(target, plan, energies, budget)?);
+        }
+        for (start, floor) in from {
             let best = spots
                 .iter()
                 .map(|spot| spot.value)
@@ -75,7 +82,6 @@ impl Waves<'_> {
             if floor > best + 1e-3 * unit {
                 continue;
             }
-            let start = plan.mesh.points[point];
             let search = Search {
                 waves: self,
                 target,
@@ -102,6 +108,46 @@ impl Waves<'_> {
         spots.retain(|spot| spot.value <= best + margin);
         spots.truncate(3);
         Ok(spots)
+    }
+
+    /// Starts beside the lowest points of the mesh at which several levels come together: weak potentials part them into
+    /// basins narrower than a step of the mesh.
+    fn beside_crossings(
+        &self,
+        target: Target,
+        plan: &Plan,
+        energies: &[Vec<f64>],
+        budget: &Budget,
+    ) -> Result<Vec<([f64; 3], f64)>, Error> {
+        let d = self.frame.dimension;
+        let unit = self.frame.unit();
+        // Where the crystal has more symmetry, such points are singled out by it, and the basins lie on its axes.
+        if d < 3 || target.kind == Kind::Separation || self.operations() > 2 {
+            return Ok(Vec::new());
+        }
+        let value = |point: &usize| target.value(&energies[*point]);
+        let crowded = |point: &usize| {
+            let here = energies[*point][target.band];
+            let near = |level: &&f64| (**level - here).abs() < CROWDED * unit;
+            energies[*point].iter().filter(near).count() > 2
+        };
+        let mut points: Vec<usize> = (0..plan.mesh.points.len()).collect();
+        points.sort_by(|a, b| value(a).total_cmp(&value(b)));
+        let spacing = plan.spacing(d);
+        let mut found: Vec<([f64; 3], f64)> = Vec::new();
+        for point in points.into_iter().take(2).filter(crowded) {
+            let centre = plan.mesh.points[point];
+            let basis = self.basis(centre, plan.cut);
+            let steps = (0..27).map(|at| [at % 3, at / 3 % 3, at / 9].map(|x| f64::from(x) - 1.0));
+            for step in steps.filter(|step| step.iter().any(|x| *x != 0.0)) {
+                let k = std::array::from_fn(|i| centre[i] + 0.36 * spacing[i] * step[i]);
+                let levels = self.solve_on(&basis, k, plan.count, false, budget)?;
+                found.push((k, target.value(&levels.energies)));
+            }
+        }
+        found.sort_by(|a, b| a.1.total_cmp(&b.1));
+        found.truncate(3);
+        Ok(found)
     }
 
     /// The distance from a band to the next at one k, settled as an extremum there is.
