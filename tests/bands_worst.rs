@@ -13,24 +13,9 @@ mod bench;
 use std::sync::Arc;
 use std::sync::atomic::{AtomicUsize, Ordering};
 
-use bench::{Bench, EV};
+use bench::{Bench, EV, draws, row};
 use crenate::bands::{Assessment, TargetState, Unsolved, Wanted};
-use crenate::model::{CrystalRef, ParameterId, ParameterKind, Setting};
-
-/// One row of the table of worst errors (`cargo test --test bands_worst -- --nocapture | grep '|'`).
-fn row(case: &str, against: &str, worst: f64, bar: f64) {
-    println!("| {case} | {against} | {worst:.1e} | {bar:.0e} |");
-    assert!(worst <= bar, "{case}: {worst:e} above {bar:e}");
-}
-
-fn draws(bench: &Bench) -> Vec<ParameterId> {
-    let built = bench.build(0, &Setting::default());
-    assert!(!built.crystal.broken, "{:#?}", built.troubles);
-    let all = built.crystal.parameters.iter();
-    all.filter(|parameter| parameter.kind == ParameterKind::Draw)
-        .map(|parameter| parameter.id)
-        .collect()
-}
+use crenate::model::{CrystalRef, ParameterId, Setting};
 
 fn setting(draws: &[ParameterId], at: &[f64]) -> Setting {
     Setting {

@@ -9,9 +9,9 @@
 #[path = "bands/mod.rs"]
 mod bench;
 
-use bench::{Bench, EV, RYDBERG, row};
+use bench::{Bench, EV, RYDBERG, draws, row};
 use crenate::bands::{Class, Feature, GapKind, Measured, Solution, TargetState, Unsolved};
-use crenate::model::{ParameterId, ParameterKind, Setting};
+use crenate::model::Setting;
 use serde_json::Value;
 
 fn value(bench: &Bench, crystal: usize, measure: &str) -> Measured {
@@ -292,14 +292,6 @@ fn worst_cases_hold_where_a_tolerance_splits_a_crossing() {
     assert_eq!(targets[1].state, TargetState::Met, "{:?}", targets[1]);
 }
 
-fn draws(bench: &Bench) -> Vec<ParameterId> {
-    let crystal = bench.build(0, &Setting::default()).crystal;
-    let all = crystal.parameters.iter();
-    all.filter(|parameter| parameter.kind == ParameterKind::Draw)
-        .map(|parameter| parameter.id)
-        .collect()
-}
-
 const SILICON: &str = "crystal si\n  lattice fcc 5.43 Å\n  atom A at (0.125, 0.125, 0.125)\n  \
      atom A at (0.875, 0.875, 0.875)\n  formfactor A 3 = -0.21 Ry\n  formfactor A 8 = 0.04 Ry\n  \
      formfactor A 11 = 0.08 Ry\n  filling 8\n  bands 4\n";
@@ -415,13 +407,7 @@ fn check_slopes(text: &str, bands: usize) {
         .solver
         .sensitivities(&built.crystal, bands, &|| false)
         .expect("sensitivities");
-    let draws: Vec<_> = built
-        .crystal
-        .parameters
-        .iter()
-        .filter(|parameter| parameter.kind == ParameterKind::Draw)
-        .map(|parameter| parameter.id)
-        .collect();
+    let draws = draws(&bench);
     assert!(!draws.is_empty());
     for draw in draws {
         let at = |end: f64| {

@@ -10,7 +10,7 @@
 mod reference;
 
 use crenate::numerics::{Bands, Budget, Cell, Mass, Mesh, Piece, SolveError, fermi, level, solve};
-use reference::mixtures::{Random, any_piece, mirrored, trials};
+use reference::mixtures::{Random, mirrored, mixture, trials};
 use reference::{flat, smooth_cell};
 use std::f64::consts::PI;
 use std::sync::atomic::{AtomicUsize, Ordering};
@@ -67,17 +67,7 @@ fn spectrum_does_not_depend_on_the_origin_or_the_direction() {
         pieces.rotate_left(turn);
         assert_same("turned", &reference, &bands(&Cell { pieces }, 6), 0.0);
     }
-    let mut pieces = lopsided();
-    pieces.reverse();
-    for piece in &mut pieces {
-        if let Piece::Ramp {
-            potential, mass, ..
-        } = piece
-        {
-            potential.reverse();
-            mass.reverse();
-        }
-    }
+    let pieces = mirrored(&lopsided());
     assert_same("mirrored", &reference, &bands(&Cell { pieces }, 6), 0.0);
     // a layer cut in two, nothing inserted
     let mut pieces = lopsided();
@@ -625,13 +615,7 @@ fn doubled_random_mixtures_fold_and_do_not_depend_on_origin_or_direction() {
     let mut doubled = 0;
     let mut wrong = Vec::new();
     for trial in 0..trials(400) {
-        let offset = [0.0, 1000.0, -1000.0][(3.0 * random.next()) as usize % 3];
-        let thick = [4.0, 15.0, 60.0][(3.0 * random.next()) as usize % 3];
-        let count = 2 + (random.next() * 5.0) as usize;
-        let mut pieces: Vec<Piece> = (0..count)
-            .map(|_| any_piece(&mut random, offset, thick))
-            .collect();
-        pieces.push(flat(0.5 + random.next(), offset, 1.0));
+        let mut pieces = mixture(&mut random);
         let repeated = random.next() < 0.25;
         if repeated {
             pieces = [pieces.clone(), pieces].concat();

@@ -14,7 +14,7 @@ use crenate::numerics::{
     Budget, Cell, Mass, Piece, PieceSensitivity, Quantity, level, sensitivities, solve,
 };
 use nalgebra::{DMatrix, SymmetricEigen};
-use reference::mixtures::{Random, any_piece, mirrored, trials};
+use reference::mixtures::{Random, mirrored, mixture, trials};
 use reference::{flat, number, random_cells, rows, smooth_cell};
 use std::f64::consts::PI;
 
@@ -394,13 +394,7 @@ fn random_mixtures_do_not_depend_on_origin_or_direction() {
     let mut random = Random(0x7f4a_7c15_9e37_79b9);
     let mut sweeps = 0.0f64;
     for trial in 0..trials(300) {
-        let offset = [0.0, 1000.0, -1000.0][(3.0 * random.next()) as usize % 3];
-        let thick = [4.0, 15.0, 60.0][(3.0 * random.next()) as usize % 3];
-        let count = 2 + (random.next() * 5.0) as usize;
-        let mut pieces: Vec<Piece> = (0..count)
-            .map(|_| any_piece(&mut random, offset, thick))
-            .collect();
-        pieces.push(flat(0.5 + random.next(), offset, 1.0));
+        let pieces = mixture(&mut random);
         let cell = Cell { pieces };
         let mut turned = cell.clone();
         turned

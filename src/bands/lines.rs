@@ -36,9 +36,23 @@ pub(super) fn meeting(
     low: f64,
     high: f64,
 ) -> f64 {
+    between(tangents(left, right, direction, low, high).place, low, high)
+}
+
+/// Two tangents and the place where they meet.
+struct Tangents {
+    down: f64,
+    up: f64,
+    place: f64,
+}
+
+fn tangents(left: &Sample, right: &Sample, direction: &[f64], low: f64, high: f64) -> Tangents {
     let (down, up) = (dot(&left.slopes, direction), dot(&right.slopes, direction));
-    let meet = (right.value - left.value + down * low - up * high) / (down - up);
-    between(meet, low, high)
+    Tangents {
+        down,
+        up,
+        place: (right.value - left.value + down * low - up * high) / (down - up),
+    }
 }
 
 /// Where a slope that changes evenly between two places is zero; the middle where that is not between.
@@ -70,12 +84,11 @@ pub(super) fn meeting_height(
     low: f64,
     high: f64,
 ) -> f64 {
-    let (down, up) = (dot(&left.slopes, direction), dot(&right.slopes, direction));
+    let Tangents { down, up, place } = tangents(left, right, direction, low, high);
     if up <= 0.0 {
         return f64::NEG_INFINITY;
     }
-    let meet = (right.value - left.value + down * low - up * high) / (down - up);
-    left.value + down * (meet - low)
+    left.value + down * (place - low)
 }
 
 /// Minus the shortest vector between the slopes of both sides, kept inside the box.

@@ -172,19 +172,15 @@ impl Assessor<'_> {
             place: assessment.place,
             kind: QuantityKind::Gap(band),
         };
+        let smooth = !self.is_kinked(&gap);
         let gap = TargetFormula::Quantity(gap);
         let probe = Probe::new(self, Measures::Formula(&gap), &draws);
         let dimension = self
             .at(of, &Setting::default())
             .map_or(self.crystal.dimension, |crystal| crystal.dimension);
-        let quantity = Quantity {
-            of,
-            place: assessment.place,
-            kind: QuantityKind::Gap(band),
-        };
         let search = Search {
             floor: 0.0,
-            ..self.search_in(dimension, !self.is_kinked(&quantity))
+            ..self.search_in(dimension, smooth)
         };
         let Some(least) = probe.least_margin(Side::Lower, search)? else {
             return Ok(());

@@ -8,7 +8,9 @@ use std::path::{Path, PathBuf};
 use std::sync::Arc;
 
 use crenate::bands::{Assessment, MeasureValue, Solution, Solver, Unsolved};
-use crenate::model::{Built, CrystalRef, Setting, World, build_crystal};
+use crenate::model::{
+    Built, CrystalRef, ParameterId, ParameterKind, Setting, World, build_crystal,
+};
 use memory::Memory;
 
 /// One elementary charge: joule per electronvolt (exact in the SI).
@@ -17,7 +19,7 @@ pub const EV: f64 = 1.602_176_634e-19;
 /// Ry in joule (CODATA 2022).
 pub const RYDBERG: f64 = 13.605_693_122_990 * EV;
 
-/// One row of the table of worst errors (`cargo test --test bands_zones --test bands_epm -- --nocapture | grep '|'`).
+/// One row of the table of worst errors (`cargo test --test bands_zones -- --nocapture | grep '|'`, and so for its siblings).
 pub fn row(case: &str, against: &str, worst: f64, bar: f64) {
     println!("| {case} | {against} | {worst:.1e} | {bar:.1e} |");
     assert!(worst <= bar, "{case}: {worst:e} above {bar:e}");
@@ -100,4 +102,14 @@ impl Bench {
         );
         assessed.expect("assessed targets")
     }
+}
+
+/// The tolerances of the first crystal.
+pub fn draws(bench: &Bench) -> Vec<ParameterId> {
+    let built = bench.build(0, &Setting::default());
+    assert!(!built.crystal.broken, "{:#?}", built.troubles);
+    let all = built.crystal.parameters.iter();
+    all.filter(|parameter| parameter.kind == ParameterKind::Draw)
+        .map(|parameter| parameter.id)
+        .collect()
 }

@@ -41,6 +41,18 @@ pub fn any_piece(random: &mut Random, offset: f64, thick: f64) -> Piece {
     }
 }
 
+/// A few pieces of any kind and one flat one, all above, around or below zero, with walls of up to many decay lengths.
+pub fn mixture(random: &mut Random) -> Vec<Piece> {
+    let offset = [0.0, 1000.0, -1000.0][(3.0 * random.next()) as usize % 3];
+    let thick = [4.0, 15.0, 60.0][(3.0 * random.next()) as usize % 3];
+    let count = 2 + (random.next() * 5.0) as usize;
+    let mut pieces: Vec<Piece> = (0..count)
+        .map(|_| any_piece(random, offset, thick))
+        .collect();
+    pieces.push(flat(0.5 + random.next(), offset, 1.0));
+    pieces
+}
+
 pub fn mirrored(pieces: &[Piece]) -> Vec<Piece> {
     let mut pieces = pieces.to_vec();
     pieces.reverse();
